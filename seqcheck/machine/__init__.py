@@ -1,0 +1,1 @@
+"""The model of a machine. Imports nothing else of seqcheck."""

@@ -1,0 +1,124 @@
+"""What an examination gives back: findings with their runs, margins, handovers, durations, and input errors.
+
+These are plain values. Whoever makes them (checks, language) and whoever shows them (report, chart) meets here.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import Enum
+
+from seqcheck.machine.places import Place
+
+
+class Severity(Enum):
+    ERROR = "error"
+    WARNING = "warning"
+    NOTE = "note"
+
+
+@dataclass(frozen=True, slots=True)
+class Problem:
+    """A fault of the input. ``source`` is the line of text at ``place``, None where there is none to show (a missing
+    file, say); ``advice`` says what would be right."""
+
+    place: Place
+    message: str
+    source: str | None = None
+    advice: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Moment:
+    """One line of a concrete run."""
+
+    time_us: int
+    event: str
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """``margin_us`` is negative where something breaks by so much, None where no time is involved or where an
+    outside wait leaves it open. ``replayed`` is None where there is no run to play. ``certain``: every timing
+    shows it. ``mend`` says what would put it right."""
+
+    kind: str
+    severity: Severity
+    certain: bool
+    subject: str
+    step: str | None
+    place: Place
+    message: str
+    margin_us: int | None
+    replayed: bool | None
+    run: tuple[Moment, ...]
+    mend: str | None
+
+
+@dataclass(frozen=True, slots=True)
+class Margin:
+    """The tightest margin of one obligation that the text states at ``place``; None where an outside wait leaves it
+    open."""
+
+    kind: str
+    subject: str
+    step: str | None
+    place: Place
+    margin_us: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class Handover:
+    """From the end of one coil (decay included) to the start of the opposed one."""
+
+    valve: str
+    from_coil: str
+    to_coil: str
+    place: Place
+    least_gap_us: int
+    greatest_overlap_us: int
+
+
+@dataclass(frozen=True, slots=True)
+class Duration:
+    """``greatest`` is None where an outside signal leaves it open."""
+
+    least: int
+    typical: int
+    greatest: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class PathPart:
+    """One event on the critical path: how late it can come after the start of the cycle, the delay that brings it
+    (least, greatest, the latter None where open) and where it stands."""
+
+    event: str
+    at_us: int | None
+    least: int
+    greatest: int | None
+
+
+@dataclass(frozen=True, slots=True)
+class Report:
+    """Everything about one file. ``cycles`` and ``steps`` by sequence and qualified step name, in the text's order."""
+
+    file: str
+    machine: str | None
+    findings: tuple[Finding, ...] = ()
+    problems: tuple[Problem, ...] = ()
+    sheets: tuple[str, ...] = ()
+    assumptions: tuple[str, ...] = ()
+    cycles: tuple[tuple[str, Duration], ...] = ()
+    steps: tuple[tuple[str, Duration], ...] = ()
+    critical_path: tuple[PathPart, ...] = ()
+    handovers: tuple[Handover, ...] = ()
+    margins: tuple[Margin, ...] = ()
+
+    @property
+    def verdict(self) -> str:
+        """``unreadable``, ``findings`` where an error or a warning was found, else ``clean``."""
+        if self.problems:
+            return "unreadable"
+        worst = {finding.severity for finding in self.findings}
+        return "findings" if worst & {Severity.ERROR, Severity.WARNING} else "clean"
