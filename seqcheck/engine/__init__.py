@@ -1,0 +1,1 @@
+"""The method of proof: play once, keep every event's causes, bound the separations, replay the witnesses."""

@@ -1,0 +1,150 @@
+"""Exact greatest separations between events.
+
+Takes an event graph and pairs of events; gives ``S[i, j]``, the exact greatest value of ``t(j) - t(i)`` over all
+delays. Refuses nothing; a separation that nothing limits comes out at or over ``OPEN / 2``.
+
+For one source ``i``, events in the order of the graph::
+
+    S[i, j] = min( max over causes k of j of S[i, k] + greatest(k, j),  -L[j, i] )
+
+with ``L[j, i]`` the longest chain from ``j`` to ``i`` over the least delays (none: no such term). McMillan & Dill,
+ICCD 1992; Hulgaard, Burns, Amon, Borriello, IEEE Trans. Computers 44(11), 1995.
+
+Only a part of the graph can matter to a pair. Let ``x`` be the last event that dominates both: what lies before it
+moves both alike. From an event one may go up its chain of dominators towards ``x``, to ``y``, as long as the other
+event of the pair has no cause that ``y`` dominates: the delays behind ``y`` then belong to this event alone, are drawn
+independently of all else, and simply add their greatest (forward) or least (backward) sum. What is left is the
+separation of the two events so found, within their causes since ``x``.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+
+import numpy
+import numpy.typing
+
+from seqcheck.engine.graph import OPEN, EventGraph
+from seqcheck.machine.time import Span
+
+_NO_CHAIN = -(1 << 60)
+
+Table = numpy.typing.NDArray[numpy.int64]
+
+#: ``S`` by pair of (source, event).
+Rows = dict[tuple[int, int], int]
+
+
+def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) -> Rows:
+    """``S[i, j]`` for every pair ``(i, j)``: how much later than ``i`` can ``j`` be? Microseconds."""
+    rows: Rows = {}
+    left: dict[int, list[_Reduced]] = {}
+    closures: dict[tuple[int, int], list[int]] = {}
+    for source, event in set(pairs):
+        common = graph.common_dominator(source, event)
+        if source == common:
+            rows[source, event] = graph.latest[event] - graph.latest[source]
+        elif event == common:
+            rows[source, event] = graph.earliest[event] - graph.earliest[source]
+        else:
+            left.setdefault(common, []).append(_reduce(graph, common, source, event, closures))
+    for common, group in left.items():
+        near = _near_separations(graph, common, {(one.near_source, one.near_event) for one in group})
+        for one in group:
+            forward = graph.latest[one.event] - graph.latest[one.near_event]
+            backward = graph.earliest[one.source] - graph.earliest[one.near_source]
+            rows[one.source, one.event] = forward + near[one.near_source, one.near_event] - backward
+    return rows
+
+
+@dataclass(frozen=True, slots=True)
+class _Reduced:
+    """A pair, and the dominators of its two events from which on each has its delays to itself."""
+
+    source: int
+    event: int
+    near_source: int
+    near_event: int
+
+
+def _reduce(
+    graph: EventGraph, common: int, source: int, event: int, closures: dict[tuple[int, int], list[int]]
+) -> _Reduced:
+    def causes(number: int) -> list[int]:
+        key = (common, number)
+        if key not in closures:
+            closures[key] = causes_since(graph, common, [number])
+        return closures[key]
+
+    near_source, near_event = graph.below(common, source), graph.below(common, event)
+    while True:
+        lower_event = _own_from(graph, near_event, event, causes(near_source))
+        lower_source = _own_from(graph, near_source, source, causes(lower_event))
+        if (lower_source, lower_event) == (near_source, near_event):
+            return _Reduced(source, event, near_source, near_event)
+        near_source, near_event = lower_source, lower_event
+
+
+def _own_from(graph: EventGraph, near: int, event: int, others: Sequence[int]) -> int:
+    """From ``near`` down towards ``event``: the first dominator behind which none of the ``others`` lies."""
+    for other in reversed(others):
+        if other <= near:
+            break
+        if graph.dominates(near, other):
+            near = graph.below(graph.common_dominator(other, event), event)
+    return near
+
+
+def greatest_separation(graph: EventGraph, source: int, event: int) -> int:
+    return greatest_separations(graph, [(source, event)])[source, event]
+
+
+def is_open(separation: int) -> bool:
+    return separation >= OPEN // 2
+
+
+def _near_separations(graph: EventGraph, common: int, pairs: set[tuple[int, int]]) -> Rows:
+    members = causes_since(graph, common, {number for pair in pairs for number in pair})
+    sources = sorted({source for source, _ in pairs})
+    table = separation_table(graph, members, sources)
+    position = {number: index for index, number in enumerate(members)}
+    column = {number: index for index, number in enumerate(sources)}
+    return {(source, event): int(table[position[event], column[source]]) for source, event in pairs}
+
+
+def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
+    """The events and all their causes back to ``common``, which dominates them, in the order of the graph."""
+    found = {common}
+    waiting = list(events)
+    while waiting:
+        number = waiting.pop()
+        if number not in found:
+            found.add(number)
+            waiting.extend(arc.cause for arc in graph.arcs[number])
+    return sorted(found)
+
+
+def separation_table(graph: EventGraph, members: Sequence[int], sources: Sequence[int], open_us: int = OPEN) -> Table:
+    """``S`` for every source, shape ``(members, sources)``, microseconds. ``members`` are closed under causes but for
+    the first, which dominates the others; the sources are among them. ``open_us`` stands in for open delays."""
+    index = {number: position for position, number in enumerate(members)}
+    chain = numpy.full((len(members), len(sources)), _NO_CHAIN, dtype=numpy.int64)
+    for position, source in enumerate(sources):
+        chain[index[source], position] = 0
+    arcs = [[(index[arc.cause], arc.span) for arc in graph.arcs[number]] for number in members[1:]]
+    for position in range(len(members) - 1, 0, -1):
+        for cause, span in arcs[position - 1]:
+            numpy.maximum(chain[cause], chain[position] + span.least, out=chain[cause])
+    table = -chain
+    for position, incoming in enumerate(arcs, start=1):
+        cause, span = incoming[0]
+        latest = table[cause] + _greatest(span, open_us)
+        for cause, span in incoming[1:]:
+            numpy.maximum(latest, table[cause] + _greatest(span, open_us), out=latest)
+        numpy.minimum(table[position], latest, out=table[position])
+    return table
+
+
+def _greatest(span: Span, open_us: int) -> int:
+    return open_us if is_open(span.greatest) else span.greatest

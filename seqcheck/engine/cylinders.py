@@ -1,0 +1,218 @@
+"""Cylinders: from valve positions reached to marks passed.
+
+Takes positions that valves reach; gives strokes and stops to the trace and sensor changes to the inputs. Where a
+piston that was stopped between its ends may stand at one of several places, depending on times, and nobody looks,
+``regions`` says so (by cylinder and number of the stroke that was stopped); the next stroke then takes any of them
+as its start.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from functools import partial
+
+from seqcheck.engine.graph import Event
+from seqcheck.engine.strokes import Region, marks_of, reached_by
+from seqcheck.engine.timeline import Order, Timeline
+from seqcheck.engine.trace import Shift, Stroke, Trace
+from seqcheck.engine.travel import LEAVING, START, Travel
+from seqcheck.machine.devices import Cylinder, OnValve, Position
+from seqcheck.machine.model import Machine
+from seqcheck.machine.time import NO_TIME, WHOLE_SHARE
+
+#: Told of a sensor's own change: the sensor, on or off, at which event.
+Sense = Callable[[str, bool, int], None]
+
+Regions = Mapping[tuple[str, int], Region]
+
+
+@dataclass(slots=True)
+class _Piston:
+    cylinder: Cylinder
+    marks: tuple[int, ...]
+    region: Region
+    #: Where the run that is being played has it, within ``region``.
+    stood: Region
+    stroke: Stroke | None = None
+    strokes: int = 0
+    #: The event at which a stopped piston stands still; None unless it is running on.
+    runs_on_until: int | None = None
+
+    @property
+    def last(self) -> int:
+        return len(self.marks) - 1
+
+
+class Cylinders:
+    def __init__(self, machine: Machine, timeline: Timeline, trace: Trace, regions: Regions, sense: Sense) -> None:
+        self._machine = machine
+        self._timeline = timeline
+        self._trace = trace
+        self._regions = regions
+        self._sense = sense
+        self._pistons: dict[str, _Piston] = {}
+        self._on_valve: dict[str, list[tuple[_Piston, bool]]] = {}
+        self._sensor_on: dict[str, bool] = {}
+        for name, cylinder in machine.cylinders.items():
+            marks = trace.marks[name] = marks_of(machine, cylinder)
+            start = Region.exactly(len(marks) - 1 if cylinder.starts_extended else 0)
+            piston = _Piston(cylinder, marks, start, start)
+            self._pistons[name] = piston
+            assert isinstance(cylinder.drive, OnValve)
+            self._on_valve.setdefault(cylinder.drive.valve, []).append((piston, cylinder.drive.reverse))
+            for sensor_name in cylinder.sensors:
+                sensor = machine.sensors[sensor_name]
+                self._sensor_on[sensor_name] = (
+                    sensor.low <= (WHOLE_SHARE if cylinder.starts_extended else 0) <= sensor.high
+                )
+
+    @property
+    def sensors_on(self) -> Mapping[str, bool]:
+        return self._sensor_on
+
+    @property
+    def state(self) -> tuple[object, ...]:
+        pistons = tuple(
+            (
+                name,
+                piston.region.low,
+                piston.region.high,
+                tuple(sorted(piston.region.rests)),
+                piston.stroke is not None and piston.stroke.out,
+            )
+            for name, piston in self._pistons.items()
+        )
+        return pistons, tuple(sorted(self._sensor_on.items()))
+
+    def follow(self, valve: str, shift: Shift) -> None:
+        """The valve has reached a position: what it feeds sets out, turns or stops."""
+        for piston, reverse in self._on_valve.get(valve, ()):
+            if shift.to is Position.CENTRE:
+                self._part_from(piston, shift, None)
+            else:
+                out = (shift.to is Position.A) != reverse
+                self._part_from(piston, shift, out)
+                if piston.stroke is None and piston.region != Region.exactly(piston.last if out else 0):
+                    self._begin(piston, out, shift)
+
+    # Ending a stroke -------------------------------------------------------------------------------------------
+
+    def _part_from(self, piston: _Piston, shift: Shift, out: bool | None) -> None:
+        """The valve no longer drives the piston as before: a stroke under way ends, one that is done is over."""
+        stroke = self._latest(piston)
+        if stroke is None:
+            return
+        if stroke.away is None and out != stroke.out:
+            stroke.away = shift
+            stroke.stands = shift.reached
+            overrun = piston.cylinder.overrun
+            if out is None and overrun != NO_TIME:
+                arc = self._timeline.delay(shift.reached, overrun, "overrun", stroke.cylinder, stroke.number)
+                stroke.stands = self._timeline.event(Event("stands", stroke.cylinder), arc)
+                if piston.stroke is not None:
+                    piston.runs_on_until = stroke.stands
+                    self._timeline.at(stroke.stands, Order.STOP, lambda: self._stand_still(piston))
+                    return
+            self._stand_still(piston)
+        elif piston.runs_on_until is not None and out is not None:
+            stroke.stands = shift.reached
+            self._stand_still(piston)
+
+    def _latest(self, piston: _Piston) -> Stroke | None:
+        strokes = self._trace.strokes_of.get(piston.cylinder.name)
+        return strokes[-1] if strokes else None
+
+    def _stand_still(self, piston: _Piston) -> None:
+        stroke = self._latest(piston)
+        assert stroke is not None
+        if piston.runs_on_until is not None:
+            self._timeline.call_off(piston.runs_on_until)
+            piston.runs_on_until = None
+        if piston.stroke is not None:
+            for _, event in stroke.marks[stroke.passed :]:
+                self._timeline.call_off(event)
+            if stroke.leaves is not None:
+                self._timeline.call_off(stroke.leaves)
+            stroke.cut = True
+            piston.stroke = None
+        piston.stood = stroke.stood = piston.region
+        piston.region = self._regions.get((stroke.cylinder, stroke.number), piston.region)
+
+    # Beginning one ---------------------------------------------------------------------------------------------
+
+    def _begin(self, piston: _Piston, out: bool, shift: Shift) -> None:
+        name = piston.cylinder.name
+        stroke = Stroke(name, out, piston.strokes, shift, piston.region)
+        piston.strokes += 1
+        piston.stroke = stroke
+        self._trace.strokes.append(stroke)
+        self._trace.strokes_of.setdefault(name, []).append(stroke)
+        self._leave_end(piston, stroke)
+        stroke.marks = self._plan(piston, stroke)
+        for index, event in stroke.marks:
+            self._timeline.at(event, Order.MARK, partial(self._pass, piston, index, event))
+
+    def _leave_end(self, piston: _Piston, stroke: Stroke) -> None:
+        """The piston comes off the end at which it stands, or may stand."""
+        start = 0 if stroke.out else piston.last
+        if start in piston.region.rests:
+            arc = self._timeline.delay(stroke.shift.reached, piston.cylinder.lag, "lag", stroke.cylinder, stroke.number)
+            leaves = self._timeline.event(Event("leaves", stroke.cylinder, str(piston.marks[start])), arc)
+            stroke.leaves = leaves
+            self._timeline.at(leaves, Order.MARK, partial(self._come_off, piston, start, leaves))
+
+    def _come_off(self, piston: _Piston, start: int, event: int) -> None:
+        if piston.region == Region.exactly(start):
+            piston.region = Region(0, 1) if start == 0 else Region(start - 1, start)
+        for name in piston.cylinder.sensors:
+            sensor = self._machine.sensors[name]
+            if sensor.low == sensor.high == piston.marks[start]:
+                self._set_sensor(name, False, event)
+
+    def _plan(self, piston: _Piston, stroke: Stroke) -> tuple[tuple[int, int], ...]:
+        """The events at which the marks ahead will be reached, in the order of travel."""
+        timeline, shift, region = self._timeline, stroke.shift, piston.region
+        travel = Travel(piston.cylinder, piston.marks, stroke.out, timeline.graph.arcs[shift.reached][-1].span)
+        if region.low == region.high:
+            assert stroke.leaves is not None
+            start = shift.asked if travel.timed_from_coil else shift.reached
+            plan, since = travel.from_end(region.low), {START: start, LEAVING: stroke.leaves}
+        else:
+            plan, since = travel.from_between(region, piston.stood), {START: shift.reached}
+        marks: list[tuple[int, int]] = []
+        for number, reach in enumerate(plan):
+            position = str(piston.marks[reach.mark])
+            name = f"{stroke.cylinder} {position}"
+            arcs = [
+                timeline.delay(since[part.since], part.span, "mark", name, stroke.number)
+                if part.drawn
+                else timeline.loose(since[part.since], part.span)
+                for part in reach.parts
+            ]
+            since[number] = timeline.event(Event("mark", stroke.cylinder, position), *arcs)
+            marks.append((reach.mark, since[number]))
+        return tuple(marks)
+
+    # Passing marks ---------------------------------------------------------------------------------------------
+
+    def _pass(self, piston: _Piston, index: int, event: int) -> None:
+        stroke = piston.stroke
+        assert stroke is not None
+        stroke.passed += 1
+        if event == stroke.end:
+            piston.region = Region.exactly(index)
+            piston.stroke = None
+        elif stroke.out:
+            piston.region = Region(index, max(index + 1, piston.region.high))
+        else:
+            piston.region = Region(min(index - 1, piston.region.low), index)
+        for name in piston.cylinder.sensors:
+            value = reached_by(self._machine.sensors[name], piston.marks[index], stroke.out)
+            if value is not None:
+                self._set_sensor(name, value, event)
+
+    def _set_sensor(self, name: str, value: bool, event: int) -> None:
+        if self._sensor_on[name] != value:
+            self._sensor_on[name] = value
+            self._sense(name, value, event)

@@ -1,0 +1,145 @@
+"""The timed event graph.
+
+Takes events with their causes in the order in which they become known (causes first); gives, for each event, its
+earliest and latest time, the events that dominate it, and the whole as a networkx graph. Refuses nothing: the
+player only adds what has causes already.
+
+An event happens at ``t(e) = max over causes c of t(c) + d`` with each delay ``d`` drawn from its own span: events
+with max-causality and bounded delays, as in McMillan & Dill, *Algorithms for interface timing verification*, ICCD
+1992.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from seqcheck.machine.time import NO_TIME, Span
+
+if TYPE_CHECKING:
+    import networkx
+
+#: Stands for a delay that nothing limits. Some 35 years: far over every real span, and thousands of them in a row
+#: still fit in 64 bits, so that sums need no special case. At the edges it becomes None.
+OPEN = 1 << 50
+
+#: What a delay is called, so that the same one can be drawn again in a replay: what takes the time, whose time it
+#: is, and how often that had occurred before.
+DelayName = tuple[str, str, int]
+
+
+@dataclass(frozen=True, slots=True)
+class Arc:
+    """From a cause to its event. ``delay`` is None where the span has no width to draw from."""
+
+    cause: int
+    span: Span
+    delay: DelayName | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Event:
+    """``what`` happens to ``subject``; ``detail`` tells occasions apart that differ in kind (a position, on or off)."""
+
+    what: str
+    subject: str
+    detail: str = ""
+
+
+class EventGraph:
+    """Events numbered from 0, the start, which has no cause."""
+
+    def __init__(self) -> None:
+        self.events: list[Event] = [Event("start", "")]
+        self.arcs: list[tuple[Arc, ...]] = [()]
+        self.earliest: list[int] = [0]
+        self.latest: list[int] = [0]
+        self._dominator: list[int] = [0]
+        self._depth: list[int] = [0]
+        self._jump: list[int] = [0]
+
+    def add(self, event: Event, arcs: tuple[Arc, ...]) -> int:
+        """Add an event with at least one cause; gives its number."""
+        number = len(self.events)
+        self.events.append(event)
+        self.arcs.append(arcs)
+        self.earliest.append(max(self.earliest[arc.cause] + arc.span.least for arc in arcs))
+        self.latest.append(max(self.latest[arc.cause] + arc.span.greatest for arc in arcs))
+        dominator = arcs[0].cause
+        for arc in arcs[1:]:
+            dominator = self.common_dominator(dominator, arc.cause)
+        self._hang_below(dominator)
+        return number
+
+    def _hang_below(self, dominator: int) -> None:
+        """Note the dominator and a jump upwards whose lengths grow in the way of a skew binary number, so that a way
+        up of any length takes a number of jumps that grows with its logarithm (Myers, *An applicative random-access
+        stack*, Inf. Proc. Letters 17, 1983)."""
+        jump = self._jump[dominator]
+        same_length = self._depth[dominator] - self._depth[jump] == self._depth[jump] - self._depth[self._jump[jump]]
+        self._dominator.append(dominator)
+        self._depth.append(self._depth[dominator] + 1)
+        self._jump.append(self._jump[jump] if same_length else dominator)
+
+    def common_dominator(self, one: int, other: int) -> int:
+        """The last event through which every chain of causes of both runs (an event dominates itself)."""
+        depth, dominator, jump = self._depth, self._dominator, self._jump
+        if depth[one] < depth[other]:
+            one, other = other, one
+        one = self._ancestor_at(one, depth[other])
+        while one != other:
+            if jump[one] != jump[other]:
+                one, other = jump[one], jump[other]
+            else:
+                one, other = dominator[one], dominator[other]
+        return one
+
+    def _ancestor_at(self, event: int, depth: int) -> int:
+        while self._depth[event] > depth:
+            jump = self._jump[event]
+            event = jump if self._depth[jump] >= depth else self._dominator[event]
+        return event
+
+    def below(self, dominator: int, event: int) -> int:
+        """The dominator of ``event`` right under ``dominator``; ``event`` itself where the two are the same."""
+        if event == dominator:
+            return event
+        return self._ancestor_at(event, self._depth[dominator] + 1)
+
+    def dominates(self, dominator: int, event: int) -> bool:
+        """Whether every chain of causes of the event runs through another one, its dominator."""
+        depth = self._depth[dominator]
+        return self._depth[event] > depth and self._ancestor_at(event, depth) == dominator
+
+    def never_later(self, one: int, other: int) -> bool:
+        """Whether plain intervals since the common dominator already show ``one`` to be at or before ``other``."""
+        common = self.common_dominator(one, other)
+        return self.latest[one] - self.latest[common] <= self.earliest[other] - self.earliest[common]
+
+    def without_idle(self, causes: Iterable[int]) -> tuple[int, ...]:
+        """Causes of equal standing less those that can never be the last: the events of two threads that wait for
+        the same thing come out as one event, and old causes do not tie new events to the distant past."""
+        kept: list[int] = []
+        for cause in sorted(set(causes), reverse=True):
+            if not any(self.never_later(cause, other) for other in kept):
+                kept = [other for other in kept if not self.never_later(other, cause)]
+                kept.append(cause)
+        return tuple(kept)
+
+    def as_networkx(self) -> networkx.DiGraph[int]:
+        """The graph for other programs: nodes with ``what``, ``subject``, ``detail``, arcs with ``least`` and
+        ``greatest`` in microseconds. Two delays between the same two events keep the arc of the greater one each."""
+        import networkx
+
+        graph: networkx.DiGraph[int] = networkx.DiGraph()
+        for number, event in enumerate(self.events):
+            graph.add_node(number, what=event.what, subject=event.subject, detail=event.detail)
+            for arc in self.arcs[number]:
+                graph.add_edge(arc.cause, number, least=arc.span.least, greatest=arc.span.greatest)
+        return graph
+
+
+def after(cause: int, span: Span = NO_TIME) -> Arc:
+    """An arc whose delay is not drawn: no time at all, or a fixed one."""
+    return Arc(cause, span)

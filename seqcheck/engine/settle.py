@@ -1,0 +1,129 @@
+"""Going round: play until the state at the start of a cycle has come up before.
+
+Takes a machine; gives one trace that stands for all runs, and which of its cycles are the settled ones. What is
+under way at the start of a cycle belongs to its state with the bounds of when it will come. After a state has come
+up again the round that lies between is played once more, so that every pair across the border is in the trace.
+
+Where a piston was stopped between its ends, the order of the stop and of the marks ahead may be a matter of time that
+nobody looks at. The round is then played again with the piston anywhere that the bounds leave it, until these
+regions no longer change.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from seqcheck.engine.bounds import Rows, greatest_separations
+from seqcheck.engine.cylinders import Regions
+from seqcheck.engine.player import Player
+from seqcheck.engine.strokes import Region
+from seqcheck.engine.trace import Read, Stroke, Trace
+from seqcheck.machine.model import Machine
+
+MOST_CYCLES = 12
+_MOST_ROUNDS = 8
+
+
+@dataclass(frozen=True, slots=True)
+class Settlement:
+    """``first`` and ``last``: the settled cycles run from one to the other of ``trace.cycles`` (none for a sequence
+    that runs once or does not come round). ``settled``: a state has come up again, or nothing was due any more."""
+
+    trace: Trace
+    regions: Regions
+    settled: bool
+    first: int
+    last: int
+
+
+@dataclass(slots=True)
+class _Rounds:
+    """Counts the cycles of one play and tells when they have settled."""
+
+    seen: dict[tuple[object, ...], int]
+    first: int | None = None
+    last: int | None = None
+    #: The number of the cycle that has just begun.
+    count: int = -1
+
+    def go_on(self, player: Player, read: Read) -> bool:
+        self.count += 1
+        if self.last is not None:
+            return self.count < self.last
+        signature = _signature(player, read)
+        if signature in self.seen:
+            self.first = self.count
+            self.last = self.count + self.count - self.seen[signature]
+        self.seen.setdefault(signature, self.count)
+        return self.count < MOST_CYCLES
+
+
+def settle(machine: Machine) -> Settlement:
+    regions: dict[tuple[str, int], Region] = {}
+    for _ in range(_MOST_ROUNDS):
+        settlement = _play(machine, regions)
+        found = dict(_regions(settlement.trace))
+        if found == regions:
+            break
+        regions = found
+    return settlement
+
+
+def _play(machine: Machine, regions: Regions) -> Settlement:
+    rounds = _Rounds({})
+    trace = Player(machine, rounds.go_on, regions=regions).play()
+    done = len(trace.cycles) - 1
+    if rounds.first is None or rounds.last is None or done < rounds.last:
+        return Settlement(trace, regions, trace.finished or trace.endless, max(0, done - 1), done)
+    return Settlement(trace, regions, True, rounds.first, rounds.last)
+
+
+def _signature(player: Player, read: Read) -> tuple[object, ...]:
+    """The state, and for what is under way how long after the start of the cycle it can come."""
+    graph = player.trace.graph
+    pending = player.timeline.pending
+    start = read.event
+    bounds = greatest_separations(graph, [pair for one in pending for pair in ((start, one), (one, start))])
+    offsets = sorted(
+        (graph.events[one].what, graph.events[one].subject, bounds[start, one], bounds[one, start]) for one in pending
+    )
+    return player.state, tuple(offsets)
+
+
+def _regions(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
+    """Where each piston that the valve drove otherwise may stand, if that is more than one stretch between marks."""
+    parted = [(stroke, stroke.stands) for stroke in trace.strokes if stroke.stands is not None]
+    pairs = []
+    for stroke, stands in parted:
+        for event in _passings(stroke):
+            pairs += [(stands, event), (event, stands)]
+    rows = greatest_separations(trace.graph, pairs)
+    for stroke, stands in parted:
+        region = _region(stroke, stands, rows)
+        if region is not None and region != stroke.stood:
+            yield (stroke.cylinder, stroke.number), region
+
+
+def _passings(stroke: Stroke) -> list[int]:
+    return [event for _, event in stroke.marks] + ([stroke.leaves] if stroke.leaves is not None else [])
+
+
+def _region(stroke: Stroke, stands: int, rows: Rows) -> Region | None:
+    """From the last mark that is passed in every run to the first that is reached in none."""
+    behind = stroke.started.low if stroke.out else stroke.started.high
+    rests = set()
+    if behind in stroke.started.rests and stroke.leaves is not None and rows[stands, stroke.leaves] > 0:
+        rests.add(behind)
+    ahead = stroke.marks[-1][0]
+    for index, event in stroke.marks:
+        if rows[stands, event] <= 0:
+            behind = index
+        elif rows[event, stands] <= 0:
+            ahead = index
+            break
+    if rows[stands, stroke.end] <= 0:
+        return None
+    if ahead == stroke.marks[-1][0] and rows[stroke.end, stands] > 0:
+        rests.add(ahead)
+    return Region(min(behind, ahead), max(behind, ahead), frozenset(rests & {behind, ahead}))

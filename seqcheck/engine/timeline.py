@@ -1,0 +1,116 @@
+"""Global time: what is due, in order, and how every delay is drawn.
+
+Takes a way of drawing delays; gives events their times and calls what is due. Simultaneous events come in the order
+of ``Order``, then in the order in which they were scheduled, so that a run is always the same run.
+"""
+
+from __future__ import annotations
+
+import heapq
+from collections import Counter
+from collections.abc import Callable, Sequence
+from enum import IntEnum
+
+from seqcheck.engine.graph import Arc, Event, EventGraph
+from seqcheck.machine.time import NO_TIME, Span
+
+#: Gives the time for (what takes it, whose, how often before, within which span), in microseconds.
+Draw = Callable[[str, str, int, Span], int]
+
+
+class Order(IntEnum):
+    """At equal times an obligation counts as kept: what has to come first does come first."""
+
+    SEEN = 0
+    INPUT = 1
+    CONTROLLER = 2
+    STOP = 3
+    MARK = 4
+    VALVE = 5
+    COIL = 6
+    WATCHDOG = 7
+
+
+def typical(what: str, name: str, number: int, span: Span) -> int:
+    return span.typical
+
+
+class Timeline:
+    """``times`` by event number, those of events that were called off included: they are when it would have been."""
+
+    def __init__(self, draw: Draw) -> None:
+        self.graph = EventGraph()
+        self.times: list[int] = [0]
+        self.happened: set[int] = {0}
+        self._draw = draw
+        self._occurred: Counter[tuple[str, str]] = Counter()
+        self._due: list[tuple[int, int, int, int]] = []
+        self._actions: dict[int, list[Callable[[], None]]] = {}
+        self._scheduled = 0
+
+    def delay(self, cause: int, span: Span, what: str, name: str, number: int | None = None) -> tuple[Arc, int]:
+        """An arc whose delay is drawn, and the time at which it ends. ``number`` is the occasion where something
+        other than a plain count tells it (the same occasion must be the same in every run)."""
+        if number is None:
+            number = self._occurred[what, name]
+            self._occurred[what, name] += 1
+        arc = Arc(cause, span, (what, name, number))
+        return arc, self.times[cause] + self._draw(what, name, number, span)
+
+    def event(self, event: Event, *arcs: tuple[Arc, int]) -> int:
+        number = self.graph.add(event, tuple(arc for arc, _ in arcs))
+        self.times.append(max(time for _, time in arcs))
+        return number
+
+    def loose(self, cause: int, span: Span = NO_TIME) -> tuple[Arc, int]:
+        """An arc whose delay nothing draws: it takes no time, a fixed one, or the typical one of its span."""
+        return Arc(cause, span), self.times[cause] + span.typical
+
+    def fixed(self, cause: int, time_us: int = 0) -> tuple[Arc, int]:
+        return self.loose(cause, Span.exactly(time_us) if time_us else NO_TIME)
+
+    def last_of(self, event: Event, causes: Sequence[int]) -> int:
+        """The event at which the last of the causes has come: one of them, where it is always the last."""
+        kept = self.graph.without_idle(causes)
+        if len(kept) == 1:
+            return kept[0]
+        return self.event(event, *(self.fixed(cause) for cause in kept))
+
+    def at(self, number: int, order: Order, action: Callable[[], None]) -> None:
+        """Do this when the event comes, unless it is called off before. An event that has come already is due now."""
+        waiting = self._actions.get(number)
+        if waiting is not None:
+            waiting.append(action)
+            return
+        self._actions[number] = [action]
+        self._scheduled += 1
+        heapq.heappush(self._due, (self.times[number], order, self._scheduled, number))
+
+    def call_off(self, number: int) -> None:
+        self._actions.pop(number, None)
+
+    def is_due(self, number: int) -> bool:
+        return number in self._actions
+
+    @property
+    def pending(self) -> list[int]:
+        return sorted(self._actions)
+
+    @property
+    def next_time(self) -> int:
+        """When the next event is due; the time of the last one once nothing is."""
+        while self._due and self._due[0][3] not in self._actions:
+            heapq.heappop(self._due)
+        return self._due[0][0] if self._due else max(self.times)
+
+    def next(self) -> int | None:
+        """Let the next event come; None when nothing is due any more."""
+        while self._due:
+            _, _, _, number = heapq.heappop(self._due)
+            actions = self._actions.pop(number, None)
+            if actions is not None:
+                self.happened.add(number)
+                for action in actions:
+                    action()
+                return number
+        return None

@@ -1,0 +1,176 @@
+"""What a play leaves behind: the records from which the checks state their obligations.
+
+The player fills them in as the run goes on; nobody changes them afterwards. A number is always an event of the
+graph.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from enum import Enum
+
+from seqcheck.engine.graph import EventGraph
+from seqcheck.engine.scope import Literal
+from seqcheck.engine.strokes import Region
+from seqcheck.machine.devices import Position
+from seqcheck.machine.places import Place
+from seqcheck.machine.steps import CommandKind, Step
+
+
+@dataclass(slots=True, eq=False)
+class Read:
+    """A read of the inputs at which steps were left or entered, or a pulse ended. ``reader`` names its delays."""
+
+    event: int
+    reader: str
+    write: int
+    floor: int
+    left: list[Visit] = field(default_factory=list)
+    entered: list[Visit] = field(default_factory=list)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Origin:
+    """The command that brings a change about: the step, the place in the text, the read."""
+
+    step: str
+    place: Place
+    kind: CommandKind
+    duration: int | None
+    read: Read
+
+
+class Effect(Enum):
+    """What a touch does to a command: it begins to hold it, ends its own hold, or resets what is stored."""
+
+    BEGINS = "begins"
+    ENDS = "ends"
+    RESETS = "resets"
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Touch:
+    origin: Origin
+    effect: Effect
+
+
+@dataclass(slots=True, eq=False)
+class Edge:
+    """A sensor, as it changes: physically ``at``, at the input ``arrived``, in the controller ``seen``. Taken back
+    by event ``lost_to`` before it was seen: at the sensor (``arrived`` then never came) or at the input."""
+
+    sensor: str
+    value: bool
+    at: int
+    arrived: int
+    seen: int | None = None
+    lost_to: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Answer:
+    """What made one part of an exit true: known to the controller since ``seen``, true at the input since ``held``.
+    ``edge`` for a sensor that has changed since the start; ``outside`` for a signal that may take any time."""
+
+    literal: Literal
+    seen: int
+    held: int
+    edge: Edge | None = None
+    outside: bool = False
+
+
+@dataclass(slots=True, eq=False)
+class Visit:
+    """A step, active from the read that ``entered`` it. Not left (yet): ``left`` is None."""
+
+    step: Step
+    literals: tuple[Literal, ...]
+    entered: Read
+    cycle: int
+    dwell_over: int | None = None
+    dwell_seen: int | None = None
+    signals: dict[Literal, tuple[int, int]] = field(default_factory=dict)
+    steady_over: int | None = None
+    steady_seen: int | None = None
+    left: Read | None = None
+    answers: tuple[Answer, ...] = ()
+
+
+@dataclass(slots=True, eq=False)
+class Spell:
+    """A coil or output commanded from one read to another, and when it switched physically."""
+
+    target: str
+    begun: Origin
+    on: int
+    ended: Origin | None = None
+    off: int | None = None
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class CoilChange:
+    coil: str
+    energized: bool
+    event: int
+    origin: Origin
+
+
+@dataclass(slots=True, eq=False)
+class Shift:
+    """A valve on its way since ``asked``. ``called_off`` by a coil change before it got there; ``taken_over`` where
+    that was the other coil during a return to centre."""
+
+    valve: str
+    to: Position
+    asked: int
+    reached: int
+    by: CoilChange
+    called_off: CoilChange | None = None
+    taken_over: bool = False
+
+
+@dataclass(slots=True, eq=False)
+class Stroke:
+    """A cylinder under way since ``shift`` reached its position; the cylinder's ``number``-th stroke, from where it
+    ``started``. ``leaves``: it comes off its end. ``marks`` in the direction of travel: (index of the mark, event),
+    the last is the end; ``passed`` of them were reached. ``away``: the shift that first drove it otherwise, after
+    which it ``stands`` at that event unless it is done before; ``cut``: it was not."""
+
+    cylinder: str
+    out: bool
+    number: int
+    shift: Shift
+    started: Region
+    leaves: int | None = None
+    marks: tuple[tuple[int, int], ...] = ()
+    passed: int = 0
+    away: Shift | None = None
+    stands: int | None = None
+    cut: bool = False
+    stood: Region | None = None
+
+    @property
+    def end(self) -> int:
+        return self.marks[-1][1]
+
+
+@dataclass(slots=True, eq=False)
+class Trace:
+    """One play. ``cycles``: the reads that entered the first step again, the first entry included. ``finished``:
+    nothing was due any more. ``endless``: steps that followed one another without time passing."""
+
+    graph: EventGraph
+    times: list[int]
+    marks: dict[str, tuple[int, ...]]
+    happened: set[int] = field(default_factory=set)
+    reads: list[Read] = field(default_factory=list)
+    visits: list[Visit] = field(default_factory=list)
+    spells: dict[str, list[Spell]] = field(default_factory=dict)
+    touches: dict[str, list[Touch]] = field(default_factory=dict)
+    shifts: list[Shift] = field(default_factory=list)
+    strokes: list[Stroke] = field(default_factory=list)
+    strokes_of: dict[str, list[Stroke]] = field(default_factory=dict)
+    edges: dict[str, list[Edge]] = field(default_factory=dict)
+    cycles: list[Read] = field(default_factory=list)
+    finished: bool = False
+    endless: bool = False

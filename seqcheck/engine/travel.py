@@ -1,0 +1,151 @@
+"""One stroke, planned: when a piston comes to each mark ahead of it.
+
+Takes a cylinder, a direction, the valve's own time and where the piston stands; gives for each mark, in the order of
+travel, the parts whose latest end is the moment at which it is reached. Refuses nothing.
+
+From an end, mark at share p: ``max( s + d, mark before + q )``; the end: ``max( s + d, mark before )``.
+From between two marks: the next mark after 0 to its whole share, and the others as from there. Where the piston may
+stand in one of several stretches, or yet at its end, every part spans what it takes from any of them: safe, exact
+when counted from the start, a little wide between two marks.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from itertools import pairwise
+
+from seqcheck.engine.strokes import Region, longest_part, moving_time, part_from_start, part_of
+from seqcheck.machine.devices import Cylinder, Stroke
+from seqcheck.machine.time import Span
+
+#: What a part is counted from, besides the number of a mark earlier in the plan.
+START = -1
+LEAVING = -2
+
+
+@dataclass(frozen=True, slots=True)
+class Part:
+    """``since``: START, LEAVING or the number of an earlier mark in the plan. ``drawn``: its time is drawn anew."""
+
+    since: int
+    span: Span
+    drawn: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Reach:
+    """A mark, by its index on the cylinder, and what it takes to be reached."""
+
+    mark: int
+    parts: tuple[Part, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Travel:
+    """``positions`` of the marks from retracted to extended, in millionths; ``valve`` is the span of the shift that
+    starts the stroke, which a stroke timed from the coil contains."""
+
+    cylinder: Cylinder
+    positions: tuple[int, ...]
+    out: bool
+    valve: Span
+
+    @property
+    def timed_from_coil(self) -> bool:
+        return self._stroke.from_coil
+
+    @property
+    def _stroke(self) -> Stroke:
+        return self.cylinder.extend if self.out else self.cylinder.retract
+
+    @property
+    def _last(self) -> int:
+        return len(self.positions) - 1 if self.out else 0
+
+    def _share(self, one: int, other: int) -> int:
+        return abs(self.positions[one] - self.positions[other])
+
+    def _part(self, one: int, other: int) -> Span:
+        """The time from one mark to another, once the piston moves."""
+        return part_of(moving_time(self._stroke, self.valve), self._share(one, other), self.cylinder.uneven)
+
+    def _from_end(self, end: int, mark: int) -> Span:
+        if mark == self._last:
+            return self._stroke.time
+        return part_from_start(self._stroke, self._share(end, mark), self.cylinder.uneven, self.valve)
+
+    def _ahead_of(self, mark: int) -> range:
+        return range(mark + 1, len(self.positions)) if self.out else range(mark - 1, -1, -1)
+
+    def _step(self, before: int, mark: int) -> Span:
+        """The least time between two neighbouring marks; none before the end."""
+        return Span.exactly(0 if mark == self._last else self._part(before, mark).least)
+
+    # Plans -----------------------------------------------------------------------------------------------------
+
+    def from_end(self, end: int) -> tuple[Reach, ...]:
+        plan: list[Reach] = []
+        before, since = end, LEAVING
+        for mark in self._ahead_of(end):
+            parts = (Part(START, self._from_end(end, mark), True), Part(since, self._step(before, mark)))
+            plan.append(Reach(mark, parts))
+            before, since = mark, len(plan) - 1
+        return tuple(plan)
+
+    def from_between(self, region: Region, stood: Region) -> tuple[Reach, ...]:
+        """``stood``: where the played run has the piston, for the typical times."""
+        behind, ahead = (region.low, region.high) if self.out else (region.high, region.low)
+        marks = list(self._ahead_of(behind))
+        first = marks.index(ahead)
+        unsure = first > 0 or behind in region.rests
+        plan: list[Reach] = []
+        for number, mark in enumerate(marks):
+            latest = self._latest(behind, marks[: min(number, first) + 1], mark, behind in region.rests)
+            if number <= first:
+                span = Span(0, min(self._typical(stood, mark), latest), latest)
+                parts = [Part(START, span, True)]
+                parts += [Part(number - 1, Span.exactly(0))] if number else []
+            else:
+                least, span = self._rest(behind, marks, first, mark, region) if unsure else (0, self._part(ahead, mark))
+                parts = [Part(first, span, True)]
+                parts += [Part(START, Span(least, least, latest))] if unsure else []
+                parts += [Part(number - 1, self._step(marks[number - 1], mark))]
+            plan.append(Reach(mark, tuple(parts)))
+        return tuple(plan)
+
+    def _latest(self, behind: int, firsts: Sequence[int], mark: int, may_rest: bool) -> int:
+        """The greatest time to a mark, whichever of ``firsts`` is the first one passed: the whole stretch before that
+        one, and then as from there."""
+        moving = moving_time(self._stroke, self.valve)
+        found = []
+        for before, first in zip((behind, *firsts), firsts, strict=False):
+            whole = longest_part(moving, self._share(before, first), self.cylinder.uneven)
+            found.append(whole + (self._part(first, mark).greatest if mark != first else 0))
+        if may_rest:
+            valve = self.valve.least if self.timed_from_coil else 0
+            found.append(self._from_end(behind, mark).greatest - valve)
+            found.append(self.cylinder.lag.greatest + self._part(behind, mark).least)
+        return max(found)
+
+    def _rest(self, behind: int, marks: Sequence[int], first: int, mark: int, region: Region) -> tuple[int, Span]:
+        """To a mark beyond those that may be passed already: the least time from the start, and the time from the
+        last of them."""
+        ahead = marks[first]
+        part = self._part(ahead, mark)
+        chain = [*marks[first : marks.index(mark)], mark]
+        steps = sum(self._part(one, other).least for one, other in pairwise(chain))
+        least = min(part.least, steps)
+        apart = [least]
+        apart += [self._part(one, mark).least - self._part(one, ahead).greatest for one in marks[:first]]
+        if behind in region.rests:
+            apart.append(self._from_end(behind, mark).least - self._from_end(behind, ahead).greatest)
+        return least, Span(max(0, min(apart)), part.typical, part.greatest)
+
+    def _typical(self, stood: Region, mark: int) -> int:
+        """From an end, the share of the whole; from between two marks, half of what lies ahead."""
+        nearest = stood.low if self.out else stood.high
+        if mark not in self._ahead_of(nearest):
+            return 0
+        part = self._part(nearest, mark)
+        return part.typical if stood == Region.exactly(nearest) else part.greatest // 2
