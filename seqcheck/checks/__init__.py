@@ -1,0 +1,1 @@
+"""Finding kinds, one a file; the tuple in ``catalogue`` lists them all."""

@@ -1,0 +1,61 @@
+"""What a proof rests on, in short sentences."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from seqcheck.checks.study import Study
+from seqcheck.checks.wording import in_time
+from seqcheck.machine.devices import Cylinder, OutsideSignal, Position
+from seqcheck.machine.model import Machine
+from seqcheck.machine.time import WHOLE_SHARE
+
+
+def assumptions(study: Study) -> tuple[str, ...]:
+    machine = study.machine
+    return (
+        "every time anywhere in its span, anew each time",
+        *_speeds(list(machine.cylinders.values())),
+        "no faulty part",
+        _start(machine),
+        *_signals(machine),
+        *_proof(study),
+    )
+
+
+def _speeds(cylinders: list[Cylinder]) -> Iterator[str]:
+    uneven = [f"{one.name} up to {one.uneven * 100 / WHOLE_SHARE:g} %" for one in cylinders if one.uneven]
+    if cylinders:
+        yield "speeds even along the stroke" if not uneven else f"speeds uneven ({', '.join(uneven)}), others even"
+
+
+def _start(machine: Machine) -> str:
+    extended = [cylinder.name for cylinder in machine.cylinders.values() if cylinder.starts_extended]
+    at_a = [valve.name for valve in machine.valves.values() if valve.starts is Position.A]
+    parts = ["start at rest, cylinders retracted"]
+    parts += [f"{', '.join(extended)} extended"] if extended else []
+    parts += [f"{', '.join(at_a)} at a"] if at_a else []
+    return ", ".join(parts)
+
+
+def _signals(machine: Machine) -> Iterator[str]:
+    outside = [signal for signal in machine.signals.values() if isinstance(signal, OutsideSignal)]
+    free = [signal.name for signal in outside if signal.after is None]
+    if free:
+        yield f"at any time from outside: {', '.join(free)}"
+    for signal in outside:
+        if signal.after is not None:
+            yield (
+                f"{signal.name} from outside {in_time(signal.after.least)} to {in_time(signal.after.greatest)} "
+                "after a step begins to wait"
+            )
+
+
+def _proof(study: Study) -> Iterator[str]:
+    """Where the bounds are safe but need not be exact, or the proof stops short."""
+    settlement = study.settlement
+    anywhere = sorted({cylinder for cylinder, _ in settlement.regions})
+    if anywhere:
+        yield f"{', '.join(anywhere)} stopped anywhere that the times allow (bounds safe there)"
+    if not settlement.settled:
+        yield f"not settled: proved for the first {len(study.trace.cycles) - 1} cycles only"

@@ -1,0 +1,36 @@
+"""Every finding kind, in one explicit tuple. A new kind is a file of its own and a line here."""
+
+from __future__ import annotations
+
+from seqcheck.checks import (
+    command_race,
+    cut_stroke,
+    early_dwell,
+    missed_signal,
+    overshoot,
+    short_pulse,
+    stale_signal,
+    tight_watchdog,
+)
+from seqcheck.checks.check import Check
+from seqcheck.checks.coverage import NO_WATCHDOG, UNREACHABLE, UNUSED
+from seqcheck.checks.opposed_coils import COIL_HANDOVER, OPPOSED_COILS
+from seqcheck.checks.standstill import DEAD_END, ENDLESS_LOOP
+
+CHECKS: tuple[Check, ...] = (
+    OPPOSED_COILS,
+    COIL_HANDOVER,
+    short_pulse.CHECK,
+    cut_stroke.CHECK,
+    early_dwell.CHECK,
+    overshoot.CHECK,
+    stale_signal.CHECK,
+    missed_signal.CHECK,
+    tight_watchdog.CHECK,
+    NO_WATCHDOG,
+    command_race.CHECK,
+    DEAD_END,
+    ENDLESS_LOOP,
+    UNREACHABLE,
+    UNUSED,
+)

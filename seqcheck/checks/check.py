@@ -1,0 +1,56 @@
+"""What a check is: a finding kind with the obligations that it states of a study, or the findings that it sees there.
+
+An obligation says that one event has to come before another, by at least so much. Checks state them; ``prove`` bounds
+them all at once and makes findings of those that do not hold.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+
+from seqcheck.checks.study import Study
+from seqcheck.machine.findings import Finding, Severity
+from seqcheck.machine.places import Place
+
+
+@dataclass(frozen=True, slots=True)
+class Wording:
+    """What to say when an obligation does not hold: the message, and what would mend it. Both may hold ``{by}``, the
+    time by which it fails."""
+
+    message: str
+    mend: Callable[[int], str] | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Obligation:
+    """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
+    brings it about."""
+
+    subject: str
+    step: str | None
+    place: Place
+    first: int
+    second: int
+    wording: Wording
+    least: int = 0
+
+
+def no_obligations(study: Study) -> Iterable[Obligation]:
+    return ()
+
+
+def no_findings(study: Study) -> Iterable[Finding]:
+    return ()
+
+
+@dataclass(frozen=True, slots=True)
+class Check:
+    """``title``: the kind in a few words. Either function may be left out."""
+
+    kind: str
+    severity: Severity
+    title: str
+    obligations: Callable[[Study], Iterable[Obligation]] = no_obligations
+    findings: Callable[[Study], Iterable[Finding]] = no_findings

@@ -1,0 +1,56 @@
+"""``early-dwell``: a step that starts a move and whose only exit is ``dwell`` can be left before the move is done."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.study import Study
+from seqcheck.checks.wording import round_up
+from seqcheck.engine.graph import Event
+from seqcheck.engine.trace import Visit
+from seqcheck.machine.devices import OnValve, Position
+from seqcheck.machine.findings import Severity
+from seqcheck.machine.steps import Step
+from seqcheck.machine.time import WHOLE_SHARE
+
+
+def _obligations(study: Study) -> Iterator[Obligation]:
+    for visit in study.trace.visits:
+        step = visit.step
+        if step.dwell is None or step.until is not None or visit.left is None:
+            continue
+        for cylinder, out, end in (*_strokes(study, visit), *_called_off(study, visit)):
+            yield Obligation(step.name, step.name, step.place, end, visit.left.event, _wording(step, cylinder, out))
+
+
+def _strokes(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
+    for stroke in study.moves_of(visit):
+        yield stroke.cylinder, stroke.out, stroke.end
+
+
+def _called_off(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
+    """Moves that the played run has called off at the valve: when they would have been done."""
+    for shift in study.shifts_of(visit):
+        if shift.called_off is None or shift.to is Position.CENTRE:
+            continue
+        for cylinder in study.machine.cylinders.values():
+            assert isinstance(cylinder.drive, OnValve)
+            if cylinder.drive.valve != shift.valve:
+                continue
+            out = (shift.to is Position.A) != cylinder.drive.reverse
+            if not study.stands_at_end(cylinder.name, out, study.time(shift.called_off.event)):
+                travel = cylinder.extend if out else cylinder.retract
+                begin = shift.asked if travel.from_coil else shift.reached
+                end = study.later(Event("mark", cylinder.name, str(WHOLE_SHARE if out else 0)), begin, travel.time)
+                yield cylinder.name, out, end
+
+
+def _wording(step: Step, cylinder: str, out: bool) -> Wording:
+    return Wording(
+        f"{step.name} can be left {{by}} before {cylinder} is fully {'extended' if out else 'retracted'}",
+        lambda by: f"a dwell of at least {round_up((step.dwell or 0) + by)} is safe",
+    )
+
+
+CHECK = Check("early-dwell", Severity.ERROR, "a dwell is over before the move that it waits for", _obligations)

@@ -1,0 +1,117 @@
+"""``missed-signal``: an input that an exit waits for can come and go unseen, in the filter or between two reads."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.study import Study
+from seqcheck.checks.wording import round_up
+from seqcheck.engine.graph import Event
+from seqcheck.engine.scope import Literal
+from seqcheck.engine.strokes import reached_by
+from seqcheck.engine.trace import Answer, Edge, Visit
+from seqcheck.machine.conditions import TermKind
+from seqcheck.machine.findings import Severity
+from seqcheck.machine.time import Span
+
+
+def _obligations(study: Study) -> Iterator[Obligation]:
+    for visit in study.trace.visits:
+        for answer in visit.answers:
+            if answer.literal.term.kind is TermKind.SENSOR:
+                yield from _answered(study, visit, answer)
+        if len(visit.literals) == 1 and visit.literals[0].term.kind is TermKind.SENSOR:
+            yield from _gone_again(study, visit, visit.literals[0])
+    for sensor, edges in study.trace.edges.items():
+        for edge in edges:
+            if edge.lost_to is not None:
+                yield from _lost(study, sensor, edge, edge.lost_to)
+
+
+def _answered(study: Study, visit: Visit, answer: Answer) -> Iterator[Obligation]:
+    """The sensor must outlast its own filter, and stay until the step has gone on."""
+    assert visit.left is not None
+    goes = _goes(study, answer)
+    if goes is None:
+        return
+    at, arrived = goes
+    if answer.edge is not None:
+        yield _obligation(visit, answer.literal, answer.edge.arrived, at)
+    yield _obligation(visit, answer.literal, visit.left.event, arrived)
+
+
+def _goes(study: Study, answer: Answer) -> tuple[int, int] | None:
+    """When the sensor changes back next, itself and at the input; also where the stop has just kept it from that."""
+    sensor = answer.literal.term.subject
+    following = study.edge_after(sensor, answer.edge)
+    if answer.edge is not None:
+        ahead = _ahead_in_stroke(study, answer.edge)
+        if ahead is not None and (following is None or following.at != ahead):
+            delay, controller = study.machine.sensors[sensor].delay, study.machine.controller
+            filtered = controller.input_off if answer.literal.wanted else controller.input_on
+            span = Span(
+                delay.least + filtered.least, delay.typical + filtered.typical, delay.greatest + filtered.greatest
+            )
+            return ahead, study.later(Event("input", sensor, "off" if answer.literal.wanted else "on"), ahead, span)
+    return (following.at, following.arrived) if following is not None else None
+
+
+def _ahead_in_stroke(study: Study, edge: Edge) -> int | None:
+    """The mark of the same stroke at which the sensor would change back."""
+    sensor = study.machine.sensors[edge.sensor]
+    for stroke in study.strokes_through(edge.at):
+        positions = study.trace.marks[stroke.cylinder]
+        behind = False
+        for index, event in stroke.marks:
+            if behind and reached_by(sensor, positions[index], stroke.out) is (not edge.value):
+                return event
+            behind = behind or event == edge.at
+    return None
+
+
+def _lost(study: Study, sensor: str, edge: Edge, lost_to: int) -> Iterator[Obligation]:
+    """In the played run itself a change has vanished while a step was waiting for it."""
+    for visit in study.trace.visits:
+        if visit.left is not None and study.time(visit.left.event) < study.time(edge.at):
+            continue
+        if study.time(visit.entered.event) > study.time(lost_to):
+            continue
+        for literal in visit.literals:
+            if literal.term.subject == sensor and literal.wanted == edge.value:
+                yield _obligation(visit, literal, edge.arrived if edge.seen is None else edge.seen, lost_to)
+
+
+def _gone_again(study: Study, visit: Visit, literal: Literal) -> Iterator[Obligation]:
+    """In the played run itself what the step waits for came, and was gone before the rest of the exit had come."""
+    end = study.time(visit.left.event) if visit.left is not None else None
+    for edge in study.trace.edges.get(literal.term.subject, ()):
+        following = study.edge_after(edge.sensor, edge)
+        if edge.value != literal.wanted or edge.seen is None or edge.lost_to is not None or following is None:
+            continue
+        longest = study.machine.controller.round.greatest
+        steady = visit.step.steady
+        seen = edge.seen
+        if steady is not None:
+            span = Span(steady, steady + longest // 2, steady + longest)
+            seen = study.later(Event("steady seen", visit.step.name), seen, span)
+        rest = [visit.entered.floor] + ([visit.dwell_seen] if visit.dwell_seen is not None else [])
+        first = study.last_of(Event("exit seen", visit.step.name), [seen, *rest])
+        gone = study.time(following.arrived)
+        if study.time(first) > gone > study.time(visit.entered.event) and (end is None or gone < end):
+            yield _obligation(visit, literal, first, following.arrived)
+
+
+def _obligation(visit: Visit, literal: Literal, first: int, second: int) -> Obligation:
+    term, step = literal.term, visit.step
+    came, went = ("come", "go") if literal.wanted else ("go", "come back")
+    wording = Wording(
+        f"{term.subject} can {came} and {went} {{by}} too soon for {step.name} to act on it",
+        lambda by: (
+            f"let {term.subject} stay at least {round_up(by)} longer (a wider range, a slower move), or read faster"
+        ),
+    )
+    return Obligation(term.subject, step.name, term.place, first, second, wording)
+
+
+CHECK = Check("missed-signal", Severity.ERROR, "an input comes and goes before it is acted on", _obligations)

@@ -1,0 +1,188 @@
+"""A played machine, with what several checks look up in it.
+
+Takes a settlement; gives the trace's records by what connects them. Adds events of its own to the graph: moments that
+nothing in the machine marks but that an obligation has to be held against.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from functools import cached_property
+from itertools import pairwise
+
+from seqcheck.engine.graph import Event, after
+from seqcheck.engine.settle import Settlement
+from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Visit
+from seqcheck.machine.model import Machine
+from seqcheck.machine.time import WHOLE_SHARE, Span
+
+
+class Study:
+    def __init__(self, machine: Machine, settlement: Settlement) -> None:
+        self.machine = machine
+        self.settlement = settlement
+        self.trace = settlement.trace
+
+    def time(self, event: int) -> int:
+        """The typical time of an event, in microseconds from the start."""
+        return self.trace.times[event]
+
+    # Events that only obligations need -------------------------------------------------------------------------
+
+    def later(self, event: Event, cause: int, span: Span) -> int:
+        """The moment this long after another one."""
+        self.trace.times.append(self.trace.times[cause] + span.typical)
+        return self.trace.graph.add(event, (after(cause, span),))
+
+    def last_of(self, event: Event, causes: Sequence[int]) -> int:
+        """The moment at which all of these have come."""
+        kept = self.trace.graph.without_idle(causes)
+        if len(kept) == 1:
+            return kept[0]
+        self.trace.times.append(max(self.trace.times[cause] for cause in kept))
+        return self.trace.graph.add(event, tuple(after(cause) for cause in kept))
+
+    @cached_property
+    def reads_by_event(self) -> dict[int, Read]:
+        return {read.event: read for read in self.trace.reads}
+
+    # Records by what connects them -----------------------------------------------------------------------------
+
+    @cached_property
+    def _spell_by_event(self) -> dict[int, tuple[Spell, Spell | None]]:
+        """For each coil switching: its spell, and the next one of the same coil."""
+        found: dict[int, tuple[Spell, Spell | None]] = {}
+        for spells in self.trace.spells.values():
+            for spell, following in zip(spells, [*spells[1:], None], strict=True):
+                found[spell.on] = (spell, following)
+                if spell.off is not None:
+                    found[spell.off] = (spell, following)
+        return found
+
+    def spell_at(self, switching: int) -> tuple[Spell, Spell | None]:
+        return self._spell_by_event[switching]
+
+    @cached_property
+    def _strokes_by_shift(self) -> dict[Shift, list[Stroke]]:
+        found: dict[Shift, list[Stroke]] = {}
+        for stroke in self.trace.strokes:
+            found.setdefault(stroke.shift, []).append(stroke)
+        return found
+
+    @cached_property
+    def _shift_by_event(self) -> dict[int, Shift]:
+        return {shift.by.event: shift for shift in self.trace.shifts}
+
+    @cached_property
+    def _switchings_by_visit(self) -> dict[Visit, list[int]]:
+        """The coil switchings that a step's own commands have brought about as it was entered."""
+        found: dict[Visit, list[int]] = {}
+        for spells in self.trace.spells.values():
+            for spell in spells:
+                for origin, event in ((spell.begun, spell.on), (spell.ended, spell.off)):
+                    if origin is not None and event is not None:
+                        for visit in origin.read.entered:
+                            if visit.step.name == origin.step:
+                                found.setdefault(visit, []).append(event)
+        return found
+
+    def shifts_of(self, visit: Visit) -> Iterator[Shift]:
+        """The valve shifts that a step's own commands have asked for as it was entered."""
+        for event in self._switchings_by_visit.get(visit, ()):
+            shift = self._shift_by_event.get(event)
+            if shift is not None:
+                yield shift
+
+    def moves_of(self, visit: Visit) -> Iterator[Stroke]:
+        """The strokes that a step's own commands have started."""
+        for shift in self.shifts_of(visit):
+            yield from self._strokes_by_shift.get(shift, ())
+
+    def stands_at_end(self, cylinder: str, extended: bool, time: int) -> bool:
+        """Whether the played run has the cylinder at this end at that time."""
+        at_end = self.machine.cylinders[cylinder].starts_extended == extended
+        for stroke in self.trace.strokes_of.get(cylinder, ()):
+            if self.time(stroke.shift.reached) > time:
+                break
+            at_end = stroke.out == extended and self.time(stroke.end) <= time and not stroke.cut
+        return at_end
+
+    @cached_property
+    def _strokes_by_event(self) -> dict[int, list[Stroke]]:
+        found: dict[int, list[Stroke]] = {}
+        for stroke in self.trace.strokes:
+            events = [event for _, event in stroke.marks] + ([stroke.leaves] if stroke.leaves is not None else [])
+            for event in events:
+                found.setdefault(event, []).append(stroke)
+        return found
+
+    def strokes_through(self, event: int) -> list[Stroke]:
+        """The stroke, if any, in which the piston comes to this mark or leaves this end."""
+        return self._strokes_by_event.get(event, [])
+
+    @cached_property
+    def _seen_edges(self) -> dict[str, list[Edge]]:
+        return {
+            sensor: [edge for edge in edges if edge.seen is not None and edge.lost_to is None]
+            for sensor, edges in self.trace.edges.items()
+        }
+
+    @cached_property
+    def _edge_number(self) -> dict[Edge, int]:
+        return {edge: number for edges in self._seen_edges.values() for number, edge in enumerate(edges)}
+
+    def edge_before(self, edge: Edge) -> Edge | None:
+        number = self._edge_number[edge]
+        return self._seen_edges[edge.sensor][number - 1] if number else None
+
+    @cached_property
+    def _next_change(self) -> dict[Edge, Edge]:
+        """The next physical change of the sensor after an edge that was seen, lost ones included."""
+        found: dict[Edge, Edge] = {}
+        for edges in self.trace.edges.values():
+            for edge, following in pairwise(edges):
+                found[edge] = following
+        return found
+
+    def edge_after(self, sensor: str, edge: Edge | None) -> Edge | None:
+        """The next change behind this one; the very first where ``edge`` is None."""
+        if edge is None:
+            edges = self.trace.edges.get(sensor)
+            return edges[0] if edges else None
+        return self._next_change.get(edge)
+
+    def starts_on(self, sensor: str) -> bool:
+        """Whether the sensor is on before anything has moved."""
+        device = self.machine.sensors[sensor]
+        start = WHOLE_SHARE if self.machine.cylinders[device.cylinder].starts_extended else 0
+        return device.low <= start <= device.high
+
+    def stopped_by_own_sensor(self, stroke: Stroke) -> bool:
+        """Whether the sequence had waited for one of the cylinder's own sensors in this stroke before it ended it: at
+        the read that switched the valve, at one that always comes before that, or at the one that ended the command
+        of the coil that drove the stroke."""
+        if stroke.away is None:
+            return False
+        reads = {stroke.away.by.origin.read}
+        spell, _ = self.spell_at(stroke.shift.by.event)
+        if stroke.shift.by.energized and spell.ended is not None:
+            reads.add(spell.ended.read)
+        return any(
+            left.event == read.event or self.trace.graph.dominates(left.event, read.event)
+            for left, _ in self.waits_within(stroke)
+            for read in reads
+        )
+
+    def waits_within(self, stroke: Stroke) -> list[tuple[Read, Edge]]:
+        """The reads that left a step on a sensor that this stroke had brought on or off, with its change."""
+        return self._waits_by_stroke.get(stroke, [])
+
+    @cached_property
+    def _waits_by_stroke(self) -> dict[Stroke, list[tuple[Read, Edge]]]:
+        found: dict[Stroke, list[tuple[Read, Edge]]] = {}
+        for visit in self.trace.visits:
+            for answer in visit.answers:
+                if visit.left is not None and answer.edge is not None:
+                    for stroke in self._strokes_by_event.get(answer.edge.at, ()):
+                        found.setdefault(stroke, []).append((visit.left, answer.edge))
+        return found

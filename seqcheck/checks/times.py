@@ -1,0 +1,127 @@
+"""How long cycles and steps take, and which chain of events makes the longest cycle.
+
+Takes a study; gives durations over the settled cycles, exact at both ends. A cycle runs from entering the first step
+to entering it again; where that step waits for a signal from outside, from leaving it to entering it again; a sequence
+that runs once, from its start to its end.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+
+from seqcheck.checks.narrate import describe
+from seqcheck.checks.study import Study
+from seqcheck.engine.bounds import Rows, causes_since, greatest_separations, is_open, separation_table
+from seqcheck.engine.trace import Read, Visit
+from seqcheck.machine.conditions import TermKind
+from seqcheck.machine.findings import Duration, PathPart
+from seqcheck.machine.model import steps_of
+
+_Interval = tuple[int, int]
+
+
+def cycle_times(study: Study) -> tuple[tuple[str, Duration], ...]:
+    intervals = list(_cycles(study))
+    if not intervals:
+        return ()
+    return ((study.machine.sequences[0].name, _duration(study, intervals, _bounds(study, intervals))),)
+
+
+def step_times(study: Study) -> tuple[tuple[str, Duration], ...]:
+    """In the order of the text; steps that no settled cycle leaves are left out."""
+    by_step: dict[str, list[_Interval]] = {}
+    for visit in study.trace.visits:
+        if visit.left is not None and _in_settled_cycle(study, visit):
+            by_step.setdefault(visit.step.name, []).append((visit.entered.event, visit.left.event))
+    rows = _bounds(study, (interval for intervals in by_step.values() for interval in intervals))
+    return tuple(
+        (step.name, _duration(study, by_step[step.name], rows))
+        for sequence in study.machine.sequences
+        for step in steps_of(sequence)
+        if step.name in by_step
+    )
+
+
+def critical_path(study: Study) -> tuple[PathPart, ...]:
+    """The chain of causes that makes the longest settled cycle as long as it can be."""
+    intervals = list(_cycles(study))
+    if not intervals:
+        return ()
+    rows = _bounds(study, intervals)
+    start, end = max(intervals, key=lambda interval: rows[interval])
+    graph = study.trace.graph
+    members = causes_since(graph, graph.common_dominator(start, end), {start, end})
+    column = separation_table(graph, members, [start])[:, 0].tolist()
+    latest = dict(zip(members, column, strict=True))
+    return tuple(reversed(list(_told_backwards(study, latest, start, end))))
+
+
+def _told_backwards(study: Study, latest: dict[int, int], start: int, end: int) -> Iterator[PathPart]:
+    """From the end back to the start; the delays of events that have no words of their own go to the next one."""
+    graph = study.trace.graph
+    event, text, at = end, "", 0
+    least = greatest = 0
+    while True:
+        words = _words(study, event)
+        if words or event == end:
+            if text:
+                yield PathPart(text, _closed(at), least, _closed(greatest))
+            text, at, least, greatest = words or "end of the cycle", latest[event], 0, 0
+        if event == start or not graph.arcs[event]:
+            yield PathPart(text, _closed(at), least, _closed(greatest))
+            return
+        arc = max(graph.arcs[event], key=lambda arc: latest.get(arc.cause, -(1 << 60)) + arc.span.greatest)
+        if arc.cause not in latest:
+            yield PathPart(text, _closed(at), least, _closed(greatest))
+            return
+        least, greatest = least + arc.span.least, greatest + arc.span.greatest
+        event = arc.cause
+
+
+def _words(study: Study, event: int) -> str:
+    told = [describe(study, study.trace.graph.events[event])]
+    if event in study.reads_by_event:
+        told += [f"step {visit.step.name} entered" for visit in study.reads_by_event[event].entered]
+    return ", ".join(text for text in told if text)
+
+
+def _closed(time: int) -> int | None:
+    return None if is_open(time) else time
+
+
+def _cycles(study: Study) -> Iterator[_Interval]:
+    trace, settlement = study.trace, study.settlement
+    if study.machine.sequences[0].once:
+        if trace.finished and all(visit.left is not None for visit in trace.visits) and trace.visits:
+            ends = [visit.left.event for visit in trace.visits if visit.left is not None]
+            yield _begin(trace.cycles[0]), max(ends, key=study.time)
+        return
+    for number in range(settlement.first, settlement.last):
+        yield _begin(trace.cycles[number]), trace.cycles[number + 1].event
+
+
+def _begin(read: Read) -> int:
+    """Entering the first step, or leaving it where it waits for a signal from outside."""
+    first, *others = read.entered
+    waits = any(literal.term.kind is TermKind.SIGNAL for literal in first.literals)
+    return first.left.event if waits and not others and first.left is not None else read.event
+
+
+def _in_settled_cycle(study: Study, visit: Visit) -> bool:
+    settlement = study.settlement
+    return settlement.first == settlement.last or settlement.first <= visit.cycle < settlement.last
+
+
+def _bounds(study: Study, intervals: Iterable[_Interval]) -> Rows:
+    return greatest_separations(
+        study.trace.graph, (pair for start, end in intervals for pair in ((start, end), (end, start)))
+    )
+
+
+def _duration(study: Study, intervals: list[_Interval], rows: Rows) -> Duration:
+    typical = sum(study.time(end) - study.time(start) for start, end in intervals) // len(intervals)
+    return Duration(
+        min(-rows[end, start] for start, end in intervals),
+        typical,
+        _closed(max(rows[interval] for interval in intervals)),
+    )
