@@ -1,0 +1,90 @@
+"""Builds the parser from the grammar file.
+
+Gives lark's LALR parser with a contextual lexer, for a whole text or for one value of a timing sheet. Refuses
+braces and parentheses nested over 50 deep while it reads.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from functools import cache
+from pathlib import Path
+from typing import Any
+
+from lark import Lark, Token, UnexpectedInput
+from lark.lexer import ContextualLexer
+
+MOST_NESTED = 50
+
+_PACKAGE = Path(__file__).resolve().parent.parent
+
+
+class TooDeep(UnexpectedInput):
+    """Nested deeper than anybody can read; ``offset`` tells where."""
+
+    def __init__(self, offset: int) -> None:
+        super().__init__(f"nested over {MOST_NESTED} deep")
+        self.offset = offset
+
+
+class _QuickLexer(ContextualLexer):
+    """Leaves the comparison of terminals to the test of the grammar: it takes seconds and never changes."""
+
+    def __init__(self, conf: Any, states: Any, always_accept: Any = ()) -> None:
+        conf.skip_validation = True
+        super().__init__(conf, states, always_accept)
+
+
+class _DepthGuard:
+    """Counts what is open while the tokens pass. ``not`` nests like a parenthesis until its operand comes."""
+
+    always_accept: tuple[str, ...] = ()
+
+    def process(self, stream: Iterator[Token]) -> Iterator[Token]:
+        depth = 0
+        negations = 0
+        outside: list[int] = []
+        for token in stream:
+            match token.type:
+                case "LBRACE" | "LPAR":
+                    outside.append(negations)
+                    negations = 0
+                    depth += 1
+                case "RBRACE" | "RPAR" | "RPAR_NTH" if outside:
+                    depth -= 1 + negations + outside.pop()
+                    negations = 0
+                case "NOT":
+                    negations += 1
+                    depth += 1
+                case "NAME":
+                    depth -= negations
+                    negations = 0
+                case _:
+                    pass
+            if depth > MOST_NESTED:
+                raise TooDeep(token.start_pos or 0)
+            yield token
+
+
+def grammar_text() -> str:
+    """The grammar, from the installed package or else from the checkout."""
+    for folder in (_PACKAGE / "grammar", _PACKAGE.parent / "grammar"):
+        file = folder / "steps.lark"
+        if file.is_file():
+            return file.read_text(encoding="utf-8")
+    raise FileNotFoundError(f"steps.lark is missing from the installation in {_PACKAGE}")
+
+
+@cache
+def parser() -> Lark:
+    """The parser; its starts are ``text`` and ``sheet_value``."""
+    options: dict[str, Any] = {
+        "parser": "lalr",
+        "lexer": "contextual",
+        "start": ["text", "sheet_value"],
+        "propagate_positions": True,
+        "maybe_placeholders": False,
+        "postlex": _DepthGuard(),
+        "_plugins": {"ContextualLexer": _QuickLexer},
+    }
+    return Lark(grammar_text(), **options)

@@ -1,0 +1,70 @@
+"""Reads the text of a file or of standard input.
+
+Takes a file name (``-`` is standard input); gives its text without a byte order mark; refuses, with a ``Problem``,
+what cannot be read or is no text.
+"""
+
+from __future__ import annotations
+
+import sys
+from dataclasses import dataclass
+from pathlib import Path
+
+from seqcheck.machine.findings import Problem
+from seqcheck.machine.places import Place
+
+GREATEST_SIZE = 16 * 1024 * 1024
+
+
+@dataclass(frozen=True, slots=True)
+class Source:
+    """A text and the name it goes by in messages."""
+
+    name: str
+    text: str
+
+
+def read_source(name: str) -> Source | Problem:
+    """The text of a file, ``-`` for standard input; a Problem where there is none to be had."""
+    try:
+        data = _read_bytes(name)
+    except FileNotFoundError:
+        return _refuse(name, "there is no such file", "check the name and the folder")
+    except IsADirectoryError:
+        return _refuse(name, "this is a folder, not a file", "name a file in it")
+    except PermissionError:
+        return _refuse(name, "the file may not be read", "give yourself the right to read it")
+    except (OSError, ValueError) as error:
+        reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
+        return _refuse(name, f"the file cannot be read: {reason}", None)
+    return decode(name, data)
+
+
+def decode(name: str, data: bytes) -> Source | Problem:
+    """Bytes as a text: UTF-8, with or without a byte order mark, at most 16 MB, without NUL bytes."""
+    if len(data) > GREATEST_SIZE:
+        return _refuse(
+            name, "the file is over 16 MB", "a sequence is a text of some kilobytes: is this the right file?"
+        )
+    try:
+        text = data.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        before = data[: error.start].decode("utf-8", errors="replace").removeprefix("\ufeff")
+        return _refuse(name, "this is no UTF-8 text", "save the file as UTF-8", before)
+    if "\0" in text:
+        before = text[: text.index("\0")]
+        return _refuse(name, "the file holds a NUL byte: it is no text", "is this the right file?", before)
+    return Source(name, text)
+
+
+def _read_bytes(name: str) -> bytes:
+    if name == "-":
+        return sys.stdin.buffer.read(GREATEST_SIZE + 1)
+    with Path(name).open("rb") as file:
+        return file.read(GREATEST_SIZE + 1)
+
+
+def _refuse(name: str, message: str, advice: str | None, before: str = "") -> Problem:
+    line = before.count("\n") + 1
+    column = len(before) - (before.rfind("\n") + 1) + 1
+    return Problem(Place(name, line, column, line, column), message, None, advice)
