@@ -1,0 +1,91 @@
+"""The report of ``check`` for programs: one JSON object with a report for each file.
+
+Takes ``Report`` values; gives JSON text (RFC 8259), UTF-8 once written, the same bytes for the same reports.
+"""
+
+from __future__ import annotations
+
+import json
+import re
+from collections.abc import Sequence
+
+from seqcheck.machine.findings import Duration, Finding, Handover, Margin, Problem, Report
+
+FORMAT = "seqcheck-report"
+VERSION = 1
+#: File names that are no text reach us as lone surrogates, which UTF-8 cannot carry.
+_LONE_SURROGATE = re.compile("[\ud800-\udfff]")
+
+Json = dict[str, object]
+
+
+def render_json(reports: Sequence[Report]) -> str:
+    """The whole object as indented text that ends with a newline."""
+    whole = {"format": FORMAT, "version": VERSION, "reports": [report_object(report) for report in reports]}
+    text = json.dumps(whole, ensure_ascii=False, indent=2, allow_nan=False)
+    return _LONE_SURROGATE.sub("\ufffd", text) + "\n"
+
+
+def report_object(report: Report) -> Json:
+    """One file. Times are whole microseconds; ``machine`` is null where the text could not be read."""
+    return {
+        "file": report.file,
+        "machine": None if report.problems else report.machine,
+        "verdict": report.verdict,
+        "findings": [_finding(finding) for finding in report.findings],
+        "errors": [_error(problem, report.file) for problem in report.problems],
+        "proved_under": {"times": list(report.sheets), "assumptions": list(report.assumptions)},
+        "cycles": {name: _duration(duration) for name, duration in report.cycles},
+        "steps": {name: _duration(duration) for name, duration in report.steps},
+        "handovers": [_handover(handover) for handover in report.handovers],
+        "margins": [_margin(margin) for margin in report.margins],
+    }
+
+
+def _finding(finding: Finding) -> Json:
+    return {
+        "kind": finding.kind,
+        "severity": finding.severity.value,
+        "certain": finding.certain,
+        "subject": finding.subject,
+        "step": finding.step,
+        "line": finding.place.line,
+        "column": finding.place.column,
+        "message": finding.message,
+        "margin_us": finding.margin_us,
+        "replayed": finding.replayed,
+        "witness": [{"t_us": moment.time_us, "event": moment.event} for moment in finding.run],
+    }
+
+
+def _error(problem: Problem, file: str) -> Json:
+    """The message names the file where that is another one (a timing sheet), and ends with the advice."""
+    place = problem.place
+    named = problem.message if place.file == file else f"{place.file}: {problem.message}"
+    message = f"{named.rstrip('.')}; {problem.advice}" if problem.advice else named
+    return {"line": place.line, "column": place.column, "message": message}
+
+
+def _duration(duration: Duration) -> Json:
+    return {"min_us": duration.least, "typical_us": duration.typical, "max_us": duration.greatest}
+
+
+def _handover(handover: Handover) -> Json:
+    return {
+        "valve": handover.valve,
+        "from": handover.from_coil,
+        "to": handover.to_coil,
+        "line": handover.place.line,
+        "least_gap_us": handover.least_gap_us,
+        "greatest_overlap_us": handover.greatest_overlap_us,
+    }
+
+
+def _margin(margin: Margin) -> Json:
+    return {
+        "kind": margin.kind,
+        "subject": margin.subject,
+        "step": margin.step,
+        "line": margin.place.line,
+        "margin_us": margin.margin_us,
+    }

@@ -1,0 +1,116 @@
+"""The pages of ``times`` and ``margins``.
+
+Takes one ``Report`` and the encoding of what it is written to; gives lines of an 80-column page. An unreadable report
+shows its problems, as ``check`` does.
+"""
+
+from __future__ import annotations
+
+from seqcheck.machine.findings import Duration, Handover, Margin, Report
+from seqcheck.report.amounts import OPEN, counted, decimals_of, milliseconds
+from seqcheck.report.layout import BLANK, Column, Line, Tone, labelled, paragraph, table
+from seqcheck.report.plain import plain_report
+from seqcheck.report.summary import proved_under_lines, title
+from seqcheck.report.text import report_lines
+
+
+def times_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
+    """Cycle times, each step's times and the critical path, all in milliseconds."""
+    shown = plain_report(report, encoding)
+    if shown.problems:
+        return report_lines(shown, encoding)
+    return (
+        *_heading(shown),
+        *_section("Cycle times (ms)", _durations("sequence", shown.cycles)),
+        *_section("Step times (ms)", _durations("step", shown.steps)),
+        *_section("Critical path: what makes the longest cycle (ms)", _critical_path(shown)),
+        *_closing(shown, any(time.greatest is None for _, time in (*shown.cycles, *shown.steps))),
+    )
+
+
+def margins_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
+    """Every margin, tightest first, and the handovers between opposed coils, all in milliseconds."""
+    shown = plain_report(report, encoding)
+    if shown.problems:
+        return report_lines(shown, encoding)
+    return (
+        *_heading(shown),
+        *_section("Margins, tightest first (ms; below 0: broken by so much)", _margins(shown.margins)),
+        *_section("Handovers from coil to opposed coil (ms)", _handovers(shown.handovers)),
+        *_closing(shown, any(margin.margin_us is None for margin in shown.margins)),
+    )
+
+
+def _heading(report: Report) -> tuple[Line, ...]:
+    return paragraph(title(report), hanging=4, tone=Tone.TITLE)
+
+
+def _section(title: str, lines: tuple[Line, ...]) -> tuple[Line, ...]:
+    return (BLANK, Line(title, Tone.TITLE), *(lines or (Line("  none"),)))
+
+
+def _closing(report: Report, has_open: bool) -> tuple[Line, ...]:
+    """What the figures rest on. They hold for runs in which nothing that was found comes about."""
+    rows = [(OPEN, "a signal from outside decides")] if has_open else []
+    if report.verdict != "clean":
+        found = counted(len(report.findings), "finding")
+        rows.append(("But", f"{found}: the figures hold only for runs without them; see seqcheck check"))
+    return (BLANK, *labelled(rows), *proved_under_lines(report))
+
+
+def _durations(name: str, durations: tuple[tuple[str, Duration], ...]) -> tuple[Line, ...]:
+    if not durations:
+        return ()
+    figures = [(time.least, time.typical, time.greatest) for _, time in durations]
+    decimals = decimals_of([figure for row in figures for figure in row])
+    columns = (Column(name), *(Column(head, right=True) for head in ("least", "typical", "greatest")))
+    rows = [(durations[number][0], *milliseconds(row, decimals)) for number, row in enumerate(figures)]
+    return table(columns, rows)
+
+
+def _critical_path(report: Report) -> tuple[Line, ...]:
+    if not report.critical_path:
+        return ()
+    figures = [(part.at_us, part.least, part.greatest) for part in report.critical_path]
+    decimals = decimals_of([figure for row in figures for figure in row])
+    columns = (
+        Column("latest", right=True),
+        Column("delay", right=True),
+        Column("up to", right=True),
+        Column("event"),
+    )
+    rows = [(*milliseconds(row, decimals), report.critical_path[number].event) for number, row in enumerate(figures)]
+    return table(columns, rows)
+
+
+def _margins(margins: tuple[Margin, ...]) -> tuple[Line, ...]:
+    if not margins:
+        return ()
+    ordered = sorted(margins, key=lambda margin: (margin.margin_us is None, margin.margin_us or 0))
+    amounts = milliseconds([margin.margin_us for margin in ordered])
+    columns = (Column("margin", right=True), Column("kind"), Column("subject"), Column("step"), Column("line", True))
+    rows = [
+        (amount, margin.kind, margin.subject, margin.step or "", str(margin.place.line))
+        for amount, margin in zip(amounts, ordered, strict=True)
+    ]
+    return table(columns, rows)
+
+
+def _handovers(handovers: tuple[Handover, ...]) -> tuple[Line, ...]:
+    if not handovers:
+        return ()
+    gaps = milliseconds([handover.least_gap_us for handover in handovers])
+    overlaps = milliseconds([handover.greatest_overlap_us for handover in handovers])
+    columns = (
+        Column("valve"),
+        Column("from"),
+        Column("to"),
+        Column("least gap", right=True),
+        Column("greatest overlap", right=True),
+        Column("line", right=True),
+    )
+    rows = [
+        (handover.valve, handover.from_coil, handover.to_coil, gap, overlap, str(handover.place.line))
+        for handover, gap, overlap in zip(handovers, gaps, overlaps, strict=True)
+    ]
+    return table(columns, rows)
