@@ -72,11 +72,7 @@ def _ahead_in_stroke(study: Study, edge: Edge) -> int | None:
 
 def _lost(study: Study, sensor: str, edge: Edge, lost_to: int) -> Iterator[Obligation]:
     """In the played run itself a change has vanished while a step was waiting for it."""
-    for visit in study.trace.visits:
-        if visit.left is not None and study.time(visit.left.event) < study.time(edge.at):
-            continue
-        if study.time(visit.entered.event) > study.time(lost_to):
-            continue
+    for visit in study.waiting_for(sensor, study.time(edge.at), study.time(lost_to)):
         for literal in visit.literals:
             if literal.term.subject == sensor and literal.wanted == edge.value:
                 yield _obligation(visit, literal, edge.arrived if edge.seen is None else edge.seen, lost_to)
@@ -85,7 +81,7 @@ def _lost(study: Study, sensor: str, edge: Edge, lost_to: int) -> Iterator[Oblig
 def _gone_again(study: Study, visit: Visit, literal: Literal) -> Iterator[Obligation]:
     """In the played run itself what the step waits for came, and was gone before the rest of the exit had come."""
     end = study.time(visit.left.event) if visit.left is not None else None
-    for edge in study.trace.edges.get(literal.term.subject, ()):
+    for edge in study.edges_between(literal.term.subject, study.time(visit.entered.event), end):
         following = study.edge_after(edge.sensor, edge)
         if edge.value != literal.wanted or edge.seen is None or edge.lost_to is not None or following is None:
             continue

@@ -8,8 +8,7 @@ from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
 from seqcheck.engine.strokes import reached_by
-from seqcheck.engine.trace import Stroke, Visit
-from seqcheck.machine.conditions import TermKind
+from seqcheck.engine.trace import Stroke
 from seqcheck.machine.findings import Severity
 
 
@@ -18,9 +17,8 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         if stroke.away is None or stroke.stands is None or not study.stopped_by_own_sensor(stroke):
             continue
         origin = stroke.away.by.origin
-        asked = _asked_while_standing(study, stroke)
         for sensor, event in _edges_ahead(study, stroke):
-            if sensor in asked:
+            if _asked_while_standing(study, stroke, sensor):
                 yield Obligation(
                     stroke.cylinder, origin.step, origin.place, stroke.stands, event, _wording(stroke, sensor)
                 )
@@ -39,26 +37,13 @@ def _edges_ahead(study: Study, stroke: Stroke) -> Iterator[tuple[str, int]]:
                 yield name, event
 
 
-def _asked_while_standing(study: Study, stroke: Stroke) -> set[str]:
-    """The cylinder's sensors that a step waits for at some time between the stop and the next stroke."""
+def _asked_while_standing(study: Study, stroke: Stroke, sensor: str) -> bool:
+    """Whether a step waits for the sensor at some time between the stop and the next stroke."""
     assert stroke.stands is not None
-    begin = study.time(stroke.stands)
     strokes = study.trace.strokes_of[stroke.cylinder]
     following = strokes[stroke.number + 1 : stroke.number + 2]
     end = study.time(following[0].shift.reached) if following else None
-    return {
-        literal.term.subject
-        for visit in study.trace.visits
-        if _overlaps(study, visit, begin, end)
-        for literal in visit.literals
-        if literal.term.kind is TermKind.SENSOR
-    }
-
-
-def _overlaps(study: Study, visit: Visit, begin: int, end: int | None) -> bool:
-    if visit.left is not None and study.time(visit.left.event) <= begin:
-        return False
-    return end is None or study.time(visit.entered.event) < end
+    return any(study.waiting_for(sensor, study.time(stroke.stands), end))
 
 
 def _wording(stroke: Stroke, sensor: str) -> Wording:

@@ -6,15 +6,28 @@ nothing in the machine marks but that an obligation has to be held against.
 
 from __future__ import annotations
 
+from bisect import bisect_left, bisect_right
 from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
-from seqcheck.engine.graph import Event, after
+from seqcheck.engine.graph import OPEN, Event, after
 from seqcheck.engine.settle import Settlement
 from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Visit
+from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
 from seqcheck.machine.time import WHOLE_SHARE, Span
+
+
+@dataclass(frozen=True, slots=True)
+class _Wait:
+    """A visit that waits for a sensor, in the order of entering; ``latest_left``: of this one and all before it."""
+
+    entered: int
+    left: int
+    latest_left: int
+    visit: Visit
 
 
 class Study:
@@ -150,6 +163,38 @@ class Study:
             edges = self.trace.edges.get(sensor)
             return edges[0] if edges else None
         return self._next_change.get(edge)
+
+    def edges_between(self, sensor: str, begin: int, end: int | None) -> Iterator[Edge]:
+        """The sensor's own changes from one typical time to another, both included."""
+        edges = self.trace.edges.get(sensor, [])
+        times = self._edge_times.get(sensor, [])
+        last = len(edges) if end is None else bisect_right(times, end)
+        yield from edges[bisect_left(times, begin) : last]
+
+    @cached_property
+    def _edge_times(self) -> dict[str, list[int]]:
+        return {sensor: [self.time(edge.at) for edge in edges] for sensor, edges in self.trace.edges.items()}
+
+    def waiting_for(self, sensor: str, begin: int, end: int | None) -> Iterator[Visit]:
+        """The visits of steps that wait for the sensor at some typical time after ``begin`` and before ``end``."""
+        waits = self._waits.get(sensor, [])
+        number = len(waits) if end is None else bisect_left(waits, end, key=lambda wait: wait.entered)
+        while number and waits[number - 1].latest_left > begin:
+            number -= 1
+            if waits[number].left > begin:
+                yield waits[number].visit
+
+    @cached_property
+    def _waits(self) -> dict[str, list[_Wait]]:
+        found: dict[str, list[_Wait]] = {}
+        for visit in self.trace.visits:
+            left = self.time(visit.left.event) if visit.left is not None else OPEN
+            for literal in visit.literals:
+                if literal.term.kind is TermKind.SENSOR:
+                    waits = found.setdefault(literal.term.subject, [])
+                    latest = max(left, waits[-1].latest_left) if waits else left
+                    waits.append(_Wait(self.time(visit.entered.event), left, latest, visit))
+        return found
 
     def starts_on(self, sensor: str) -> bool:
         """Whether the sensor is on before anything has moved."""
