@@ -15,6 +15,7 @@ from seqcheck.checks.opposed_coils import handovers
 from seqcheck.checks.prove import Proof, prove
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import critical_path, cycle_times, step_times
+from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
 from seqcheck.engine.settle import settle
 from seqcheck.language.read import read_machine
@@ -37,15 +38,26 @@ def examine_source(source: Source, sheets: Sequence[str] = ()) -> Report:
         return Report(source.name, None, problems=machine)
     refused = outside_scope(machine)
     if refused:
-        lines = source.text.split("\n")
-        shown = tuple(replace(one, source=lines[one.place.line - 1].rstrip("\r")) for one in refused)
-        return Report(source.name, machine.name, problems=shown)
-    return examine_machine(machine)
-
-
-def examine_machine(machine: Machine) -> Report:
-    study = Study(machine, settle(machine))
+        return _refused(source, machine, refused)
+    settlement = settle(machine)
+    if settlement.trace.too_long:
+        return _refused(source, machine, (_too_long(machine),))
+    study = Study(machine, settlement)
     return _report(study, prove(study, CHECKS))
+
+
+def _refused(source: Source, machine: Machine, problems: Sequence[Problem]) -> Report:
+    lines = source.text.split("\n")
+    shown = tuple(replace(one, source=lines[one.place.line - 1].rstrip("\r")) for one in problems)
+    return Report(source.name, machine.name, problems=shown)
+
+
+def _too_long(machine: Machine) -> Problem:
+    return Problem(
+        machine.sequences[0].place,
+        f"one cycle of sequence {machine.sequences[0].name} is too long to examine (over {MOST_EVENTS:,} events)",
+        advice="fewer repetitions show the same faults",
+    )
 
 
 def _report(study: Study, proof: Proof) -> Report:

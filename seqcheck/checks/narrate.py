@@ -16,14 +16,26 @@ from seqcheck.machine.time import WHOLE_SHARE
 
 def narrate(study: Study, run: Witness, first: int, second: int) -> tuple[Moment, ...]:
     """The moments on the way to a broken pair, the pair itself included."""
+    numbers = (*_lead_in(study, run.chain[0]), *run.chain)
+    return _moments(study, [(run.times.get(number, study.time(number)), number) for number in numbers])
+
+
+def narrate_typical(study: Study, begin: int, end: int) -> tuple[Moment, ...]:
+    """What happens in the played run, at its typical times, from one event to another."""
+    between = range(study.time(begin), study.time(end) + 1)
+    happened = [(study.time(number), number) for number in study.trace.happened if study.time(number) in between]
+    return _moments(study, sorted(happened))
+
+
+def _moments(study: Study, timed: list[tuple[int, int]]) -> tuple[Moment, ...]:
     reads = study.reads_by_event
     told: list[tuple[int, str]] = []
-    for number in (*_lead_in(study, run.chain[0]), *run.chain):
+    for time, number in timed:
         event = study.trace.graph.events[number]
         texts = [text] if (text := describe(study, event)) else []
         if number in reads:
             texts += _steps(reads[number].left, "left") + _steps(reads[number].entered, "entered")
-        told += [(run.times.get(number, study.time(number)), text) for text in texts]
+        told += [(time, text) for text in texts]
     start = told[0][0] if told else 0
     return tuple(Moment(time - start, text) for time, text in told)
 

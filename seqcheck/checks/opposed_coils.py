@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time, round_down
 from seqcheck.engine.bounds import greatest_separations
@@ -80,8 +81,8 @@ def _never_ended(study: Study) -> Iterator[Finding]:
                 place=later.begun.place,
                 message=f"{later.target} is commanded while {earlier.target} still is",
                 margin_us=None,
-                replayed=None,
-                run=(),
+                replayed=True,
+                run=narrate_typical(study, earlier.begun.read.event, later.on),
                 mend=f"end the command of {earlier.target} first",
             )
 

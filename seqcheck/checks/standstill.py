@@ -5,10 +5,12 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from seqcheck.checks.check import Check
+from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
+from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.trace import Visit
 from seqcheck.machine.conditions import TermKind
-from seqcheck.machine.findings import Finding, Severity
+from seqcheck.machine.findings import Finding, Moment, Severity
 from seqcheck.machine.model import steps_of
 
 
@@ -21,6 +23,7 @@ def _dead_ends(study: Study) -> Iterator[Finding]:
     missing = [step.name for one in study.machine.sequences for step in steps_of(one) if step.name not in entered]
     more = f" and {len(missing) - 1} more" if len(missing) > 1 else ""
     never = f" ({missing[0]}{more} never entered)" if missing else ""
+    last = max(study.trace.happened, key=study.time)
     for visit in study.trace.visits:
         if visit.left is None:
             waits = ", ".join(_missing(study, visit)) or "its exit"
@@ -33,8 +36,8 @@ def _dead_ends(study: Study) -> Iterator[Finding]:
                 place=visit.step.place,
                 message=f"{visit.step.name} is never left: it waits for {waits}, and nothing more happens{never}",
                 margin_us=None,
-                replayed=None,
-                run=(),
+                replayed=True,
+                run=narrate_typical(study, visit.entered.event, last),
                 mend=None,
             )
 
@@ -49,27 +52,42 @@ def _missing(study: Study, visit: Visit) -> Iterator[str]:
 
 
 def _endless(study: Study) -> Iterator[Finding]:
-    if not study.trace.endless:
+    """Steps without end at one instant, or a whole cycle that can go by in no time, waiting for nobody outside."""
+    trace, settlement = study.trace, study.settlement
+    if trace.endless:
+        yield _chase(study, trace.visits[-1] if trace.visits else None, True, ())
         return
-    if not study.trace.visits:
-        sequence = study.machine.sequences[0]
-        place, name, step = sequence.place, sequence.name, None
-        message = f"sequence {name} has no step that it ever enters"
+    for number in range(settlement.first, settlement.last):
+        begin, end = trace.cycles[number].event, trace.cycles[number + 1].event
+        visits = [visit for visit in trace.visits if visit.cycle == number]
+        if any(literal.term.kind is TermKind.SIGNAL for visit in visits for literal in visit.literals):
+            continue
+        rows = greatest_separations(trace.graph, [(begin, end), (end, begin)])
+        if rows[end, begin] >= 0:
+            yield _chase(study, visits[0], rows[begin, end] <= 0, narrate_typical(study, begin, end))
+            return
+
+
+def _chase(study: Study, visit: Visit | None, certain: bool, run: tuple[Moment, ...]) -> Finding:
+    """``visit``: one of those that chase each other; None where the sequence has no step that it ever enters."""
+    sequence = study.machine.sequences[0]
+    if visit is None:
+        place, subject, step = sequence.place, sequence.name, None
+        message = f"sequence {sequence.name} has no step that it ever enters"
     else:
-        visit = study.trace.visits[-1]
-        place, name, step = visit.step.place, visit.step.name, visit.step.name
-        message = f"steps follow one another without time passing, {name} among them"
-    yield Finding(
+        place, subject, step = visit.step.place, visit.step.name, visit.step.name
+        message = f"steps follow one another without time passing, {subject} among them"
+    return Finding(
         kind="endless-loop",
         severity=Severity.ERROR,
-        certain=True,
-        subject=name,
+        certain=certain,
+        subject=subject,
         step=step,
         place=place,
         message=message,
         margin_us=None,
-        replayed=None,
-        run=(),
+        replayed=True if run else None,
+        run=run,
         mend="let one of the steps wait for a sensor or dwell, or give the controller its scan time",
     )
 

@@ -20,8 +20,8 @@ from seqcheck.machine.model import Machine
 #: Asked at each start of a cycle whether to go on.
 GoOn = Callable[["Player", Read], bool]
 
-#: A run of more events than this is given up: no machine that a text of sane size describes comes near it.
-MOST_EVENTS = 2_000_000
+#: A run of more events than this is given up, before memory runs out: some 20,000 steps, repetitions counted.
+MOST_EVENTS = 1_000_000
 
 
 class Player:
@@ -61,6 +61,7 @@ class Player:
                 self.trace.finished = True
                 break
             if len(self.timeline.times) > MOST_EVENTS:
+                self.trace.too_long = True
                 break
         return self.trace
 

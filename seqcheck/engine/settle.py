@@ -63,6 +63,8 @@ def settle(machine: Machine) -> Settlement:
     regions: dict[tuple[str, int], Region] = {}
     for _ in range(_MOST_ROUNDS):
         settlement = _play(machine, regions)
+        if settlement.trace.too_long:
+            break
         found = dict(_regions(settlement.trace))
         if found == regions:
             break

@@ -157,7 +157,8 @@ class Stroke:
 @dataclass(slots=True, eq=False)
 class Trace:
     """One play. ``cycles``: the reads that entered the first step again, the first entry included. ``finished``:
-    nothing was due any more. ``endless``: steps that followed one another without time passing."""
+    nothing was due any more. ``endless``: steps that followed one another without time passing. ``too_long``: given up
+    for its sheer number of events, so that nothing is proved."""
 
     graph: EventGraph
     times: list[int]
@@ -174,3 +175,4 @@ class Trace:
     cycles: list[Read] = field(default_factory=list)
     finished: bool = False
     endless: bool = False
+    too_long: bool = False

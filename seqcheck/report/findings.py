@@ -27,7 +27,8 @@ def finding_lines(finding: Finding) -> tuple[Line, ...]:
         rows.append(_margin_row(finding.margin_us))
     if finding.mend:
         rows.append(("Mend", finding.mend))
-    rows.append(("Run", _about_run(finding)))
+    if finding.run:
+        rows.append(("Run", _about_run(finding)))
     return (
         *paragraph(headline(finding), hanging=_INDENT, tone=TONES[finding.severity]),
         *paragraph(finding.message, indent=_INDENT),
@@ -57,8 +58,6 @@ def _margin_row(margin_us: int) -> tuple[str, str]:
 
 
 def _about_run(finding: Finding) -> str:
-    if not finding.run:
-        return "none: no single run shows this"
     if finding.replayed is None:
         return "one that shows it (not replayed)"
     if finding.replayed:
