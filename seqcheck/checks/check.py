@@ -26,7 +26,7 @@ class Wording:
 @dataclass(frozen=True, slots=True)
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
-    brings it about."""
+    brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does."""
 
     subject: str
     step: str | None
@@ -35,6 +35,7 @@ class Obligation:
     second: int
     wording: Wording
     least: int = 0
+    lever: int | None = None
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:

@@ -21,7 +21,9 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         if step.dwell is None or step.until is not None or visit.left is None:
             continue
         for cylinder, out, end in (*_strokes(study, visit), *_called_off(study, visit)):
-            yield Obligation(step.name, step.name, step.place, end, visit.left.event, _wording(step, cylinder, out))
+            wording = _wording(step, cylinder, out)
+            left = visit.left.event
+            yield Obligation(step.name, step.name, step.place, end, left, wording, lever=visit.dwell_over)
 
 
 def _strokes(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:

@@ -1,4 +1,4 @@
-"""``missed-signal``: an input that an exit waits for can come and go unseen, in the filter or between two reads."""
+"""``missed-signal``: what an exit waits for can come and go unseen, in an input's filter or between two reads."""
 
 from __future__ import annotations
 
@@ -19,9 +19,9 @@ from seqcheck.machine.time import Span
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
-            if answer.literal.term.kind is TermKind.SENSOR:
+            if answer.literal.term.kind is not TermKind.SIGNAL:
                 yield from _answered(study, visit, answer)
-        if len(visit.literals) == 1 and visit.literals[0].term.kind is TermKind.SENSOR:
+        if len(visit.literals) == 1 and visit.literals[0].term.kind is not TermKind.SIGNAL:
             yield from _gone_again(study, visit, visit.literals[0])
     for sensor, edges in study.trace.edges.items():
         for edge in edges:
@@ -30,23 +30,23 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 
 
 def _answered(study: Study, visit: Visit, answer: Answer) -> Iterator[Obligation]:
-    """The sensor must outlast its own filter, and stay until the step has gone on."""
+    """A sensor must outlast its own filter; whatever is asked must stay until the step has gone on."""
     assert visit.left is not None
-    goes = _goes(study, answer)
+    goes = _goes(study, visit, answer)
     if goes is None:
         return
     at, arrived = goes
-    if answer.edge is not None:
+    if answer.edge is not None and answer.literal.term.kind is TermKind.SENSOR:
         yield _obligation(visit, answer.literal, answer.edge.arrived, at)
     yield _obligation(visit, answer.literal, visit.left.event, arrived)
 
 
-def _goes(study: Study, answer: Answer) -> tuple[int, int] | None:
-    """When the sensor changes back next, itself and at the input; also where the stop has just kept it from that."""
+def _goes(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
+    """When it changes back next, itself and at the input; for a sensor also where a stop has just kept it from that."""
     sensor = answer.literal.term.subject
     following = study.edge_after(sensor, answer.edge)
-    if answer.edge is not None:
-        ahead = _ahead_in_stroke(study, answer.edge)
+    if answer.edge is not None and answer.literal.term.kind is TermKind.SENSOR:
+        ahead = _ahead_in_stroke(study, visit, answer.edge)
         if ahead is not None and (following is None or following.at != ahead):
             delay, controller = study.machine.sensors[sensor].delay, study.machine.controller
             filtered = controller.input_off if answer.literal.wanted else controller.input_on
@@ -57,10 +57,14 @@ def _goes(study: Study, answer: Answer) -> tuple[int, int] | None:
     return (following.at, following.arrived) if following is not None else None
 
 
-def _ahead_in_stroke(study: Study, edge: Edge) -> int | None:
-    """The mark of the same stroke at which the sensor would change back."""
+def _ahead_in_stroke(study: Study, visit: Visit, edge: Edge) -> int | None:
+    """The mark of the same stroke at which the sensor would change back, were it not for a stop that only comes after
+    the visit has ended. (Whoever asks later, of a cylinder that stands there, is the business of ``overshoot``.)"""
     sensor = study.machine.sensors[edge.sensor]
+    assert visit.left is not None
     for stroke in study.strokes_through(edge.at):
+        if stroke.away is None or not study.comes_first(visit.left.event, stroke.away.by.origin.read.event):
+            continue
         positions = study.trace.marks[stroke.cylinder]
         behind = False
         for index, event in stroke.marks:

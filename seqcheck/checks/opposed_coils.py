@@ -17,7 +17,7 @@ from seqcheck.checks.wording import in_time, round_down
 from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Origin, Spell
-from seqcheck.machine.devices import Valve
+from seqcheck.machine.devices import ControllerKind, Valve
 from seqcheck.machine.findings import Finding, Handover, Severity
 from seqcheck.machine.steps import CommandKind
 from seqcheck.machine.time import NO_TIME
@@ -55,21 +55,28 @@ def _commanded_at_once(study: Study) -> Iterator[Obligation]:
                 later.begun.place,
                 earlier.ended.read.event,
                 later.begun.read.event,
-                Wording(message, partial(_mend, earlier.ended, earlier.target)),
+                Wording(message, partial(_mend, study, pair, earlier.ended)),
             )
 
 
-def _mend(ended: Origin, coil: str, by: int) -> str:
-    if ended.kind is CommandKind.PULSE and ended.duration is not None and ended.duration > by:
-        return f"a pulse of {coil} of at most {round_down(ended.duration - by)} is safe"
+def _mend(study: Study, pair: _Pair, ended: Origin, by: int) -> str:
+    """A bistable valve keeps its position without the pulse, so that a shorter one does (if it is long enough)."""
+    coil, longest = pair.earlier.target, study.machine.controller.round.greatest
+    if pair.valve.rest is None and ended.kind is CommandKind.PULSE and (ended.duration or 0) - by > longest:
+        return f"a pulse of {coil} of at most {round_down((ended.duration or 0) - by)} ends in time"
     return f"end the command of {coil} first"
 
 
 def _never_ended(study: Study) -> Iterator[Finding]:
-    """The earlier coil is commanded for good: no time is needed to see that."""
+    """The earlier coil is commanded for good: no time is needed to see that. (What has just not ended when play stops
+    has ended one cycle before.)"""
     told = set()
+    trace = study.trace
+    over = None if trace.finished or len(trace.cycles) < 3 else study.time(trace.cycles[-2].event)
     for pair in _pairs(study):
         earlier, later = pair.earlier, pair.later
+        if over is not None and study.time(later.begun.read.event) >= over:
+            continue
         if earlier.ended is None and later.begun.place not in told:
             told.add(later.begun.place)
             yield Finding(
@@ -108,9 +115,18 @@ def _too_close(study: Study) -> Iterator[Obligation]:
                 later.begun.place,
                 _decayed(study, earlier),
                 later.on,
-                Wording(message, lambda by: f"put a dwell of at least {in_time(by)} between the two coils"),
+                Wording(message, partial(_mend_gap, study, pair)),
                 gap,
             )
+
+
+def _mend_gap(study: Study, pair: _Pair, by: int) -> str:
+    """A dwell between the two coils is a read of its own, whose write may be as much sooner as the other's is later."""
+    if pair.earlier.ended is not None and pair.earlier.ended.read is not pair.later.begun.read:
+        return f"let at least {in_time(by)} more pass between the two coils"
+    controller = study.machine.controller
+    span = controller.run if controller.kind is ControllerKind.TASK else controller.round
+    return f"put a dwell of at least {in_time(by + span.greatest - span.least)} between the two coils"
 
 
 def handovers(study: Study) -> tuple[Handover, ...]:

@@ -49,7 +49,7 @@ def _asked_while_standing(study: Study, stroke: Stroke, sensor: str) -> bool:
 def _wording(stroke: Stroke, sensor: str) -> Wording:
     return Wording(
         f"{stroke.cylinder} can run on {{by}} past the edge of {sensor} before it stands, and {sensor} is asked then",
-        lambda by: f"widen the range of {sensor} by {in_time(by)} of travel, or stop the cylinder sooner",
+        lambda by: f"stop the cylinder at least {in_time(by)} sooner, or move that edge of {sensor} further on",
     )
 
 

@@ -7,13 +7,13 @@ states once are met in every cycle; the tightest stands for them.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
-from seqcheck.engine.bounds import Rows, greatest_separations, is_open
+from seqcheck.engine.bounds import Rows, greatest_separation, greatest_separations, is_open, longest_least_chain
 from seqcheck.engine.witness import Witness, replays, witness
 from seqcheck.machine.findings import Finding, Margin, Severity
 from seqcheck.machine.places import Place
@@ -48,7 +48,10 @@ def prove(study: Study, checks: Sequence[Check]) -> Proof:
         if key not in tightest or margin < tightest[key][2]:
             tightest[key] = (check, one, margin)
     broken = [_broken(study, check, one, margin, rows) for check, one, margin in tightest.values() if margin < 0]
-    broken += [Broken(finding, None) for check in checks for finding in check.findings(study)]
+    seen = [finding for check in checks for finding in check.findings(study)]
+    if any(_in_played_run_only(study, one, rows) for _, one in stated):
+        seen = [one if one.severity is Severity.NOTE else replace(one, certain=False) for one in seen]
+    broken += [Broken(finding, None) for finding in seen]
     margins = [
         Margin(check.kind, one.subject, one.step, one.place, _closed(margin))
         for check, one, margin in tightest.values()
@@ -59,7 +62,7 @@ def prove(study: Study, checks: Sequence[Check]) -> Proof:
 def _broken(study: Study, check: Check, one: Obligation, margin: int, rows: Rows) -> Broken:
     run = witness(study.trace, one.first, one.second)
     shown = _closed(margin)
-    by = "without limit" if shown is None else in_time(-shown)
+    by = "an unlimited time" if shown is None else in_time(-shown)
     mend = one.wording.mend
     finding = Finding(
         kind=check.kind,
@@ -72,9 +75,26 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int, rows: Rows
         margin_us=shown,
         replayed=replays(study.machine, study.trace, run, one.first, one.second),
         run=narrate(study, run, one.first, one.second),
-        mend=None if mend is None or shown is None else mend(-shown),
+        mend=None if mend is None or shown is None else mend(_needed(study, one, -shown)),
     )
     return Broken(finding, run)
+
+
+def _needed(study: Study, one: Obligation, by: int) -> int:
+    """How much longer the lever must take: what it alone gives may be less than what the margin says, where something
+    else keeps the second event back so far."""
+    if one.lever is None:
+        return by
+    graph = study.trace.graph
+    behind = greatest_separation(graph, one.lever, one.first)
+    return max(by, behind - longest_least_chain(graph, one.lever, one.second) + one.least)
+
+
+def _in_played_run_only(study: Study, one: Obligation, rows: Rows) -> bool:
+    """Whether the played run breaks an obligation that others keep: what it then comes to is not certain either."""
+    if study.time(one.first) + one.least <= study.time(one.second):
+        return False
+    return rows[one.first, one.second] >= one.least
 
 
 def _closed(margin: int) -> int | None:
@@ -82,7 +102,8 @@ def _closed(margin: int) -> int | None:
 
 
 def _sorted(broken: Iterable[Broken]) -> tuple[Broken, ...]:
-    """Certain ones first, errors before warnings, then by place; notes behind them all."""
+    """Certain ones first, errors before warnings, causes before the standstill that they may lead to, then by place;
+    notes behind them all."""
     severities = list(Severity)
     return tuple(
         sorted(
@@ -91,6 +112,7 @@ def _sorted(broken: Iterable[Broken]) -> tuple[Broken, ...]:
                 one.finding.severity is Severity.NOTE,
                 not one.finding.certain,
                 severities.index(one.finding.severity),
+                one.witness is None,
                 one.finding.place,
                 one.finding.kind,
                 one.finding.subject,

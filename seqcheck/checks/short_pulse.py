@@ -18,7 +18,15 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         change = _change_after(study, shift)
         if change is not None:
             origin, event = change
-            yield Obligation(shift.valve, origin.step, origin.place, shift.reached, event, _wording(shift, origin))
+            yield Obligation(
+                shift.valve,
+                origin.step,
+                origin.place,
+                shift.reached,
+                event,
+                _wording(shift, origin),
+                lever=study.trace.pulses_over.get(origin.read.event),
+            )
     yield from _switching_in_order(study)
 
 

@@ -1,4 +1,4 @@
-"""``stale-signal``: a step that waits for a sensor can find it on from before the move that it waits for."""
+"""``stale-signal``: a step can find what it waits for as it was before, and go on too early for that."""
 
 from __future__ import annotations
 
@@ -17,7 +17,7 @@ from seqcheck.machine.findings import Severity
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
-            if answer.literal.term.kind is TermKind.SENSOR:
+            if answer.literal.term.kind is not TermKind.SIGNAL:
                 pair = _own_move_missed(study, visit, answer) or _last_change_back(study, visit, answer)
                 if pair is not None:
                     yield _obligation(visit, answer, *pair)
@@ -25,14 +25,14 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 
 def _own_move_missed(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
     """In the played run itself the step has gone on before its own move reached the sensor."""
-    sensor = study.machine.sensors[answer.literal.term.subject]
+    sensor = study.machine.sensors.get(answer.literal.term.subject)
     assert visit.left is not None
+    if sensor is None or not answer.literal.wanted:
+        return None
     for stroke in study.moves_of(visit):
         goal = stroke.marks[-1][0]
         positions = study.trace.marks[stroke.cylinder]
         if stroke.cylinder != sensor.cylinder or not sensor.low <= positions[goal] <= sensor.high:
-            continue
-        if not answer.literal.wanted:
             continue
         for index, event in stroke.marks:
             if reached_by(sensor, positions[index], stroke.out) and (answer.edge is None or answer.edge.at != event):

@@ -190,7 +190,7 @@ class Study:
         for visit in self.trace.visits:
             left = self.time(visit.left.event) if visit.left is not None else OPEN
             for literal in visit.literals:
-                if literal.term.kind is TermKind.SENSOR:
+                if literal.term.kind is not TermKind.SIGNAL:
                     waits = found.setdefault(literal.term.subject, [])
                     latest = max(left, waits[-1].latest_left) if waits else left
                     waits.append(_Wait(self.time(visit.entered.event), left, latest, visit))
@@ -212,11 +212,11 @@ class Study:
         spell, _ = self.spell_at(stroke.shift.by.event)
         if stroke.shift.by.energized and spell.ended is not None:
             reads.add(spell.ended.read)
-        return any(
-            left.event == read.event or self.trace.graph.dominates(left.event, read.event)
-            for left, _ in self.waits_within(stroke)
-            for read in reads
-        )
+        return any(self.comes_first(left.event, read.event) for left, _ in self.waits_within(stroke) for read in reads)
+
+    def comes_first(self, one: int, other: int) -> bool:
+        """Whether causality alone puts an event at or before another one."""
+        return one == other or self.trace.graph.dominates(one, other)
 
     def waits_within(self, stroke: Stroke) -> list[tuple[Read, Edge]]:
         """The reads that left a step on a sensor that this stroke had brought on or off, with its change."""

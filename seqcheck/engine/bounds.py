@@ -100,6 +100,17 @@ def greatest_separation(graph: EventGraph, source: int, event: int) -> int:
     return greatest_separations(graph, [(source, event)])[source, event]
 
 
+def longest_least_chain(graph: EventGraph, cause: int, event: int) -> int:
+    """The longest chain of causes from one event to another over the least delays: what the one alone makes sure of."""
+    common = graph.common_dominator(cause, event)
+    chain = {event: 0}
+    for number in reversed(causes_since(graph, common, [event])[1:]):
+        if number in chain:
+            for arc in graph.arcs[number]:
+                chain[arc.cause] = max(chain.get(arc.cause, _NO_CHAIN), chain[number] + arc.span.least)
+    return chain[cause]
+
+
 def is_open(separation: int) -> bool:
     return separation >= OPEN // 2
 

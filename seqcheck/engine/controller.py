@@ -287,6 +287,14 @@ class Controller:
     def _await_signal(self, visit: Visit, literal: Literal) -> None:
         """A signal from outside comes some time after a step begins to wait for it."""
         name, timeline = literal.term.subject, self._timeline
+        arrival = visit.entered.signals.get((name, literal.wanted))
+        if arrival is None:
+            arrival = visit.entered.signals[name, literal.wanted] = self._let_come(visit, literal)
+        visit.signals[literal] = arrival
+        timeline.at(arrival[1], Order.SEEN, self._wake)
+
+    def _let_come(self, visit: Visit, literal: Literal) -> tuple[int, int]:
+        name, timeline = literal.term.subject, self._timeline
         signal = self._machine.signals[name]
         assert isinstance(signal, OutsideSignal)
         delay = signal.after or Span(0, 0, OPEN)
@@ -297,13 +305,14 @@ class Controller:
         )
         held = timeline.event(Event("input", name, detail), timeline.delay(comes, filtered, "filter", name))
         seen = timeline.event(Event("seen", name, detail), timeline.delay(held, self._wait, "see", name))
-        visit.signals[literal] = (held, seen)
-        timeline.at(seen, Order.SEEN, self._wake)
+        return held, seen
 
     def _know_later(self, kind: TermKind, subject: str, value: bool, read: Read) -> None:
         """Steps and commands change at a read and are known to the next one."""
         if self.waits_for(kind, subject):
-            known = Known(value, read.floor, read.floor)
+            edge = Edge(subject, value, read.event, read.floor, read.floor)
+            self._trace.edges.setdefault(subject, []).append(edge)
+            known = Known(value, read.floor, read.floor, edge)
             self._timeline.at(read.floor, Order.CONTROLLER, lambda: self.see(kind, subject, known))
 
     def _finish_read(self, read: Read) -> None:
@@ -324,6 +333,7 @@ class Controller:
         def end() -> None:
             if self._commands.runs(coil, origin):
                 read = self._begin_read(ends, f"pulse {coil}")
+                self._trace.pulses_over[read.event] = over
                 self._commands.end_pulse(coil, origin, read)
                 self._finish_read(read)
 

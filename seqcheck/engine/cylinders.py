@@ -182,7 +182,7 @@ class Cylinders:
             plan, since = travel.from_between(region, piston.stood), {START: shift.reached}
         marks: list[tuple[int, int]] = []
         for number, reach in enumerate(plan):
-            position = str(piston.marks[reach.mark])
+            position = "" if reach.mark is None else str(piston.marks[reach.mark])
             name = f"{stroke.cylinder} {position}"
             arcs = [
                 timeline.delay(since[part.since], part.span, "mark", name, stroke.number)
@@ -190,8 +190,9 @@ class Cylinders:
                 else timeline.loose(since[part.since], part.span)
                 for part in reach.parts
             ]
-            since[number] = timeline.event(Event("mark", stroke.cylinder, position), *arcs)
-            marks.append((reach.mark, since[number]))
+            since[number] = timeline.event(Event("mark" if position else "may pass", stroke.cylinder, position), *arcs)
+            if reach.mark is not None:
+                marks.append((reach.mark, since[number]))
         return tuple(marks)
 
     # Passing marks ---------------------------------------------------------------------------------------------

@@ -27,6 +27,9 @@ class Read:
     floor: int
     left: list[Visit] = field(default_factory=list)
     entered: list[Visit] = field(default_factory=list)
+    #: A signal that steps entered here begin to wait for comes once for all of them: (name, on or off) to the events
+    #: at which it holds at the input and is seen.
+    signals: dict[tuple[str, bool], tuple[int, int]] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -56,8 +59,9 @@ class Touch:
 
 @dataclass(slots=True, eq=False)
 class Edge:
-    """A sensor, as it changes: physically ``at``, at the input ``arrived``, in the controller ``seen``. Taken back
-    by event ``lost_to`` before it was seen: at the sensor (``arrived`` then never came) or at the input."""
+    """A sensor, as it changes: physically ``at``, at the input ``arrived``, in the controller ``seen``. Taken back by
+    event ``lost_to`` before it was seen: at the sensor (``arrived`` then never came) or at the input. The same for
+    what a read commands or activates, which is known to the next read."""
 
     sensor: str
     value: bool
@@ -168,6 +172,8 @@ class Trace:
     visits: list[Visit] = field(default_factory=list)
     spells: dict[str, list[Spell]] = field(default_factory=dict)
     touches: dict[str, list[Touch]] = field(default_factory=dict)
+    #: For the read event that ends a pulse, the event at which its time is over.
+    pulses_over: dict[int, int] = field(default_factory=dict)
     shifts: list[Shift] = field(default_factory=list)
     strokes: list[Stroke] = field(default_factory=list)
     strokes_of: dict[str, list[Stroke]] = field(default_factory=dict)

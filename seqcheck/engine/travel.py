@@ -17,7 +17,7 @@ from itertools import pairwise
 
 from seqcheck.engine.strokes import Region, longest_part, moving_time, part_from_start, part_of
 from seqcheck.machine.devices import Cylinder, Stroke
-from seqcheck.machine.time import Span
+from seqcheck.machine.time import NO_TIME, Span
 
 #: What a part is counted from, besides the number of a mark earlier in the plan.
 START = -1
@@ -35,9 +35,10 @@ class Part:
 
 @dataclass(frozen=True, slots=True)
 class Reach:
-    """A mark, by its index on the cylinder, and what it takes to be reached."""
+    """A mark, by its index on the cylinder, and what it takes to be reached. No mark: the moment at which the piston
+    would come to the next one if it stood in the last stretch before it."""
 
-    mark: int
+    mark: int | None
     parts: tuple[Part, ...]
 
 
@@ -94,53 +95,64 @@ class Travel:
         return tuple(plan)
 
     def from_between(self, region: Region, stood: Region) -> tuple[Reach, ...]:
-        """``stood``: where the played run has the piston, for the typical times."""
+        """``stood``: where the played run has the piston, for the typical times. The marks up to ``ahead`` may be
+        passed already; ``first`` of the others is what a piston in the last stretch comes to."""
         behind, ahead = (region.low, region.high) if self.out else (region.high, region.low)
         marks = list(self._ahead_of(behind))
-        first = marks.index(ahead)
-        unsure = first > 0 or behind in region.rests
+        may_rest = behind in region.rests
+        unsure = ahead != marks[0] or may_rest
         plan: list[Reach] = []
+        first = before = -1
         for number, mark in enumerate(marks):
-            latest = self._latest(behind, marks[: min(number, first) + 1], mark, behind in region.rests)
-            if number <= first:
-                span = Span(0, min(self._typical(stood, mark), latest), latest)
-                parts = [Part(START, span, True)]
-                parts += [Part(number - 1, Span.exactly(0))] if number else []
+            firsts = marks[: min(number, marks.index(ahead)) + 1]
+            latest = self._latest(behind, firsts, mark, may_rest)
+            parts = [Part(before, self._step(marks[number - 1], mark))] if number else []
+            if number < marks.index(ahead):
+                parts.append(Part(START, Span(0, min(self._typical(stood, mark), latest), latest)))
+            elif mark == ahead:
+                whole = self._whole(marks[number - 1] if number else behind, mark)
+                span = Span(0, min(self._typical(stood, mark), whole), whole)
+                if unsure:
+                    plan.append(Reach(None, (Part(START, span, True),)))
+                    first = len(plan) - 1
+                    parts = [Part(before, NO_TIME)] if number else []
+                    parts += [Part(first, NO_TIME)]
+                    parts += [Part(START, Span(0, min(self._typical(stood, mark), latest), latest))]
+                else:
+                    parts.append(Part(START, span, True))
+                    first = len(plan)
             else:
-                least, span = self._rest(behind, marks, first, mark, region) if unsure else (0, self._part(ahead, mark))
-                parts = [Part(first, span, True)]
-                parts += [Part(START, Span(least, least, latest))] if unsure else []
-                parts += [Part(number - 1, self._step(marks[number - 1], mark))]
+                part = self._part(ahead, mark)
+                parts.append(Part(first, part, True))
+                if unsure:
+                    typical = self._part(behind, mark).typical if stood == Region.exactly(behind) else 0
+                    least = self._least(marks[marks.index(ahead) : number + 1])
+                    parts.append(Part(START, Span(least, min(max(least, typical), latest), latest)))
             plan.append(Reach(mark, tuple(parts)))
+            before = len(plan) - 1
         return tuple(plan)
+
+    def _whole(self, before: int, mark: int) -> int:
+        """The greatest time through one stretch, started somewhere in it."""
+        moving = moving_time(self._stroke, self.valve)
+        return longest_part(moving, self._share(before, mark), self.cylinder.uneven)
 
     def _latest(self, behind: int, firsts: Sequence[int], mark: int, may_rest: bool) -> int:
         """The greatest time to a mark, whichever of ``firsts`` is the first one passed: the whole stretch before that
         one, and then as from there."""
-        moving = moving_time(self._stroke, self.valve)
         found = []
         for before, first in zip((behind, *firsts), firsts, strict=False):
-            whole = longest_part(moving, self._share(before, first), self.cylinder.uneven)
-            found.append(whole + (self._part(first, mark).greatest if mark != first else 0))
+            found.append(self._whole(before, first) + (self._part(first, mark).greatest if mark != first else 0))
         if may_rest:
             valve = self.valve.least if self.timed_from_coil else 0
             found.append(self._from_end(behind, mark).greatest - valve)
             found.append(self.cylinder.lag.greatest + self._part(behind, mark).least)
         return max(found)
 
-    def _rest(self, behind: int, marks: Sequence[int], first: int, mark: int, region: Region) -> tuple[int, Span]:
-        """To a mark beyond those that may be passed already: the least time from the start, and the time from the
-        last of them."""
-        ahead = marks[first]
-        part = self._part(ahead, mark)
-        chain = [*marks[first : marks.index(mark)], mark]
+    def _least(self, chain: Sequence[int]) -> int:
+        """The least time from the first to the last of some neighbouring marks."""
         steps = sum(self._part(one, other).least for one, other in pairwise(chain))
-        least = min(part.least, steps)
-        apart = [least]
-        apart += [self._part(one, mark).least - self._part(one, ahead).greatest for one in marks[:first]]
-        if behind in region.rests:
-            apart.append(self._from_end(behind, mark).least - self._from_end(behind, ahead).greatest)
-        return least, Span(max(0, min(apart)), part.typical, part.greatest)
+        return min(self._part(chain[0], chain[-1]).least, steps)
 
     def _typical(self, stood: Region, mark: int) -> int:
         """From an end, the share of the whole; from between two marks, half of what lies ahead."""
