@@ -11,13 +11,13 @@ from dataclasses import replace
 
 from seqcheck.checks.assumptions import assumptions
 from seqcheck.checks.catalogue import CHECKS
-from seqcheck.checks.opposed_coils import handovers
+from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
 from seqcheck.checks.study import Study
-from seqcheck.checks.times import critical_path, cycle_times, step_times
+from seqcheck.checks.times import critical_path, cycle_times, step_times, together
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
-from seqcheck.engine.settle import settle
+from seqcheck.engine.worlds import play_worlds
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Problem, Report
@@ -39,11 +39,11 @@ def examine_source(source: Source, sheets: Sequence[str] = ()) -> Report:
     refused = outside_scope(machine)
     if refused:
         return _refused(source, machine, refused)
-    settlement = settle(machine)
-    if settlement.trace.too_long:
+    worlds = play_worlds(machine)
+    if any(settlement.trace.too_long for settlement in worlds.settlements):
         return _refused(source, machine, (_too_long(machine),))
-    study = Study(machine, settlement)
-    return _report(study, prove(study, CHECKS))
+    studies = [Study(machine, settlement) for settlement in worlds.settlements]
+    return _report(studies, prove(studies, CHECKS), worlds.complete)
 
 
 def _refused(source: Source, machine: Machine, problems: Sequence[Problem]) -> Report:
@@ -60,17 +60,18 @@ def _too_long(machine: Machine) -> Problem:
     )
 
 
-def _report(study: Study, proof: Proof) -> Report:
-    machine = study.machine
+def _report(studies: Sequence[Study], proof: Proof, complete: bool) -> Report:
+    """``complete``: every order that is a matter of time was played both ways."""
+    typical, machine = studies[0], studies[0].machine
     return Report(
         file=machine.file,
         machine=machine.name,
         findings=tuple(one.finding for one in proof.broken),
         sheets=machine.sheets,
-        assumptions=assumptions(study),
-        cycles=cycle_times(study),
-        steps=step_times(study),
-        critical_path=critical_path(study),
-        handovers=handovers(study),
+        assumptions=assumptions(typical, complete),
+        cycles=together(cycle_times(study) for study in studies),
+        steps=together(step_times(study) for study in studies),
+        critical_path=critical_path(typical),
+        handovers=tightest_handovers(handovers(study) for study in studies),
         margins=proof.margins,
     )

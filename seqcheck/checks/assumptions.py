@@ -11,7 +11,7 @@ from seqcheck.machine.model import Machine
 from seqcheck.machine.time import WHOLE_SHARE
 
 
-def assumptions(study: Study) -> tuple[str, ...]:
+def assumptions(study: Study, complete: bool) -> tuple[str, ...]:
     machine = study.machine
     return (
         "every time anywhere in its span, anew each time",
@@ -19,7 +19,7 @@ def assumptions(study: Study) -> tuple[str, ...]:
         "no faulty part",
         _start(machine),
         *_signals(machine),
-        *_proof(study),
+        *_proof(study, complete),
     )
 
 
@@ -51,11 +51,13 @@ def _signals(machine: Machine) -> Iterator[str]:
             )
 
 
-def _proof(study: Study) -> Iterator[str]:
+def _proof(study: Study, complete: bool) -> Iterator[str]:
     """Where the bounds are safe but need not be exact, or the proof stops short."""
     settlement = study.settlement
     anywhere = sorted({cylinder for cylinder, _ in settlement.regions})
     if anywhere:
         yield f"{', '.join(anywhere)} stopped anywhere that the times allow (bounds safe there)"
+    if not complete:
+        yield "not every order of pulses and commands was played both ways"
     if not settlement.settled:
         yield f"not settled: proved for the first {len(study.trace.cycles) - 1} cycles only"

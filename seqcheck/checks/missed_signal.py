@@ -105,11 +105,10 @@ def _gone_again(study: Study, visit: Visit, literal: Literal) -> Iterator[Obliga
 def _obligation(visit: Visit, literal: Literal, first: int, second: int) -> Obligation:
     term, step = literal.term, visit.step
     came, went = ("come", "go") if literal.wanted else ("go", "come back")
+    how = " (a wider range, a slower move), or read faster" if term.kind is TermKind.SENSOR else ""
     wording = Wording(
         f"{term.subject} can {came} and {went} {{by}} too soon for {step.name} to act on it",
-        lambda by: (
-            f"let {term.subject} stay at least {round_up(by)} longer (a wider range, a slower move), or read faster"
-        ),
+        lambda by: f"let {term.subject} stay so at least {round_up(by)} longer{how}",
     )
     return Obligation(term.subject, step.name, term.place, first, second, wording)
 

@@ -6,7 +6,7 @@ opposed one is.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from functools import partial
 
@@ -135,13 +135,20 @@ def handovers(study: Study) -> tuple[Handover, ...]:
         (pair, _decayed(study, pair.earlier), pair.later.on) for pair in _pairs(study) if pair.earlier.off is not None
     ]
     rows = greatest_separations(study.trace.graph, ((on, decayed) for _, decayed, on in asked))
-    found: dict[tuple[object, ...], Handover] = {}
+    found = []
     for pair, decayed, on in asked:
-        gap = -rows[on, decayed]
-        place = pair.later.begun.place
-        key = (pair.valve.name, pair.earlier.target, pair.later.target, place)
-        if key not in found or gap < found[key].least_gap_us:
-            found[key] = Handover(pair.valve.name, pair.earlier.target, pair.later.target, place, gap, max(0, -gap))
+        gap, place = -rows[on, decayed], pair.later.begun.place
+        found.append(Handover(pair.valve.name, pair.earlier.target, pair.later.target, place, gap, max(0, -gap)))
+    return tightest_handovers([found])
+
+
+def tightest_handovers(tables: Iterable[Iterable[Handover]]) -> tuple[Handover, ...]:
+    """One for each place and pair of coils."""
+    found: dict[tuple[object, ...], Handover] = {}
+    for table in tables:
+        for one in table:
+            key = (one.place, one.valve, one.from_coil, one.to_coil)
+            found[key] = min(found.get(key, one), one, key=lambda handover: handover.least_gap_us)
     return tuple(sorted(found.values(), key=lambda one: (one.place, one.valve, one.from_coil)))
 
 

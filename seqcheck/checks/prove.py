@@ -36,7 +36,37 @@ class Proof:
 _Key = tuple[str, str, str | None, Place]
 
 
-def prove(study: Study, checks: Sequence[Check]) -> Proof:
+def prove(studies: Sequence[Study], checks: Sequence[Check]) -> Proof:
+    """Prove every way in which the machine was played, and put the results together."""
+    proofs = [_prove_one(study, checks) for study in studies]
+    by_key: dict[_Key, list[Broken]] = {}
+    for proof in proofs:
+        for one in proof.broken:
+            by_key.setdefault((one.finding.kind, one.finding.subject, one.finding.step, one.finding.place), []).append(
+                one
+            )
+    broken = [_one_of(found, len(proofs)) for found in by_key.values() if _stands(found, len(proofs))]
+    margins: dict[_Key, Margin] = {}
+    for proof in proofs:
+        for margin in proof.margins:
+            key = (margin.kind, margin.subject, margin.step, margin.place)
+            margins[key] = min(margins.get(key, margin), margin, key=_by_margin)
+    return Proof(_sorted(broken), tuple(sorted(margins.values(), key=_by_margin)))
+
+
+def _stands(found: Sequence[Broken], worlds: int) -> bool:
+    """What a sequence leaves out, it must leave out in every way that it is played."""
+    return found[0].finding.severity is Severity.ERROR or found[0].witness is not None or len(found) == worlds
+
+
+def _one_of(found: Sequence[Broken], worlds: int) -> Broken:
+    """The finding whose run was replayed, and that by most; certain only where every way shows it for certain."""
+    best = min(found, key=lambda one: (one.finding.replayed is False, one.finding.margin_us or 0))
+    certain = len(found) == worlds and all(one.finding.certain for one in found)
+    return Broken(replace(best.finding, certain=certain), best.witness)
+
+
+def _prove_one(study: Study, checks: Sequence[Check]) -> Proof:
     stated = [(check, obligation) for check in checks for obligation in check.obligations(study)]
     rows = greatest_separations(
         study.trace.graph, (pair for _, one in stated for pair in ((one.second, one.first), (one.first, one.second)))
@@ -56,7 +86,7 @@ def prove(study: Study, checks: Sequence[Check]) -> Proof:
         Margin(check.kind, one.subject, one.step, one.place, _closed(margin))
         for check, one, margin in tightest.values()
     ]
-    return Proof(_sorted(broken), tuple(sorted(margins, key=_by_margin)))
+    return Proof(tuple(broken), tuple(margins))
 
 
 def _broken(study: Study, check: Check, one: Obligation, margin: int, rows: Rows) -> Broken:
@@ -73,7 +103,7 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int, rows: Rows
         place=one.place,
         message=one.wording.message.replace("{by}", by),
         margin_us=shown,
-        replayed=replays(study.machine, study.trace, run, one.first, one.second),
+        replayed=replays(study.machine, study.settlement, run, one.first, one.second),
         run=narrate(study, run, one.first, one.second),
         mend=None if mend is None or shown is None else mend(_needed(study, one, -shown)),
     )

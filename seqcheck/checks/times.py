@@ -20,6 +20,17 @@ from seqcheck.machine.model import steps_of
 _Interval = tuple[int, int]
 
 
+def together(worlds: Iterable[tuple[tuple[str, Duration], ...]]) -> tuple[tuple[str, Duration], ...]:
+    """The durations of all the ways in which a machine was played; the first way is the typical one."""
+    found: dict[str, Duration] = {}
+    for durations in worlds:
+        for name, one in durations:
+            known = found.get(name, one)
+            longest = None if known.greatest is None or one.greatest is None else max(known.greatest, one.greatest)
+            found[name] = Duration(min(known.least, one.least), known.typical, longest)
+    return tuple(found.items())
+
+
 def cycle_times(study: Study) -> tuple[tuple[str, Duration], ...]:
     intervals = list(_cycles(study))
     if not intervals:
@@ -96,7 +107,7 @@ def _cycles(study: Study) -> Iterator[_Interval]:
             ends = [visit.left.event for visit in trace.visits if visit.left is not None]
             yield _begin(trace.cycles[0]), max(ends, key=study.time)
         return
-    for number in range(settlement.first, settlement.last):
+    for number in range(_first_cycle(study), settlement.last):
         yield _begin(trace.cycles[number]), trace.cycles[number + 1].event
 
 
@@ -109,7 +120,12 @@ def _begin(read: Read) -> int:
 
 def _in_settled_cycle(study: Study, visit: Visit) -> bool:
     settlement = study.settlement
-    return settlement.first == settlement.last or settlement.first <= visit.cycle < settlement.last
+    return settlement.first == settlement.last or _first_cycle(study) <= visit.cycle < settlement.last
+
+
+def _first_cycle(study: Study) -> int:
+    """A play with an order turned has it turned once, in the first cycle that can show it."""
+    return 0 if study.settlement.delays else study.settlement.first
 
 
 def _bounds(study: Study, intervals: Iterable[_Interval]) -> Rows:

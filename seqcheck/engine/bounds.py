@@ -19,7 +19,7 @@ separation of the two events so found, within their causes since ``x``.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy
@@ -31,6 +31,9 @@ from seqcheck.machine.time import Span
 _NO_CHAIN = -(1 << 60)
 
 Table = numpy.typing.NDArray[numpy.int64]
+
+#: For every member but the first, the positions of its causes with the spans of the delays.
+_Arcs = Sequence[Sequence[tuple[int, Span]]]
 
 #: ``S`` by pair of (source, event).
 Rows = dict[tuple[int, int], int]
@@ -78,9 +81,11 @@ def _reduce(
         return closures[key]
 
     near_source, near_event = graph.below(common, source), graph.below(common, event)
+    assumed = _assumed_below(graph, common)
+    ordered = sorted({number for pair in assumed for number in pair})
     while True:
-        lower_event = _own_from(graph, near_event, event, causes(near_source))
-        lower_source = _own_from(graph, near_source, source, causes(lower_event))
+        lower_event = _own_from(graph, _own_from(graph, near_event, event, causes(near_source)), event, ordered)
+        lower_source = _own_from(graph, _own_from(graph, near_source, source, causes(lower_event)), source, ordered)
         if (lower_source, lower_event) == (near_source, near_event):
             return _Reduced(source, event, near_source, near_event)
         near_source, near_event = lower_source, lower_event
@@ -116,12 +121,17 @@ def is_open(separation: int) -> bool:
 
 
 def _near_separations(graph: EventGraph, common: int, pairs: set[tuple[int, int]]) -> Rows:
-    members = causes_since(graph, common, {number for pair in pairs for number in pair})
+    assumed = _assumed_below(graph, common)
+    members = causes_since(graph, common, {number for pair in (*pairs, *assumed) for number in pair})
     sources = sorted({source for source, _ in pairs})
     table = separation_table(graph, members, sources)
     position = {number: index for index, number in enumerate(members)}
     column = {number: index for index, number in enumerate(sources)}
     return {(source, event): int(table[position[event], column[source]]) for source, event in pairs}
+
+
+def _assumed_below(graph: EventGraph, common: int) -> list[tuple[int, int]]:
+    return [pair for pair in graph.assumed if all(graph.dominates(common, number) for number in pair)]
 
 
 def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
@@ -140,21 +150,43 @@ def separation_table(graph: EventGraph, members: Sequence[int], sources: Sequenc
     """``S`` for every source, shape ``(members, sources)``, microseconds. ``members`` are closed under causes but for
     the first, which dominates the others; the sources are among them. ``open_us`` stands in for open delays."""
     index = {number: position for position, number in enumerate(members)}
+    arcs = [[(index[arc.cause], arc.span) for arc in graph.arcs[number]] for number in members[1:]]
+    assumed = [(index[one], index[other]) for one, other in graph.assumed if one in index and other in index]
     chain = numpy.full((len(members), len(sources)), _NO_CHAIN, dtype=numpy.int64)
     for position, source in enumerate(sources):
         chain[index[source], position] = 0
-    arcs = [[(index[arc.cause], arc.span) for arc in graph.arcs[number]] for number in members[1:]]
-    for position in range(len(members) - 1, 0, -1):
+    _settle(lambda: _chains(chain, arcs, assumed), chain, bool(assumed))
+    table = -chain
+    _settle(lambda: _latest(table, arcs, assumed, open_us), table, bool(assumed))
+    return table
+
+
+def _settle(once: Callable[[], None], values: Table, repeat: bool) -> None:
+    """One pass does where causes come first; an assumed order may run against that, and takes until nothing moves."""
+    once()
+    while repeat:
+        before = values.copy()
+        once()
+        repeat = not numpy.array_equal(before, values)
+
+
+def _chains(chain: Table, arcs: _Arcs, assumed: Sequence[tuple[int, int]]) -> None:
+    for position in range(len(chain) - 1, 0, -1):
         for cause, span in arcs[position - 1]:
             numpy.maximum(chain[cause], chain[position] + span.least, out=chain[cause])
-    table = -chain
+    for one, other in assumed:
+        numpy.maximum(chain[one], chain[other], out=chain[one])
+
+
+def _latest(table: Table, arcs: _Arcs, assumed: Sequence[tuple[int, int]], open_us: int) -> None:
     for position, incoming in enumerate(arcs, start=1):
         cause, span = incoming[0]
         latest = table[cause] + _greatest(span, open_us)
         for cause, span in incoming[1:]:
             numpy.maximum(latest, table[cause] + _greatest(span, open_us), out=latest)
         numpy.minimum(table[position], latest, out=table[position])
-    return table
+    for one, other in assumed:
+        numpy.minimum(table[one], table[other], out=table[one])
 
 
 def _greatest(span: Span, open_us: int) -> int:

@@ -20,7 +20,8 @@ class Commands:
         self._touches = touches
         self._on: dict[str, dict[Visit, Origin]] = {}
         self._stored: dict[str, Origin] = {}
-        self._pulses: dict[str, Origin] = {}
+        #: For each target its running pulses, with the event at which each ends by itself.
+        self._pulses: dict[str, dict[Origin, int]] = {}
         self._commanded: set[str] = set()
         #: Targets that this read has touched, with the command that would account for their end.
         self._touched: dict[str, Origin] = {}
@@ -28,7 +29,12 @@ class Commands:
     @property
     def state(self) -> tuple[object, ...]:
         on = sorted((name, sorted(visit.step.name for visit in by)) for name, by in self._on.items() if by)
-        return str(on), tuple(sorted(self._stored)), tuple(sorted(self._pulses)), tuple(sorted(self._commanded))
+        return (
+            str(on),
+            tuple(sorted(self._stored)),
+            tuple(sorted((name, len(by)) for name, by in self._pulses.items() if by)),
+            tuple(sorted(self._commanded)),
+        )
 
     def commanded(self, target: str) -> bool:
         return target in self._commanded
@@ -42,15 +48,19 @@ class Commands:
                     self._note(command.target, replace(origin, read=read), Effect.ENDS)
 
     def runs(self, coil: str, pulse: Origin) -> bool:
-        """Whether this very pulse still runs: nothing has reset it or begun another."""
-        return self._pulses.get(coil) is pulse
+        """Whether this very pulse still runs: nothing has reset it."""
+        return pulse in self._pulses.get(coil, {})
+
+    def begin_pulse(self, coil: str, origin: Origin, ends: int) -> None:
+        self._pulses.setdefault(coil, {})[origin] = ends
 
     def end_pulse(self, coil: str, origin: Origin, read: Read) -> None:
-        self._touched[coil] = self._pulses.pop(coil)
+        del self._pulses[coil][origin]
+        self._touched[coil] = origin
         self._note(coil, replace(origin, read=read), Effect.ENDS)
 
     def enter(self, visit: Visit) -> Iterator[tuple[Origin, str]]:
-        """Apply the commands of a step; gives the pulses that begin."""
+        """Apply the commands of a step; gives the pulses that it asks for (``begin_pulse`` begins them)."""
         for command in visit.step.commands:
             origin = _origin(visit, command)
             self._touched.setdefault(command.target, origin)
@@ -62,7 +72,6 @@ class Commands:
                 case CommandKind.SET:
                     self._stored[command.target] = origin
                 case CommandKind.PULSE:
-                    self._pulses[command.target] = origin
                     yield origin, command.target
                 case CommandKind.RESET:
                     pass
@@ -73,7 +82,8 @@ class Commands:
             for command in visit.step.commands:
                 if command.kind is CommandKind.RESET:
                     self._stored.pop(command.target, None)
-                    self._pulses.pop(command.target, None)
+                    for pulse, ends in self._pulses.pop(command.target, {}).items():
+                        self._note(command.target, pulse, Effect.ENDS, ends)
                     self._touched[command.target] = _origin(visit, command)
         touched, self._touched = self._touched, {}
         for target, ending in touched.items():
@@ -85,14 +95,15 @@ class Commands:
                 self._commanded.remove(target)
                 yield target, replace(ending, read=read)
 
-    def _note(self, target: str, origin: Origin, effect: Effect) -> None:
-        self._touches.setdefault(target, []).append(Touch(origin, effect))
+    def _note(self, target: str, origin: Origin, effect: Effect, event: int | None = None) -> None:
+        touch = Touch(origin.read.event if event is None else event, origin, effect)
+        self._touches.setdefault(target, []).append(touch)
 
     def _holding(self, target: str) -> Origin | None:
         on = self._on.get(target)
         if on:
             return next(iter(on.values()))
-        return self._stored.get(target) or self._pulses.get(target)
+        return self._stored.get(target) or next(iter(self._pulses.get(target, {})), None)
 
 
 def _origin(visit: Visit, command: Command) -> Origin:

@@ -337,6 +337,7 @@ class Controller:
                 self._commands.end_pulse(coil, origin, read)
                 self._finish_read(read)
 
+        self._commands.begin_pulse(coil, origin, ends)
         timeline.at(ends, Order.CONTROLLER, end)
 
     def _write(self, target: str, origin: Origin) -> None:

@@ -53,6 +53,8 @@ class EventGraph:
     def __init__(self) -> None:
         self.events: list[Event] = [Event("start", "")]
         self.arcs: list[tuple[Arc, ...]] = [()]
+        #: Pairs of events of which the first is taken not to come after the second, though causes do not say so.
+        self.assumed: list[tuple[int, int]] = []
         self.earliest: list[int] = [0]
         self.latest: list[int] = [0]
         self._dominator: list[int] = [0]

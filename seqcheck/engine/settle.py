@@ -11,13 +11,15 @@ regions no longer change.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from seqcheck.engine.bounds import Rows, greatest_separations
 from seqcheck.engine.cylinders import Regions
+from seqcheck.engine.graph import DelayName
 from seqcheck.engine.player import Player
 from seqcheck.engine.strokes import Region
+from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Read, Stroke, Trace
 from seqcheck.machine.model import Machine
 
@@ -28,9 +30,11 @@ _MOST_ROUNDS = 8
 @dataclass(frozen=True, slots=True)
 class Settlement:
     """``first`` and ``last``: the settled cycles run from one to the other of ``trace.cycles`` (none for a sequence
-    that runs once or does not come round). ``settled``: a state has come up again, or nothing was due any more."""
+    that runs once or does not come round). ``settled``: a state has come up again, or nothing was due any more.
+    ``delays``: those that were not played at their typical times."""
 
     trace: Trace
+    delays: Mapping[DelayName, int]
     regions: Regions
     settled: bool
     first: int
@@ -59,10 +63,10 @@ class _Rounds:
         return self.count < MOST_CYCLES
 
 
-def settle(machine: Machine) -> Settlement:
+def settle(machine: Machine, delays: Mapping[DelayName, int] | None = None) -> Settlement:
     regions: dict[tuple[str, int], Region] = {}
     for _ in range(_MOST_ROUNDS):
-        settlement = _play(machine, regions)
+        settlement = _play(machine, delays or {}, regions)
         if settlement.trace.too_long:
             break
         found = dict(_regions(settlement.trace))
@@ -72,13 +76,13 @@ def settle(machine: Machine) -> Settlement:
     return settlement
 
 
-def _play(machine: Machine, regions: Regions) -> Settlement:
+def _play(machine: Machine, delays: Mapping[DelayName, int], regions: Regions) -> Settlement:
     rounds = _Rounds({})
-    trace = Player(machine, rounds.go_on, regions=regions).play()
+    trace = Player(machine, rounds.go_on, given(delays), regions).play()
     done = len(trace.cycles) - 1
     if rounds.first is None or rounds.last is None or done < rounds.last:
-        return Settlement(trace, regions, trace.finished or trace.endless, max(0, done - 1), done)
-    return Settlement(trace, regions, True, rounds.first, rounds.last)
+        return Settlement(trace, delays, regions, trace.finished or trace.endless, max(0, done - 1), done)
+    return Settlement(trace, delays, regions, True, rounds.first, rounds.last)
 
 
 def _signature(player: Player, read: Read) -> tuple[object, ...]:

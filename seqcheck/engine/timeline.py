@@ -8,10 +8,10 @@ from __future__ import annotations
 
 import heapq
 from collections import Counter
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from enum import IntEnum
 
-from seqcheck.engine.graph import Arc, Event, EventGraph
+from seqcheck.engine.graph import Arc, DelayName, Event, EventGraph
 from seqcheck.machine.time import NO_TIME, Span
 
 #: Gives the time for (what takes it, whose, how often before, within which span), in microseconds.
@@ -33,6 +33,15 @@ class Order(IntEnum):
 
 def typical(what: str, name: str, number: int, span: Span) -> int:
     return span.typical
+
+
+def given(delays: Mapping[DelayName, int]) -> Draw:
+    """Draws these delays, held within their spans, and all others at their typical times."""
+
+    def draw(what: str, name: str, number: int, span: Span) -> int:
+        return min(max(delays.get((what, name, number), span.typical), span.least), span.greatest)
+
+    return draw
 
 
 class Timeline:

@@ -53,8 +53,15 @@ class Effect(Enum):
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Touch:
+    """``event``: the read at which it happens; for a pulse that a reset has ended, when it would have ended."""
+
+    event: int
     origin: Origin
     effect: Effect
+
+    def conflicts_with(self, other: Touch) -> bool:
+        """One begins what the other ends, at different reads."""
+        return (self.effect is Effect.BEGINS) != (other.effect is Effect.BEGINS) and self.event != other.event
 
 
 @dataclass(slots=True, eq=False)

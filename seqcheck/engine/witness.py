@@ -14,10 +14,10 @@ from dataclasses import dataclass
 from seqcheck.engine.bounds import causes_since, separation_table
 from seqcheck.engine.graph import OPEN, DelayName, EventGraph
 from seqcheck.engine.player import Player
-from seqcheck.engine.timeline import Draw
+from seqcheck.engine.settle import Settlement
+from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Trace
 from seqcheck.machine.model import Machine
-from seqcheck.machine.time import Span
 
 #: How long a wait that nothing limits lasts in a concrete run.
 _LONG_US = 60_000_000
@@ -64,21 +64,14 @@ def _binding(graph: EventGraph, times: Mapping[int, int], common: int, event: in
     return chain
 
 
-def given(delays: Mapping[DelayName, int]) -> Draw:
-    """Draws the delays of a witness, all others typical."""
-
-    def draw(what: str, name: str, number: int, span: Span) -> int:
-        return min(max(delays.get((what, name, number), span.typical), span.least), span.greatest)
-
-    return draw
-
-
-def replays(machine: Machine, trace: Trace, run: Witness, first: int, second: int) -> bool:
+def replays(machine: Machine, settlement: Settlement, run: Witness, first: int, second: int) -> bool:
     """Whether playing the witness's delays shows the first event not having come by when the second does."""
+    trace = settlement.trace
     horizon = min(run.times[first], run.times[second])
     cycles = len(trace.cycles) + 1
     limit = horizon + horizon // 10 + 1_000_000
-    player = Player(machine, lambda player, _: len(player.trace.cycles) < cycles, given(run.delays), until_us=limit)
+    draw = given({**settlement.delays, **run.delays})
+    player = Player(machine, lambda player, _: len(player.trace.cycles) < cycles, draw, until_us=limit)
     replayed = player.play()
     came = {
         arc.delay: replayed.times[number]
