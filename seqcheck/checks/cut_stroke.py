@@ -7,6 +7,7 @@ from collections.abc import Iterator
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
+from seqcheck.engine.settle import may_have_centred
 from seqcheck.engine.trace import Stroke
 from seqcheck.machine.devices import Position
 from seqcheck.machine.findings import Severity
@@ -15,10 +16,12 @@ from seqcheck.machine.findings import Severity
 def _obligations(study: Study) -> Iterator[Obligation]:
     for stroke in study.trace.strokes:
         if stroke.away is not None and not study.stopped_by_own_sensor(stroke):
-            origin = stroke.away.by.origin
-            yield Obligation(
-                stroke.cylinder, origin.step, origin.place, stroke.end, stroke.away.reached, _wording(stroke)
-            )
+            origin, before = stroke.away.by.origin, stroke.away.previous
+            ends = [stroke.away.reached]
+            if before is not None and may_have_centred(study.trace.graph, stroke.away):
+                ends.append(before.reached)
+            for end in ends:
+                yield Obligation(stroke.cylinder, origin.step, origin.place, stroke.end, end, _wording(stroke))
 
 
 def _wording(stroke: Stroke) -> Wording:

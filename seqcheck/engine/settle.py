@@ -11,16 +11,17 @@ regions no longer change.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
-from seqcheck.engine.bounds import Rows, greatest_separations
+from seqcheck.engine.bounds import Rows, greatest_separation, greatest_separations
 from seqcheck.engine.cylinders import Regions
-from seqcheck.engine.graph import DelayName
+from seqcheck.engine.graph import DelayName, EventGraph
 from seqcheck.engine.player import Player
 from seqcheck.engine.strokes import Region
 from seqcheck.engine.timeline import given
-from seqcheck.engine.trace import Read, Stroke, Trace
+from seqcheck.engine.trace import Read, Shift, Stroke, Trace
+from seqcheck.machine.devices import Position
 from seqcheck.machine.model import Machine
 
 MOST_CYCLES = 12
@@ -99,11 +100,14 @@ def _signature(player: Player, read: Read) -> tuple[object, ...]:
 
 def _regions(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
     """Where each piston that the valve drove otherwise may stand, if that is more than one stretch between marks."""
-    parted = [(stroke, stroke.stands) for stroke in trace.strokes if stroke.stands is not None]
-    pairs = []
-    for stroke, stands in parted:
-        for event in _passings(stroke):
-            pairs += [(stands, event), (event, stands)]
+    parted = [(stroke, _may_stand_at(trace.graph, stroke)) for stroke in trace.strokes if stroke.stands is not None]
+    pairs = [
+        pair
+        for stroke, stands in parted
+        for event in _passings(stroke)
+        for at in stands
+        for pair in ((at, event), (event, at))
+    ]
     rows = greatest_separations(trace.graph, pairs)
     for stroke, stands in parted:
         region = _region(stroke, stands, rows)
@@ -111,25 +115,53 @@ def _regions(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
             yield (stroke.cylinder, stroke.number), region
 
 
+def _may_stand_at(graph: EventGraph, stroke: Stroke) -> list[int]:
+    """The event at which the stroke ends as played; and as it ends where the other coil may take over the valve's
+    return to centre although it did not, or may not although it did."""
+    shift = stroke.away
+    assert shift is not None and stroke.stands is not None
+    stands = [stroke.stands]
+    after, before = shift.following, shift.previous
+    if shift.to is Position.CENTRE and after is not None and after.by.coil != shift.by.coil:
+        if greatest_separation(graph, after.asked, shift.reached) > 0:
+            stands.append(after.reached)
+    elif may_have_centred(graph, shift) and before is not None:
+        stands.append(before.reached)
+    return stands
+
+
+def may_have_centred(graph: EventGraph, shift: Shift) -> bool:
+    """Whether the return to centre that this shift took over can be done before."""
+    before = shift.previous
+    return before is not None and before.taken_over and greatest_separation(graph, before.reached, shift.asked) > 0
+
+
 def _passings(stroke: Stroke) -> list[int]:
     return [event for _, event in stroke.marks] + ([stroke.leaves] if stroke.leaves is not None else [])
 
 
-def _region(stroke: Stroke, stands: int, rows: Rows) -> Region | None:
+def _region(stroke: Stroke, stands: Sequence[int], rows: Rows) -> Region | None:
     """From the last mark that is passed in every run to the first that is reached in none."""
+
+    def always_passed(event: int) -> bool:
+        return all(rows[at, event] <= 0 for at in stands)
+
+    def never_reached(event: int) -> bool:
+        return all(rows[event, at] <= 0 for at in stands)
+
     behind = stroke.started.low if stroke.out else stroke.started.high
     rests = set()
-    if behind in stroke.started.rests and stroke.leaves is not None and rows[stands, stroke.leaves] > 0:
+    if behind in stroke.started.rests and stroke.leaves is not None and not always_passed(stroke.leaves):
         rests.add(behind)
     ahead = stroke.marks[-1][0]
     for index, event in stroke.marks:
-        if rows[stands, event] <= 0:
+        if always_passed(event):
             behind = index
-        elif rows[event, stands] <= 0:
+        elif never_reached(event):
             ahead = index
             break
-    if rows[stands, stroke.end] <= 0:
+    if always_passed(stroke.end):
         return None
-    if ahead == stroke.marks[-1][0] and rows[stroke.end, stands] > 0:
+    if ahead == stroke.marks[-1][0] and not never_reached(stroke.end):
         rests.add(ahead)
     return Region(min(behind, ahead), max(behind, ahead), frozenset(rests & {behind, ahead}))

@@ -128,14 +128,17 @@ class CoilChange:
 
 @dataclass(slots=True, eq=False)
 class Shift:
-    """A valve on its way since ``asked``. ``called_off`` by a coil change before it got there; ``taken_over`` where
-    that was the other coil during a return to centre."""
+    """A valve on its way since ``asked``, after the valve's ``previous`` shift and before its ``following`` one.
+    ``called_off`` by a coil change before it got there; ``taken_over`` where that was the other coil during a return
+    to centre."""
 
     valve: str
     to: Position
     asked: int
     reached: int
     by: CoilChange
+    previous: Shift | None = None
+    following: Shift | None = None
     called_off: CoilChange | None = None
     taken_over: bool = False
 

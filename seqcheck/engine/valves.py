@@ -25,6 +25,7 @@ Reached = Callable[[str, Shift], None]
 class _State:
     reached: Position
     shift: Shift | None = None
+    latest: Shift | None = None
     energized: set[str] = field(default_factory=set)
 
 
@@ -104,8 +105,10 @@ class Valves:
         reached = timeline.event(
             Event("valve", valve.name, to.value), timeline.delay(asked, span, "valve", name, number)
         )
-        shift = Shift(valve.name, to, asked, reached, by)
-        state.shift = shift
+        shift = Shift(valve.name, to, asked, reached, by, state.latest)
+        if state.latest is not None:
+            state.latest.following = shift
+        state.shift = state.latest = shift
         self._trace.shifts.append(shift)
         timeline.at(reached, Order.VALVE, lambda: self._arrive(shift))
 
