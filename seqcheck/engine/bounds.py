@@ -20,7 +20,6 @@ separation of the two events so found, within their causes since ``x``.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
-from dataclasses import dataclass
 
 import numpy
 import numpy.typing
@@ -42,8 +41,7 @@ Rows = dict[tuple[int, int], int]
 def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) -> Rows:
     """``S[i, j]`` for every pair ``(i, j)``: how much later than ``i`` can ``j`` be? Microseconds."""
     rows: Rows = {}
-    left: dict[int, list[_Reduced]] = {}
-    closures: dict[tuple[int, int], list[int]] = {}
+    left: dict[int, list[tuple[int, int]]] = {}
     for source, event in set(pairs):
         common = graph.common_dominator(source, event)
         if source == common:
@@ -51,54 +49,71 @@ def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) ->
         elif event == common:
             rows[source, event] = graph.earliest[event] - graph.earliest[source]
         else:
-            left.setdefault(common, []).append(_reduce(graph, common, source, event, closures))
+            left.setdefault(common, []).append((source, event))
     for common, group in left.items():
-        near = _near_separations(graph, common, {(one.near_source, one.near_event) for one in group})
-        for one in group:
-            forward = graph.latest[one.event] - graph.latest[one.near_event]
-            backward = graph.earliest[one.source] - graph.earliest[one.near_source]
-            rows[one.source, one.event] = forward + near[one.near_source, one.near_event] - backward
+        rows.update(_Below(graph, common).separations(group))
     return rows
 
 
-@dataclass(frozen=True, slots=True)
-class _Reduced:
-    """A pair, and the dominators of its two events from which on each has its delays to itself."""
+class _Below:
+    """What lies behind one event that dominates both of each pair that is asked."""
 
-    source: int
-    event: int
-    near_source: int
-    near_event: int
+    def __init__(self, graph: EventGraph, common: int) -> None:
+        self._graph = graph
+        self._common = common
+        self._assumed = [pair for pair in graph.assumed if all(graph.dominates(common, number) for number in pair)]
+        self._ordered = sorted({number for pair in self._assumed for number in pair})
+        self._causes: dict[int, list[int]] = {}
 
+    def separations(self, pairs: Sequence[tuple[int, int]]) -> Rows:
+        graph = self._graph
+        reduced = [(source, event, *self._reduce(source, event)) for source, event in pairs]
+        near = self._table({(near_source, near_event) for _, _, near_source, near_event in reduced})
+        return {
+            (source, event): graph.latest[event]
+            - graph.latest[near_event]
+            + near[near_source, near_event]
+            - (graph.earliest[source] - graph.earliest[near_source])
+            for source, event, near_source, near_event in reduced
+        }
 
-def _reduce(
-    graph: EventGraph, common: int, source: int, event: int, closures: dict[tuple[int, int], list[int]]
-) -> _Reduced:
-    def causes(number: int) -> list[int]:
-        key = (common, number)
-        if key not in closures:
-            closures[key] = causes_since(graph, common, [number])
-        return closures[key]
+    def _reduce(self, source: int, event: int) -> tuple[int, int]:
+        """The dominators of the two from which on each has its delays to itself."""
+        graph, common = self._graph, self._common
+        near_source, near_event = graph.below(common, source), graph.below(common, event)
+        while True:
+            lower_event = self._own_from(near_event, event, self._causes_of(near_source))
+            lower_source = self._own_from(near_source, source, self._causes_of(lower_event))
+            if (lower_source, lower_event) == (near_source, near_event):
+                return near_source, near_event
+            near_source, near_event = lower_source, lower_event
 
-    near_source, near_event = graph.below(common, source), graph.below(common, event)
-    assumed = _assumed_below(graph, common)
-    ordered = sorted({number for pair in assumed for number in pair})
-    while True:
-        lower_event = _own_from(graph, _own_from(graph, near_event, event, causes(near_source)), event, ordered)
-        lower_source = _own_from(graph, _own_from(graph, near_source, source, causes(lower_event)), source, ordered)
-        if (lower_source, lower_event) == (near_source, near_event):
-            return _Reduced(source, event, near_source, near_event)
-        near_source, near_event = lower_source, lower_event
+    def _causes_of(self, number: int) -> list[int]:
+        if number not in self._causes:
+            self._causes[number] = causes_since(self._graph, self._common, [number])
+        return self._causes[number]
 
+    def _own_from(self, near: int, event: int, others: Sequence[int]) -> int:
+        """From ``near`` down towards ``event``: the first dominator behind which none of the ``others`` lies, nor any
+        event of an assumed order."""
+        graph = self._graph
+        for causes in (others, self._ordered):
+            for other in reversed(causes):
+                if other <= near:
+                    break
+                if graph.dominates(near, other):
+                    near = graph.below(graph.common_dominator(other, event), event)
+        return near
 
-def _own_from(graph: EventGraph, near: int, event: int, others: Sequence[int]) -> int:
-    """From ``near`` down towards ``event``: the first dominator behind which none of the ``others`` lies."""
-    for other in reversed(others):
-        if other <= near:
-            break
-        if graph.dominates(near, other):
-            near = graph.below(graph.common_dominator(other, event), event)
-    return near
+    def _table(self, pairs: set[tuple[int, int]]) -> Rows:
+        members = causes_since(
+            self._graph, self._common, {number for pair in (*pairs, *self._assumed) for number in pair}
+        )
+        sources = sorted({source for source, _ in pairs})
+        table = separation_table(self._graph, members, sources)
+        position = {number: index for index, number in enumerate(members)}
+        column = {number: index for index, number in enumerate(sources)}
+        return {(source, event): int(table[position[event], column[source]]) for source, event in pairs}
 
 
 def greatest_separation(graph: EventGraph, source: int, event: int) -> int:
@@ -118,20 +133,6 @@ def longest_least_chain(graph: EventGraph, cause: int, event: int) -> int:
 
 def is_open(separation: int) -> bool:
     return separation >= OPEN // 2
-
-
-def _near_separations(graph: EventGraph, common: int, pairs: set[tuple[int, int]]) -> Rows:
-    assumed = _assumed_below(graph, common)
-    members = causes_since(graph, common, {number for pair in (*pairs, *assumed) for number in pair})
-    sources = sorted({source for source, _ in pairs})
-    table = separation_table(graph, members, sources)
-    position = {number: index for index, number in enumerate(members)}
-    column = {number: index for index, number in enumerate(sources)}
-    return {(source, event): int(table[position[event], column[source]]) for source, event in pairs}
-
-
-def _assumed_below(graph: EventGraph, common: int) -> list[tuple[int, int]]:
-    return [pair for pair in graph.assumed if all(graph.dominates(common, number) for number in pair)]
 
 
 def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
