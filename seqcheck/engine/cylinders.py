@@ -182,7 +182,7 @@ class Cylinders:
             plan, since = travel.from_between(region, piston.stood), {START: shift.reached}
         marks: list[tuple[int, int]] = []
         for number, reach in enumerate(plan):
-            position = "" if reach.mark is None else str(piston.marks[reach.mark])
+            position = str(piston.marks[reach.mark])
             name = f"{stroke.cylinder} {position}"
             arcs = [
                 timeline.delay(since[part.since], part.span, "mark", name, stroke.number)
@@ -190,8 +190,9 @@ class Cylinders:
                 else timeline.loose(since[part.since], part.span)
                 for part in reach.parts
             ]
-            since[number] = timeline.event(Event("mark" if position else "may pass", stroke.cylinder, position), *arcs)
-            if reach.mark is not None:
+            event = Event("may pass" if reach.only_if else "mark", stroke.cylinder, position)
+            since[number] = timeline.event(event, *arcs)
+            if not reach.only_if:
                 marks.append((reach.mark, since[number]))
         return tuple(marks)
 

@@ -35,11 +35,12 @@ class Part:
 
 @dataclass(frozen=True, slots=True)
 class Reach:
-    """A mark, by its index on the cylinder, and what it takes to be reached. No mark: the moment at which the piston
-    would come to the next one if it stood in the last stretch before it."""
+    """A mark, by its index on the cylinder, and what it takes to be reached. ``only_if``: the moment at which the
+    piston would come to it if it stood in the last stretch before it, which is no event of its own."""
 
-    mark: int | None
+    mark: int
     parts: tuple[Part, ...]
+    only_if: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,7 +114,7 @@ class Travel:
                 whole = self._whole(marks[number - 1] if number else behind, mark)
                 span = Span(0, min(self._typical(stood, mark), whole), whole)
                 if unsure:
-                    plan.append(Reach(None, (Part(START, span, True),)))
+                    plan.append(Reach(mark, (Part(START, span, True),), only_if=True))
                     first = len(plan) - 1
                     parts = [Part(before, NO_TIME)] if number else []
                     parts += [Part(first, NO_TIME)]

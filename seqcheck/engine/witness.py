@@ -3,7 +3,7 @@
 Takes a trace and two events of which the first ought to come before the second; gives the delays of the run in which
 it comes as late as it can. Setting ``t(j) = S[i, j]`` for the second event ``i`` is itself a possible run (McMillan &
 Dill, ICCD 1992). Replaying plays the machine again with these delays: what leads to the pair must come exactly when
-the witness says, or something else has got in its way.
+the witness says, and nothing of it before its time, or something else has got in its way.
 """
 
 from __future__ import annotations
@@ -79,12 +79,15 @@ def replays(machine: Machine, settlement: Settlement, run: Witness, first: int, 
         for arc in replayed.graph.arcs[number]
         if arc.delay is not None
     }
-    offsets = set()
-    for number, time in run.times.items():
-        if number in trace.happened and time <= horizon:
-            for arc in trace.graph.arcs[number]:
-                if arc.delay is not None:
-                    if arc.delay not in came:
-                        return False
-                    offsets.add(came[arc.delay] - time)
-    return len(offsets) <= 1
+    due = [
+        (time, came.get(arc.delay))
+        for number, time in run.times.items()
+        if number in trace.happened
+        for arc in trace.graph.arcs[number]
+        if arc.delay is not None
+    ]
+    offsets = {None if at is None else at - time for time, at in due if time <= horizon}
+    if len(offsets) > 1 or None in offsets:
+        return False
+    offset = next(iter(offsets), 0) or 0
+    return all(at is None or at - offset > horizon for time, at in due if time > horizon)
