@@ -1,0 +1,107 @@
+"""Many texts in several processes: the same reports in the same order, and nothing lost when a process ends."""
+
+from __future__ import annotations
+
+import multiprocessing
+import os
+import re
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+
+from seqcheck.machine.findings import Report
+from seqcheck.workers import TEXTS_PER_PROCESS, examine_all, processors
+
+NAMES = [f"{number}.steps" for number in range(4 * TEXTS_PER_PROCESS)]
+
+
+def examine(name: str) -> Report:
+    """As the pipeline does, in its way: the machine's name tells which process it was."""
+    if name.startswith("dies"):
+        os._exit(9)
+    if name.startswith("faulty"):
+        raise KeyError(name)
+    return Report(name, f"process {os.getpid()}")
+
+
+def sleep_when_asked(name: str) -> Report:
+    print("busy", name, flush=True)
+    time.sleep(60)
+    return Report(name, None)
+
+
+def examined(names: list[str], jobs: int | None = 2) -> tuple[list[Report], list[int]]:
+    progress: list[int] = []
+    reports = examine_all(names, examine, jobs, progress.append)
+    assert [report.file for report in reports] == names
+    return list(reports), progress
+
+
+def test_many_texts_are_examined_by_several_processes_in_order() -> None:
+    reports, progress = examined(NAMES)
+    processes = {report.machine for report in reports}
+    assert 1 <= len(processes) <= 2
+    assert f"process {os.getpid()}" not in processes
+    assert progress == list(range(1, len(NAMES) + 1))
+    assert multiprocessing.active_children() == []
+
+
+@pytest.mark.parametrize(("count", "jobs"), [(2 * TEXTS_PER_PROCESS - 1, 8), (len(NAMES), 1), (0, None)])
+def test_a_few_texts_or_one_job_need_no_other_process(count: int, jobs: int | None) -> None:
+    reports, progress = examined(NAMES[:count], jobs)
+    assert {report.machine for report in reports} <= {f"process {os.getpid()}"}
+    assert progress == list(range(1, count + 1))
+
+
+def test_standard_input_is_read_where_it_is() -> None:
+    reports, _ = examined([*NAMES[:6], "-", *NAMES[6:]])
+    assert reports[6].machine == f"process {os.getpid()}"
+    assert reports[5].machine != reports[6].machine
+
+
+@pytest.mark.parametrize("where", [0, 7, len(NAMES)])
+def test_a_text_whose_process_ends_is_told_and_all_others_are_examined(where: int) -> None:
+    reports, _ = examined([*NAMES[:where], "dies.steps", *NAMES[where:]])
+    unreadable = [report for report in reports if report.problems]
+    assert [report.file for report in unreadable] == ["dies.steps"]
+    assert "ended without a result" in unreadable[0].problems[0].message
+    assert unreadable[0].verdict == "unreadable"
+
+
+def test_a_fault_of_the_program_is_raised_as_it_is() -> None:
+    with pytest.raises(KeyError, match=r"faulty\.steps") as caught:
+        examined([*NAMES, "faulty.steps"])
+    assert re.fullmatch(r"test_workers\.py:\d+, examining faulty\.steps", caught.value.__notes__[-1])
+    assert multiprocessing.active_children() == []
+
+
+def test_there_is_a_processor() -> None:
+    assert 1 <= processors() <= (os.cpu_count() or 1)
+
+
+@pytest.mark.skipif(os.name != "posix", reason="signals as POSIX has them")
+def test_an_interrupt_ends_every_process_at_once(checkout: Path) -> None:
+    program = (
+        "from tests.test_workers import NAMES, sleep_when_asked; from seqcheck.workers import examine_all\n"
+        "if __name__ == '__main__': examine_all(NAMES, sleep_when_asked, 2, print)"
+    )
+    process = subprocess.Popen(
+        [sys.executable, "-c", program],
+        env={**os.environ, "PYTHONPATH": str(checkout)},
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+        start_new_session=True,
+    )
+    assert process.stdout is not None
+    assert process.stdout.readline().startswith("busy")
+    # To the whole group, as a terminal does.
+    os.killpg(process.pid, signal.SIGINT)
+    _, told = process.communicate(timeout=30)
+    assert process.returncode == -signal.SIGINT
+    # The traceback is that of the first process alone: the program above does not catch the interrupt.
+    assert told.count("Traceback") == 1
