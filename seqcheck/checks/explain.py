@@ -1,0 +1,58 @@
+"""What each kind of finding means, with a sequence that shows it and the mended one.
+
+Takes the name of a kind; gives the explanation from the file ``explanations/KIND.md`` beside this one, None for a kind
+that has none. Loads nothing that examines: help must come at once.
+"""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+from pathlib import Path
+
+from seqcheck.machine.findings import Severity
+
+_FOLDER = Path(__file__).resolve().parent / "explanations"
+_WRITTEN = re.compile(
+    r"# (?P<kind>\S+)\n\n(?P<severity>\w+): (?P<title>[^\n]+)\n\n(?P<meaning>.+)\n\n"
+    r"## A sequence that shows it\n\n```steps\n(?P<faulty>.+)```\n\n> (?P<says>[^\n]+)\n\n"
+    r"## Mended\n\n(?P<how>.+)\n\n```steps\n(?P<mended>.+)```\n",
+    re.DOTALL,
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Explanation:
+    """``meaning`` and ``how`` (what was done to mend it) are prose, paragraphs apart by an empty line. ``faulty`` and
+    ``mended`` are whole texts; ``says`` is the message of the first finding in the faulty one."""
+
+    kind: str
+    severity: Severity
+    title: str
+    meaning: str
+    faulty: str
+    says: str
+    how: str
+    mended: str
+
+
+def explained_kinds() -> tuple[str, ...]:
+    """Every kind that has an explanation, by name."""
+    return tuple(sorted(file.stem for file in _FOLDER.glob("*.md")))
+
+
+def explanation(kind: str) -> Explanation | None:
+    if kind not in explained_kinds():
+        return None
+    written = _WRITTEN.fullmatch((_FOLDER / f"{kind}.md").read_text(encoding="utf-8"))
+    if written is None or written["kind"] != kind:
+        raise ValueError(f"the explanation of {kind} is not laid out as the others are")
+    _, severity, title, meaning, faulty, says, how, mended = written.groups()
+    return Explanation(kind, Severity(severity), title, meaning, faulty, says, how, mended)
+
+
+def explanations() -> tuple[Explanation, ...]:
+    """All of them: errors first, then warnings, then notes, each by name."""
+    found = [one for kind in explained_kinds() if (one := explanation(kind)) is not None]
+    severities = list(Severity)
+    return tuple(sorted(found, key=lambda one: severities.index(one.severity)))
