@@ -8,53 +8,27 @@ they are needed.
 from __future__ import annotations
 
 import argparse
+import contextlib
+import difflib
 import sys
 from collections.abc import Iterable, Iterator, Sequence
+from functools import partial
 from pathlib import Path
-from typing import Any, NoReturn
 
-from seqcheck import __version__
-from seqcheck.machine.findings import Report, Severity
+from seqcheck.arguments import NEVER, STANDARD, WRONG_ARGUMENTS, read_arguments
+from seqcheck.compare.differences import FileComparison
+from seqcheck.language.folders import sequences_named
+from seqcheck.machine.findings import Finding, Report, Severity
 from seqcheck.report.delivery import complain, finish, provide_streams, save, send, show
-from seqcheck.report.formats import FOR_PEOPLE, FORMATS
-from seqcheck.report.plain import plain
-from seqcheck.report.progress import working_on
+from seqcheck.report.destinations import Destination, destinations
+from seqcheck.report.formats import COMPARISON_FORMATS, FOR_PEOPLE, FORMATS, Counts
+from seqcheck.report.progress import working_on, working_through
 from seqcheck.report.terminal import encoding_of
 
 FINE = 0
 FOUND = 1
-UNREADABLE = 2
+UNREADABLE = WRONG_ARGUMENTS
 INTERRUPTED = 130
-
-STANDARD = "-"
-NEVER = "never"
-
-SAFETY = (
-    "seqcheck finds timing faults in a sequence. It is no safety function and no proof of one: it replaces no risk"
-    " assessment, no guard, no emergency stop circuit and no licensed practitioner; local codes and licensed practice"
-    " come first."
-)
-_STATUSES = (
-    "Exit status: 0 nothing found at or above --fail-on; 1 something found; 2 the text, a timing sheet, a file or an"
-    " option could not be read, or the report not be written."
-)
-
-
-class _Paragraphs(argparse.HelpFormatter):
-    """Wraps each paragraph of an epilog by itself."""
-
-    def _fill_text(self, text: str, width: int, indent: str) -> str:
-        return "\n\n".join(super(_Paragraphs, self)._fill_text(part, width, indent) for part in text.split("\n\n"))
-
-
-class _Parser(argparse.ArgumentParser):
-    """Says what is wrong with an option without letting its characters act on the terminal."""
-
-    def __init__(self, **settings: Any) -> None:
-        super().__init__(formatter_class=_Paragraphs, **settings)
-
-    def error(self, message: str) -> NoReturn:
-        self.exit(UNREADABLE, f"{self.format_usage()}seqcheck: error: {plain(message)}\n")
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -70,103 +44,110 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return _ended(UNREADABLE, f"this is a fault of seqcheck, not of your text: {_about(fault)}")
 
 
-def parser() -> argparse.ArgumentParser:
-    """The arguments of every command."""
-    whole = _Parser(
-        prog="seqcheck",
-        description="Proves the timing of solenoid valve sequences for all times within their tolerances.",
-        epilog=f"{_STATUSES}\n\n{SAFETY}",
-    )
-    whole.add_argument("--version", action="version", version=f"seqcheck {__version__}")
-    commands = whole.add_subparsers(dest="command", metavar="COMMAND", required=True)
-    _add_check(commands.add_parser("check", help="find what can go wrong", epilog=f"{_STATUSES}\n\n{SAFETY}"))
-    times = "cycle time, each step's times, the critical path"
-    _add_page(commands.add_parser("times", help=times, epilog=SAFETY))
-    margins = "how far each thing is from breaking, tightest first"
-    _add_page(commands.add_parser("margins", help=margins, epilog=SAFETY))
-    return whole
-
-
-def exit_status(reports: Sequence[Report], fail_on: str) -> int:
-    """``UNREADABLE`` if any file was; else ``FOUND`` if any finding is as severe as ``fail_on`` or more."""
+def exit_status(reports: Sequence[Report], fail_on: Sequence[str]) -> int:
+    """``UNREADABLE`` if any file was; else ``FOUND`` if anything found counts for ``fail_on``."""
     if any(report.verdict == "unreadable" for report in reports):
         return UNREADABLE
-    if fail_on == NEVER:
-        return FINE
-    ranks = list(Severity)
-    counting = ranks[: ranks.index(Severity(fail_on)) + 1]
-    return FOUND if any(finding.severity in counting for report in reports for finding in report.findings) else FINE
+    return FOUND if any(failing(finding, fail_on) for report in reports for finding in report.findings) else FINE
 
 
-def _add_check(command: argparse.ArgumentParser) -> None:
-    command.add_argument("files", nargs="+", metavar="FILE", help="a sequence text; - reads standard input")
-    _add_times(command)
-    command.add_argument("--format", choices=list(FORMATS), default=FOR_PEOPLE, help="default: %(default)s")
-    command.add_argument("--output", metavar="FILE", help="write the report there instead of to standard output")
-    command.add_argument(
-        "--fail-on",
-        choices=[*(severity.value for severity in Severity), NEVER],
-        default=Severity.ERROR.value,
-        help="the least severity that gives exit status 1 (default: %(default)s)",
-    )
-
-
-def _add_page(command: argparse.ArgumentParser) -> None:
-    command.add_argument("file", metavar="FILE", help="a sequence text; - reads standard input")
-    _add_times(command)
-
-
-def _add_times(command: argparse.ArgumentParser) -> None:
-    command.add_argument(
-        "--times",
-        action="append",
-        default=[],
-        metavar="FILE",
-        help="a timing sheet on top of those that the text names; may be given again, later ones win",
-    )
+def failing(finding: Finding, fail_on: Sequence[str]) -> bool:
+    """Whether a finding counts: not accepted, and as severe as one of ``fail_on`` or more, or of a kind in it."""
+    ranks = [severity.value for severity in Severity]
+    as_severe = ranks[ranks.index(finding.severity.value) :]
+    return finding.accepted is None and not {finding.kind, *as_severe}.isdisjoint(fail_on)
 
 
 def _run(arguments: Sequence[str] | None) -> int:
     try:
-        options = _options(arguments)
+        options = read_arguments(arguments)
     except SystemExit as stop:
         # Help, version and complaints of argparse; what they printed may still wait in the stream.
         finish()
         return stop.code if isinstance(stop.code, int) else UNREADABLE
-    if options.command == "check":
-        return _check(options)
-    return _page(options)
-
-
-def _options(arguments: Sequence[str] | None) -> argparse.Namespace:
-    """As argparse reads them; files may also stand behind options (``check a.steps --times t.yaml b.steps``)."""
-    whole = parser()
-    options, rest = whole.parse_known_args(arguments)
-    files = [name for name in rest if name == STANDARD or not name.startswith("-")]
-    if rest and (options.command != "check" or files != rest):
-        whole.error(f"unrecognized arguments: {' '.join(rest)}")
-    if files:
-        options.files = [*options.files, *files]
-    return options
+    commands = {"check": _check, "compare": _compare, "explain": _explain}
+    return commands.get(options.command, _page)(options)
 
 
 def _check(options: argparse.Namespace) -> int:
-    files: list[str] = options.files
-    output: str | None = None if options.output == STANDARD else options.output
-    refusal = _refused(files, options.times, output)
-    if refusal:
+    fail_on: Sequence[str] = options.fail_on or (Severity.ERROR.value,)
+    wanted = destinations(options.choices)
+    named = sequences_named(options.files)
+    texts = [name for name in named if isinstance(name, str)]
+    refusal = wanted if isinstance(wanted, str) else _refused(options.files, (*texts, *options.times), wanted)
+    refusal = refusal or _no_kind(fail_on)
+    if refusal or isinstance(wanted, str):
         return _ended(UNREADABLE, refusal)
-    reports = [_examined(file, options.times) for file in files]
-    status = exit_status(reports, options.fail_on)
+    examined = iter(_all_examined(texts, options))
+    reports = [
+        next(examined) if isinstance(one, str) else Report(one.place.file, None, problems=(one,)) for one in named
+    ]
+    status = exit_status(reports, fail_on)
+    files = [one if isinstance(one, str) else one.place.file for one in named]
+    for destination in wanted:
+        status = _ended(status, _delivered(destination, files, reports, partial(failing, fail_on=fail_on)))
+    return status
+
+
+def _delivered(destination: Destination, files: Sequence[str], reports: Sequence[Report], counts: Counts) -> str | None:
+    """``files``: the names of the texts, one for each report. What went wrong comes back, if anything did."""
+    output = destination.output
     if output:
-        trouble = _overwriting(output, _read_for(files, reports)) or save(FORMATS[options.format](reports), output)
-    elif options.format == FOR_PEOPLE:
+        overwriting = _overwriting(output, _read_for(files, reports))
+        return overwriting or save(FORMATS[destination.form](reports, counts), output)
+    if destination.form == FOR_PEOPLE:
         from seqcheck.report.text import text_lines
 
-        trouble = show(text_lines(reports, encoding_of(sys.stdout)))
-    else:
-        trouble = send(FORMATS[options.format](reports))
-    return _ended(status, trouble)
+        return show(text_lines(reports, encoding_of(sys.stdout)))
+    return send(FORMATS[destination.form](reports, counts))
+
+
+def _compare(options: argparse.Namespace) -> int:
+    fail_on: Sequence[str] = options.fail_on or (Severity.ERROR.value,)
+    wanted = destinations(options.choices)
+    names = (options.old, options.new)
+    refusal = wanted if isinstance(wanted, str) else _refused(names, (*names, *options.times), wanted)
+    refusal = refusal or _no_kind(fail_on)
+    if refusal or isinstance(wanted, str):
+        return _ended(UNREADABLE, refusal)
+    from seqcheck.compare.compare import Examining, compare
+    from seqcheck.compare.results import Bar
+
+    examining = Examining(options.times, options.reserve, partial(_all_examined, options=options))
+    bar = Bar(options.allow, partial(failing, fail_on=fail_on))
+    with contextlib.nullcontext() if Path(options.new).is_dir() else working_on(options.new, sys.stderr):
+        files = compare(*names, examining, bar)
+    verdicts = {file.verdict for file in files}
+    status = UNREADABLE if "unreadable" in verdicts else FOUND if "worse" in verdicts else FINE
+    for destination in wanted:
+        status = _ended(status, _delivered_comparison(destination, files))
+    return status
+
+
+def _delivered_comparison(destination: Destination, files: Sequence[FileComparison]) -> str | None:
+    render = COMPARISON_FORMATS[destination.form]
+    if destination.output:
+        read = (name for file in files for name in (file.old, file.new, *file.sheets) if name)
+        return _overwriting(destination.output, read) or save(render(files), destination.output)
+    if destination.form == FOR_PEOPLE:
+        from seqcheck.report.comparison import comparison_lines
+
+        return show(comparison_lines(files, encoding_of(sys.stdout)))
+    return send(render(files))
+
+
+def _explain(options: argparse.Namespace) -> int:
+    from seqcheck.checks.explain import explained_kinds, explanation, explanations
+    from seqcheck.report.explanation import render_explanation, render_list
+
+    if options.kind is None:
+        return _ended(FINE, send(render_list(explanations())))
+    one = explanation(options.kind)
+    if one is None:
+        near = difflib.get_close_matches(options.kind, explained_kinds(), 1, 0.6)
+        advice = f"did you mean {near[0]}?" if near else "seqcheck explain lists all"
+        return _ended(UNREADABLE, f"there is no kind of finding {options.kind}; {advice}")
+    return _ended(FINE, send(render_explanation(one)))
 
 
 def _page(options: argparse.Namespace) -> int:
@@ -174,7 +155,7 @@ def _page(options: argparse.Namespace) -> int:
 
     report = _examined(options.file, options.times)
     lines = times_lines if options.command == "times" else margins_lines
-    return _ended(exit_status([report], NEVER), show(lines(report, encoding_of(sys.stdout))))
+    return _ended(exit_status([report], (NEVER,)), show(lines(report, encoding_of(sys.stdout))))
 
 
 def _ended(status: int, trouble: str | None) -> int:
@@ -184,20 +165,46 @@ def _ended(status: int, trouble: str | None) -> int:
     return UNREADABLE
 
 
-def _examined(file: str, sheets: Sequence[str]) -> Report:
+def _examined(file: str, sheets: Sequence[str], reserve_us: int = 0) -> Report:
     from seqcheck.pipeline import examine
 
     with working_on(file, sys.stderr):
-        return examine(file, sheets)
+        return examine(file, sheets, reserve_us)
 
 
-def _refused(files: Sequence[str], sheets: Sequence[str], output: str | None) -> str | None:
+def _all_examined(texts: Sequence[str], options: argparse.Namespace) -> Sequence[Report]:
+    if len(texts) == 1:
+        return [_examined(texts[0], options.times, options.reserve)]
+    from seqcheck.pipeline import examine
+    from seqcheck.workers import examine_all
+
+    with working_through(len(texts), sys.stderr) as advance:
+        one = partial(examine, sheets=tuple(options.times), reserve_us=options.reserve)
+        return examine_all(texts, one, options.jobs, advance)
+
+
+def _refused(files: Sequence[str], inputs: Sequence[str], wanted: Sequence[Destination]) -> str | None:
     """Why these arguments make no sense together."""
     if files.count(STANDARD) > 1:
         return "standard input (-) can be read only once"
-    if output is None:
+    outputs = [one.output for one in wanted if one.output]
+    return next(filter(None, (_overwriting(output, inputs) for output in outputs)), None)
+
+
+def _no_kind(fail_on: Sequence[str]) -> str | None:
+    """What is wrong with a word of ``--fail-on``; the kinds are loaded only where one is not a severity."""
+    words = [severity.value for severity in Severity] + [NEVER]
+    if set(fail_on) <= set(words):
         return None
-    return _overwriting(output, (*files, *sheets)) if output else "--output needs the name of a file"
+    from seqcheck.checks.catalogue import CHECKS
+
+    words += [check.kind for check in CHECKS]
+    unknown = next((word for word in fail_on if word not in words), None)
+    if unknown is None:
+        return None
+    near = difflib.get_close_matches(unknown, words, 1, 0.6)
+    advice = f"did you mean {near[0]}?" if near else f"there are {', '.join(words)}"
+    return f"--fail-on: {unknown} is no severity and no kind of finding; {advice}"
 
 
 def _overwriting(output: str, inputs: Iterable[str]) -> str | None:
@@ -224,5 +231,6 @@ def _about(fault: Exception) -> str:
     trace = fault.__traceback__
     while trace is not None and trace.tb_next is not None:
         trace = trace.tb_next
-    where = f" ({Path(trace.tb_frame.f_code.co_filename).name}:{trace.tb_lineno})" if trace else ""
-    return f"{type(fault).__name__}: {fault}{where}"
+    where = f"{Path(trace.tb_frame.f_code.co_filename).name}:{trace.tb_lineno}" if trace else "?"
+    noted = getattr(fault, "__notes__", (where,))[-1]
+    return f"{type(fault).__name__}: {fault} ({noted})"

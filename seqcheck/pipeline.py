@@ -10,7 +10,7 @@ from collections.abc import Sequence
 from dataclasses import replace
 
 from seqcheck.checks.assumptions import assumptions
-from seqcheck.checks.catalogue import CHECKS
+from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
 from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
 from seqcheck.checks.study import Study
@@ -24,16 +24,17 @@ from seqcheck.machine.findings import Problem, Report
 from seqcheck.machine.model import Machine
 
 
-def examine(name: str, sheets: Sequence[str] = ()) -> Report:
-    """Read, play, prove. ``name`` is a path, or ``-`` for standard input."""
+def examine(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
+    """Read, play, prove. ``name`` is a path, or ``-`` for standard input. What holds, but with less than
+    ``reserve_us`` left, is a finding too."""
     source = read_source(name)
     if isinstance(source, Problem):
         return Report(name, None, problems=(source,))
-    return examine_source(source, sheets)
+    return examine_source(source, sheets, reserve_us)
 
 
-def examine_source(source: Source, sheets: Sequence[str] = ()) -> Report:
-    machine = read_machine(source, sheets)
+def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
+    machine = read_machine(source, sheets, ACCEPTABLE)
     if not isinstance(machine, Machine):
         return Report(source.name, None, problems=machine)
     refused = outside_scope(machine)
@@ -43,13 +44,19 @@ def examine_source(source: Source, sheets: Sequence[str] = ()) -> Report:
     if any(settlement.trace.too_long for settlement in worlds.settlements):
         return _refused(source, machine, (_too_long(machine),))
     studies = [Study(machine, settlement) for settlement in worlds.settlements]
-    return _report(studies, prove(studies, CHECKS), worlds.complete)
+    report = _report(studies, prove(studies, CHECKS, reserve_us), worlds.complete)
+    lines = _lines_of(source)
+    return replace(report, findings=tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings))
 
 
 def _refused(source: Source, machine: Machine, problems: Sequence[Problem]) -> Report:
-    lines = source.text.split("\n")
-    shown = tuple(replace(one, source=lines[one.place.line - 1].rstrip("\r")) for one in problems)
+    lines = _lines_of(source)
+    shown = tuple(replace(one, source=lines[one.place.line - 1]) for one in problems)
     return Report(source.name, machine.name, problems=shown)
+
+
+def _lines_of(source: Source) -> list[str]:
+    return [line.rstrip("\r") for line in source.text.split("\n")]
 
 
 def _too_long(machine: Machine) -> Problem:
@@ -63,12 +70,14 @@ def _too_long(machine: Machine) -> Problem:
 def _report(studies: Sequence[Study], proof: Proof, complete: bool) -> Report:
     """``complete``: every order that is a matter of time was played both ways."""
     typical, machine = studies[0], studies[0].machine
+    findings = tuple(one.finding for one in proof.broken)
+    accepted = any(one.accepted is not None and one.happens and not one.certain for one in findings)
     return Report(
         file=machine.file,
         machine=machine.name,
-        findings=tuple(one.finding for one in proof.broken),
+        findings=findings,
         sheets=machine.sheets,
-        assumptions=assumptions(typical, complete),
+        assumptions=assumptions(typical, complete, accepted, proof.strays),
         cycles=together(cycle_times(study) for study in studies),
         steps=together(step_times(study) for study in studies),
         critical_path=critical_path(typical),

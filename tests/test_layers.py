@@ -19,7 +19,10 @@ RANKS = (
     ("seqcheck.engine",),
     ("seqcheck.checks",),
     ("seqcheck.pipeline",),
+    ("seqcheck.workers",),
+    ("seqcheck.compare",),
     ("seqcheck.report", "seqcheck.chart"),
+    ("seqcheck.arguments",),
     ("seqcheck.commandline",),
     ("seqcheck.__main__",),
 )

@@ -13,6 +13,7 @@ from pathlib import Path
 import pytest
 
 from seqcheck import __version__
+from seqcheck.checks.catalogue import CHECKS
 
 pytestmark = pytest.mark.slow
 
@@ -49,11 +50,17 @@ def test_the_wheel_holds_the_package_and_the_grammar_alone(wheel: Path) -> None:
     names = zipfile.ZipFile(wheel).namelist()
     assert "seqcheck/grammar/steps.lark" in names
     assert "seqcheck/commandline.py" in names
+    assert {f"seqcheck/checks/explanations/{check.kind}.md" for check in CHECKS} <= set(names)
     assert {name.partition("/")[0] for name in names} == {"seqcheck", f"seqcheck-{__version__}.dist-info"}
 
 
 def test_the_command_runs_from_another_folder(scripts: Path, tmp_path: Path) -> None:
     assert run(str(scripts / "seqcheck"), "--version", cwd=tmp_path) == f"seqcheck {__version__}\n"
+
+
+def test_the_installed_command_explains(scripts: Path, tmp_path: Path) -> None:
+    assert run(str(scripts / "seqcheck"), "explain", "short-pulse", cwd=tmp_path).startswith("short-pulse (error): ")
+    assert len(run(str(scripts / "seqcheck"), "explain", cwd=tmp_path).splitlines()) == len(CHECKS) + 2
 
 
 def test_the_installed_package_finds_its_grammar(scripts: Path, tmp_path: Path) -> None:

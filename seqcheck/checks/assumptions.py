@@ -11,7 +11,9 @@ from seqcheck.machine.model import Machine
 from seqcheck.machine.time import WHOLE_SHARE
 
 
-def assumptions(study: Study, complete: bool) -> tuple[str, ...]:
+def assumptions(study: Study, complete: bool, accepted: bool = False, strays: bool = False) -> tuple[str, ...]:
+    """``complete``: every order that is a matter of time was played both ways; ``accepted``: the text accepts
+    something that happens in some runs only; ``strays``: the run at typical times breaks what others keep."""
     machine = study.machine
     return (
         "every time anywhere in its span, anew each time",
@@ -20,6 +22,8 @@ def assumptions(study: Study, complete: bool) -> tuple[str, ...]:
         _start(machine),
         *_signals(machine),
         *_proof(study, complete),
+        *(("played on from what goes wrong at typical times, where other runs may go right",) if strays else ()),
+        *(("what is accepted happens, or does not, as it does at typical times",) if accepted else ()),
     )
 
 

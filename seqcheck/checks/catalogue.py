@@ -9,6 +9,7 @@ from seqcheck.checks import (
     missed_signal,
     overshoot,
     short_pulse,
+    stale_accept,
     stale_signal,
     tight_watchdog,
 )
@@ -33,4 +34,8 @@ CHECKS: tuple[Check, ...] = (
     ENDLESS_LOOP,
     UNREACHABLE,
     UNUSED,
+    stale_accept.CHECK,
 )
+
+#: What a comment may accept: every kind but the one that is about such comments.
+ACCEPTABLE: tuple[str, ...] = tuple(check.kind for check in CHECKS if check is not stale_accept.CHECK)

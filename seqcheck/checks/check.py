@@ -16,11 +16,20 @@ from seqcheck.machine.places import Place
 
 @dataclass(frozen=True, slots=True)
 class Wording:
-    """What to say when an obligation does not hold: the message, and what would mend it. Both may hold ``{by}``, the
-    time by which it fails."""
+    """What to say when an obligation does not hold: the message with ``{by}``, the time by which it fails, and what
+    would mend it, given that time. ``timeless`` is the message without the time, where taking out `` {by}`` does not
+    give it."""
 
     message: str
     mend: Callable[[int], str] | None = None
+    timeless: str | None = None
+
+    def broken(self, by: str) -> str:
+        return self.message.replace("{by}", by)
+
+    def thin(self, left: str) -> str:
+        """What to say when it holds, but with too little time left."""
+        return f"only {left} left: beyond that {self.timeless or self.message.replace(' {by}', '')}"
 
 
 @dataclass(frozen=True, slots=True)

@@ -23,14 +23,14 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 
 def _obligation(target: str, first: Touch, second: Touch) -> Obligation:
     origin, before = second.origin, first.origin
-    message = f"{before.step} and {origin.step} both work {target}, and which comes last is a matter of {{by}}"
+    message = f"{before.step} and {origin.step} both work {target}, and which comes last is a matter of"
     return Obligation(
         target,
         origin.step,
         origin.place,
         first.event,
         second.event,
-        Wording(message, lambda by: f"let {origin.step} wait for {before.step}"),
+        Wording(f"{message} {{by}}", lambda by: f"let {origin.step} wait for {before.step}", f"{message} time"),
         # In one and the same read the reset wins whoever comes first.
         1 if first.effect is not Effect.BEGINS else 0,
     )

@@ -5,8 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.stale_signal import own_move_missed
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
+from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.graph import Event
 from seqcheck.engine.scope import Literal
 from seqcheck.engine.strokes import reached_by
@@ -30,8 +32,11 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 
 
 def _answered(study: Study, visit: Visit, answer: Answer) -> Iterator[Obligation]:
-    """A sensor must outlast its own filter; whatever is asked must stay until the step has gone on."""
+    """A sensor must outlast its own filter; whatever is asked must stay until the step has gone on. (A step that goes
+    on with what was there before its own move is the business of ``stale-signal``.)"""
     assert visit.left is not None
+    if own_move_missed(study, visit, answer) is not None:
+        return
     goes = _goes(study, visit, answer)
     if goes is None:
         return
@@ -42,7 +47,8 @@ def _answered(study: Study, visit: Visit, answer: Answer) -> Iterator[Obligation
 
 
 def _goes(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
-    """When it changes back next, itself and at the input; for a sensor also where a stop has just kept it from that."""
+    """When it changes back next, itself and to the controller (a read may see that at once); for a sensor also where a
+    stop has just kept it from that."""
     sensor = answer.literal.term.subject
     following = study.edge_after(sensor, answer.edge)
     if answer.edge is not None and answer.literal.term.kind is TermKind.SENSOR:
@@ -54,7 +60,10 @@ def _goes(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
                 delay.least + filtered.least, delay.typical + filtered.typical, delay.greatest + filtered.greatest
             )
             return ahead, study.later(Event("input", sensor, "off" if answer.literal.wanted else "on"), ahead, span)
-    return (following.at, following.arrived) if following is not None else None
+    if following is None:
+        return None
+    seen = following.seen is not None and following.lost_to is None
+    return following.at, following.seen if seen and following.seen is not None else following.arrived
 
 
 def _ahead_in_stroke(study: Study, visit: Visit, edge: Edge) -> int | None:
@@ -89,17 +98,19 @@ def _gone_again(study: Study, visit: Visit, literal: Literal) -> Iterator[Obliga
         following = study.edge_after(edge.sensor, edge)
         if edge.value != literal.wanted or edge.seen is None or edge.lost_to is not None or following is None:
             continue
-        longest = study.machine.controller.round.greatest
         steady = visit.step.steady
         seen = edge.seen
         if steady is not None:
-            span = Span(steady, steady + longest // 2, steady + longest)
-            seen = study.later(Event("steady seen", visit.step.name), seen, span)
+            seen = study.later(Event("steady seen", visit.step.name), seen, study.noticed_after(steady))
         rest = [visit.entered.floor] + ([visit.dwell_seen] if visit.dwell_seen is not None else [])
         first = study.last_of(Event("exit seen", visit.step.name), [seen, *rest])
         gone = study.time(following.arrived)
-        if study.time(first) > gone > study.time(visit.entered.event) and (end is None or gone < end):
-            yield _obligation(visit, literal, first, following.arrived)
+        if not study.time(first) > gone > study.time(visit.entered.event) or (end is not None and gone >= end):
+            continue
+        bounces = steady is not None and end is not None
+        if bounces and greatest_separation(study.trace.graph, first, following.arrived) < 0:
+            continue  # Always too short for steady, which is there to sit it out.
+        yield _obligation(visit, literal, first, following.arrived)
 
 
 def _obligation(visit: Visit, literal: Literal, first: int, second: int) -> Obligation:

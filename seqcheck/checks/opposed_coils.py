@@ -48,14 +48,14 @@ def _commanded_at_once(study: Study) -> Iterator[Obligation]:
     for pair in _pairs(study):
         earlier, later = pair.earlier, pair.later
         if earlier.ended is not None and earlier.ended.read is not later.begun.read:
-            message = f"{earlier.target} and {later.target} can be commanded at once, for up to {{by}}"
+            message = f"{earlier.target} and {later.target} can be commanded at once"
             yield Obligation(
                 pair.valve.name,
                 later.begun.step,
                 later.begun.place,
                 earlier.ended.read.event,
                 later.begun.read.event,
-                Wording(message, partial(_mend, study, pair, earlier.ended)),
+                Wording(f"{message}, for up to {{by}}", partial(_mend, study, pair, earlier.ended), message),
             )
 
 
@@ -98,7 +98,10 @@ def _decayed(study: Study, spell: Spell) -> int:
     """When the coil no longer pulls."""
     assert spell.off is not None
     decay = study.machine.coils[spell.target].decay
-    return spell.off if decay == NO_TIME else study.later(Event("decayed", spell.target), spell.off, decay)
+    if decay == NO_TIME:
+        return spell.off
+    delay = ("decay", spell.target, study.spell_number[spell])
+    return study.later(Event("decayed", spell.target), spell.off, decay, delay)
 
 
 def _too_close(study: Study) -> Iterator[Obligation]:

@@ -18,12 +18,12 @@ def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
             if answer.literal.term.kind is not TermKind.SIGNAL:
-                pair = _own_move_missed(study, visit, answer) or _last_change_back(study, visit, answer)
+                pair = own_move_missed(study, visit, answer) or _last_change_back(study, visit, answer)
                 if pair is not None:
                     yield _obligation(visit, answer, *pair)
 
 
-def _own_move_missed(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
+def own_move_missed(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
     """In the played run itself the step has gone on before its own move reached the sensor."""
     sensor = study.machine.sensors.get(answer.literal.term.subject)
     assert visit.left is not None
@@ -49,17 +49,24 @@ def _last_change_back(study: Study, visit: Visit, answer: Answer) -> tuple[int, 
         return None
     others = [other.seen for other in visit.answers if other is not answer]
     waits = [visit.entered.floor, *others] + ([visit.dwell_seen] if visit.dwell_seen is not None else [])
+    steady = visit.step.steady
+    if steady is not None:
+        came = study.edge_before(before)
+        since = came.seen if came is not None and came.seen is not None else 0
+        waits.append(study.later(Event("steady before", visit.step.name), since, study.noticed_after(steady)))
     return before.seen, study.last_of(Event("rest of the exit", visit.step.name), waits)
 
 
 def _obligation(visit: Visit, answer: Answer, first: int, second: int) -> Obligation:
     term, step = answer.literal.term, visit.step
     state = "on" if answer.literal.wanted else "off"
+    message = f"{step.name} can find {term.subject} still {state} from before"
     wording = Wording(
-        f"{step.name} can find {term.subject} still {state} from before, {{by}} too early",
+        f"{message}, {{by}} too early",
         lambda by: (
             f"let the step before last at least {in_time(by)} longer, or wait for {term.subject} to change first"
         ),
+        message,
     )
     return Obligation(term.subject, step.name, term.place, first, second, wording)
 

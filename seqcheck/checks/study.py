@@ -12,8 +12,10 @@ from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
-from seqcheck.engine.graph import OPEN, Event, after
+from seqcheck.engine.bounds import causes_since
+from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
 from seqcheck.engine.settle import Settlement
+from seqcheck.engine.timeline import Draw, typical
 from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
@@ -31,10 +33,13 @@ class _Wait:
 
 
 class Study:
-    def __init__(self, machine: Machine, settlement: Settlement) -> None:
+    def __init__(self, machine: Machine, settlement: Settlement, draw: Draw = typical) -> None:
+        """``draw``: how the delays of the events that the study adds are drawn."""
         self.machine = machine
+        self._draw = draw
         self.settlement = settlement
         self.trace = settlement.trace
+        self._played = len(self.trace.times)
 
     def time(self, event: int) -> int:
         """The typical time of an event, in microseconds from the start."""
@@ -42,10 +47,20 @@ class Study:
 
     # Events that only obligations need -------------------------------------------------------------------------
 
-    def later(self, event: Event, cause: int, span: Span) -> int:
-        """The moment this long after another one."""
-        self.trace.times.append(self.trace.times[cause] + span.typical)
-        return self.trace.graph.add(event, (after(cause, span),))
+    def comes(self, event: int) -> bool:
+        """Whether an event really came in the play; those that the study adds do."""
+        return event >= self._played or event in self.trace.happened
+
+    def later(self, event: Event, cause: int, span: Span, delay: DelayName | None = None) -> int:
+        """The moment this long after another one; ``delay`` is its name where the machine draws it."""
+        time = span.typical if delay is None else self._draw(*delay, span)
+        self.trace.times.append(self.trace.times[cause] + time)
+        return self.trace.graph.add(event, (Arc(cause, span, delay),))
+
+    def noticed_after(self, time: int) -> Span:
+        """A time, and the wait for the read that notices that it is over."""
+        longest = self.machine.controller.round.greatest
+        return Span(time, time + longest // 2, time + longest)
 
     def last_of(self, event: Event, causes: Sequence[int]) -> int:
         """The moment at which all of these have come."""
@@ -71,6 +86,11 @@ class Study:
                 if spell.off is not None:
                     found[spell.off] = (spell, following)
         return found
+
+    @cached_property
+    def spell_number(self) -> dict[Spell, int]:
+        """How many spells of the same coil or output came before."""
+        return {spell: number for spells in self.trace.spells.values() for number, spell in enumerate(spells)}
 
     def spell_at(self, switching: int) -> tuple[Spell, Spell | None]:
         return self._spell_by_event[switching]
@@ -215,8 +235,11 @@ class Study:
         return any(self.comes_first(left.event, read.event) for left, _ in self.waits_within(stroke) for read in reads)
 
     def comes_first(self, one: int, other: int) -> bool:
-        """Whether causality alone puts an event at or before another one."""
-        return one == other or self.trace.graph.dominates(one, other)
+        """Whether causality alone puts an event at or before another one: it is among its causes."""
+        graph = self.trace.graph
+        if one == other or graph.dominates(one, other):
+            return True
+        return one < other and one in causes_since(graph, graph.common_dominator(one, other), [other])
 
     def waits_within(self, stroke: Stroke) -> list[tuple[Read, Edge]]:
         """The reads that left a step on a sensor that this stroke had brought on or off, with its change."""

@@ -12,6 +12,7 @@ from collections.abc import Iterable, Iterator
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import Rows, causes_since, greatest_separations, is_open, separation_table
+from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Read, Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Duration, PathPart
@@ -104,8 +105,8 @@ def _cycles(study: Study) -> Iterator[_Interval]:
     trace, settlement = study.trace, study.settlement
     if study.machine.sequences[0].once:
         if trace.finished and all(visit.left is not None for visit in trace.visits) and trace.visits:
-            ends = [visit.left.event for visit in trace.visits if visit.left is not None]
-            yield _begin(trace.cycles[0]), max(ends, key=study.time)
+            ends = [visit.left.event for visit in trace.visits if visit.left is not None and not visit.left.entered]
+            yield _begin(trace.cycles[0]), study.last_of(Event("end", ""), ends)
         return
     for number in range(_first_cycle(study), settlement.last):
         yield _begin(trace.cycles[number]), trace.cycles[number + 1].event

@@ -6,10 +6,11 @@ and its sheets in one go.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Collection, Iterator, Sequence
 from pathlib import Path
 from typing import TypeVar
 
+from seqcheck.language.accepts import accepts_of
 from seqcheck.language.cylinders import resolve_cylinder, resolve_sensor
 from seqcheck.language.devices import (
     refuse_circles,
@@ -44,6 +45,7 @@ from seqcheck.language.syntax import (
 )
 from seqcheck.language.times import CONTROLLER, Times
 from seqcheck.language.valves import resolve_coil, resolve_valve
+from seqcheck.machine.accepts import Accept
 from seqcheck.machine.findings import Problem
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
@@ -51,19 +53,23 @@ from seqcheck.machine.places import Place
 _Single = TypeVar("_Single", MachineText, ControllerText)
 
 
-def read_machine(source: Source, sheets: Sequence[str] = ()) -> Machine | tuple[Problem, ...]:
-    """The machine of a text. ``sheets`` are files of measured times; a later one wins, all win over the text. Problems
-    come by file in the order of reading, then by place, each with its line of text."""
+def read_machine(
+    source: Source, sheets: Sequence[str] = (), kinds: Collection[str] | None = None
+) -> Machine | tuple[Problem, ...]:
+    """The machine of a text. ``sheets`` are files of measured times; a later one wins, all win over the text.
+    ``kinds`` are those that a comment may accept (any, if None). Problems come by file in the order of reading, then
+    by place, each with its line of text."""
     problems = Problems()
     problems.opened(source.name, source.text)
     parsed = parse_text(source, problems)
+    accepts = accepts_of(source, kinds, problems)
     times = Times(problems)
     registry = Registry(parsed, times, problems)
     _lay_text(parsed.statements, times)
     files = _sheet_files(source, parsed, sheets)
     for file, asked_at in files:
         _lay_sheet(registry, file, asked_at)
-    machine = _resolve(source, parsed, registry, tuple(_sheet_names(parsed, sheets)))
+    machine = _resolve(source, parsed, registry, tuple(_sheet_names(parsed, sheets)), accepts)
     return problems.sorted() if len(problems) else machine
 
 
@@ -128,7 +134,9 @@ def _is_known(registry: Registry, entry: SheetEntry) -> bool:
 # Devices, sequences, rules
 
 
-def _resolve(source: Source, parsed: Parsed, registry: Registry, sheets: tuple[str, ...]) -> Machine:
+def _resolve(
+    source: Source, parsed: Parsed, registry: Registry, sheets: tuple[str, ...], accepts: tuple[Accept, ...]
+) -> Machine:
     devices = registry.devices
     named = name_steps(registry)
     valves = {name: resolve_valve(registry, text) for name, text in devices.items() if isinstance(text, ValveText)}
@@ -179,6 +187,7 @@ def _resolve(source: Source, parsed: Parsed, registry: Registry, sheets: tuple[s
         sequences,
         tuple(rule for rule in rules if rule is not None),
         sheets,
+        accepts,
     )
 
 

@@ -24,10 +24,11 @@ class Source:
     text: str
 
 
-def read_source(name: str) -> Source | Problem:
-    """The text of a file, ``-`` for standard input; a Problem where there is none to be had."""
+def read_source(name: str, most: int = GREATEST_SIZE) -> Source | Problem:
+    """The text of a file, ``-`` for standard input; a Problem where there is none to be had, or it has over ``most``
+    bytes."""
     try:
-        data = _read_bytes(name)
+        data = _read_bytes(name, most)
     except FileNotFoundError:
         return _refuse(name, "there is no such file", "check the name and the folder")
     except IsADirectoryError:
@@ -37,15 +38,14 @@ def read_source(name: str) -> Source | Problem:
     except (OSError, ValueError) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
         return _refuse(name, f"the file cannot be read: {reason}", None)
-    return decode(name, data)
+    return decode(name, data, most)
 
 
-def decode(name: str, data: bytes) -> Source | Problem:
-    """Bytes as a text: UTF-8, with or without a byte order mark, at most 16 MB, without NUL bytes."""
-    if len(data) > GREATEST_SIZE:
-        return _refuse(
-            name, "the file is over 16 MB", "a sequence is a text of some kilobytes: is this the right file?"
-        )
+def decode(name: str, data: bytes, most: int = GREATEST_SIZE) -> Source | Problem:
+    """Bytes as a text: UTF-8, with or without a byte order mark, at most so many bytes, without NUL bytes."""
+    if len(data) > most:
+        advice = "a sequence is a text of some kilobytes: is this the right file?"
+        return _refuse(name, f"the file is over {most // 1024**2} MB", advice)
     try:
         text = data.decode("utf-8-sig")
     except UnicodeDecodeError as error:
@@ -57,11 +57,11 @@ def decode(name: str, data: bytes) -> Source | Problem:
     return Source(name, text)
 
 
-def _read_bytes(name: str) -> bytes:
+def _read_bytes(name: str, most: int) -> bytes:
     if name == "-":
-        return sys.stdin.buffer.read(GREATEST_SIZE + 1)
+        return sys.stdin.buffer.read(most + 1)
     with Path(name).open("rb") as file:
-        return file.read(GREATEST_SIZE + 1)
+        return file.read(most + 1)
 
 
 def _refuse(name: str, message: str, advice: str | None, before: str = "") -> Problem:

@@ -40,7 +40,8 @@ class Moment:
 class Finding:
     """``margin_us`` is negative where something breaks by so much, None where no time is involved or where an
     outside wait leaves it open. ``replayed`` is None where there is no run to play. ``certain``: every timing
-    shows it. ``mend`` says what would put it right."""
+    shows it. ``mend`` says what would put it right. ``accepted``: the reason that the text gives for living with it;
+    then it is shown, but does not count. ``source`` is the line of text at ``place``, None where nobody has it."""
 
     kind: str
     severity: Severity
@@ -53,6 +54,15 @@ class Finding:
     replayed: bool | None
     run: tuple[Moment, ...]
     mend: str | None
+    accepted: str | None = None
+    source: str | None = None
+
+    @property
+    def happens(self) -> bool:
+        """Whether it comes about in a run; what is left out, or merely thin, does not. Where it is only possible, the
+        other figures of a report hold for the runs in which it comes about, or does not, as it does at typical times.
+        """
+        return self.severity is Severity.ERROR or bool(self.run)
 
 
 @dataclass(frozen=True, slots=True)
@@ -116,9 +126,15 @@ class Report:
     margins: tuple[Margin, ...] = ()
 
     @property
+    def counting(self) -> tuple[Finding, ...]:
+        """The findings that the text does not accept."""
+        return tuple(finding for finding in self.findings if finding.accepted is None)
+
+    @property
     def verdict(self) -> str:
-        """``unreadable``, ``findings`` where an error or a warning was found, else ``clean``."""
+        """``unreadable``, ``findings`` where an error or a warning was found that the text does not accept, else
+        ``clean``."""
         if self.problems:
             return "unreadable"
-        worst = {finding.severity for finding in self.findings}
+        worst = {finding.severity for finding in self.counting}
         return "findings" if worst & {Severity.ERROR, Severity.WARNING} else "clean"

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
+from seqcheck.machine.accepts import Accept
 from seqcheck.machine.devices import Coil, Controller, Cylinder, Flag, Island, Output, Sensor, Signal, Valve
 from seqcheck.machine.rules import Rule
 from seqcheck.machine.steps import Choose, Item, Repeat, Sequence, Step, Together
@@ -28,6 +29,7 @@ class Machine:
     sequences: tuple[Sequence, ...]
     rules: tuple[Rule, ...]
     sheets: tuple[str, ...]
+    accepts: tuple[Accept, ...] = ()
 
 
 def items_of(items: tuple[Item, ...]) -> Iterator[Item]:

@@ -6,7 +6,7 @@ Takes plain ``Finding`` values; gives lines of a page.
 from __future__ import annotations
 
 from seqcheck.language.durations import format_duration
-from seqcheck.machine.findings import Finding, Moment, Severity
+from seqcheck.machine.findings import Finding, Moment, Report, Severity
 from seqcheck.report.amounts import counted, milliseconds
 from seqcheck.report.layout import Column, Line, Tone, labelled, paragraph, table
 
@@ -37,13 +37,31 @@ def finding_lines(finding: Finding) -> tuple[Line, ...]:
     )
 
 
+def accepted_lines(report: Report) -> tuple[Line, ...]:
+    """What was found and is accepted, with the reasons: one paragraph each."""
+    return tuple(
+        line
+        for finding in report.findings
+        if finding.accepted is not None
+        for line in paragraph(f"{headline(finding)}{_amount(finding)}: {finding.accepted}", hanging=_INDENT)
+    )
+
+
 def headline(finding: Finding) -> str:
-    """``a.steps:33:20: error (possible) short-pulse: V3, step main.tap``."""
+    """``a.steps:33:20: error (possible) short-pulse: V3, step main.tap``; accepted ones say so instead."""
     place = finding.place
     sureness = "" if finding.severity is Severity.NOTE else " (certain)" if finding.certain else " (possible)"
+    rank = f"{finding.severity.value}{sureness}" if finding.accepted is None else "accepted"
     step = f", step {finding.step}" if finding.step and finding.step != finding.subject else ""
     where = f"{place.file}:{place.line}:{place.column}"
-    return f"{where}: {finding.severity.value}{sureness} {finding.kind}: {finding.subject}{step}"
+    return f"{where}: {rank} {finding.kind}: {finding.subject}{step}"
+
+
+def _amount(finding: Finding) -> str:
+    if finding.margin_us is None:
+        return ""
+    amount = format_duration(abs(finding.margin_us))
+    return f" (broken by {amount})" if finding.margin_us < 0 else f" (only {amount} left)"
 
 
 def _note_lines(finding: Finding) -> tuple[Line, ...]:

@@ -5,6 +5,7 @@ Takes ``Report`` values; gives JSON text (RFC 8259), UTF-8 once written, the sam
 
 from __future__ import annotations
 
+import io
 import json
 import re
 from collections.abc import Sequence
@@ -21,9 +22,23 @@ Json = dict[str, object]
 
 def render_json(reports: Sequence[Report]) -> str:
     """The whole object as indented text that ends with a newline."""
-    whole = {"format": FORMAT, "version": VERSION, "reports": [report_object(report) for report in reports]}
-    text = json.dumps(whole, ensure_ascii=False, indent=2, allow_nan=False)
-    return _LONE_SURROGATE.sub("\ufffd", text) + "\n"
+    head = written({"format": FORMAT, "version": VERSION}).removesuffix("\n}")
+    # One by one: the objects of thousands of reports take many times the memory of their text.
+    parts = [written(report_object(report)).replace("\n", "\n    ") for report in reports]
+    between = ",\n    "
+    body = f"[\n    {between.join(parts)}\n  ]" if parts else "[]"
+    return f'{head},\n  "reports": {body}\n}}\n'
+
+
+def written(value: object) -> str:
+    """As indented text that UTF-8 can carry."""
+    text = io.StringIO()
+    json.dump(value, text, ensure_ascii=False, indent=2, allow_nan=False)
+    return without_lone_surrogates(text.getvalue())
+
+
+def without_lone_surrogates(text: str) -> str:
+    return _LONE_SURROGATE.sub("\ufffd", text)
 
 
 def report_object(report: Report) -> Json:
@@ -43,6 +58,8 @@ def report_object(report: Report) -> Json:
 
 
 def _finding(finding: Finding) -> Json:
+    """``accepted`` is there only where it is: the reason that the text gives."""
+    accepted: Json = {} if finding.accepted is None else {"accepted": finding.accepted}
     return {
         "kind": finding.kind,
         "severity": finding.severity.value,
@@ -55,6 +72,7 @@ def _finding(finding: Finding) -> Json:
         "margin_us": finding.margin_us,
         "replayed": finding.replayed,
         "witness": [{"t_us": moment.time_us, "event": moment.event} for moment in finding.run],
+        **accepted,
     }
 
 

@@ -102,19 +102,20 @@ def plain_character(character: str, encoding: str) -> str:
 def plain_report(report: Report, encoding: str = "utf-8") -> Report:
     """The report with every string in it made plain, but for the source lines of its problems: a place in them
     counts their own characters."""
-    plained: Report = _plain_value(report, encoding)
+    plained: Report = plain_record(report, encoding)
     return plained
 
 
-def _plain_value(value: Any, encoding: str) -> Any:
+def plain_record(value: Any, encoding: str) -> Any:
+    """The same for any record that is made of records, tuples and strings."""
     if isinstance(value, str):
         return plain(value, encoding)
     if isinstance(value, tuple):
-        return tuple(_plain_value(part, encoding) for part in value)
+        return tuple(plain_record(part, encoding) for part in value)
     if not dataclasses.is_dataclass(value) or isinstance(value, type):
         return value
     changed = {
-        field.name: _plain_value(getattr(value, field.name), encoding)
+        field.name: plain_record(getattr(value, field.name), encoding)
         for field in dataclasses.fields(value)
         if not (isinstance(value, Problem) and field.name == "source")
     }

@@ -1,5 +1,7 @@
 """The short account of one report: verdict, cycle times, tightest margin and handover, and what it was proved under.
 
+What the text accepts is counted apart, and its margins are not the tightest.
+
 Takes a plain ``Report``; gives lines of a page, few of them: a healthy machine's whole page is to stay under ten.
 """
 
@@ -43,14 +45,24 @@ def verdict(report: Report) -> str:
     """The verdict in words, with the count of what was found."""
     if report.problems:
         return f"unreadable: {counted(len(report.problems), 'error')} in the input, so no timing was proved"
+    accepted = len(report.findings) - len(report.counting)
     if report.verdict == "clean":
+        if happening := sum(finding.happens for finding in report.findings):
+            return f"clean but for {counted(happening, 'accepted finding')}"
         return "clean for all times in tolerance"
     counts = [
         counted(count, severity.value)
         for severity in Severity
-        if (count := sum(finding.severity is severity for finding in report.findings))
+        if (count := sum(finding.severity is severity for finding in report.counting))
     ]
+    counts += [f"{accepted} accepted"] if accepted else []
     return f"findings: {', '.join(counts)}"
+
+
+def accepted_margins(report: Report) -> frozenset[Margin]:
+    """The margins behind findings that the text accepts."""
+    accepted = {(one.kind, one.subject, one.step, one.place) for one in report.findings if one.accepted is not None}
+    return frozenset(one for one in report.margins if (one.kind, one.subject, one.step, one.place) in accepted)
 
 
 def worst_handover(handovers: tuple[Handover, ...]) -> Handover:
@@ -62,7 +74,8 @@ def _rows(report: Report) -> list[tuple[str, str]]:
     rows: list[tuple[str, str]] = []
     if report.cycles:
         rows.append(("Cycle", "; ".join(f"{name} {spelled_range(time)}" for name, time in report.cycles)))
-    known = [margin for margin in report.margins if margin.margin_us is not None]
+    accepted = accepted_margins(report)
+    known = [margin for margin in report.margins if margin.margin_us is not None and margin not in accepted]
     if known:
         rows.append(("Tightest", _spelled_margin(min(known, key=lambda margin: margin.margin_us or 0))))
     if report.handovers:
@@ -71,7 +84,7 @@ def _rows(report: Report) -> list[tuple[str, str]]:
 
 
 def _tone(report: Report) -> Tone:
-    if any(finding.severity is Severity.ERROR for finding in report.findings):
+    if any(finding.severity is Severity.ERROR for finding in report.counting):
         return Tone.ERROR
     return Tone.WARNING
 

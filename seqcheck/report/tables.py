@@ -10,7 +10,7 @@ from seqcheck.machine.findings import Duration, Handover, Margin, Report
 from seqcheck.report.amounts import OPEN, counted, decimals_of, milliseconds
 from seqcheck.report.layout import BLANK, Column, Line, Tone, labelled, paragraph, table
 from seqcheck.report.plain import plain_report
-from seqcheck.report.summary import proved_under_lines, title
+from seqcheck.report.summary import accepted_margins, proved_under_lines, title
 from seqcheck.report.text import report_lines
 
 
@@ -35,7 +35,7 @@ def margins_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
         return report_lines(shown, encoding)
     return (
         *_heading(shown),
-        *_section("Margins, tightest first (ms; below 0: broken by so much)", _margins(shown.margins)),
+        *_section("Margins, tightest first (ms; below 0: broken by so much)", _margins(shown)),
         *_section("Handovers from coil to opposed coil (ms)", _handovers(shown.handovers)),
         *_closing(shown, any(margin.margin_us is None for margin in shown.margins)),
     )
@@ -52,9 +52,11 @@ def _section(title: str, lines: tuple[Line, ...]) -> tuple[Line, ...]:
 def _closing(report: Report, has_open: bool) -> tuple[Line, ...]:
     """What the figures rest on. They hold for runs in which nothing that was found comes about."""
     rows = [(OPEN, "a signal from outside decides")] if has_open else []
-    if report.verdict != "clean":
-        found = counted(len(report.findings), "finding")
-        rows.append(("But", f"{found}: the figures hold only for runs without them; see seqcheck check"))
+    if found := [finding for finding in report.findings if finding.happens]:
+        accepted = sum(finding.accepted is not None for finding in found)
+        how = f" ({accepted} accepted)" if accepted else ""
+        count = counted(len(found), "finding")
+        rows.append(("But", f"{count}{how}: the figures hold only for runs without them; see seqcheck check"))
     return (BLANK, *labelled(rows), *proved_under_lines(report))
 
 
@@ -83,17 +85,24 @@ def _critical_path(report: Report) -> tuple[Line, ...]:
     return table(columns, rows)
 
 
-def _margins(margins: tuple[Margin, ...]) -> tuple[Line, ...]:
-    if not margins:
+def _margins(report: Report) -> tuple[Line, ...]:
+    """What the text accepts is marked, in a column that is there only then."""
+    if not report.margins:
         return ()
-    ordered = sorted(margins, key=lambda margin: (margin.margin_us is None, margin.margin_us or 0))
+    accepted = accepted_margins(report)
+    ordered = sorted(report.margins, key=lambda margin: (margin.margin_us is None, margin.margin_us or 0))
     amounts = milliseconds([margin.margin_us for margin in ordered])
-    columns = (Column("margin", right=True), Column("kind"), Column("subject"), Column("step"), Column("line", True))
+    columns = [Column("margin", right=True), Column("kind"), Column("subject"), Column("step"), Column("line", True)]
+    columns += [Column("accepted")] if accepted else []
     rows = [
-        (amount, margin.kind, margin.subject, margin.step or "", str(margin.place.line))
+        (amount, margin.kind, margin.subject, margin.step or "", str(margin.place.line), *_mark(margin, accepted))
         for amount, margin in zip(amounts, ordered, strict=True)
     ]
     return table(columns, rows)
+
+
+def _mark(margin: Margin, accepted: frozenset[Margin]) -> tuple[str, ...]:
+    return ("yes" if margin in accepted else "",) if accepted else ()
 
 
 def _handovers(handovers: tuple[Handover, ...]) -> tuple[Line, ...]:

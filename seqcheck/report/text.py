@@ -9,7 +9,7 @@ from collections.abc import Sequence
 
 from seqcheck.machine.findings import Finding, Report, Severity
 from seqcheck.report.amounts import counted
-from seqcheck.report.findings import finding_lines
+from seqcheck.report.findings import accepted_lines, finding_lines
 from seqcheck.report.layout import BLANK, Line, Tone, page, paragraph
 from seqcheck.report.plain import plain_report
 from seqcheck.report.problems import problem_lines
@@ -35,8 +35,10 @@ def text_lines(reports: Sequence[Report], encoding: str = "utf-8") -> tuple[Line
 def report_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
     """One file. A report without errors and warnings has no blank lines, so that it stays short."""
     blocks = [problem_lines(problem, encoding) for problem in report.problems]
-    blocks += [finding_lines(finding) for finding in report.findings]
-    airy = bool(report.problems) or any(_is_long(finding) for finding in report.findings)
+    blocks += [finding_lines(finding) for finding in report.counting]
+    accepted = accepted_lines(report)
+    blocks += [accepted] if accepted else []
+    airy = bool(report.problems) or any(_is_long(finding) for finding in report.counting)
     lines = list(opening_lines(report))
     for block in (*blocks, summary_lines(report)):
         lines.extend((BLANK,) if airy else ())

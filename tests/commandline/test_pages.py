@@ -3,7 +3,8 @@ from __future__ import annotations
 import pytest
 
 from seqcheck import __version__
-from seqcheck.commandline import SAFETY, main
+from seqcheck.arguments import SAFETY
+from seqcheck.commandline import main
 from seqcheck.report.layout import page
 from seqcheck.report.tables import margins_lines, times_lines
 from tests.commandline.conftest import Asked
@@ -31,7 +32,17 @@ def test_version(capsys: Output) -> None:
     assert capsys.readouterr().out == f"seqcheck {__version__}\n"
 
 
-@pytest.mark.parametrize("arguments", [["--help"], ["check", "--help"], ["times", "--help"], ["margins", "--help"]])
+@pytest.mark.parametrize(
+    "arguments",
+    [
+        ["--help"],
+        ["check", "--help"],
+        ["times", "--help"],
+        ["margins", "--help"],
+        ["compare", "--help"],
+        ["explain", "--help"],
+    ],
+)
 def test_help_says_what_the_tool_is_not(arguments: list[str], capsys: Output) -> None:
     assert main(arguments) == 0
     text = capsys.readouterr().out

@@ -1,0 +1,17 @@
+"""Findings that a text says it can live with."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from seqcheck.machine.places import Place
+
+
+@dataclass(frozen=True, slots=True)
+class Accept:
+    """A comment ``# accept KIND: reason``. ``line`` is the one whose findings it accepts; ``place`` is its own."""
+
+    kind: str
+    reason: str
+    line: int
+    place: Place
