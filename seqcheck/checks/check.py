@@ -1,4 +1,4 @@
-"""What a check is: a finding kind with the obligations that it states of a study, or the findings that it sees there.
+"""What a check is: a finding kind with the obligations that it states of a study, or what it sees there without times.
 
 An obligation says that one event has to come before another, by at least so much. Checks state them; ``prove`` bounds
 them all at once and makes findings of those that do not hold.
@@ -10,7 +10,7 @@ from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 
 from seqcheck.checks.study import Study
-from seqcheck.machine.findings import Finding, Severity
+from seqcheck.machine.findings import Finding, Moment, Severity
 from seqcheck.machine.places import Place
 
 
@@ -47,11 +47,25 @@ class Obligation:
     lever: int | None = None
 
 
+@dataclass(frozen=True, slots=True)
+class Sight:
+    """What a check sees without holding times against each other. ``run``: what happens at typical times, where that
+    shows it."""
+
+    subject: str
+    step: str | None
+    place: Place
+    message: str
+    run: tuple[Moment, ...] = ()
+    mend: str | None = None
+    certain: bool = True
+
+
 def no_obligations(study: Study) -> Iterable[Obligation]:
     return ()
 
 
-def no_findings(study: Study) -> Iterable[Finding]:
+def no_sights(study: Study) -> Iterable[Sight]:
     return ()
 
 
@@ -63,4 +77,19 @@ class Check:
     severity: Severity
     title: str
     obligations: Callable[[Study], Iterable[Obligation]] = no_obligations
-    findings: Callable[[Study], Iterable[Finding]] = no_findings
+    sights: Callable[[Study], Iterable[Sight]] = no_sights
+
+    def finding(self, sight: Sight) -> Finding:
+        return Finding(
+            kind=self.kind,
+            severity=self.severity,
+            certain=sight.certain,
+            subject=sight.subject,
+            step=sight.step,
+            place=sight.place,
+            message=sight.message,
+            margin_us=None,
+            replayed=True if sight.run else None,
+            run=sight.run,
+            mend=sight.mend,
+        )

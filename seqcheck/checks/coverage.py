@@ -4,22 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
 
-from seqcheck.checks.check import Check
+from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.study import Study
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import FollowingSignal, OnConditions
-from seqcheck.machine.findings import Finding, Severity
+from seqcheck.machine.findings import Severity
 from seqcheck.machine.model import steps_of
-from seqcheck.machine.places import Place
 from seqcheck.machine.rules import CycleLimit, Never
 from seqcheck.machine.steps import Step
 
 
-def _finding(kind: str, severity: Severity, subject: str, step: str | None, place: Place, message: str) -> Finding:
-    return Finding(kind, severity, True, subject, step, place, message, None, None, (), None)
-
-
-def _unreachable(study: Study) -> Iterator[Finding]:
+def _unreachable(study: Study) -> Iterator[Sight]:
     """What only a dead end keeps from being entered is told with the dead end."""
     if study.trace.finished and any(visit.left is None for visit in study.trace.visits):
         return
@@ -29,16 +24,16 @@ def _unreachable(study: Study) -> Iterator[Finding]:
         if missing:
             more = f", nor {len(missing) - 1} more" if len(missing) > 1 else ""
             message = f"no run enters {missing[0].name}{more}"
-            yield _finding("unreachable", Severity.WARNING, missing[0].name, missing[0].name, missing[0].place, message)
+            yield Sight(missing[0].name, missing[0].name, missing[0].place, message)
 
 
-def _no_watchdog(study: Study) -> Iterator[Finding]:
+def _no_watchdog(study: Study) -> Iterator[Sight]:
     for sequence in study.machine.sequences:
         bare = [step.name for step in steps_of(sequence) if _waits_for_sensor(study, step) and step.watchdog is None]
         if bare:
             verb = "waits" if len(bare) == 1 else "wait"
             message = f"{', '.join(bare)} {verb} for sensors without a watchdog"
-            yield _finding("no-watchdog", Severity.NOTE, sequence.name, None, sequence.place, message)
+            yield Sight(sequence.name, None, sequence.place, message)
 
 
 def _waits_for_sensor(study: Study, step: Step) -> bool:
@@ -49,7 +44,7 @@ def _waits_for_sensor(study: Study, step: Step) -> bool:
     )
 
 
-def _unused(study: Study) -> Iterator[Finding]:
+def _unused(study: Study) -> Iterator[Sight]:
     machine = study.machine
     used = set(_used_names(study))
     idle = [
@@ -62,7 +57,7 @@ def _unused(study: Study) -> Iterator[Finding]:
         idle.sort()
         verb = "is" if len(idle) == 1 else "are"
         message = f"{', '.join(name for _, name in idle)} {verb} never used"
-        yield _finding("unused", Severity.NOTE, idle[0][1], None, idle[0][0], message)
+        yield Sight(idle[0][1], None, idle[0][0], message)
 
 
 def _used_names(study: Study) -> Iterable[str]:
@@ -89,6 +84,6 @@ def _used_names(study: Study) -> Iterable[str]:
                     yield from (term.subject for term in terms_of(condition))
 
 
-UNREACHABLE = Check("unreachable", Severity.WARNING, "a step that no run enters", findings=_unreachable)
-NO_WATCHDOG = Check("no-watchdog", Severity.NOTE, "steps wait for sensors without a watchdog", findings=_no_watchdog)
-UNUSED = Check("unused", Severity.NOTE, "coils, outputs, sensors or signals never used", findings=_unused)
+UNREACHABLE = Check("unreachable", Severity.WARNING, "a step that no run enters", sights=_unreachable)
+NO_WATCHDOG = Check("no-watchdog", Severity.NOTE, "steps wait for sensors without a watchdog", sights=_no_watchdog)
+UNUSED = Check("unused", Severity.NOTE, "coils, outputs, sensors or signals never used", sights=_unused)

@@ -10,7 +10,7 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from functools import partial
 
-from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time, round_down
@@ -18,7 +18,7 @@ from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Origin, Spell
 from seqcheck.machine.devices import ControllerKind, Valve
-from seqcheck.machine.findings import Finding, Handover, Severity
+from seqcheck.machine.findings import Handover, Severity
 from seqcheck.machine.steps import CommandKind
 from seqcheck.machine.time import NO_TIME
 
@@ -67,7 +67,7 @@ def _mend(study: Study, pair: _Pair, ended: Origin, by: int) -> str:
     return f"end the command of {coil} first"
 
 
-def _never_ended(study: Study) -> Iterator[Finding]:
+def _never_ended(study: Study) -> Iterator[Sight]:
     """The earlier coil is commanded for good: no time is needed to see that. (What has just not ended when play stops
     has ended one cycle before.)"""
     told = set()
@@ -79,19 +79,10 @@ def _never_ended(study: Study) -> Iterator[Finding]:
             continue
         if earlier.ended is None and later.begun.place not in told:
             told.add(later.begun.place)
-            yield Finding(
-                kind="opposed-coils",
-                severity=Severity.ERROR,
-                certain=True,
-                subject=pair.valve.name,
-                step=later.begun.step,
-                place=later.begun.place,
-                message=f"{later.target} is commanded while {earlier.target} still is",
-                margin_us=None,
-                replayed=True,
-                run=narrate_typical(study, earlier.begun.read.event, later.on),
-                mend=f"end the command of {earlier.target} first",
-            )
+            run = narrate_typical(study, earlier.begun.read.event, later.on)
+            message = f"{later.target} is commanded while {earlier.target} still is"
+            mend = f"end the command of {earlier.target} first"
+            yield Sight(pair.valve.name, later.begun.step, later.begun.place, message, run, mend)
 
 
 def _decayed(study: Study, spell: Spell) -> int:

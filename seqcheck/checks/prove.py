@@ -109,7 +109,7 @@ def _prove_one(study: Study, checks: Sequence[Check], reserve_us: int) -> Proof:
     turn = _turning_point(study, (one for _, one in stated), rows)
     broken = [_broken(study, check, one, margin, rows, turn) for check, one, margin in tightest.values() if margin < 0]
     thin = [_thin(study, *found, reserve_us) for found in tightest.values() if 0 <= found[2] < reserve_us]
-    seen = [finding for check in checks for finding in check.findings(study)]
+    seen = [check.finding(sight) for check in checks for sight in check.sights(study)]
     if turn is not None:
         seen = [one if one.severity is Severity.NOTE else replace(one, certain=False) for one in seen]
     broken += [Broken(finding, None) for finding in (*thin, *seen)]

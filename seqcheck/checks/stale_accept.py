@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import replace
 
-from seqcheck.checks.check import Check
+from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.standstill import DEAD_END, ENDLESS_LOOP
 from seqcheck.machine.accepts import Accept
 from seqcheck.machine.findings import Finding, Severity
@@ -32,16 +32,6 @@ def stale_accepts(findings: Iterable[Finding], accepts: Iterable[Accept]) -> tup
 
 
 def _stale(accept: Accept) -> Finding:
-    return Finding(
-        kind=CHECK.kind,
-        severity=CHECK.severity,
-        certain=True,
-        subject=accept.kind,
-        step=None,
-        place=accept.place,
-        message=f"this comment accepts nothing: there is no {accept.kind} in the line that it speaks of",
-        margin_us=None,
-        replayed=None,
-        run=(),
-        mend="take the comment out, or put it on the finding's line or right before it",
-    )
+    message = f"this comment accepts nothing: there is no {accept.kind} in the line that it speaks of"
+    mend = "take the comment out, or put it on the finding's line or right before it"
+    return CHECK.finding(Sight(accept.kind, None, accept.place, message, mend=mend))

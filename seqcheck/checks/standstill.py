@@ -4,17 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from seqcheck.checks.check import Check
+from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.trace import Visit
 from seqcheck.machine.conditions import TermKind
-from seqcheck.machine.findings import Finding, Moment, Severity
+from seqcheck.machine.findings import Moment, Severity
 from seqcheck.machine.model import steps_of
 
 
-def _dead_ends(study: Study) -> Iterator[Finding]:
+def _dead_ends(study: Study) -> Iterator[Sight]:
     """Once nothing is due any more, every step that is still active waits for ever: a signal from outside would be
     due. A watchdog that would then expire is no finding of its own."""
     if not study.trace.finished:
@@ -27,19 +27,10 @@ def _dead_ends(study: Study) -> Iterator[Finding]:
     for visit in study.trace.visits:
         if visit.left is None:
             waits = ", ".join(_missing(study, visit)) or "its exit"
-            yield Finding(
-                kind="dead-end",
-                severity=Severity.ERROR,
-                certain=True,
-                subject=visit.step.name,
-                step=visit.step.name,
-                place=visit.step.place,
-                message=f"{visit.step.name} is never left: it waits for {waits}, and nothing more happens{never}",
-                margin_us=None,
-                replayed=True,
-                run=narrate_typical(study, visit.entered.event, last),
-                mend=None,
-            )
+            name = visit.step.name
+            message = f"{name} is never left: it waits for {waits}, and nothing more happens{never}"
+            run = narrate_typical(study, visit.entered.event, last)
+            yield Sight(name, name, visit.step.place, message, run)
 
 
 def _missing(study: Study, visit: Visit) -> Iterator[str]:
@@ -51,7 +42,7 @@ def _missing(study: Study, visit: Visit) -> Iterator[str]:
             yield term.subject if literal.wanted else f"not {term.subject}"
 
 
-def _endless(study: Study) -> Iterator[Finding]:
+def _endless(study: Study) -> Iterator[Sight]:
     """Steps without end at one instant, or a whole cycle that can go by in no time, waiting for nobody outside."""
     trace, settlement = study.trace, study.settlement
     if trace.endless:
@@ -68,7 +59,7 @@ def _endless(study: Study) -> Iterator[Finding]:
             return
 
 
-def _chase(study: Study, visit: Visit | None, certain: bool, run: tuple[Moment, ...]) -> Finding:
+def _chase(study: Study, visit: Visit | None, certain: bool, run: tuple[Moment, ...]) -> Sight:
     """``visit``: one of those that chase each other; None where the sequence has no step that it ever enters."""
     sequence = study.machine.sequences[0]
     if visit is None:
@@ -77,20 +68,9 @@ def _chase(study: Study, visit: Visit | None, certain: bool, run: tuple[Moment, 
     else:
         place, subject, step = visit.step.place, visit.step.name, visit.step.name
         message = f"steps follow one another without time passing, {subject} among them"
-    return Finding(
-        kind="endless-loop",
-        severity=Severity.ERROR,
-        certain=certain,
-        subject=subject,
-        step=step,
-        place=place,
-        message=message,
-        margin_us=None,
-        replayed=True if run else None,
-        run=run,
-        mend="let one of the steps wait for a sensor or dwell, or give the controller its scan time",
-    )
+    mend = "let one of the steps wait for a sensor or dwell, or give the controller its scan time"
+    return Sight(subject, step, place, message, run, mend, certain)
 
 
-DEAD_END = Check("dead-end", Severity.ERROR, "nothing can happen any more", findings=_dead_ends)
-ENDLESS_LOOP = Check("endless-loop", Severity.ERROR, "steps chase each other without time passing", findings=_endless)
+DEAD_END = Check("dead-end", Severity.ERROR, "nothing can happen any more", sights=_dead_ends)
+ENDLESS_LOOP = Check("endless-loop", Severity.ERROR, "steps chase each other without time passing", sights=_endless)

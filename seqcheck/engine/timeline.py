@@ -28,7 +28,6 @@ class Order(IntEnum):
     MARK = 4
     VALVE = 5
     COIL = 6
-    WATCHDOG = 7
 
 
 def typical(what: str, name: str, number: int, span: Span) -> int:
@@ -97,9 +96,6 @@ class Timeline:
 
     def call_off(self, number: int) -> None:
         self._actions.pop(number, None)
-
-    def is_due(self, number: int) -> bool:
-        return number in self._actions
 
     @property
     def pending(self) -> list[int]:
