@@ -7,12 +7,13 @@ braces and parentheses nested over 50 deep while it reads.
 from __future__ import annotations
 
 from collections.abc import Iterator
+from contextlib import contextmanager
 from functools import cache
 from pathlib import Path
 from typing import Any
 
+import lark.lexer
 from lark import Lark, Token, UnexpectedInput
-from lark.lexer import ContextualLexer
 
 MOST_NESTED = 50
 
@@ -27,12 +28,16 @@ class TooDeep(UnexpectedInput):
         self.offset = offset
 
 
-class _QuickLexer(ContextualLexer):
-    """Leaves the comparison of terminals to the test of the grammar: it takes seconds and never changes."""
-
-    def __init__(self, conf: Any, states: Any, always_accept: Any = ()) -> None:
-        conf.skip_validation = True
-        super().__init__(conf, states, always_accept)
+@contextmanager
+def _terminals_taken_as_they_are() -> Iterator[None]:
+    """lark compares all terminals with one another where a package for that is installed, those of its own grammar
+    too: it takes long, never changes, and is done once by the test of the grammar."""
+    installed = lark.lexer.has_interegular
+    lark.lexer.has_interegular = False
+    try:
+        yield
+    finally:
+        lark.lexer.has_interegular = installed
 
 
 class _DepthGuard:
@@ -85,6 +90,6 @@ def parser() -> Lark:
         "propagate_positions": True,
         "maybe_placeholders": False,
         "postlex": _DepthGuard(),
-        "_plugins": {"ContextualLexer": _QuickLexer},
     }
-    return Lark(grammar_text(), **options)
+    with _terminals_taken_as_they_are():
+        return Lark(grammar_text(), **options)

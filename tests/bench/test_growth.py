@@ -23,8 +23,6 @@ from tests.bench.stations import in_a_row
 pytestmark = pytest.mark.bench
 
 CHECKOUT = Path(__file__).resolve().parents[2]
-#: The interpreter as a user has it: the tests' own extra package makes lark build its grammars more slowly.
-PLAIN = "import sys; sys.modules['interegular'] = None; "
 
 
 def least_cpu(work: Callable[[], object], tries: int = 5) -> float:
@@ -67,7 +65,7 @@ def least_wall(code: str, tries: int = 7) -> float:
     for _ in range(tries):
         start = time.perf_counter()
         subprocess.run(
-            [sys.executable, "-c", PLAIN + code],
+            [sys.executable, "-c", code],
             cwd=CHECKOUT,
             env={**os.environ, "PYTHONDONTWRITEBYTECODE": ""},
             stdout=subprocess.DEVNULL,
