@@ -20,16 +20,19 @@ separation of the two events so found, within their causes since ``x``.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
+from typing import TYPE_CHECKING
 
 import numpy
-import numpy.typing
 
 from seqcheck.engine.graph import OPEN, EventGraph
 from seqcheck.machine.time import Span
 
 _NO_CHAIN = -(1 << 60)
 
-Table = numpy.typing.NDArray[numpy.int64]
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    Table = NDArray[numpy.int64]
 
 #: For every member but the first, the positions of its causes with the spans of the delays.
 _Arcs = Sequence[Sequence[tuple[int, Span]]]
