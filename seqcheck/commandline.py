@@ -144,8 +144,7 @@ def _explain(options: argparse.Namespace) -> int:
         return _ended(FINE, send(render_list(explanations())))
     one = explanation(options.kind)
     if one is None:
-        near = difflib.get_close_matches(options.kind, explained_kinds(), 1, 0.6)
-        advice = f"did you mean {near[0]}?" if near else "seqcheck explain lists all"
+        advice = _advice(options.kind, explained_kinds(), "seqcheck explain lists all")
         return _ended(UNREADABLE, f"there is no kind of finding {options.kind}; {advice}")
     return _ended(FINE, send(render_explanation(one)))
 
@@ -202,9 +201,13 @@ def _no_kind(fail_on: Sequence[str]) -> str | None:
     unknown = next((word for word in fail_on if word not in words), None)
     if unknown is None:
         return None
-    near = difflib.get_close_matches(unknown, words, 1, 0.6)
-    advice = f"did you mean {near[0]}?" if near else f"there are {', '.join(words)}"
+    advice = _advice(unknown, words, f"there are {', '.join(words)}")
     return f"--fail-on: {unknown} is no severity and no kind of finding; {advice}"
+
+
+def _advice(word: str, words: Sequence[str], otherwise: str) -> str:
+    near = difflib.get_close_matches(word, words, 1, 0.6)
+    return f"did you mean {near[0]}?" if near else otherwise
 
 
 def _overwriting(output: str, inputs: Iterable[str]) -> str | None:

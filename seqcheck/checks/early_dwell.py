@@ -9,7 +9,7 @@ from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
 from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Visit
-from seqcheck.machine.devices import OnValve, Position
+from seqcheck.machine.devices import OnValve
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.steps import Step
 from seqcheck.machine.time import WHOLE_SHARE
@@ -34,13 +34,13 @@ def _strokes(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
 def _called_off(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
     """Moves that the played run has called off at the valve: when they would have been done."""
     for shift in study.shifts_of(visit):
-        if shift.called_off is None or shift.to is Position.CENTRE:
+        if shift.called_off is None:
             continue
         for cylinder in study.machine.cylinders.values():
             assert isinstance(cylinder.drive, OnValve)
-            if cylinder.drive.valve != shift.valve:
+            out = cylinder.drive.sends_out(shift.to)
+            if cylinder.drive.valve != shift.valve or out is None:
                 continue
-            out = (shift.to is Position.A) != cylinder.drive.reverse
             if not study.stands_at_end(cylinder.name, out, study.time(shift.called_off.event)):
                 travel = cylinder.extend if out else cylinder.retract
                 begin = shift.asked if travel.from_coil else shift.reached

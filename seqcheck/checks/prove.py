@@ -15,7 +15,14 @@ from seqcheck.checks.narrate import narrate
 from seqcheck.checks.stale_accept import stale_accepts, with_reasons
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
-from seqcheck.engine.bounds import Rows, greatest_separation, greatest_separations, is_open, longest_least_chain
+from seqcheck.engine.bounds import (
+    Rows,
+    both_ways,
+    closed,
+    greatest_separation,
+    greatest_separations,
+    longest_least_chain,
+)
 from seqcheck.engine.settle import Settlement
 from seqcheck.engine.timeline import given
 from seqcheck.engine.witness import Witness, replay, witness
@@ -97,9 +104,7 @@ def _accepted(broken: Sequence[Broken], machine: Machine) -> list[Broken]:
 
 def _prove_one(study: Study, checks: Sequence[Check], reserve_us: int) -> Proof:
     stated = [(check, obligation) for check in checks for obligation in check.obligations(study)]
-    rows = greatest_separations(
-        study.trace.graph, (pair for _, one in stated for pair in ((one.second, one.first), (one.first, one.second)))
-    )
+    rows = greatest_separations(study.trace.graph, both_ways((one.first, one.second) for _, one in stated))
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
     for check, one in stated:
         margin = -rows[one.second, one.first] - one.least
@@ -114,8 +119,7 @@ def _prove_one(study: Study, checks: Sequence[Check], reserve_us: int) -> Proof:
         seen = [one if one.severity is Severity.NOTE else replace(one, certain=False) for one in seen]
     broken += [Broken(finding, None) for finding in (*thin, *seen)]
     margins = [
-        Margin(check.kind, one.subject, one.step, one.place, _closed(margin))
-        for check, one, margin in tightest.values()
+        Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
     ]
     return Proof(tuple(broken), tuple(margins), turn is not None)
 
@@ -135,7 +139,7 @@ def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) 
 
 def _broken(study: Study, check: Check, one: Obligation, margin: int, rows: Rows, turn: int | None) -> Broken:
     run = witness(study.trace, one.first, one.second)
-    shown = _closed(margin)
+    shown = _shown(margin)
     by = "an unlimited time" if shown is None else in_time(-shown)
     mend = one.wording.mend
     finding = Finding(
@@ -196,8 +200,9 @@ def _needed(study: Study, one: Obligation, by: int) -> int:
     return max(by, behind - longest_least_chain(graph, one.lever, one.second) + one.least)
 
 
-def _closed(margin: int) -> int | None:
-    return None if is_open(-margin) else margin
+def _shown(margin: int) -> int | None:
+    least_separation = closed(-margin)
+    return None if least_separation is None else -least_separation
 
 
 def _sorted(broken: Iterable[Broken]) -> tuple[Broken, ...]:

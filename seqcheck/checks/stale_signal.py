@@ -32,7 +32,7 @@ def own_move_missed(study: Study, visit: Visit, answer: Answer) -> tuple[int, in
     for stroke in study.moves_of(visit):
         goal = stroke.marks[-1][0]
         positions = study.trace.marks[stroke.cylinder]
-        if stroke.cylinder != sensor.cylinder or not sensor.low <= positions[goal] <= sensor.high:
+        if stroke.cylinder != sensor.cylinder or not sensor.covers(positions[goal]):
             continue
         for index, event in stroke.marks:
             if reached_by(sensor, positions[index], stroke.out) and (answer.edge is None or answer.edge.at != event):

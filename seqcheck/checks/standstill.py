@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
-from seqcheck.engine.bounds import greatest_separations
+from seqcheck.engine.bounds import both_ways, greatest_separations
 from seqcheck.engine.trace import Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Moment, Severity
@@ -53,7 +53,7 @@ def _endless(study: Study) -> Iterator[Sight]:
         visits = [visit for visit in trace.visits if visit.cycle == number]
         if any(literal.term.kind is TermKind.SIGNAL for visit in visits for literal in visit.literals):
             continue
-        rows = greatest_separations(trace.graph, [(begin, end), (end, begin)])
+        rows = greatest_separations(trace.graph, both_ways([(begin, end)]))
         if rows[end, begin] >= 0:
             yield _chase(study, visits[0], rows[begin, end] <= 0, narrate_typical(study, begin, end))
             return

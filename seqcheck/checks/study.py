@@ -19,7 +19,7 @@ from seqcheck.engine.timeline import Draw, typical
 from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
-from seqcheck.machine.time import WHOLE_SHARE, Span
+from seqcheck.machine.time import Span
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,8 +59,8 @@ class Study:
 
     def noticed_after(self, time: int) -> Span:
         """A time, and the wait for the read that notices that it is over."""
-        longest = self.machine.controller.round.greatest
-        return Span(time, time + longest // 2, time + longest)
+        wait = self.machine.controller.wait
+        return Span(time + wait.least, time + wait.typical, time + wait.greatest)
 
     def last_of(self, event: Event, causes: Sequence[int]) -> int:
         """The moment at which all of these have come."""
@@ -219,8 +219,7 @@ class Study:
     def starts_on(self, sensor: str) -> bool:
         """Whether the sensor is on before anything has moved."""
         device = self.machine.sensors[sensor]
-        start = WHOLE_SHARE if self.machine.cylinders[device.cylinder].starts_extended else 0
-        return device.low <= start <= device.high
+        return device.covers(self.machine.cylinders[device.cylinder].start)
 
     def stopped_by_own_sensor(self, stroke: Stroke) -> bool:
         """Whether the sequence had waited for one of the cylinder's own sensors in this stroke before it ended it: at

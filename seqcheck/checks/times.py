@@ -11,7 +11,7 @@ from collections.abc import Iterable, Iterator
 
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.study import Study
-from seqcheck.engine.bounds import Rows, causes_since, greatest_separations, is_open, separation_table
+from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations, separation_table
 from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Read, Visit
 from seqcheck.machine.conditions import TermKind
@@ -77,14 +77,14 @@ def _told_backwards(study: Study, latest: dict[int, int], start: int, end: int) 
         words = _words(study, event)
         if words or event == end:
             if text:
-                yield PathPart(text, _closed(at), least, _closed(greatest))
+                yield PathPart(text, closed(at), least, closed(greatest))
             text, at, least, greatest = words or "end of the cycle", latest[event], 0, 0
         if event == start or not graph.arcs[event]:
-            yield PathPart(text, _closed(at), least, _closed(greatest))
+            yield PathPart(text, closed(at), least, closed(greatest))
             return
         arc = max(graph.arcs[event], key=lambda arc: latest.get(arc.cause, -(1 << 60)) + arc.span.greatest)
         if arc.cause not in latest:
-            yield PathPart(text, _closed(at), least, _closed(greatest))
+            yield PathPart(text, closed(at), least, closed(greatest))
             return
         least, greatest = least + arc.span.least, greatest + arc.span.greatest
         event = arc.cause
@@ -95,10 +95,6 @@ def _words(study: Study, event: int) -> str:
     if event in study.reads_by_event:
         told += [f"step {visit.step.name} entered" for visit in study.reads_by_event[event].entered]
     return ", ".join(text for text in told if text)
-
-
-def _closed(time: int) -> int | None:
-    return None if is_open(time) else time
 
 
 def _cycles(study: Study) -> Iterator[_Interval]:
@@ -130,9 +126,7 @@ def _first_cycle(study: Study) -> int:
 
 
 def _bounds(study: Study, intervals: Iterable[_Interval]) -> Rows:
-    return greatest_separations(
-        study.trace.graph, (pair for start, end in intervals for pair in ((start, end), (end, start)))
-    )
+    return greatest_separations(study.trace.graph, both_ways(intervals))
 
 
 def _duration(study: Study, intervals: list[_Interval], rows: Rows) -> Duration:
@@ -140,5 +134,5 @@ def _duration(study: Study, intervals: list[_Interval], rows: Rows) -> Duration:
     return Duration(
         min(-rows[end, start] for start, end in intervals),
         typical,
-        _closed(max(rows[interval] for interval in intervals)),
+        closed(max(rows[interval] for interval in intervals)),
     )

@@ -19,7 +19,7 @@ separation of the two events so found, within their causes since ``x``.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from typing import TYPE_CHECKING
 
 import numpy
@@ -134,8 +134,25 @@ def longest_least_chain(graph: EventGraph, cause: int, event: int) -> int:
     return chain[cause]
 
 
+def both_ways(pairs: Iterable[tuple[int, int]]) -> Iterator[tuple[int, int]]:
+    """Each pair, and the same turned round: what it takes to know how far apart two events are at most and at least."""
+    for one, other in pairs:
+        yield one, other
+        yield other, one
+
+
 def is_open(separation: int) -> bool:
     return separation >= OPEN // 2
+
+
+def closed(separation: int) -> int | None:
+    """A separation as it is shown: None where nothing limits it."""
+    return None if is_open(separation) else separation
+
+
+def greatest_of(span: Span, open_us: int) -> int:
+    """The greatest time of a span, and ``open_us`` where nothing limits it."""
+    return open_us if is_open(span.greatest) else span.greatest
 
 
 def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
@@ -185,13 +202,9 @@ def _chains(chain: Table, arcs: _Arcs, assumed: Sequence[tuple[int, int]]) -> No
 def _latest(table: Table, arcs: _Arcs, assumed: Sequence[tuple[int, int]], open_us: int) -> None:
     for position, incoming in enumerate(arcs, start=1):
         cause, span = incoming[0]
-        latest = table[cause] + _greatest(span, open_us)
+        latest = table[cause] + greatest_of(span, open_us)
         for cause, span in incoming[1:]:
-            numpy.maximum(latest, table[cause] + _greatest(span, open_us), out=latest)
+            numpy.maximum(latest, table[cause] + greatest_of(span, open_us), out=latest)
         numpy.minimum(table[position], latest, out=table[position])
     for one, other in assumed:
         numpy.minimum(table[one], table[other], out=table[one])
-
-
-def _greatest(span: Span, open_us: int) -> int:
-    return open_us if is_open(span.greatest) else span.greatest

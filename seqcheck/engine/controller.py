@@ -72,8 +72,7 @@ class Controller:
             for step in steps_of(sequence)
             for term in terms_of(step.until)
         }
-        longest = self._settings.round.greatest
-        self._wait = Span(0, longest // 2, longest)
+        self._wait = self._settings.wait
         self._cycle = 0
         self._last_time = -1
         self._reads_at_once = 0

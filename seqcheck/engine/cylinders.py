@@ -17,9 +17,9 @@ from seqcheck.engine.strokes import Region, marks_of, reached_by
 from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Shift, Stroke, Trace
 from seqcheck.engine.travel import LEAVING, START, Travel
-from seqcheck.machine.devices import Cylinder, OnValve, Position
+from seqcheck.machine.devices import Cylinder, OnValve
 from seqcheck.machine.model import Machine
-from seqcheck.machine.time import NO_TIME, WHOLE_SHARE
+from seqcheck.machine.time import NO_TIME
 
 #: Told of a sensor's own change: the sensor, on or off, at which event.
 Sense = Callable[[str, bool, int], None]
@@ -52,20 +52,18 @@ class Cylinders:
         self._regions = regions
         self._sense = sense
         self._pistons: dict[str, _Piston] = {}
-        self._on_valve: dict[str, list[tuple[_Piston, bool]]] = {}
+        self._on_valve: dict[str, list[tuple[_Piston, OnValve]]] = {}
         self._sensor_on: dict[str, bool] = {}
         for name, cylinder in machine.cylinders.items():
             marks = trace.marks[name] = marks_of(machine, cylinder)
-            start = Region.exactly(len(marks) - 1 if cylinder.starts_extended else 0)
+            start = Region.exactly(marks.index(cylinder.start))
             piston = _Piston(cylinder, marks, start, start)
             self._pistons[name] = piston
             assert isinstance(cylinder.drive, OnValve)
-            self._on_valve.setdefault(cylinder.drive.valve, []).append((piston, cylinder.drive.reverse))
+            self._on_valve.setdefault(cylinder.drive.valve, []).append((piston, cylinder.drive))
             for sensor_name in cylinder.sensors:
                 sensor = machine.sensors[sensor_name]
-                self._sensor_on[sensor_name] = (
-                    sensor.low <= (WHOLE_SHARE if cylinder.starts_extended else 0) <= sensor.high
-                )
+                self._sensor_on[sensor_name] = sensor.covers(cylinder.start)
 
     @property
     def sensors_on(self) -> Mapping[str, bool]:
@@ -87,14 +85,13 @@ class Cylinders:
 
     def follow(self, valve: str, shift: Shift) -> None:
         """The valve has reached a position: what it feeds sets out, turns or stops."""
-        for piston, reverse in self._on_valve.get(valve, ()):
-            if shift.to is Position.CENTRE:
-                self._part_from(piston, shift, None)
-            else:
-                out = (shift.to is Position.A) != reverse
-                self._part_from(piston, shift, out)
-                if piston.stroke is None and piston.region != Region.exactly(piston.last if out else 0):
-                    self._begin(piston, out, shift)
+        for piston, drive in self._on_valve.get(valve, ()):
+            out = drive.sends_out(shift.to)
+            self._part_from(piston, shift, out)
+            if out is None or piston.stroke is not None:
+                continue
+            if piston.region != Region.exactly(piston.last if out else 0):
+                self._begin(piston, out, shift)
 
     # Ending a stroke -------------------------------------------------------------------------------------------
 

@@ -12,7 +12,7 @@ from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Edge, Trace
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
-from seqcheck.machine.time import NO_TIME, Span
+from seqcheck.machine.time import NO_TIME
 
 
 class Inputs:
@@ -23,8 +23,7 @@ class Inputs:
         self._controller = controller
         self._on_the_way: dict[str, Edge] = {}
         self._unseen: dict[str, Edge] = {}
-        longest = machine.controller.round.greatest
-        self._wait = Span(0, longest // 2, longest)
+        self._wait = machine.controller.wait
 
     @property
     def state(self) -> tuple[object, ...]:

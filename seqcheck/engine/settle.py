@@ -14,7 +14,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
-from seqcheck.engine.bounds import Rows, greatest_separation, greatest_separations
+from seqcheck.engine.bounds import Rows, both_ways, greatest_separation, greatest_separations
 from seqcheck.engine.cylinders import Regions
 from seqcheck.engine.graph import DelayName, EventGraph
 from seqcheck.engine.player import Player
@@ -91,7 +91,7 @@ def _signature(player: Player, read: Read) -> tuple[object, ...]:
     graph = player.trace.graph
     pending = player.timeline.pending
     start = read.event
-    bounds = greatest_separations(graph, [pair for one in pending for pair in ((start, one), (one, start))])
+    bounds = greatest_separations(graph, both_ways((start, one) for one in pending))
     offsets = sorted(
         (graph.events[one].what, graph.events[one].subject, bounds[start, one], bounds[one, start]) for one in pending
     )
@@ -101,14 +101,8 @@ def _signature(player: Player, read: Read) -> tuple[object, ...]:
 def _regions(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
     """Where each piston that the valve drove otherwise may stand, if that is more than one stretch between marks."""
     parted = [(stroke, _may_stand_at(trace.graph, stroke)) for stroke in trace.strokes if stroke.stands is not None]
-    pairs = [
-        pair
-        for stroke, stands in parted
-        for event in _passings(stroke)
-        for at in stands
-        for pair in ((at, event), (event, at))
-    ]
-    rows = greatest_separations(trace.graph, pairs)
+    pairs = ((at, event) for stroke, stands in parted for event in _passings(stroke) for at in stands)
+    rows = greatest_separations(trace.graph, both_ways(pairs))
     for stroke, stands in parted:
         region = _region(stroke, stands, rows)
         if region is not None and region != stroke.stood:

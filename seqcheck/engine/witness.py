@@ -11,8 +11,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
-from seqcheck.engine.bounds import causes_since, separation_table
-from seqcheck.engine.graph import OPEN, DelayName, EventGraph
+from seqcheck.engine.bounds import causes_since, greatest_of, separation_table
+from seqcheck.engine.graph import Arc, DelayName, EventGraph
 from seqcheck.engine.player import Player
 from seqcheck.engine.settle import Settlement
 from seqcheck.engine.timeline import given
@@ -45,23 +45,23 @@ def witness(trace: Trace, first: int, second: int) -> Witness:
     for number in members[1:]:
         for arc in graph.arcs[number]:
             if arc.delay is not None:
-                delays[arc.delay] = min(times[number] - times[arc.cause], _capped(arc.span.greatest))
+                delays[arc.delay] = min(times[number] - times[arc.cause], greatest_of(arc.span, _LONG_US))
     chain = _binding(graph, times, common, first) | _binding(graph, times, common, second)
     return Witness(times, delays, tuple(sorted(chain, key=lambda number: (times[number], number))))
-
-
-def _capped(time: int) -> int:
-    return min(time, _LONG_US) if time >= OPEN // 2 else time
 
 
 def _binding(graph: EventGraph, times: Mapping[int, int], common: int, event: int) -> set[int]:
     """From the event back to the common one along the causes that made it as late as it is."""
     chain = {event}
     while event != common:
-        time = times[event]
-        event = max(graph.arcs[event], key=lambda arc: min(times[arc.cause] + _capped(arc.span.greatest), time)).cause
+        event = max(graph.arcs[event], key=lambda arc: _brings(times, arc, event)).cause
         chain.add(event)
     return chain
+
+
+def _brings(times: Mapping[int, int], arc: Arc, event: int) -> int:
+    """How late this cause lets the event be."""
+    return min(times[arc.cause] + greatest_of(arc.span, _LONG_US), times[event])
 
 
 def replay(machine: Machine, settlement: Settlement, run: Witness) -> Settlement:

@@ -7,7 +7,7 @@ from enum import Enum
 
 from seqcheck.machine.conditions import Condition
 from seqcheck.machine.places import Place
-from seqcheck.machine.time import NO_TIME, Span
+from seqcheck.machine.time import NO_TIME, WHOLE_SHARE, Span
 
 
 class ControllerKind(Enum):
@@ -28,6 +28,12 @@ class Controller:
     output_on: Span = NO_TIME
     output_off: Span = NO_TIME
     place: Place | None = None
+
+    @property
+    def wait(self) -> Span:
+        """From a change to the read that notices it: up to the longest round."""
+        longest = self.round.greatest
+        return Span(0, longest // 2, longest)
 
 
 @dataclass(frozen=True, slots=True)
@@ -127,6 +133,10 @@ class Sensor:
     via: str | None
     place: Place
 
+    def covers(self, position: int) -> bool:
+        """Whether the sensor is on while the piston stands there."""
+        return self.low <= position <= self.high
+
 
 @dataclass(frozen=True, slots=True)
 class Stroke:
@@ -142,6 +152,10 @@ class OnValve:
 
     valve: str
     reverse: bool
+
+    def sends_out(self, position: Position) -> bool | None:
+        """Out, or in (False); None where the cylinder stops."""
+        return None if position is Position.CENTRE else (position is Position.A) != self.reverse
 
 
 @dataclass(frozen=True, slots=True)
@@ -167,6 +181,11 @@ class Cylinder:
     starts_extended: bool
     sensors: tuple[str, ...]
     place: Place
+
+    @property
+    def start(self) -> int:
+        """Where the piston stands at first, in millionths of the stroke."""
+        return WHOLE_SHARE if self.starts_extended else 0
 
 
 @dataclass(frozen=True, slots=True)
