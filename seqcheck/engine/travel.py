@@ -96,42 +96,47 @@ class Travel:
         return tuple(plan)
 
     def from_between(self, region: Region, stood: Region) -> tuple[Reach, ...]:
-        """``stood``: where the played run has the piston, for the typical times. The marks up to ``ahead`` may be
-        passed already; ``first`` of the others is what a piston in the last stretch comes to."""
+        """``stood``: where the played run has the piston, for the typical times. ``passed`` of the marks may be passed
+        already; the one behind them, ``ahead``, is what a piston in the last stretch comes to first."""
         behind, ahead = (region.low, region.high) if self.out else (region.high, region.low)
         marks = list(self._ahead_of(behind))
-        may_rest = behind in region.rests
-        unsure = ahead != marks[0] or may_rest
+        passed, may_rest = marks.index(ahead), behind in region.rests
+        unsure = passed > 0 or may_rest
+        latest = [self._latest(behind, marks[: min(n, passed) + 1], mark, may_rest) for n, mark in enumerate(marks)]
         plan: list[Reach] = []
-        first = before = -1
-        for number, mark in enumerate(marks):
-            firsts = marks[: min(number, marks.index(ahead)) + 1]
-            latest = self._latest(behind, firsts, mark, may_rest)
-            parts = [Part(before, self._step(marks[number - 1], mark))] if number else []
-            if number < marks.index(ahead):
-                parts.append(Part(START, Span(0, min(self._typical(stood, mark), latest), latest)))
-            elif mark == ahead:
-                whole = self._whole(marks[number - 1] if number else behind, mark)
-                span = Span(0, min(self._typical(stood, mark), whole), whole)
-                if unsure:
-                    plan.append(Reach(mark, (Part(START, span, True),), only_if=True))
-                    first = len(plan) - 1
-                    parts = [Part(before, NO_TIME)] if number else []
-                    parts += [Part(first, NO_TIME)]
-                    parts += [Part(START, Span(0, min(self._typical(stood, mark), latest), latest))]
-                else:
-                    parts.append(Part(START, span, True))
-                    first = len(plan)
-            else:
-                part = self._part(ahead, mark)
-                parts.append(Part(first, part, True))
-                if unsure:
-                    typical = self._part(behind, mark).typical if stood == Region.exactly(behind) else 0
-                    least = self._least(marks[marks.index(ahead) : number + 1])
-                    parts.append(Part(START, Span(least, min(max(least, typical), latest), latest)))
+        for number, mark in enumerate(marks[:passed]):
+            anywhere = Part(START, self._up_to(latest[number], stood, mark))
+            chain = (Part(number - 1, self._step(marks[number - 1], mark)),) if number else ()
+            plan.append(Reach(mark, (*chain, anywhere)))
+        whole = self._whole(marks[passed - 1] if passed else behind, ahead)
+        last_stretch = Part(START, self._up_to(whole, stood, ahead), drawn=True)
+        plan.append(Reach(ahead, (last_stretch,), only_if=unsure))
+        if unsure:
+            anywhere = Part(START, self._up_to(latest[passed], stood, ahead))
+            chain = (Part(passed - 1, NO_TIME),) if passed else ()
+            plan.append(Reach(ahead, (*chain, Part(passed, NO_TIME), anywhere)))
+        for number in range(passed + 1, len(marks)):
+            mark = marks[number]
+            parts = [
+                Part(len(plan) - 1, self._step(marks[number - 1], mark)),
+                Part(passed, self._part(ahead, mark), True),
+            ]
+            if unsure:
+                parts.append(
+                    Part(START, self._from_anywhere(behind, marks[passed : number + 1], stood, latest[number]))
+                )
             plan.append(Reach(mark, tuple(parts)))
-            before = len(plan) - 1
         return tuple(plan)
+
+    def _up_to(self, greatest: int, stood: Region, mark: int) -> Span:
+        """From no time, where the piston stands right before the mark, to so much."""
+        return Span(0, min(self._typical(stood, mark), greatest), greatest)
+
+    def _from_anywhere(self, behind: int, chain: Sequence[int], stood: Region, latest: int) -> Span:
+        """From the start to the last of some neighbouring marks, wherever in front of the first the piston stood."""
+        typical = self._part(behind, chain[-1]).typical if stood == Region.exactly(behind) else 0
+        least = self._least(chain)
+        return Span(least, min(max(least, typical), latest), latest)
 
     def _whole(self, before: int, mark: int) -> int:
         """The greatest time through one stretch, started somewhere in it."""

@@ -18,7 +18,7 @@ from seqcheck.compare.differences import (
     MarginChange,
 )
 from seqcheck.machine.findings import Duration, Problem
-from seqcheck.report.json import Json, without_lone_surrogates
+from seqcheck.report.json import Json, finding_facts, reason, without_lone_surrogates
 
 FORMAT = "seqcheck-comparison"
 VERSION = 1
@@ -63,22 +63,14 @@ def _finding(change: FindingChange) -> Json:
                 "severity": before.severity.value,
                 "certain": before.certain,
                 "margin_us": before.margin_us,
-                **({} if before.accepted is None else {"accepted": before.accepted}),
+                **reason(before),
             }
         }
     return {
         "change": change.difference.value,
         "worse": change.worse,
-        "kind": finding.kind,
-        "severity": finding.severity.value,
-        "certain": finding.certain,
-        "subject": finding.subject,
-        "step": finding.step,
-        "line": finding.place.line,
-        "column": finding.place.column,
-        "message": finding.message,
-        "margin_us": finding.margin_us,
-        **({} if finding.accepted is None else {"accepted": finding.accepted}),
+        **finding_facts(finding),
+        **reason(finding),
         **was,
     }
 

@@ -59,7 +59,16 @@ def report_object(report: Report) -> Json:
 
 def _finding(finding: Finding) -> Json:
     """``accepted`` is there only where it is: the reason that the text gives."""
-    accepted: Json = {} if finding.accepted is None else {"accepted": finding.accepted}
+    return {
+        **finding_facts(finding),
+        "replayed": finding.replayed,
+        "witness": [{"t_us": moment.time_us, "event": moment.event} for moment in finding.run],
+        **reason(finding),
+    }
+
+
+def finding_facts(finding: Finding) -> Json:
+    """What a finding says, without its run."""
     return {
         "kind": finding.kind,
         "severity": finding.severity.value,
@@ -70,10 +79,12 @@ def _finding(finding: Finding) -> Json:
         "column": finding.place.column,
         "message": finding.message,
         "margin_us": finding.margin_us,
-        "replayed": finding.replayed,
-        "witness": [{"t_us": moment.time_us, "event": moment.event} for moment in finding.run],
-        **accepted,
     }
+
+
+def reason(finding: Finding) -> Json:
+    """Why it is accepted, nothing where it is not."""
+    return {} if finding.accepted is None else {"accepted": finding.accepted}
 
 
 def _error(problem: Problem, file: str) -> Json:
