@@ -6,7 +6,7 @@ microseconds within the span. Only ``given`` refuses: a delay that lies outside 
 
 from __future__ import annotations
 
-import random
+import hashlib
 from collections.abc import Callable, Mapping
 
 from seqcheck.machine.time import Span
@@ -34,7 +34,7 @@ def at_random(seed: int) -> Draw:
     """Anywhere in the span; a delay depends on its own name and number only, not on the order of the draws."""
 
     def draw(what: str, name: str, n: int, span: Span) -> int:
-        return random.Random(f"{seed}/{what}/{name}/{n}").randint(span.least, span.greatest)
+        return span.least + _number(f"{seed}/{what}/{name}/{n}") % (span.greatest - span.least + 1)
 
     return draw
 
@@ -43,7 +43,7 @@ def at_corners(seed: int) -> Draw:
     """Either the least or the greatest of the span, by its own name and number: where bounds are met."""
 
     def draw(what: str, name: str, n: int, span: Span) -> int:
-        return random.Random(f"{seed}/{what}/{name}/{n}").choice((span.least, span.greatest))
+        return (span.least, span.greatest)[_number(f"{seed}/{what}/{name}/{n}") % 2]
 
     return draw
 
@@ -60,3 +60,18 @@ def given(mapping: Mapping[tuple[str, str, int], int], otherwise: Draw) -> Draw:
         return time
 
     return draw
+
+
+def either_way(seed: int, times: Draw) -> Draw:
+    """What a choice asks from outside by chance, by its own name and number; all times from ``times``."""
+
+    def draw(what: str, name: str, n: int, span: Span) -> int:
+        if what == "asks":
+            return span.least + _number(f"{seed}/{name}/{n}") % (span.greatest - span.least + 1)
+        return times(what, name, n, span)
+
+    return draw
+
+
+def _number(key: str) -> int:
+    return int.from_bytes(hashlib.blake2b(key.encode(), digest_size=8).digest())

@@ -2,20 +2,33 @@
 
 from __future__ import annotations
 
-from seqcheck.machine.conditions import TermKind
-from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve
+from collections.abc import Iterator
+from typing import Protocol
+
+from seqcheck.machine.conditions import TermKind, terms_of
+from seqcheck.machine.devices import FollowingSignal, OutsideSignal, Position
 from seqcheck.machine.model import Machine
 from seqcheck.machine.steps import CommandKind
 from seqcheck.machine.time import WHOLE_SHARE
 from tests.oracle.clock import Clock, Turn
+from tests.oracle.conditions import Literal, is_conjunction
 from tests.oracle.inputs import InputLine
-from tests.oracle.pistons import CylinderPlay, direction, start_of
-from tests.oracle.visits import ActiveVisit, Cause, Past
+from tests.oracle.pistons import CylinderPlay, direction, start_of, valves_of
+from tests.oracle.reads import Cause, Past
+from tests.oracle.visits import ActiveVisit, Wait
+
+
+class UnderWay(Protocol):
+    """The controller, as far as it is asked here."""
+
+    active: list[ActiveVisit]
+
+    def waits(self) -> Iterator[Wait]: ...
 
 
 class StepJudge:
-    """``active`` is the controller's own list of the steps under way. ``_course`` is where each cylinder was last
-    sent by commands: True out, False in, None stopped."""
+    """``_asked`` is where each valve was last sent by commands, ``_course`` likewise each cylinder: True out, False in,
+    None stopped."""
 
     def __init__(
         self,
@@ -23,18 +36,17 @@ class StepJudge:
         machine: Machine,
         cylinders: dict[str, CylinderPlay],
         lines: dict[str, InputLine],
-        active: list[ActiveVisit],
+        under_way: UnderWay,
     ) -> None:
         self._clock = clock
         self._machine = machine
         self._cylinders = cylinders
         self._lines = lines
-        self._active = active
+        self._under_way = under_way
         self._judged: list[ActiveVisit] = []
         self._opposed: frozenset[str] = frozenset()
-        self._course = {
-            name: direction(play.cylinder, start_of(self._valve_of(play.cylinder))) for name, play in cylinders.items()
-        }
+        self._asked = {name: start_of(valve) for name, valve in machine.valves.items()}
+        self._course = {name: direction(machine, play.cylinder, self._asked) for name, play in cylinders.items()}
 
     # --- commands ---
 
@@ -46,12 +58,23 @@ class StepJudge:
         causes: dict[str, Cause],
     ) -> None:
         self._judge_opposed(after, causes)
+        asked = {name: self._asked_of(name, after) for name in self._machine.valves}
+        course = {name: direction(self._machine, play.cylinder, asked) for name, play in self._cylinders.items()}
         for visit in entered:
-            self._note_moves(visit, before, after)
+            self._note_moves(visit, before, after, course)
             for name in self._cylinders:
                 self._judge_overshoot(visit, name)
-        for name, play in self._cylinders.items():
-            self._follow_course(name, play.cylinder, after)
+        self._asked, self._course = asked, course
+
+    def _asked_of(self, name: str, after: frozenset[str]) -> Position:
+        valve = self._machine.valves[name]
+        match [coil for coil in valve.coils if coil in after]:
+            case []:
+                return valve.rest or self._asked[name]
+            case [only]:
+                return self._machine.coils[only].to
+            case _:
+                return self._asked[name]
 
     def _judge_opposed(self, after: frozenset[str], causes: dict[str, Cause]) -> None:
         opposed = frozenset(
@@ -63,20 +86,18 @@ class StepJudge:
             self._clock.incident("opposed-coils", name, step, f"{' and '.join(coils)} are commanded at once")
         self._opposed = opposed
 
-    def _note_moves(self, visit: ActiveVisit, before: frozenset[str], after: frozenset[str]) -> None:
+    def _note_moves(
+        self, visit: ActiveVisit, before: frozenset[str], after: frozenset[str], course: dict[str, bool | None]
+    ) -> None:
         for command in visit.step.commands:
             coil = self._machine.coils.get(command.target)
             if coil is None or (coil.name in before) is (coil.name in after):
                 continue
             if (command.kind is not CommandKind.RESET) is not (coil.name in after):
                 continue
-            valve = self._machine.valves[coil.valve]
-            position: Position | None = coil.to if coil.name in after else valve.rest
-            if position is None:
-                continue
             for name, play in self._cylinders.items():
-                out = direction(play.cylinder, position)
-                if self._valve_of(play.cylinder) is valve and out is not None and self._is_move(name, play, out):
+                out = course[name]
+                if coil.valve in valves_of(play.cylinder) and out is not None and self._is_move(name, play, out):
                     visit.sent[name] = out
 
     def _is_move(self, name: str, play: CylinderPlay, out: bool) -> bool:
@@ -84,91 +105,113 @@ class StepJudge:
         course = self._course[name]
         return course is not out if course is not None else play.end != _end(out)
 
-    def _follow_course(self, name: str, cylinder: Cylinder, after: frozenset[str]) -> None:
-        valve = self._valve_of(cylinder)
-        on = [coil for coil in valve.coils if coil in after]
-        if len(on) == 1:
-            self._course[name] = direction(cylinder, self._machine.coils[on[0]].to)
-        elif not on and valve.rest is not None:
-            self._course[name] = direction(cylinder, valve.rest)
-
-    def _valve_of(self, cylinder: Cylinder) -> Valve:
-        assert isinstance(cylinder.drive, OnValve)
-        return self._machine.valves[cylinder.drive.valve]
-
     # --- what the plant and the inputs tell ---
 
     def arrived(self, cylinder: str, out: bool) -> None:
-        for visit in (*self._active, *self._judged):
+        for visit in (*self._under_way.active, *self._judged):
             visit.arrived.add((cylinder, out))
 
     def entered_range(self, sensor: str, out: bool) -> None:
-        for visit in (*self._active, *self._judged):
+        for visit in (*self._under_way.active, *self._judged):
             visit.entered_range.add((sensor, out))
 
-    def seen(self, sensor: str, on: bool) -> None:
-        for visit in self._active:
-            for part in visit.parts:
-                if part.subject != sensor or part.kind is not TermKind.SENSOR:
+    def seen(self, line: str, on: bool) -> None:
+        """An input is seen to change."""
+        for wait in self._under_way.waits():
+            for literal in wait.literals:
+                if literal.subject != line:
                     continue
-                if part.wanted is on:
-                    visit.came.add(part)
-                elif part in visit.came:
-                    visit.came.discard(part)
-                    text = f"it is seen to come and to go before {visit.step.name} is left"
-                    if len(visit.parts) > 1 or visit.step.steady is not None:
-                        # Parts need not come together, and bounces are what steady is for.
-                        self._clock.bounce(sensor, visit.step.name, text)
-                    else:
-                        self._clock.incident("missed-signal", sensor, visit.step.name, text)
+                if literal.wanted is on:
+                    wait.came.add(literal)
+                elif literal in wait.came:
+                    wait.came.discard(literal)
+                    self._miss(wait, line, f"it is seen to come and to go before {wait.name} is left", lone=True)
 
-    def vanished(self, sensor: str, on: bool, came: int) -> None:
-        for visit in self._active:
-            for part in visit.parts:
-                if part.subject == sensor and part.wanted is on and visit.entered < came:
-                    text = f"it comes and goes unseen while {visit.step.name} waits for it"
-                    self._clock.incident("missed-signal", sensor, visit.step.name, text)
+    def vanished(self, line: str, on: bool, came: int) -> None:
+        for wait in self._under_way.waits():
+            for literal in wait.literals:
+                if literal.subject == line and literal.wanted is on and wait.entered < came:
+                    self._miss(wait, line, f"it comes and goes unseen while {wait.name} waits for it", lone=False)
 
-    def spoils(self, sensor: str, on: bool) -> bool:
+    def _miss(self, wait: Wait, line: str, text: str, lone: bool) -> None:
+        """What is missed where it is all that a step waits for, or (not ``lone``) is needed, is an incident. Else the
+        step may be left all the same: parts need not come together, and bounces are what steady is for."""
+        hard = isinstance(wait, ActiveVisit) and is_conjunction(wait.step.until)
+        if hard and lone:
+            hard = isinstance(wait, ActiveVisit) and len(wait.literals) == 1 and wait.step.steady is None
+        if hard:
+            self._clock.incident("missed-signal", line, wait.name, text)
+        else:
+            self._clock.bounce(line, wait.name, text)
+
+    def spoils(self, line: str, on: bool) -> bool:
         """Whether a step loses what it waits for. One whose own commands move the piston there is only rid of what is
         on from before."""
         return any(
-            part.subject == sensor and part.wanted is not on and not self._is_from_before(visit, sensor)
-            for visit in self._active
-            for part in visit.parts
+            literal.subject == line and literal.wanted is not on and not self._is_from_before(wait, line)
+            for wait in self._under_way.waits()
+            for literal in wait.literals
         )
 
-    def _is_from_before(self, visit: ActiveVisit, sensor: str) -> bool:
-        out = visit.sent.get(self._machine.sensors[sensor].cylinder)
-        return out is not None and (sensor, out) not in visit.entered_range
+    def _is_from_before(self, wait: Wait, line: str) -> bool:
+        sensor = self._machine.sensors.get(line)
+        if sensor is None or not isinstance(wait, ActiveVisit):
+            return False
+        out = wait.sent.get(sensor.cylinder)
+        return out is not None and (line, out) not in wait.entered_range
 
     def stands(self, cylinder: str) -> None:
         """A piston has been stopped or turned."""
-        for visit in self._active:
-            self._judge_overshoot(visit, cylinder)
+        for wait in self._under_way.waits():
+            self._judge_overshoot(wait, cylinder)
 
-    def _judge_overshoot(self, visit: ActiveVisit, cylinder: str) -> None:
-        for part in visit.parts:
-            if part.kind is TermKind.SENSOR and part.subject in self._cylinders[cylinder].overshot:
-                text = f"{cylinder} has run past an edge of {part.subject}, which {visit.step.name} asks"
+    def _judge_overshoot(self, wait: Wait, cylinder: str) -> None:
+        for literal in wait.literals:
+            if literal.kind is TermKind.SENSOR and literal.subject in self._cylinders[cylinder].overshot:
+                text = f"{cylinder} has run past an edge of {literal.subject}, which {wait.name} asks"
                 self._clock.incident("overshoot", cylinder, self._cylinders[cylinder].stopped_by, text)
 
     # --- leaving ---
 
-    def leaves(self, visit: ActiveVisit) -> Past:
-        """Judges the step, and gives the strokes of which it has waited for a sensor."""
-        self._judge_leaving(visit)
+    def leaves(self, wait: Wait) -> Past:
+        """Judges the step, and gives the strokes that a sensor, or a signal that follows the cylinder, has ended."""
+        if isinstance(wait, ActiveVisit):
+            self._judge_leaving(wait)
         past: Past = frozenset()
-        for part in visit.parts:
-            if part.kind is TermKind.SENSOR:
-                cylinder = self._cylinders[self._machine.sensors[part.subject].cylinder]
-                past |= cylinder.waited_for(part.subject, part.wanted)
+        for literal in wait.grounds():
+            past |= self._strokes_behind(literal)
         return past
+
+    def _strokes_behind(self, literal: Literal) -> Past:
+        if literal.kind is TermKind.SENSOR:
+            cylinder = self._machine.sensors[literal.subject].cylinder
+            return self._cylinders[cylinder].waited_for(literal.subject, literal.wanted)
+        past: Past = frozenset()
+        signal = self._machine.signals.get(literal.subject)
+        if literal.kind is TermKind.SIGNAL and isinstance(signal, FollowingSignal):
+            for name in self._cylinders_of(signal):
+                past |= self._cylinders[name].waited_for_follower(self._lines[signal.name].physical_came)
+        return past
+
+    def _cylinders_of(self, signal: FollowingSignal) -> Iterator[str]:
+        """The cylinders that a signal follows, by themselves, their sensors, or another signal."""
+        for term in terms_of(signal.follows):
+            match term.kind:
+                case TermKind.CYLINDER:
+                    yield term.subject
+                case TermKind.SENSOR:
+                    yield self._machine.sensors[term.subject].cylinder
+                case TermKind.SIGNAL:
+                    other = self._machine.signals[term.subject]
+                    if not isinstance(other, OutsideSignal):
+                        yield from self._cylinders_of(other)
+                case _:
+                    pass
 
     def _judge_leaving(self, visit: ActiveVisit) -> None:
         """At the end of the instant: a piston that comes as the step is left has come."""
         early = self._early(visit)
-        stale = self._stale(visit)
+        stale = self._stale(visit) & {literal.subject for literal in visit.literals if visit.needs(literal)}
         if not early and not stale:
             return
         self._judged.append(visit)
@@ -199,10 +242,10 @@ class StepJudge:
         """Sensors at the end of a move that the step waited for, the piston not having come there by that move; and
         sensors on the way that the piston has left, and not come to again."""
         stale: set[str] = set()
-        for part in visit.parts:
-            if part.kind is not TermKind.SENSOR or not part.wanted:
+        for literal in visit.literals:
+            if literal.kind is not TermKind.SENSOR or not literal.wanted:
                 continue
-            sensor = self._machine.sensors[part.subject]
+            sensor = self._machine.sensors[literal.subject]
             out = visit.sent.get(sensor.cylinder)
             if out is None:
                 continue

@@ -9,8 +9,7 @@ back to where they started, so that the cycle closes.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
-from typing import TypeVar
+from dataclasses import dataclass
 
 from hypothesis import strategies as st
 from hypothesis.strategies import DrawFn, SearchStrategy
@@ -18,8 +17,7 @@ from hypothesis.strategies import DrawFn, SearchStrategy
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
-
-T = TypeVar("T")
+from tests.oracle.writer import Writer, drawn, indent
 
 CENTRES = ("closed centre", "exhaust centre", "pressure centre", "tandem centre", "float centre")
 FAULTS = ("pulse", "dwell", "watchdog", "rest", "filter", "opposed", "hasty", "passing")
@@ -41,49 +39,10 @@ class Drive:
     has_gap: bool
 
 
-@dataclass(slots=True)
-class Writer:
-    """Draws choices and times, and counts the names it gives."""
-
-    draw: DrawFn
-    faults: frozenset[str]
-    signals: list[str] = field(default_factory=list)
-    outputs: list[str] = field(default_factory=list)
-    steps: int = 0
-
-    def pick(self, *choices: T) -> T:
-        return self.draw(st.sampled_from(choices))
-
-    def chance(self, percent: int) -> bool:
-        """Shrinks to no."""
-        return self.draw(st.integers(0, 99)) >= 100 - percent
-
-    def ms(self, least: float, most: float) -> str:
-        """One duration of ``least`` to ``most`` milliseconds."""
-        return f"{self.draw(st.integers(round(least * 1000), round(most * 1000)))} us"
-
-    def span(self, least: float, most: float, width: float) -> str:
-        """A span whose least lies in ``least..most`` milliseconds, ``width`` wide at most."""
-        low = self.draw(st.integers(round(least * 1000), round(most * 1000)))
-        return f"{low}..{low + self.draw(st.integers(0, round(width * 1000)))} us"
-
-    def errs(self, fault: str, percent: int) -> bool:
-        """Whether a machine with this fault shows it here."""
-        return fault in self.faults and self.chance(percent)
-
-    def either(self, fault: str, safe: tuple[float, float], tight: tuple[float, float]) -> str:
-        """A duration from the safe range; with that fault sometimes from the tight one."""
-        return self.ms(*(tight if self.errs(fault, 50) else safe))
-
-    def step(self, *words: str, label: str = "s") -> str:
-        self.steps += 1
-        return f"step {label}{self.steps} {{ {'  '.join(word for word in words if word)} }}"
-
-
 # --- devices ---
 
 
-def _controller(write: Writer) -> str:
+def controller(write: Writer) -> str:
     match write.pick("scan", "scan", "task", "ideal"):
         case "scan":
             round_time = f"scan {write.span(3, 12, 6)}"
@@ -116,7 +75,7 @@ def _valve(write: Writer, number: int, kind: str) -> str:
     return f"valve V{number} 5/3 {kind} {{ {coils}  {on}  {off}  {decay}  {gap} }}"
 
 
-def _drive(write: Writer, number: int) -> tuple[str, Drive]:
+def new_drive(write: Writer, number: int) -> tuple[str, Drive]:
     """A valve and its cylinder. A reversed cylinder is out at ``b`` and the sequence starts with it extended."""
     kind = write.pick("spring", "bistable", write.pick(*CENTRES))
     name, reverse = NAMES[number - 1], write.chance(15)
@@ -125,15 +84,15 @@ def _drive(write: Writer, number: int) -> tuple[str, Drive]:
         f"extend {write.span(200, 600, 90)}{from_coil}",
         f"retract {write.span(200, 500, 90)}{from_coil}",
         f"lag {write.span(0, 30, 20)}" if write.chance(30) else "",
-        f"uneven {write.draw(st.integers(1, 25))} %" if write.chance(40) else "",
+        f"uneven {write.whole(1, 25)} %" if write.chance(40) else "",
         f"overrun {write.span(0, 8, 8)}" if write.chance(30) else "",
         "starts extended" if reverse else "",
         f"sensor B{number}1 at {write.pick('retracted', 'retracted', '0..4 %', '0..7.5 %')}{_delay(write)}",
     ]
     middle = f"B{number}3" if write.chance(50) or write.errs("passing", 60) else None
     if middle is not None:
-        low = write.draw(st.integers(30, 55))
-        high = low + write.draw(st.integers(*((1, 8) if write.errs("passing", 60) else (8, 25))))
+        low = write.whole(30, 55)
+        high = low + write.whole(*((1, 8) if write.errs("passing", 60) else (8, 25)))
         words.append(f"sensor {middle} at {low}..{high} %{_delay(write)}")
     words.append(f"sensor B{number}2 at {write.pick('extended', 'extended', '96..100 %', '93..100 %')}{_delay(write)}")
     valve = _valve(write, number, kind)
@@ -151,11 +110,11 @@ def _delay(write: Writer) -> str:
 # --- steps ---
 
 
-def _within(write: Writer) -> str:
+def within(write: Writer) -> str:
     return f"within {write.either('watchdog', (2500, 9000), (250, 900))}" if write.chance(40) else ""
 
 
-def _command(write: Writer, drive: Drive, away: bool) -> str:
+def command(write: Writer, drive: Drive, away: bool) -> str:
     if drive.home_coil is None:
         return f"{'set' if away else 'reset'} {drive.away_coil}"
     coil, other = (drive.away_coil, drive.home_coil) if away else (drive.home_coil, drive.away_coil)
@@ -185,12 +144,12 @@ def _exit(write: Writer, drive: Drive, away: bool) -> str:
     return f"until {sensor}"
 
 
-def _move(write: Writer, drive: Drive, away: bool) -> list[str]:
+def move(write: Writer, drive: Drive, away: bool) -> list[str]:
     """One way, and what rests behind it."""
     if write.chance(30):
         outward = away is (drive.away_sensor.endswith("2"))
-        return [f"{drive.cylinder}{'+' if outward else '-'}  {_within(write)}".rstrip(), *_rest(write, drive)]
-    return [write.step(_command(write, drive, away), _exit(write, drive, away), _within(write)), *_rest(write, drive)]
+        return [f"{drive.cylinder}{'+' if outward else '-'}  {within(write)}".rstrip(), *_rest(write, drive)]
+    return [write.step(command(write, drive, away), _exit(write, drive, away), within(write)), *_rest(write, drive)]
 
 
 def _rest(write: Writer, drive: Drive) -> list[str]:
@@ -198,42 +157,42 @@ def _rest(write: Writer, drive: Drive) -> list[str]:
     return [write.step(f"dwell {write.either('rest', (60, 200), (1, 60))}")] if drive.has_gap else []
 
 
-def _stop_midway(write: Writer, drive: Drive) -> list[str]:
+def stop_midway(write: Writer, drive: Drive) -> list[str]:
     """Stopped on the sensor in the middle, then on; or, with a spring, turned round on it."""
     assert drive.mid_sensor is not None
     if drive.home_coil is None:
-        there = write.step(f"set {drive.away_coil}", f"until {drive.mid_sensor}", _within(write))
-        return [there, write.step(f"reset {drive.away_coil}", f"until {drive.home_sensor}", _within(write))]
+        there = write.step(f"set {drive.away_coil}", f"until {drive.mid_sensor}", within(write))
+        return [there, write.step(f"reset {drive.away_coil}", f"until {drive.home_sensor}", within(write))]
     return [
-        write.step(f"on {drive.away_coil}", f"until {drive.mid_sensor}", _within(write)),
+        write.step(f"on {drive.away_coil}", f"until {drive.mid_sensor}", within(write)),
         write.step(f"dwell {write.either('rest', (100, 400), (1, 60))}"),
         write.step(f"on {drive.away_coil}", f"until {drive.away_sensor}"),
         *_rest(write, drive),
-        *_move(write, drive, False),
+        *move(write, drive, False),
     ]
 
 
 def _hasty_trips(write: Writer, drive: Drive) -> list[str]:
     """Away, back for a moment only, and away again: the sensor may still be on from before."""
-    away = [write.step(_command(write, drive, True), f"until {drive.away_sensor}") for _ in range(2)]
-    back = write.step(_command(write, drive, False), f"dwell {write.ms(1, 400)}")
-    return [away[0], back, away[1], *_move(write, drive, False)]
+    away = [write.step(command(write, drive, True), f"until {drive.away_sensor}") for _ in range(2)]
+    back = write.step(command(write, drive, False), f"dwell {write.ms(1, 400)}")
+    return [away[0], back, away[1], *move(write, drive, False)]
 
 
-def _round_trip(write: Writer, drive: Drive, between: Callable[[], list[str]] = list) -> list[str]:
+def round_trip(write: Writer, drive: Drive, between: Callable[[], list[str]] = list) -> list[str]:
     """Away and back, with ``between`` in between."""
     if write.errs("hasty", 40):
         return _hasty_trips(write, drive)
     if drive.mid_sensor is not None and drive.kind != "bistable" and write.chance(35):
-        return _stop_midway(write, drive)
+        return stop_midway(write, drive)
     if drive.kind == "spring" and write.chance(15):
         hold = f"pulse {drive.away_coil} {write.either('pulse', (1000, 1500), (250, 700))}"
         away = write.step(hold, f"until {drive.away_sensor}")
-        return [away, write.step(f"until {drive.home_sensor}", _within(write))]
-    return [*_move(write, drive, True), *between(), *_move(write, drive, False)]
+        return [away, write.step(f"until {drive.home_sensor}", within(write))]
+    return [*move(write, drive, True), *between(), *move(write, drive, False)]
 
 
-def _pause(write: Writer) -> list[str]:
+def pause(write: Writer) -> list[str]:
     """Something besides the cylinders: an output, a signal, a plain wait, a single round."""
     match write.pick("dwell", "output", "signal", "round"):
         case "output":
@@ -246,46 +205,46 @@ def _pause(write: Writer) -> list[str]:
             write.signals.append(signal)
             wanted = write.pick(signal, f"not {signal}")
             dwell = f"dwell {write.ms(1, 50)}" if write.chance(20) else ""
-            return [write.step(f"until {wanted}", dwell, _within(write))]
+            return [write.step(f"until {wanted}", dwell, within(write))]
         case "round":
             return [write.step("")]
     return [write.step(f"dwell {write.ms(1, 300)}")]
 
 
 def _branch(write: Writer, drives: list[Drive]) -> list[str]:
-    steps = _pause(write) if write.chance(20) else []
+    steps = pause(write) if write.chance(20) else []
     if len(drives) > 1 and write.chance(30):
-        return steps + _together(write, drives)
+        return steps + together(write, drives)
     for drive in drives:
-        steps += _round_trip(write, drive)
+        steps += round_trip(write, drive)
     return steps
 
 
 def _block(write: Writer, drives: list[Drive]) -> list[str]:
-    first, *others = write.draw(st.permutations(drives))
+    first, *others = write.shuffled(drives)
     if first.mid_sensor is not None and write.errs("passing", 80):
         passing = [_passing(write, first.mid_sensor)]
-        return ["together {", *_indent(_round_trip(write, first)), "} and {", *_indent(passing), "}"]
+        return ["together {", *indent(round_trip(write, first)), "} and {", *indent(passing), "}"]
     match write.pick("trip", "trip", "nested", "together", "together", "repeat", "pause"):
         case "nested" if others:
-            return _round_trip(write, first, lambda: _round_trip(write, others[0]))
+            return round_trip(write, first, lambda: round_trip(write, others[0]))
         case "together" if others:
-            return _together(write, [first, *others])
+            return together(write, [first, *others])
         case "repeat":
-            return [f"repeat {write.pick(2, 3)} {{", *_indent(_round_trip(write, first)), "}"]
+            return [f"repeat {write.pick(2, 3)} {{", *indent(round_trip(write, first)), "}"]
         case "pause":
-            return _pause(write)
-    return _round_trip(write, first)
+            return pause(write)
+    return round_trip(write, first)
 
 
-def _together(write: Writer, drives: list[Drive]) -> list[str]:
+def together(write: Writer, drives: list[Drive]) -> list[str]:
     """Branches with cylinders of their own each; sometimes one more that waits for a step of the first."""
-    cut = write.draw(st.integers(1, len(drives) - 1))
+    cut = write.whole(1, len(drives) - 1)
     ones, twos = _branch(write, drives[:cut]), _branch(write, drives[cut:])
-    lines = ["together {", *_indent(ones), "} and {", *_indent(twos)]
+    lines = ["together {", *indent(ones), "} and {", *indent(twos)]
     if ones[0].startswith("step ") and write.chance(20):
         name = ones[0].split()[1]
-        lines += ["} and {", *_indent([write.step(f"until main.{name}"), write.step(f"until not main.{name}")])]
+        lines += ["} and {", *indent([write.step(f"until main.{name}"), write.step(f"until not main.{name}")])]
     return [*lines, "}"]
 
 
@@ -294,21 +253,17 @@ def _passing(write: Writer, sensor: str) -> str:
     return write.step(f"until {sensor}", write.pick("", f"dwell {write.ms(1, 400)}", f"steady {write.ms(1, 40)}"))
 
 
-def _indent(lines: list[str]) -> list[str]:
-    return [f"    {line}" for line in lines]
-
-
 @st.composite
 def machine_texts(draw: DrawFn, faulty: bool | None = None, most_cylinders: int = 4) -> str:
     """A text with 1 to ``most_cylinders`` cylinders; ``faulty`` is drawn where it is None."""
-    some = st.lists(st.sampled_from(FAULTS), min_size=1, max_size=4).map(frozenset)
-    none: frozenset[str] = frozenset()
-    write = Writer(draw, draw(some) if (draw(st.booleans()) if faulty is None else faulty) else none)
-    numbers = range(1, draw(st.integers(1, most_cylinders)) + 1)
-    devices, drives = zip(*(_drive(write, number) for number in numbers), strict=True)
-    lines = [line for _ in range(draw(st.integers(1, 3))) for line in _block(write, list(drives))]
+    write = Writer(drawn(draw))
+    if write.chance(50) if faulty is None else faulty:
+        write.faults = write.some(FAULTS, 4)
+    numbers = range(1, write.whole(1, most_cylinders) + 1)
+    devices, drives = zip(*(new_drive(write, number) for number in numbers), strict=True)
+    lines = [line for _ in range(write.whole(1, 3)) for line in _block(write, list(drives))]
     if write.chance(70):
-        lines += _round_trip(write, drives[0])
+        lines += round_trip(write, drives[0])
     every = ["    every step within 20 s"] if write.chance(20) else []
     signals = [
         f"signal {name} from outside{f' after {write.span(0, 200, 300)}' if write.chance(70) else ''}"
@@ -316,8 +271,8 @@ def machine_texts(draw: DrawFn, faulty: bool | None = None, most_cylinders: int 
     ]
     outputs = [f"output {name} {{ on {write.span(0, 10, 10)} off {write.span(0, 10, 10)} }}" for name in write.outputs]
     head = f"sequence main{' once' if write.chance(15) else ''} {{"
-    parts = ['machine "Random station"', _controller(write), *devices, *outputs, *signals]
-    text = [*parts, head, *every, *_indent(lines), "}"]
+    parts = ['machine "Random station"', controller(write), *devices, *outputs, *signals]
+    text = [*parts, head, *every, *indent(lines), "}"]
     return "\n".join(line for line in text if line) + "\n"
 
 

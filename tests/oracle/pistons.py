@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import partial
 
+from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve
 from seqcheck.machine.model import Machine
 from seqcheck.machine.time import WHOLE_SHARE, Span
 from tests.oracle.clock import Clock, Ticket, Turn
+from tests.oracle.conditions import Literal, holds, literals_of, stands_at
 from tests.oracle.inputs import InputLine
+from tests.oracle.reads import Cause, Past
 from tests.oracle.strokes import Pace, full_stroke, marks_of, rest_of_stroke
-from tests.oracle.visits import Cause, Past
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,12 +28,26 @@ class Shift:
     past: Past
 
 
-def direction(cylinder: Cylinder, position: Position) -> bool | None:
-    """True for out, False for in, None for stop."""
-    if position is Position.CENTRE:
-        return None
-    assert isinstance(cylinder.drive, OnValve)
-    return (position is Position.A) is not cylinder.drive.reverse
+def direction(machine: Machine, cylinder: Cylinder, positions: Mapping[str, Position]) -> bool | None:
+    """True for out, False for in, None for stop, where the valves stand at these positions."""
+    drive = cylinder.drive
+    if isinstance(drive, OnValve):
+        return drive.sends_out(positions[drive.valve])
+
+    def stands(literal: Literal) -> bool:
+        at = positions[literal.subject]
+        return stands_at(machine.valves[literal.subject], literal.aspect, at) is literal.wanted
+
+    out, back = holds(drive.out, stands), holds(drive.back, stands)
+    return None if out is back else out
+
+
+def valves_of(cylinder: Cylinder) -> tuple[str, ...]:
+    """The valves that the cylinder looks at."""
+    if isinstance(cylinder.drive, OnValve):
+        return (cylinder.drive.valve,)
+    literals = literals_of(cylinder.drive.out) + literals_of(cylinder.drive.back)
+    return tuple(dict.fromkeys(literal.subject for literal in literals if literal.kind is TermKind.VALVE))
 
 
 def start_of(valve: Valve) -> Position:
@@ -72,16 +88,29 @@ class CylinderPlay:
         self._between = (0, 0)
         self._tickets: list[Ticket] = []
         self._halting = False
+        self._driven: bool | None = None
         self._goes: bool | None = None
         self._waited = False
         self._led_to: Past = frozenset()
         self._changed: set[tuple[str, bool]] = set()
-        self._passed: list[tuple[int, str]] = []
+        self._passed: list[tuple[int, str, int]] = []
+        self._started = 0
 
-    @property
-    def valve(self) -> str:
-        assert isinstance(self.cylinder.drive, OnValve)
-        return self.cylinder.drive.valve
+    def begin(self, driven: bool | None) -> None:
+        """How its valves drive it at the start, where it stands already."""
+        self._driven = driven
+
+    def shows(self, aspect: str | None) -> bool:
+        """What a rule sees."""
+        match aspect:
+            case "extended":
+                return self.end == WHOLE_SHARE
+            case "retracted":
+                return self.end == 0
+            case "moving":
+                return self.end is None and self.moves is not None
+            case _:
+                return self.end is None
 
     @property
     def _stroke(self) -> tuple[str, int]:
@@ -92,16 +121,25 @@ class CylinderPlay:
         the stroke, if it has changed the sensor to what was wanted, and what led to it."""
         if (sensor, wanted) not in self._changed:
             return frozenset()
-        edges = [number for number, (_, name) in enumerate(self._passed) if name == sensor]
+        edges = [number for number, (_, name, _) in enumerate(self._passed) if name == sensor]
         if edges:
             mark = self._passed[edges[-1]][0]
-            last = max(number for number, (place, _) in enumerate(self._passed) if place == mark)
+            last = max(number for number, (place, _, _) in enumerate(self._passed) if place == mark)
             del self._passed[: last + 1]
         return self._led_to | {self._stroke}
 
-    def follow(self, position: Position, shift: Shift) -> None:
-        """The valve has reached another position."""
-        wanted = direction(self.cylinder, position)
+    def waited_for_follower(self, changed_at: int) -> Past:
+        """Likewise, where the step has waited for a signal that follows this cylinder and last changed then."""
+        if not self.strokes or changed_at < self._started:
+            return frozenset()
+        self._passed = [passed for passed in self._passed if passed[2] > changed_at]
+        return self._led_to | {self._stroke}
+
+    def follow(self, wanted: bool | None, shift: Shift) -> None:
+        """A valve has reached another position, and the cylinder is driven so."""
+        if wanted is self._driven:
+            return
+        self._driven = wanted
         driven_off = self._goes is not None and wanted is not self._goes
         if driven_off:
             self._goes, self.stopped_by = None, shift.cause.step
@@ -140,7 +178,7 @@ class CylinderPlay:
 
     def _stand_where_it_is(self) -> None:
         if self._waited:
-            self.overshot = frozenset(name for _, name in self._passed)
+            self.overshot = frozenset(name for _, name, _ in self._passed)
             self._watcher.stands(self.cylinder.name)
 
     def _start(self, out: bool, shift: Shift) -> None:
@@ -148,6 +186,7 @@ class CylinderPlay:
         self.strokes += 1
         self.moves = self._goes = out
         self._led_to, self._changed, self._passed, self.overshot = shift.past, set(), [], frozenset()
+        self._started = now
         clock.log(f"cylinder {name} starts {_word(out)}")
 
         def choose(mark: int, span: Span) -> int:
@@ -196,7 +235,7 @@ class CylinderPlay:
             comes, goes = mark == near, mark == far and mark != near and self.end is None
             if comes or goes:
                 self._changed.add((sensor.name, comes))
-                self._passed.append((mark, sensor.name))
+                self._passed.append((mark, sensor.name, self._clock.now))
                 if comes:
                     self._watcher.entered(sensor.name, out)
                 self._lines[sensor.name].change(comes)

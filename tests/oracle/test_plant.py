@@ -4,14 +4,11 @@ from __future__ import annotations
 
 import pytest
 
-from seqcheck.machine.conditions import AnyOf, Term, TermKind
 from seqcheck.machine.devices import Controller, ControllerKind
 from seqcheck.machine.model import Machine
-from seqcheck.machine.steps import Jump, Step
 from seqcheck.machine.time import NO_TIME, Span
 from tests.oracle.build import (
     IDEAL,
-    NOWHERE,
     bistable,
     centred,
     cylinder,
@@ -307,12 +304,6 @@ def test_change_taken_back_inside_the_filter_vanishes() -> None:
 
 
 def test_what_is_not_played_is_refused() -> None:
-    either = AnyOf((Term(TermKind.OUTPUT, "K1", None, NOWHERE), Term(TermKind.OUTPUT, "K2", None, NOWHERE)), NOWHERE)
-    waits = Step("main.one", None, (), either, None, None, None, (), NOWHERE)
-    with pytest.raises(NotImplementedError, match="not a conjunction"):
-        play(machine(IDEAL, waits, outputs=("K1", "K2")), typical, 1, LONG)
-    with pytest.raises(NotImplementedError, match="choose and jump"):
-        play(machine(IDEAL, step("one", dwell=1), Jump("main.one", NOWHERE)), typical, 1, LONG)
     single = cylinder("lift", "V1", ms(400), ms(300), ("B5", 50, 50))
     valves = (spring("V1", "Y1", ms(20), ms(20)),)
     with pytest.raises(NotImplementedError, match="single point"):
