@@ -1,0 +1,1 @@
+"""The timing chart of a machine, and the forms in which it is shown."""

@@ -1,0 +1,96 @@
+"""Every move of a machine with its times, for the table that is filled in at the machine.
+
+Takes studies (the ways in which a machine was played); gives, for each stroke that the text starts at one place, how
+long it takes from the coil switching to the input of the sensor that the sequence then waits for, over all runs. Where
+nothing waits for a sensor of the cylinder, the time is that of the whole stroke.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+from seqcheck.checks.study import Study
+from seqcheck.engine.bounds import both_ways, closed, greatest_separations
+from seqcheck.engine.trace import Edge, Stroke, Visit
+from seqcheck.machine.findings import Duration
+from seqcheck.machine.model import Machine, steps_of
+from seqcheck.machine.steps import Step
+
+
+@dataclass(frozen=True, slots=True)
+class Move:
+    """``coil`` switches (``energized``, or released), ``sensor`` comes or goes (``sensor_on``): None where nothing
+    waits for one. ``waiting`` is the step that waits for it, which need not be the one that started the move."""
+
+    step: str
+    cylinder: str
+    out: bool
+    coil: str
+    energized: bool
+    sensor: str | None
+    sensor_on: bool
+    waiting: str
+
+
+#: None: the stroke is cut short before it comes to an end or to a sensor that is waited for.
+MoveTimes = tuple[tuple[Move, Duration | None], ...]
+
+
+def move_times(machine: Machine, studies: Sequence[Study]) -> MoveTimes:
+    """In the order of the text."""
+    found: dict[Move, Duration | None] = {}
+    for study in studies:
+        for move, time in _timed(study):
+            found[move] = _widened(found.get(move), time)
+    order = {step.name: place for place, step in enumerate(_steps(machine))}
+    return tuple(sorted(found.items(), key=lambda one: (order[one[0].step], one[0].cylinder, not one[0].out)))
+
+
+def _steps(machine: Machine) -> Iterator[Step]:
+    for sequence in machine.sequences:
+        yield from steps_of(sequence)
+
+
+def _widened(known: Duration | None, other: Duration | None) -> Duration | None:
+    """The typical time is that of the first, which was played at typical times."""
+    if known is None or other is None:
+        return known or other
+    longest = None if known.greatest is None or other.greatest is None else max(known.greatest, other.greatest)
+    return Duration(min(known.least, other.least), known.typical, longest)
+
+
+def _timed(study: Study) -> Iterator[tuple[Move, Duration | None]]:
+    strokes = list(_strokes(study))
+    whole = ((begin, end) for _, begin, end in strokes if end is not None)
+    rows = greatest_separations(study.trace.graph, both_ways(whole))
+    for move, begin, end in strokes:
+        if end is None:
+            yield move, None
+            continue
+        typical = study.time(end) - study.time(begin)
+        yield move, Duration(-rows[end, begin], typical, closed(rows[begin, end]))
+
+
+def _strokes(study: Study) -> Iterator[tuple[Move, int, int | None]]:
+    """Each stroke with the events from which and to which it is timed; None where it does not come to that."""
+    waiting: dict[Edge, Visit] = {}
+    for visit in study.trace.visits:
+        for answer in visit.answers:
+            if answer.edge is not None:
+                waiting.setdefault(answer.edge, visit)
+    for visit in study.trace.visits:
+        for stroke in study.moves_of(visit):
+            edges = {edge for _, edge in study.waits_within(stroke)}
+            # Others are passed on the way to the last.
+            last = max(edges, key=lambda edge: study.time(edge.arrived), default=None)
+            if last is not None:
+                yield _move(stroke, visit, last, waiting[last]), stroke.shift.by.event, last.arrived
+            else:
+                yield _move(stroke, visit, None, visit), stroke.shift.by.event, None if stroke.cut else stroke.end
+
+
+def _move(stroke: Stroke, visit: Visit, edge: Edge | None, waiting: Visit) -> Move:
+    by = stroke.shift.by
+    sensor, on = (None, True) if edge is None else (edge.sensor, edge.value)
+    return Move(visit.step.name, stroke.cylinder, stroke.out, by.coil, by.energized, sensor, on, waiting.step.name)

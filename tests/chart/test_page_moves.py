@@ -1,0 +1,82 @@
+"""The moves of a machine and their times, against figures worked out by hand."""
+
+from __future__ import annotations
+
+import pytest
+
+from seqcheck.chart.page_moves import Move, move_times
+from seqcheck.checks.study import Study
+from seqcheck.engine.worlds import play_worlds
+from seqcheck.machine.findings import Duration
+from tests.chart.page_samples import TWO_MOVES, sample
+
+MS = 1000
+
+
+def test_from_the_coil_to_the_input_of_the_sensor() -> None:
+    """Valve, stroke and filter added up: V1 18..28 + 380..450 + 2..4 ms, and so on. Nothing waits for the end of the
+    push: valve and stroke, 20..30 + 600..700 ms. Typical times are the middles."""
+    assert sample(TWO_MOVES).moves == (
+        (
+            Move("main.gate+", "gate", True, "Y1", True, "B2", True, "main.gate+"),
+            Duration(400 * MS, 441 * MS, 482 * MS),
+        ),
+        (
+            Move("main.push", "ram", True, "Y2", True, None, True, "main.push"),
+            Duration(620 * MS, 675 * MS, 730 * MS),
+        ),
+        (
+            Move("main.pull", "ram", False, "Y3", True, "B3", True, "main.pull"),
+            Duration(522 * MS, 588 * MS, 654 * MS),
+        ),
+        (
+            Move("main.gate-", "gate", False, "Y1", False, "B1", True, "main.gate-"),
+            Duration(327 * MS, 365_500, 404 * MS),
+        ),
+    )
+
+
+def test_a_sensor_that_a_later_step_waits_for_ends_the_move() -> None:
+    """B9 at half way is passed in the step that starts the move, B2 at the end is waited for by the next."""
+    text = TWO_MOVES.replace("sensor B2 %I0.1", "sensor B9 at 45..55 %  sensor B2 %I0.1").replace(
+        "gate+ within 1 s",
+        "step leave { set Y1  until B9 within 700 ms }  step arrive { until B2  within 1 s }",
+    )
+    first, *_ = sample(text).moves
+    assert first == (
+        Move("main.leave", "gate", True, "Y1", True, "B2", True, "main.arrive"),
+        Duration(400 * MS, 441 * MS, 482 * MS),
+    )
+
+
+def test_the_same_move_made_twice_has_one_row() -> None:
+    made_twice = sample(TWO_MOVES.replace("gate+ within 1 s", "repeat 2 { gate+ gate- }\n gate+"))
+    moves = [move for move, _ in made_twice.moves]
+    assert [move.step for move in moves] == [
+        "main.gate+",
+        "main.gate-",
+        "main.gate+2",
+        "main.push",
+        "main.pull",
+        "main.gate-2",
+    ]
+    assert len(set(moves)) == len(moves)
+
+
+def test_a_move_that_is_always_cut_short_has_no_time() -> None:
+    """The valve is back in the middle after 300 ms, long before the 600 ms that the ram takes at least."""
+    times = {move.step: time for move, time in sample(TWO_MOVES.replace("dwell 900 ms", "dwell 300 ms")).moves}
+    assert times["main.push"] is None
+    assert times["main.gate+"] == Duration(400 * MS, 441 * MS, 482 * MS)
+
+
+@pytest.mark.parametrize("wider", [0, 1])
+def test_all_ways_in_which_a_machine_was_played_count(wider: int) -> None:
+    """The same machine with a slower valve stands for a second way; the typical times stay those of the first."""
+    one = sample(TWO_MOVES)
+    other = sample(TWO_MOVES.replace("on 18..28 ms", "on 8..58 ms"))
+    assert one.machine and other.machine
+    ways = [one.machine, other.machine][: wider + 1]
+    studies = [Study(machine, settlement) for machine in ways for settlement in play_worlds(machine).settlements]
+    _, time = move_times(one.machine, studies)[0]
+    assert time == Duration((390 if wider else 400) * MS, 441 * MS, (512 if wider else 482) * MS)
