@@ -21,8 +21,10 @@ RANKS = (
     ("seqcheck.pipeline",),
     ("seqcheck.workers",),
     ("seqcheck.compare",),
-    ("seqcheck.report", "seqcheck.chart"),
+    ("seqcheck.report",),
+    ("seqcheck.chart",),
     ("seqcheck.arguments",),
+    ("seqcheck.commands",),
     ("seqcheck.commandline",),
     ("seqcheck.__main__",),
 )

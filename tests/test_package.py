@@ -14,6 +14,7 @@ import pytest
 
 from seqcheck import __version__
 from seqcheck.checks.catalogue import CHECKS
+from seqcheck.language.ordinary import MEDIA
 
 pytestmark = pytest.mark.slow
 
@@ -50,7 +51,10 @@ def test_the_wheel_holds_the_package_and_the_grammar_alone(wheel: Path) -> None:
     names = zipfile.ZipFile(wheel).namelist()
     assert "seqcheck/grammar/steps.lark" in names
     assert "seqcheck/commandline.py" in names
+    assert "seqcheck/chart/page.css" in names
     assert {f"seqcheck/checks/explanations/{check.kind}.md" for check in CHECKS} <= set(names)
+    assert {f"seqcheck/language/ordinary/{medium}.yaml" for medium in MEDIA} <= set(names)
+    assert {f"seqcheck/commands/starter/{name}" for name in ("machine.steps", "machine.times.yaml")} <= set(names)
     assert {name.partition("/")[0] for name in names} == {"seqcheck", f"seqcheck-{__version__}.dist-info"}
 
 
@@ -61,6 +65,13 @@ def test_the_command_runs_from_another_folder(scripts: Path, tmp_path: Path) -> 
 def test_the_installed_command_explains(scripts: Path, tmp_path: Path) -> None:
     assert run(str(scripts / "seqcheck"), "explain", "short-pulse", cwd=tmp_path).startswith("short-pulse (error): ")
     assert len(run(str(scripts / "seqcheck"), "explain", cwd=tmp_path).splitlines()) == len(CHECKS) + 2
+
+
+def test_the_installed_command_writes_a_sequence_that_it_checks(scripts: Path, tmp_path: Path) -> None:
+    run(str(scripts / "seqcheck"), "new", "press.steps", cwd=tmp_path)
+    assert "clean for all times" in run(str(scripts / "seqcheck"), "check", "press.steps", cwd=tmp_path)
+    (tmp_path / "press.times.yaml").write_text("controller: {scan: 8..12 ms}\n", encoding="utf-8")
+    assert "assumed-times" in run(str(scripts / "seqcheck"), "check", "press.steps", "--assume", "air", cwd=tmp_path)
 
 
 def test_the_installed_package_finds_its_grammar(scripts: Path, tmp_path: Path) -> None:

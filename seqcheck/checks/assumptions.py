@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+from seqcheck.checks.assumed_times import told_devices, told_results
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
 from seqcheck.machine.devices import Cylinder, OutsideSignal, Position
@@ -16,6 +17,7 @@ def assumptions(study: Study, complete: bool, accepted: bool = False, strays: bo
     something that happens in some runs only; ``strays``: the run at typical times breaks what others keep."""
     machine = study.machine
     return (
+        *_assumed(machine),
         "every time anywhere in its span, anew each time",
         *_speeds(list(machine.cylinders.values())),
         "no faulty part",
@@ -25,6 +27,12 @@ def assumptions(study: Study, complete: bool, accepted: bool = False, strays: bo
         *(("played on from what goes wrong at typical times, where other runs may go right",) if strays else ()),
         *(("what is accepted happens, or does not, as it does at typical times",) if accepted else ()),
     )
+
+
+def _assumed(machine: Machine) -> Iterator[str]:
+    devices = told_devices(machine)
+    if devices is not None:
+        yield f"ordinary times assumed ({devices}), so {told_results(machine)}"
 
 
 def _speeds(cylinders: list[Cylinder]) -> Iterator[str]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from seqcheck.checks import (
+    assumed_times,
     command_race,
     cut_stroke,
     early_dwell,
@@ -34,6 +35,7 @@ CHECKS: tuple[Check, ...] = (
     ENDLESS_LOOP,
     UNREACHABLE,
     UNUSED,
+    assumed_times.CHECK,
     stale_accept.CHECK,
 )
 

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
+from seqcheck.language.assumed import ANY
 from seqcheck.language.conditions import Conditions, View
 from seqcheck.language.devices import via_of
 from seqcheck.language.problems import short
@@ -85,6 +86,9 @@ def _drive(registry: Registry, text: CylinderText) -> OnValve | OnConditions | N
 
 def _stroke(registry: Registry, text: CylinderText, key: str) -> Stroke:
     stroke = registry.times.stroke(text.name.text, key)
+    ordinary = registry.assumed.take("cylinders", ANY, key, text.name.text, text.name.place) if stroke is None else None
+    if ordinary is not None:
+        return Stroke(ordinary, False)
     if stroke is None:
         registry.missing(text.name.place, f"the cylinder {text.name.text}", key, _EXAMPLES[key])
         return Stroke(NO_TIME, False)

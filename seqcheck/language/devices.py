@@ -5,6 +5,7 @@ Takes the registry; gives the model's records; reports times that are missing or
 
 from __future__ import annotations
 
+from seqcheck.language.assumed import ANY
 from seqcheck.language.conditions import Conditions, View
 from seqcheck.language.problems import short
 from seqcheck.language.registry import Registry
@@ -41,7 +42,7 @@ def resolve_controller(registry: Registry, text: ControllerText | None) -> Contr
     """The controller; an ideal one where neither text nor sheet has any."""
     entries = registry.times.entries(CONTROLLER, "")
     if text is None and not entries:
-        return Controller()
+        return _ordinary_controller(registry)
     place = text.place if text else next(iter(entries.values())).place
 
     def span(key: str) -> Span | None:
@@ -49,6 +50,8 @@ def resolve_controller(registry: Registry, text: ControllerText | None) -> Contr
 
     edges = _edges(registry, CONTROLLER, "")
     scan, task, run = span("scan"), span("task"), span("run")
+    if scan is None and task is None:
+        scan = registry.assumed.take(CONTROLLER, ANY, "scan", None, place)
     if scan is not None:
         return Controller(ControllerKind.SCAN, scan, NO_TIME, *edges, place)
     if task is None:
@@ -67,9 +70,19 @@ def resolve_controller(registry: Registry, text: ControllerText | None) -> Contr
     return Controller(ControllerKind.TASK, task, run, *edges, place)
 
 
+def _ordinary_controller(registry: Registry) -> Controller:
+    """Where neither text nor sheet has a controller: an ideal one, unless ordinary times stand in."""
+    scan, on, out = (registry.assumed.take(CONTROLLER, ANY, key, None, None) for key in ("scan", "input", "output"))
+    if scan is None or on is None or out is None:
+        return Controller()
+    return Controller(ControllerKind.SCAN, scan, NO_TIME, on, on, out, out)
+
+
 def resolve_island(registry: Registry, text: IslandText) -> Island:
     name = text.name.text
     update = registry.times.span("io", name, "update")
+    if update is None:
+        update = registry.assumed.take("io", ANY, "update", name, text.name.place)
     if update is None:
         registry.missing(text.name.place, name, "update", "2..4 ms")
     return Island(name, label_of(text), update or NO_TIME, *_edges(registry, "io", name), text.place)

@@ -1,4 +1,4 @@
-"""Builds the parser from the grammar file.
+"""The parser of the grammar file, compiled once and kept for the next process.
 
 Gives lark's LALR parser with a contextual lexer, for a whole text or for one value of a timing sheet. Refuses
 braces and parentheses nested over 50 deep while it reads.
@@ -6,6 +6,7 @@ braces and parentheses nested over 50 deep while it reads.
 
 from __future__ import annotations
 
+import gc
 from collections.abc import Iterator
 from contextlib import contextmanager
 from functools import cache
@@ -15,8 +16,17 @@ from typing import Any
 import lark.lexer
 from lark import Lark, Token, UnexpectedInput
 
+from seqcheck.language.grammar_cache import keep_parser, kept_parser
+
 MOST_NESTED = 50
 
+_OPTIONS: dict[str, Any] = {
+    "parser": "lalr",
+    "lexer": "contextual",
+    "start": ["text", "sheet_value"],
+    "propagate_positions": True,
+    "maybe_placeholders": False,
+}
 _PACKAGE = Path(__file__).resolve().parent.parent
 
 
@@ -26,6 +36,19 @@ class TooDeep(UnexpectedInput):
     def __init__(self, offset: int) -> None:
         super().__init__(f"nested over {MOST_NESTED} deep")
         self.offset = offset
+
+
+@contextmanager
+def no_collecting() -> Iterator[None]:
+    """A tree grows by thousands of parts of which none is garbage: looking for it each time takes more and more of the
+    time, the longer the text is."""
+    before = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if before:
+            gc.enable()
 
 
 @contextmanager
@@ -83,13 +106,12 @@ def grammar_text() -> str:
 @cache
 def parser() -> Lark:
     """The parser; its starts are ``text`` and ``sheet_value``."""
-    options: dict[str, Any] = {
-        "parser": "lalr",
-        "lexer": "contextual",
-        "start": ["text", "sheet_value"],
-        "propagate_positions": True,
-        "maybe_placeholders": False,
-        "postlex": _DepthGuard(),
-    }
+    text = grammar_text()
+    guard = {"postlex": _DepthGuard()}
     with _terminals_taken_as_they_are():
-        return Lark(grammar_text(), **options)
+        kept = kept_parser(text, guard)
+        if kept is not None:
+            return kept
+        made = Lark(text, **_OPTIONS, **guard)
+    keep_parser(text, made)
+    return made

@@ -114,6 +114,10 @@ class Harvest:
             written = self.ruler.text[node.meta.start_pos : node.meta.end_pos]
             self.problems.report(self.place(node), "the unit is left out", f"write {short(written)} ms (or us, s, min)")
             return NO_TIME
+        bare = [part for part in trees(node, "quantity") if not tokens(part, "UNIT")]
+        if bare and bare[-1] is trees(node, "quantity")[-1]:
+            self.quantity(bare[-1], None)
+            return NO_TIME
         unit = None
         times: list[int] = []
         for part in reversed(trees(node, "quantity")):

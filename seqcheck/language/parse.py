@@ -14,7 +14,7 @@ from lark import Token, Tree, UnexpectedInput
 from lark.exceptions import UnexpectedCharacters, UnexpectedToken
 from lark.utils import TextSlice
 
-from seqcheck.language.grammar import TooDeep, parser
+from seqcheck.language.grammar import TooDeep, no_collecting, parser
 from seqcheck.language.harvest import Harvest
 from seqcheck.language.problems import Problems, Ruler
 from seqcheck.language.situation import Slip
@@ -44,6 +44,7 @@ class Parsed:
     timing_whole: bool
 
 
+@no_collecting()
 def parse_text(source: Source, problems: Problems) -> Parsed:
     """The statements of a text."""
     ruler = Ruler(source.name, source.text)
@@ -58,10 +59,11 @@ def parse_text(source: Source, problems: Problems) -> Parsed:
             break
         except UnexpectedInput as error:
             accepted = _accepted(error)
-            finished = _finished(error, accepted)
+            stopped = _offset(error, source.text)
+            finished = _without_broken(_finished(error, accepted), source.text, stopped)
             statements += finished
             begin = finished[-1].meta.end_pos if finished else position
-            slip = describe_slip(source.text, begin, _offset(error, source.text), accepted, "statement")
+            slip = describe_slip(source.text, begin, stopped, accepted, "statement")
             _report(slip, ruler, problems)
             position = _resume(source.text, position, slip.start)
             broken.append(source.text[begin:position])
@@ -110,6 +112,16 @@ def _finished(error: UnexpectedInput, accepted: frozenset[str]) -> list[Tree[Tok
     values = state.parser_state.value_stack
     repeated = values and isinstance(values[0], Tree) and str(values[0].data).startswith("__text")
     return _statements_in(values[0]) if repeated else []
+
+
+def _without_broken(finished: list[Tree[Token]], text: str, stopped: int) -> list[Tree[Token]]:
+    """A statement without braces that the slip follows in its own line is the broken one, though it could end there."""
+    if not finished:
+        return finished
+    end = finished[-1].meta.end_pos
+    behind = text[end:stopped]
+    broken = text[end - 1] != "}" and not behind.strip() and "\n" not in behind and text[stopped : stopped + 1] != "}"
+    return finished[:-1] if broken else finished
 
 
 def _offset(error: UnexpectedInput, text: str) -> int:

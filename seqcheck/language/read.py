@@ -7,6 +7,7 @@ and its sheets in one go.
 from __future__ import annotations
 
 from collections.abc import Collection, Iterator, Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import TypeVar
 
@@ -20,6 +21,7 @@ from seqcheck.language.devices import (
     resolve_output,
     resolve_signal,
 )
+from seqcheck.language.ordinary import first_medium, medium_of
 from seqcheck.language.parse import Parsed, parse_text
 from seqcheck.language.problems import Problems, short
 from seqcheck.language.registry import KINDS, Registry
@@ -56,21 +58,25 @@ _Single = TypeVar("_Single", MachineText, ControllerText)
 def read_machine(
     source: Source, sheets: Sequence[str] = (), kinds: Collection[str] | None = None
 ) -> Machine | tuple[Problem, ...]:
-    """The machine of a text. ``sheets`` are files of measured times; a later one wins, all win over the text.
-    ``kinds`` are those that a comment may accept (any, if None). Problems come by file in the order of reading, then
-    by place, each with its line of text."""
+    """The machine of a text. ``sheets`` are files of measured times; a later one wins, all win over the text;
+    ``assume:air`` among them fills what nobody gives. ``kinds`` are those that a comment may accept (any, if None).
+    Problems come by file in the order of reading, then by place, each with its line of text."""
     problems = Problems()
     problems.opened(source.name, source.text)
     parsed = parse_text(source, problems)
     accepts = accepts_of(source, kinds, problems)
     times = Times(problems)
-    registry = Registry(parsed, times, problems)
+    registry = Registry(parsed, times, problems, first_medium(sheets))
     _lay_text(parsed.statements, times)
     files = _sheet_files(source, parsed, sheets)
     for file, asked_at in files:
         _lay_sheet(registry, file, asked_at)
     machine = _resolve(source, parsed, registry, tuple(_sheet_names(parsed, sheets)), accepts)
-    return problems.sorted() if len(problems) else machine
+    if len(problems):
+        return problems.sorted()
+    if registry.assumed.taken:
+        return replace(machine, assumed=registry.assumed.taken)
+    return replace(machine, sheets=tuple(sheet for sheet in machine.sheets if medium_of(sheet) is None))
 
 
 # Times
@@ -86,7 +92,10 @@ def _sheet_files(source: Source, parsed: Parsed, sheets: Sequence[str]) -> list[
     """The files to read, with the place that asks for each. Those of the text lie beside it."""
     folder = Path() if source.name == "-" else Path(source.name).parent
     named = [text for text in parsed.statements if isinstance(text, TimingText)]
-    return [*((str(folder / text.file), text.place) for text in named), *((sheet, None) for sheet in sheets)]
+    return [
+        *((str(folder / text.file), text.place) for text in named),
+        *((sheet, None) for sheet in sheets if medium_of(sheet) is None),
+    ]
 
 
 def _lay_text(statements: tuple[StatementText, ...], times: Times) -> None:

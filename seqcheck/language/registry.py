@@ -9,6 +9,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Iterator
 
+from seqcheck.language.assumed import AssumedTimes
 from seqcheck.language.parse import Parsed
 from seqcheck.language.problems import Problems, short
 from seqcheck.language.syntax import (
@@ -45,9 +46,12 @@ KINDS: dict[type[DeviceText], tuple[str, str | None]] = {
 class Registry:
     """All that has a name. ``times_complete`` is False where a sheet or a ``timing`` could not be read."""
 
-    def __init__(self, parsed: Parsed, times: Times, problems: Problems) -> None:
+    def __init__(self, parsed: Parsed, times: Times, problems: Problems, medium: str | None = None) -> None:
+        """``medium``: whose ordinary times stand in for those that nobody gives, None where none do."""
         self.problems = problems
         self.times = times
+        self.assumed = AssumedTimes(medium)
+        self._missing: set[tuple[Place, str]] = set()
         self.times_complete = parsed.timing_whole
         self.whole = parsed.whole
         self._forgiven = parsed.forgiven
@@ -120,11 +124,16 @@ class Registry:
         self.problems.report(name.place, f"there is no {wanted} {short(name.text)}", advice)
 
     def missing(self, place: Place, device: str, key: str, example: str) -> None:
-        """Report a time that nobody gives."""
-        if not self.times_complete:
+        """Report a time that nobody gives, once."""
+        if not self.times_complete or (place, key) in self._missing:
             return
         message = f"nobody gives the time {key} of {short(device)}"
-        self.problems.report(place, message, f"write `{key} {example}` here or `{key}: {example}` in a timing sheet")
+        advice = f"write `{key} {example}` here or `{key}: {example}` in a timing sheet"
+        # Said with the first: for a first look nobody has to have them all.
+        first = not self._missing and self.assumed.medium is None
+        self._missing.add((place, key))
+        later = ", or let ordinary times stand in: --assume air or --assume oil" if first else ""
+        self.problems.report(place, message, advice + later)
 
 
 def _devices_in(statement: StatementText) -> Iterator[DeviceText]:

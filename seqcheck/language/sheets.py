@@ -125,7 +125,10 @@ class _SheetReader:
         keys = SECTIONS[section]
         settings: list[Setting] = []
         for key, value in self._pairs(event, "times"):
-            if key.text not in keys:
+            if re.match(r"[0-9]", key.text):
+                self._problems.report(key.place, "a comma in a number", "write a decimal point: 1.5 ms, say")
+                self._pass_over(value)
+            elif key.text not in keys:
                 advice = self._problems.did_you_mean(key.text, keys, f"here may stand: {', '.join(keys)}")
                 self._problems.report(key.place, f"{section} have no time {short(key.text)}", advice)
                 self._pass_over(value)

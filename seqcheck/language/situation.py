@@ -78,6 +78,16 @@ class Situation:
         return self.text[max(0, self.offset - 60) : self.offset].rstrip()
 
     @property
+    def ahead(self) -> str:
+        """The text behind the word, as far as a rule looks ahead."""
+        end = self.offset + len(self.word)
+        return self.text[end : end + 60]
+
+    @property
+    def begins_line(self) -> bool:
+        return not self.text[self.text.rfind("\n", 0, self.offset) + 1 : self.offset].strip()
+
+    @property
     def gap(self) -> str:
         """The spaces right before the slip."""
         near = self.text[max(0, self.offset - 60) : self.offset]
@@ -104,6 +114,8 @@ def expected(at: Situation) -> str | None:
         return f"did you mean `{near}`?"
     said = at.accepted - _UNSAID or at.accepted & _MEANT.keys() | at.accepted & {"AND", "OR"}
     words = [_MEANT.get(name, name.lower()) for name in sorted(said)]
+    if len(words) == 1 and at.word and "$END" not in at.accepted and (words[0] in "{)" or words[0].isalpha()):
+        return f"write `{words[0]}` before it"
     if not words or len(words) > 2 * _MOST_NAMED:
         return None
     named = words[:_MOST_NAMED] + (["..."] if len(words) > _MOST_NAMED else [])

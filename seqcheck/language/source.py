@@ -7,21 +7,28 @@ what cannot be read or is no text.
 from __future__ import annotations
 
 import sys
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 
 from seqcheck.machine.findings import Problem
 from seqcheck.machine.places import Place
 
 GREATEST_SIZE = 16 * 1024 * 1024
+_MARK = "\ufeff".encode()
 
 
 @dataclass(frozen=True, slots=True)
 class Source:
-    """A text and the name it goes by in messages."""
+    """A text and the name it goes by in messages. ``marked``: a byte order mark stood before it."""
 
     name: str
     text: str
+    marked: bool = field(default=False, compare=False)
+
+    @property
+    def whole(self) -> str:
+        """The text with its byte order mark, where it had one."""
+        return f"\ufeff{self.text}" if self.marked else self.text
 
 
 def read_source(name: str, most: int = GREATEST_SIZE) -> Source | Problem:
@@ -54,7 +61,7 @@ def decode(name: str, data: bytes, most: int = GREATEST_SIZE) -> Source | Proble
     if "\0" in text:
         before = text[: text.index("\0")]
         return _refuse(name, "the file holds a NUL byte: it is no text", "is this the right file?", before)
-    return Source(name, text)
+    return Source(name, text, data.startswith(_MARK))
 
 
 def _read_bytes(name: str, most: int) -> bytes:

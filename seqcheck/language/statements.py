@@ -5,12 +5,12 @@ Takes lark's tree of one whole statement; gives its record. What stands twice is
 
 from __future__ import annotations
 
-import re
 from collections.abc import Callable
 
 from lark import Token, Tree
 
 from seqcheck.language.harvest import Harvest, tokens, trees
+from seqcheck.language.spelling import spelled
 from seqcheck.language.steps import sequence_text
 from seqcheck.language.syntax import (
     CoilText,
@@ -33,8 +33,6 @@ from seqcheck.language.syntax import (
 )
 from seqcheck.machine.devices import ValveReturn
 from seqcheck.machine.time import WHOLE_SHARE
-
-_COMMENT_OR_TEXT = re.compile(r'("[^"\n]*")|#[^\n]*')
 
 
 def statement_text(harvest: Harvest, node: Tree[Token]) -> StatementText:
@@ -190,9 +188,8 @@ def _path_limit(harvest: Harvest, node: Tree[Token]) -> PathLimitText:
 
 
 def _written(harvest: Harvest, node: Tree[Token], end: int | None) -> str:
-    """A rule as it was written, on one line and without comments."""
-    text = harvest.ruler.text[node.meta.start_pos : end]
-    return " ".join(_COMMENT_OR_TEXT.sub(lambda found: found[1] or " ", text).split())
+    """A rule as it was written, on one line, without comments, whatever its blanks were."""
+    return spelled(harvest.ruler.text[node.meta.start_pos : end])
 
 
 _STATEMENTS: dict[str, Callable[[Harvest, Tree[Token]], StatementText]] = {

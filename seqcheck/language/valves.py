@@ -141,5 +141,8 @@ def _find(registry: Registry, valve: ValveText, coil: CoilText, key: str) -> Spa
 def _time(registry: Registry, valve: ValveText, coil: CoilText, key: str) -> Span:
     span = _find(registry, valve, coil, key)
     if span is None:
+        kind = valve.kind.value if valve.kind in _TWO_POSITIONS else "centre"
+        span = registry.assumed.take("valves", kind, key, valve.name.text, valve.name.place)
+    if span is None:
         registry.missing(valve.name.place, f"the valve {valve.name.text}", key, _EXAMPLES[key])
     return span or NO_TIME

@@ -6,6 +6,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from seqcheck.machine.accepts import Accept
+from seqcheck.machine.assumed import AssumedTime
 from seqcheck.machine.devices import Coil, Controller, Cylinder, Flag, Island, Output, Sensor, Signal, Valve
 from seqcheck.machine.rules import Rule
 from seqcheck.machine.steps import Choose, Item, Repeat, Sequence, Step, Together
@@ -30,6 +31,7 @@ class Machine:
     rules: tuple[Rule, ...]
     sheets: tuple[str, ...]
     accepts: tuple[Accept, ...] = ()
+    assumed: tuple[AssumedTime, ...] = ()
 
 
 def items_of(items: tuple[Item, ...]) -> Iterator[Item]:

@@ -30,8 +30,8 @@ def summary_lines(report: Report) -> tuple[Line, ...]:
     if report.problems:
         return labelled([("Verdict", verdict(report))], tone=Tone.ERROR)
     if report.verdict == "clean":
-        return (*labelled(_rows(report)), *proved_under_lines(report))
-    first, *rest = labelled([("Verdict", verdict(report)), *_rows(report)])
+        return (*labelled(summary_rows(report)), *proved_under_lines(report))
+    first, *rest = labelled([("Verdict", verdict(report)), *summary_rows(report)])
     return (Line(first.text, _tone(report)), *rest, *proved_under_lines(report))
 
 
@@ -70,7 +70,8 @@ def worst_handover(handovers: tuple[Handover, ...]) -> Handover:
     return min(handovers, key=lambda handover: (-handover.greatest_overlap_us, handover.least_gap_us))
 
 
-def _rows(report: Report) -> list[tuple[str, str]]:
+def summary_rows(report: Report) -> list[tuple[str, str]]:
+    """What the report holds, a label and a sentence each: cycle times, tightest margin, worst handover."""
     rows: list[tuple[str, str]] = []
     if report.cycles:
         rows.append(("Cycle", "; ".join(f"{name} {spelled_range(time)}" for name, time in report.cycles)))

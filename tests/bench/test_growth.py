@@ -6,33 +6,16 @@ machine; each is the least of several tries, as whatever else runs can only add.
 
 from __future__ import annotations
 
-import os
-import subprocess
-import sys
-import time
 import tracemalloc
-from collections.abc import Callable
-from pathlib import Path
 
 import pytest
 
 from seqcheck.language.source import Source
 from seqcheck.pipeline import examine_source
+from tests.bench.measures import least_cpu, process_cost
 from tests.bench.stations import in_a_row
 
 pytestmark = pytest.mark.bench
-
-CHECKOUT = Path(__file__).resolve().parents[2]
-
-
-def least_cpu(work: Callable[[], object], tries: int = 5) -> float:
-    """Seconds of processor time, the least of some tries."""
-    best = float("inf")
-    for _ in range(tries):
-        start = time.process_time()
-        work()
-        best = min(best, time.process_time() - start)
-    return best
 
 
 def checked(steps: int) -> None:
@@ -60,23 +43,8 @@ def test_cost_grows_with_the_steps() -> None:
     assert memory[300] < 4 * memory[100]
 
 
-def least_wall(code: str, tries: int = 7) -> float:
-    best = float("inf")
-    for _ in range(tries):
-        start = time.perf_counter()
-        subprocess.run(
-            [sys.executable, "-c", code],
-            cwd=CHECKOUT,
-            env={**os.environ, "PYTHONDONTWRITEBYTECODE": ""},
-            stdout=subprocess.DEVNULL,
-            check=True,
-        )
-        best = min(best, time.perf_counter() - start)
-    return best
-
-
 def test_a_small_check_costs_less_than_twice_its_imports() -> None:
-    imports = least_wall("import lark, networkx, numpy, yaml, rich")
-    whole = least_wall("from seqcheck.commandline import main; main(['check', 'examples/crate_stapler.steps'])")
+    imports = process_cost("-c", "import lark, networkx, numpy, yaml, rich", tries=7).seconds
+    whole = process_cost("-m", "seqcheck", "check", "examples/crate_stapler.steps", tries=7).seconds
     print(f"\ncrate stapler, whole process: {whole / imports:.2f} times importing the runtime dependencies")
     assert whole < 2 * imports

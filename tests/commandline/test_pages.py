@@ -41,6 +41,9 @@ def test_version(capsys: Output) -> None:
         ["margins", "--help"],
         ["compare", "--help"],
         ["explain", "--help"],
+        ["new", "--help"],
+        ["format", "--help"],
+        ["completion", "--help"],
     ],
 )
 def test_help_says_what_the_tool_is_not(arguments: list[str], capsys: Output) -> None:
