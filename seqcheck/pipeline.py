@@ -13,11 +13,11 @@ from seqcheck.checks.assumptions import assumptions
 from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
 from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
-from seqcheck.checks.study import Study
+from seqcheck.checks.study import Study, studies_of
 from seqcheck.checks.times import critical_path, cycle_times, step_times, together
+from seqcheck.engine.explore import explore
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
-from seqcheck.engine.worlds import play_worlds
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Problem, Report
@@ -40,11 +40,11 @@ def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int =
     refused = outside_scope(machine)
     if refused:
         return _refused(source, machine, refused)
-    worlds = play_worlds(machine)
-    if any(settlement.trace.too_long for settlement in worlds.settlements):
+    graph = explore(machine)
+    if any(settlement.trace.too_long for settlement in graph.settlements):
         return _refused(source, machine, (_too_long(machine),))
-    studies = [Study(machine, settlement) for settlement in worlds.settlements]
-    report = _report(studies, prove(studies, CHECKS, reserve_us), worlds.complete)
+    studies = studies_of(machine, graph)
+    report = _report(studies, prove(studies, CHECKS, reserve_us), graph.complete)
     lines = _lines_of(source)
     return replace(report, findings=tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings))
 

@@ -19,8 +19,8 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
     due. A watchdog that would then expire is no finding of its own."""
     if not study.trace.finished:
         return
-    entered = {visit.step.name for visit in study.trace.visits}
-    missing = [step.name for one in study.machine.sequences for step in steps_of(one) if step.name not in entered]
+    steps = [step.name for one in study.machine.sequences for step in steps_of(one)]
+    missing = [name for name in steps if name not in study.entered]
     more = f" and {len(missing) - 1} more" if len(missing) > 1 else ""
     never = f" ({missing[0]}{more} never entered)" if missing else ""
     last = max(study.trace.happened, key=study.time)
@@ -30,7 +30,7 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
             name = visit.step.name
             message = f"{name} is never left: it waits for {waits}, and nothing more happens{never}"
             run = narrate_typical(study, visit.entered.event, last)
-            yield Sight(name, name, visit.step.place, message, run)
+            yield Sight(name, name, visit.step.place, message, run, at=last)
 
 
 def _missing(study: Study, visit: Visit) -> Iterator[str]:

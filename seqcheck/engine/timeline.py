@@ -28,6 +28,7 @@ class Order(IntEnum):
     MARK = 4
     VALVE = 5
     COIL = 6
+    WATCHDOG = 7
 
 
 def typical(what: str, name: str, number: int, span: Span) -> int:
