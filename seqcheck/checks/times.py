@@ -8,12 +8,13 @@ that runs once, from its start to its end.
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
+from itertools import pairwise
 
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations, separation_table
 from seqcheck.engine.graph import Event
-from seqcheck.engine.trace import Read, Visit
+from seqcheck.engine.trace import Read
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Duration, PathPart
 from seqcheck.machine.model import steps_of
@@ -33,17 +34,20 @@ def together(worlds: Iterable[tuple[tuple[str, Duration], ...]]) -> tuple[tuple[
 
 
 def cycle_times(study: Study) -> tuple[tuple[str, Duration], ...]:
-    intervals = list(_cycles(study))
-    if not intervals:
-        return ()
-    return ((study.machine.sequences[0].name, _duration(study, intervals, _bounds(study, intervals))),)
+    found = []
+    for sequence in study.machine.sequences:
+        intervals = list(cycles_in(study, sequence.name, settled=True))
+        if intervals:
+            found.append((sequence.name, _duration(study, intervals, _bounds(study, intervals))))
+    return tuple(found)
 
 
 def step_times(study: Study) -> tuple[tuple[str, Duration], ...]:
     """In the order of the text; steps that no settled cycle leaves are left out."""
     by_step: dict[str, list[_Interval]] = {}
+    since = _settled_since(study)
     for visit in study.trace.visits:
-        if visit.left is not None and _in_settled_cycle(study, visit):
+        if visit.left is not None and study.time(visit.entered.event) >= since:
             by_step.setdefault(visit.step.name, []).append((visit.entered.event, visit.left.event))
     rows = _bounds(study, (interval for intervals in by_step.values() for interval in intervals))
     return tuple(
@@ -56,7 +60,7 @@ def step_times(study: Study) -> tuple[tuple[str, Duration], ...]:
 
 def critical_path(study: Study) -> tuple[PathPart, ...]:
     """The chain of causes that makes the longest settled cycle as long as it can be."""
-    intervals = list(_cycles(study))
+    intervals = list(cycles_in(study, study.machine.sequences[0].name, settled=True))
     if not intervals:
         return ()
     rows = _bounds(study, intervals)
@@ -97,32 +101,40 @@ def _words(study: Study, event: int) -> str:
     return ", ".join(text for text in told if text)
 
 
-def _cycles(study: Study) -> Iterator[_Interval]:
-    trace, settlement = study.trace, study.settlement
-    if study.machine.sequences[0].once:
-        if trace.finished and all(visit.left is not None for visit in trace.visits) and trace.visits:
-            ends = [visit.left.event for visit in trace.visits if visit.left is not None and not visit.left.entered]
-            yield _begin(trace.cycles[0]), study.last_of(Event("end", ""), ends)
+def cycles_in(study: Study, sequence: str, settled: bool = False) -> Iterator[_Interval]:
+    """The cycles that a play has come through whole; only ``settled`` ones, if asked. A sequence that runs once has
+    one, from its start to its end."""
+    trace = study.trace
+    rounds = trace.rounds[sequence]
+    once = {one.name: one.once for one in study.machine.sequences}[sequence]
+    if once:
+        visits = [visit for visit in trace.visits if visit.step.name.split(".", 1)[0] == sequence]
+        if visits and all(visit.left is not None for visit in visits):
+            ends = [visit.left.event for visit in visits if visit.left is not None]
+            yield _begin(rounds[0], sequence), study.last_of(Event("end", ""), ends)
         return
-    for number in range(_first_cycle(study), settlement.last):
-        yield _begin(trace.cycles[number]), trace.cycles[number + 1].event
+    since = _settled_since(study) if settled else 0
+    for read, following in pairwise(rounds):
+        if study.time(read.event) >= since:
+            yield _begin(read, sequence), following.event
 
 
-def _begin(read: Read) -> int:
+def _begin(read: Read, sequence: str) -> int:
     """Entering the first step, or leaving it where it waits for a signal from outside."""
-    first, *others = read.entered
-    waits = any(literal.term.kind is TermKind.SIGNAL for literal in first.literals)
-    return first.left.event if waits and not others and first.left is not None else read.event
+    entered = [visit for visit in read.entered if visit.step.name.split(".", 1)[0] == sequence]
+    if len(entered) != 1 or entered[0].left is None:
+        return read.event
+    waits = any(literal.term.kind is TermKind.SIGNAL for literal in entered[0].literals)
+    return entered[0].left.event if waits else read.event
 
 
-def _in_settled_cycle(study: Study, visit: Visit) -> bool:
+def _settled_since(study: Study) -> int:
+    """From when on the play shows cycles as they go on for ever. One in which something comes out otherwise shows it
+    but once, and all that it has shown counts."""
     settlement = study.settlement
-    return settlement.first == settlement.last or _first_cycle(study) <= visit.cycle < settlement.last
-
-
-def _first_cycle(study: Study) -> int:
-    """A play with an order turned has it turned once, in the first cycle that can show it."""
-    return 0 if study.settlement.delays else study.settlement.first
+    if settlement.recipe.way.fresh >= 0 or settlement.first == settlement.last:
+        return 0
+    return study.time(settlement.trace.cycles[settlement.first].event)
 
 
 def _bounds(study: Study, intervals: Iterable[_Interval]) -> Rows:

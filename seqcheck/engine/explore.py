@@ -3,7 +3,8 @@
 Takes a machine; gives plays that together stand for all runs, and the graph over them. A play goes on from the start,
 as typical times and the first outcome of each choice have it, until a state comes up again. What might have come out
 otherwise on its way is played otherwise from there: other outcomes of a choice, and the other way round every order
-that the bounds leave open and that is nobody's fault. Runs that come to a known state join there; work grows with states.
+that the bounds leave open and that is nobody's fault. Runs that come to a known state join there; work grows with
+states.
 """
 
 from __future__ import annotations

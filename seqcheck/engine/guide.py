@@ -5,8 +5,8 @@ at starts of rounds and at choices that may come out in several ways. Once a sta
 little (round again, if it was its own), so that every pair of events across the border is in the trace, and stops.
 
 A state is the machine and all that is under way, with the bounds of when it will come; what has come already but may
-yet come after the state in other runs belongs to it, too, and so does a coil released so lately that its valve's ``gap`` is
-not over.
+yet come after the state in other runs belongs to it, too, and so does a coil released so lately that its valve's
+``gap`` is not over.
 """
 
 from __future__ import annotations

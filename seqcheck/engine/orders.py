@@ -117,6 +117,14 @@ def _of_alarm(trace: Trace, wait: Wait, what: tuple[object, ...]) -> Iterator[Or
             yield Order((*what, "too late", named), alarm.over, event)
 
 
+def held_too_late(trace: Trace, wait: Wait) -> int | None:
+    """The event by which a wait that its watchdog has ended would have come to hold; None where that is not known."""
+    events = [event for one in wait.alternatives if (event := _completed(trace, wait, one, at_input=True)) is not None]
+    timed = [event for event in (wait.dwell_over, wait.steady_over) if event is not None]
+    first = min(events, key=lambda event: trace.times[event], default=None)
+    return None if first is None else _latest(trace, [first, *timed])
+
+
 def what_held(wait: Wait) -> list[int]:
     """The events after which the wait had come to hold, seen or not."""
     held = [answer.held for answer in wait.answers]
@@ -160,10 +168,12 @@ def _named(literals: Iterable[Literal]) -> frozenset[tuple[object, ...]]:
 @dataclass(frozen=True, slots=True)
 class ChoiceOrder:
     """``other``: the branch that would be taken were it the other way round, None for waiting first. ``outside``: a
-    signal from outside is the reason, so that it is nobody's fault. ``asked``: what is asked."""
+    signal from outside is the reason, so that it is nobody's fault. ``asked``: what is asked; ``how`` it would come
+    the other way round, ``{by}`` so much."""
 
     order: Order
     asked: str
+    how: str
     other: int | None
     outside: bool
 
@@ -193,9 +203,21 @@ def _at_the_first_read(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
             continue
         place = ("choose", choice.choose.place, aspect[1])
         if at:
-            yield ChoiceOrder(Order((*place, "seen"), log[at - 1].seen, read), aspect[1], other, False)
+            yield ChoiceOrder(
+                Order((*place, "seen"), log[at - 1].seen, read),
+                aspect[1],
+                f"{aspect[1]} changing {{by}} after the read that asks it",
+                other,
+                False,
+            )
         if at < len(log):
-            yield ChoiceOrder(Order((*place, "not seen"), read, log[at].seen), aspect[1], other, False)
+            yield ChoiceOrder(
+                Order((*place, "not seen"), read, log[at].seen),
+                aspect[1],
+                f"{aspect[1]} changing {{by}} before the read that asks it",
+                other,
+                False,
+            )
 
 
 def _value_before(log: Sequence[Known], at: int) -> bool:
@@ -223,10 +245,12 @@ def _while_it_stands(machine: Machine, trace: Trace, choice: Choice) -> Iterator
             comes = _completed(trace, choice, other)
             if number == choice.taken or comes is None:
                 continue
-            literals = [*other, *(answer.literal for answer in choice.answers)]
-            outside = any(_from_outside(machine, literal) for literal in literals)
+            own = [answer.literal for answer in choice.answers]
+            outside = any(_from_outside(machine, literal) for literal in (*other, *own))
             key = ("choose", choice.choose.place, choice.taken, number, _named(other))
-            yield ChoiceOrder(Order(key, came, comes), ", ".join(one.term.subject for one in other), number, outside)
+            asked = " and ".join(one.term.subject for one in other)
+            how = f"{asked} coming {{by}} before {' and '.join(one.term.subject for one in own)}"
+            yield ChoiceOrder(Order(key, came, comes), asked, how, number, outside)
 
 
 def _from_outside(machine: Machine, literal: Literal) -> bool:
