@@ -14,10 +14,11 @@ from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
 from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
 from seqcheck.checks.study import Study, studies_of
-from seqcheck.checks.times import critical_path, cycle_times, step_times, together
+from seqcheck.checks.times import choice_times, critical_path, cycle_times, step_times, together
 from seqcheck.engine.explore import explore
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
+from seqcheck.engine.states import TimedStates, timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Problem, Report
@@ -44,7 +45,8 @@ def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int =
     if any(settlement.trace.too_long for settlement in graph.settlements):
         return _refused(source, machine, (_too_long(machine),))
     studies = studies_of(machine, graph)
-    report = _report(studies, prove(studies, CHECKS, reserve_us), graph.complete)
+    timed = timed_states(machine, graph)
+    report = _report(studies, timed, prove(studies, CHECKS, reserve_us), graph.complete)
     lines = _lines_of(source)
     return replace(report, findings=tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings))
 
@@ -67,7 +69,7 @@ def _too_long(machine: Machine) -> Problem:
     )
 
 
-def _report(studies: Sequence[Study], proof: Proof, complete: bool) -> Report:
+def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete: bool) -> Report:
     """``complete``: every order that is a matter of time was played both ways."""
     typical, machine = studies[0], studies[0].machine
     findings = tuple(one.finding for one in proof.broken)
@@ -78,7 +80,8 @@ def _report(studies: Sequence[Study], proof: Proof, complete: bool) -> Report:
         findings=findings,
         sheets=machine.sheets,
         assumptions=assumptions(typical, complete, accepted, proof.strays),
-        cycles=together(cycle_times(study) for study in studies),
+        cycles=cycle_times(studies, timed),
+        choices=choice_times(machine, timed),
         steps=together(step_times(study) for study in studies),
         critical_path=critical_path(typical),
         handovers=tightest_handovers(handovers(study) for study in studies),

@@ -7,39 +7,79 @@ that runs once, from its start to its end.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Collection, Iterable, Iterator, Sequence
+from functools import partial, reduce
 from itertools import pairwise
 
+from seqcheck.checks.cycle_ways import CycleWays
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations, separation_table
 from seqcheck.engine.graph import Event
+from seqcheck.engine.states import Run, TimedStates, waits_for_outside
 from seqcheck.engine.trace import Read
-from seqcheck.machine.conditions import TermKind
-from seqcheck.machine.findings import Duration, PathPart
-from seqcheck.machine.model import steps_of
+from seqcheck.machine.findings import ChoiceTime, Duration, PathPart
+from seqcheck.machine.model import Machine, items_of, steps_of
+from seqcheck.machine.steps import Choose
 
 _Interval = tuple[int, int]
 
 
-def together(worlds: Iterable[tuple[tuple[str, Duration], ...]]) -> tuple[tuple[str, Duration], ...]:
-    """The durations of all the ways in which a machine was played; the first way is the typical one."""
+def together(plays: Iterable[tuple[tuple[str, Duration], ...]]) -> tuple[tuple[str, Duration], ...]:
+    """The durations of all plays of a machine; the first play is the typical one."""
     found: dict[str, Duration] = {}
-    for durations in worlds:
+    for durations in plays:
         for name, one in durations:
-            known = found.get(name, one)
-            longest = None if known.greatest is None or one.greatest is None else max(known.greatest, one.greatest)
-            found[name] = Duration(min(known.least, one.least), known.typical, longest)
+            found[name] = longer_of(found[name], one) if name in found else one
     return tuple(found.items())
 
 
-def cycle_times(study: Study) -> tuple[tuple[str, Duration], ...]:
+def cycle_times(studies: Sequence[Study], timed: TimedStates) -> tuple[tuple[str, Duration], ...]:
+    """Of every sequence. Where nothing comes out in several ways, as the plays themselves show it, exactly; else by
+    all ways through the timed state graph."""
     found = []
-    for sequence in study.machine.sequences:
-        intervals = list(cycles_in(study, sequence.name, settled=True))
-        if intervals:
-            found.append((sequence.name, _duration(study, intervals, _bounds(study, intervals))))
+    one_way = not any(state.choose for state in timed.states) and len(studies[0].machine.sequences) == 1
+    for sequence in studies[0].machine.sequences:
+        played = [duration for study in studies if (duration := _played(study, sequence.name)) is not None]
+        ways = None if one_way or sequence.once else CycleWays(timed, sequence.name).duration()
+        if ways is not None:
+            typical = played[0].typical if played else ways.typical
+            found.append((sequence.name, Duration(ways.least, typical, ways.greatest)))
+        elif played:
+            found.append((sequence.name, reduce(longer_of, played)))
     return tuple(found)
+
+
+def choice_times(machine: Machine, timed: TimedStates) -> tuple[ChoiceTime, ...]:
+    """The cycle of the sequence that chooses, for every branch that can be taken."""
+    found = []
+    owners = {
+        id(item): one.name for one in machine.sequences for item in items_of(one.items) if isinstance(item, Choose)
+    }
+    choices = {state.choose.place: state.choose for state in timed.states if state.choose is not None}
+    for choose in (choices[place] for place in sorted(choices)):
+        ways = CycleWays(timed, owners[id(choose)])
+        at = {state.number for state in timed.states if state.choose is choose}
+        for number, choice in enumerate(choose.choices):
+            duration = ways.duration(partial(_takes, at, number))
+            if duration is not None:
+                found.append(ChoiceTime(owners[id(choose)], choice.place, choice.condition is None, duration))
+    return tuple(found)
+
+
+def _takes(states: Collection[int], branch: int, run: Run) -> bool:
+    return run.begin in states and run.outcome is not None and run.outcome.taken == branch
+
+
+def _played(study: Study, sequence: str) -> Duration | None:
+    intervals = list(cycles_in(study, sequence, settled=True))
+    return _duration(study, intervals, _bounds(study, intervals)) if intervals else None
+
+
+def longer_of(one: Duration, other: Duration) -> Duration:
+    """From the least of both to the greatest of both; typical as the first."""
+    longest = None if one.greatest is None or other.greatest is None else max(one.greatest, other.greatest)
+    return Duration(min(one.least, other.least), one.typical, longest)
 
 
 def step_times(study: Study) -> tuple[tuple[str, Duration], ...]:
@@ -111,21 +151,20 @@ def cycles_in(study: Study, sequence: str, settled: bool = False) -> Iterator[_I
         visits = [visit for visit in trace.visits if visit.step.name.split(".", 1)[0] == sequence]
         if visits and all(visit.left is not None for visit in visits):
             ends = [visit.left.event for visit in visits if visit.left is not None]
-            yield _begin(rounds[0], sequence), study.last_of(Event("end", ""), ends)
+            yield _begin(study, rounds[0], sequence), study.last_of(Event("end", ""), ends)
         return
     since = _settled_since(study) if settled else 0
     for read, following in pairwise(rounds):
         if study.time(read.event) >= since:
-            yield _begin(read, sequence), following.event
+            yield _begin(study, read, sequence), following.event
 
 
-def _begin(read: Read, sequence: str) -> int:
+def _begin(study: Study, read: Read, sequence: str) -> int:
     """Entering the first step, or leaving it where it waits for a signal from outside."""
     entered = [visit for visit in read.entered if visit.step.name.split(".", 1)[0] == sequence]
     if len(entered) != 1 or entered[0].left is None:
         return read.event
-    waits = any(literal.term.kind is TermKind.SIGNAL for literal in entered[0].literals)
-    return entered[0].left.event if waits else read.event
+    return entered[0].left.event if waits_for_outside(study.machine, entered[0].step) else read.event
 
 
 def _settled_since(study: Study) -> int:

@@ -99,6 +99,17 @@ class Duration:
 
 
 @dataclass(frozen=True, slots=True)
+class ChoiceTime:
+    """How long a cycle of ``sequence`` takes in which a choice takes the branch at ``place``. ``typical`` is the least
+    here: nobody says which ways are typical."""
+
+    sequence: str
+    place: Place
+    otherwise: bool
+    duration: Duration
+
+
+@dataclass(frozen=True, slots=True)
 class PathPart:
     """One event on the critical path: how late it can come after the start of the cycle, the delay that brings it
     (least, greatest, the latter None where open) and where it stands."""
@@ -120,6 +131,7 @@ class Report:
     sheets: tuple[str, ...] = ()
     assumptions: tuple[str, ...] = ()
     cycles: tuple[tuple[str, Duration], ...] = ()
+    choices: tuple[ChoiceTime, ...] = ()
     steps: tuple[tuple[str, Duration], ...] = ()
     critical_path: tuple[PathPart, ...] = ()
     handovers: tuple[Handover, ...] = ()
