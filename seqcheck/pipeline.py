@@ -13,8 +13,9 @@ from seqcheck.checks.assumptions import assumptions
 from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
 from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
+from seqcheck.checks.shown_states import shown_runs, shown_states
 from seqcheck.checks.study import Study, studies_of
-from seqcheck.checks.times import choice_times, critical_path, cycle_times, step_times, together
+from seqcheck.checks.times import choice_times, critical_path, cycle_times, step_times
 from seqcheck.engine.explore import explore
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
@@ -82,7 +83,9 @@ def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete
         assumptions=assumptions(typical, complete, accepted, proof.strays),
         cycles=cycle_times(studies, timed),
         choices=choice_times(machine, timed),
-        steps=together(step_times(study) for study in studies),
+        states=shown_states(timed),
+        runs=shown_runs(timed),
+        steps=step_times(studies),
         critical_path=critical_path(typical),
         handovers=tightest_handovers(handovers(study) for study in studies),
         margins=proof.margins,

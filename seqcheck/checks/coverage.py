@@ -7,24 +7,35 @@ from collections.abc import Iterable, Iterator, Sequence
 from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.study import Study
 from seqcheck.engine.knowledge import asked_conditions
+from seqcheck.engine.program import compile_sequence
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import FollowingSignal, OnConditions
 from seqcheck.machine.findings import Severity
-from seqcheck.machine.model import Machine, steps_of
+from seqcheck.machine.model import Machine, items_of, steps_of
 from seqcheck.machine.rules import CycleLimit, Never
-from seqcheck.machine.steps import Step
+from seqcheck.machine.steps import Choose, Step
+from seqcheck.machine.steps import Sequence as StepSequence
 
 
 def _unreachable(studies: Sequence[Study]) -> Iterator[Sight]:
-    """What only a dead end keeps from being entered is told with the dead end."""
+    """What only a dead end keeps from being entered is told with the dead end. Steps to which a watchdog leads are
+    there for the day on which a part fails, and no healthy machine enters them."""
     if any(one.trace.finished and any(visit.left is None for visit in one.trace.visits) for one in studies):
         return
     for sequence in studies[0].machine.sequences:
-        missing = [step for step in steps_of(sequence) if step.name not in studies[0].entered]
+        known = studies[0].entered | _behind_watchdogs(sequence)
+        missing = [step for step in steps_of(sequence) if step.name not in known]
         if missing:
             more = f", nor {len(missing) - 1} more" if len(missing) > 1 else ""
             message = f"no run enters {missing[0].name}{more}"
             yield Sight(missing[0].name, missing[0].name, missing[0].place, message)
+
+
+def _behind_watchdogs(sequence: StepSequence) -> set[str]:
+    program = compile_sequence(sequence)
+    watchdogs = [item.watchdog for item in items_of(sequence.items) if isinstance(item, Step | Choose)]
+    targets = {one.target for one in watchdogs if one is not None and one.target is not None}
+    return {name for target in targets for name in program.steps_behind(target)}
 
 
 def _no_watchdog(studies: Sequence[Study]) -> Iterator[Sight]:

@@ -13,6 +13,7 @@ from itertools import pairwise
 
 from seqcheck.checks.cycle_ways import CycleWays
 from seqcheck.checks.narrate import describe
+from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations, separation_table
 from seqcheck.engine.graph import Event
@@ -23,15 +24,6 @@ from seqcheck.machine.model import Machine, items_of, steps_of
 from seqcheck.machine.steps import Choose
 
 _Interval = tuple[int, int]
-
-
-def together(plays: Iterable[tuple[tuple[str, Duration], ...]]) -> tuple[tuple[str, Duration], ...]:
-    """The durations of all plays of a machine; the first play is the typical one."""
-    found: dict[str, Duration] = {}
-    for durations in plays:
-        for name, one in durations:
-            found[name] = longer_of(found[name], one) if name in found else one
-    return tuple(found.items())
 
 
 def cycle_times(studies: Sequence[Study], timed: TimedStates) -> tuple[tuple[str, Duration], ...]:
@@ -63,7 +55,7 @@ def choice_times(machine: Machine, timed: TimedStates) -> tuple[ChoiceTime, ...]
         for number, choice in enumerate(choose.choices):
             duration = ways.duration(partial(_takes, at, number))
             if duration is not None:
-                found.append(ChoiceTime(owners[id(choose)], choice.place, choice.condition is None, duration))
+                found.append(ChoiceTime(owners[id(choose)], choice.place, branch_name(choose, number), duration))
     return tuple(found)
 
 
@@ -82,20 +74,25 @@ def longer_of(one: Duration, other: Duration) -> Duration:
     return Duration(min(one.least, other.least), one.typical, longest)
 
 
-def step_times(study: Study) -> tuple[tuple[str, Duration], ...]:
+def step_times(studies: Sequence[Study]) -> tuple[tuple[str, Duration], ...]:
     """In the order of the text; steps that no settled cycle leaves are left out."""
+    found: dict[str, Duration] = {}
+    for study in studies:
+        for name, duration in _step_times(study):
+            found[name] = longer_of(found[name], duration) if name in found else duration
+    steps = [step.name for sequence in studies[0].machine.sequences for step in steps_of(sequence)]
+    return tuple((name, found[name]) for name in steps if name in found)
+
+
+def _step_times(study: Study) -> Iterator[tuple[str, Duration]]:
     by_step: dict[str, list[_Interval]] = {}
     since = _settled_since(study)
     for visit in study.trace.visits:
         if visit.left is not None and study.time(visit.entered.event) >= since:
             by_step.setdefault(visit.step.name, []).append((visit.entered.event, visit.left.event))
     rows = _bounds(study, (interval for intervals in by_step.values() for interval in intervals))
-    return tuple(
-        (step.name, _duration(study, by_step[step.name], rows))
-        for sequence in study.machine.sequences
-        for step in steps_of(sequence)
-        if step.name in by_step
-    )
+    for name, intervals in by_step.items():
+        yield name, _duration(study, intervals, rows)
 
 
 def critical_path(study: Study) -> tuple[PathPart, ...]:

@@ -103,6 +103,38 @@ class Program:
             kept.append(count)
         return (*kept, *(self._times(loop) for loop in self.loops[to][len(kept) :]))
 
+    def steps_behind(self, step: str) -> set[str]:
+        """The steps that can come to be active once this one is, itself included."""
+        found: set[int] = set()
+        waiting = [self.steps[step]]
+        while waiting:
+            at = waiting.pop()
+            if at not in found:
+                found.add(at)
+                waiting += self._following(at)
+        return {name for name, at in self.steps.items() if at in found}
+
+    def _following(self, at: int) -> tuple[int, ...]:
+        match self.code[at]:
+            case Enter(step):
+                target = step.watchdog.target if step.watchdog is not None else None
+                return (at + 1, *([self.steps[target]] if target is not None else []))
+            case Count(_, behind):
+                return at + 1, behind
+            case Again(start):
+                return start + 1, at + 1
+            case Fork(branches, join):
+                return (*branches, join)
+            case Select(choose, _, branches):
+                target = choose.watchdog.target if choose.watchdog is not None else None
+                return (*branches, *([self.steps[target]] if target is not None else []))
+            case Go(to):
+                return (to,)
+            case Last(once):
+                return () if once else (0,)
+            case BranchEnd():
+                return ()
+
     def _times(self, loop: int) -> int:
         begin = self.code[loop]
         assert isinstance(begin, Count)

@@ -100,12 +100,32 @@ class Duration:
 
 @dataclass(frozen=True, slots=True)
 class ChoiceTime:
-    """How long a cycle of ``sequence`` takes in which a choice takes the branch at ``place``. ``typical`` is the least
-    here: nobody says which ways are typical."""
+    """How long a cycle of ``sequence`` takes in which a choice takes the branch at ``place``, called ``way``. The
+    typical time is that of the shortest way: nobody says which ways are typical."""
 
     sequence: str
     place: Place
-    otherwise: bool
+    way: str
+    duration: Duration
+
+
+@dataclass(frozen=True, slots=True)
+class State:
+    """A state that a machine comes to: where sequences begin anew, or where a choice may come out in several ways.
+    ``name`` says which; ``choice`` is the place of the choice."""
+
+    number: int
+    name: str
+    choice: Place | None
+
+
+@dataclass(frozen=True, slots=True)
+class StateRun:
+    """A run from one state to the next, by their numbers. ``way``: how the choice at the first of them came out."""
+
+    begin: int
+    end: int
+    way: str | None
     duration: Duration
 
 
@@ -132,6 +152,8 @@ class Report:
     assumptions: tuple[str, ...] = ()
     cycles: tuple[tuple[str, Duration], ...] = ()
     choices: tuple[ChoiceTime, ...] = ()
+    states: tuple[State, ...] = ()
+    runs: tuple[StateRun, ...] = ()
     steps: tuple[tuple[str, Duration], ...] = ()
     critical_path: tuple[PathPart, ...] = ()
     handovers: tuple[Handover, ...] = ()
