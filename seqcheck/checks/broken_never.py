@@ -36,7 +36,15 @@ def _obligation(rule: Never, spells: tuple[Holds, ...]) -> Iterator[Obligation]:
     if pairs:
         (first, second), *others = pairs
         yield Obligation(
-            rule.text, None, rule.place, first, second, _wording(rule), -rule.tolerated, others=tuple(others)
+            rule.text,
+            None,
+            rule.place,
+            first,
+            second,
+            _wording(rule),
+            -rule.tolerated,
+            others=tuple(others),
+            diverts=False,
         )
 
 

@@ -36,7 +36,8 @@ class Wording:
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
     brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.
-    ``severity``: where it is not that of the kind."""
+    ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than others do,
+    in a way that nobody plays. ``assumed``: orders that this play takes for granted, but that are in question here."""
 
     subject: str
     step: str | None
@@ -49,6 +50,8 @@ class Obligation:
     #: Or, just as well, one of these pairs as far apart.
     others: tuple[tuple[int, int], ...] = ()
     severity: Severity | None = None
+    diverts: bool = True
+    assumed: tuple[tuple[int, int], ...] = ()
 
     @property
     def pairs(self) -> tuple[tuple[int, int], ...]:

@@ -41,6 +41,8 @@ def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
         one.order.first,
         one.order.second,
         Wording(message, lambda by: f"let the step before wait until {one.asked} is sure to be as it will stay"),
+        diverts=False,
+        assumed=((one.order.first, one.order.second),),
     )
 
 

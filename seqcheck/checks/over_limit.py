@@ -21,7 +21,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             case CycleLimit(sequence, greatest):
                 over = f"a cycle of {sequence} can take {{by}} longer than {in_time(greatest)}"
                 for begin, end in cycles_in(study, sequence):
-                    yield Obligation(rule.text, None, rule.place, end, begin, Wording(over), -greatest)
+                    yield Obligation(rule.text, None, rule.place, end, begin, Wording(over), -greatest, diverts=False)
             case PathLimit():
                 yield from _between(study, rule)
             case _:
@@ -38,9 +38,9 @@ def _between(study: Study, rule: PathLimit) -> Iterator[Obligation]:
     for start in starts:
         at = bisect_left(times, study.time(start))
         for end in ends[at : at + 1]:
-            yield Obligation(rule.text, None, rule.place, end, start, over, -rule.greatest)
+            yield Obligation(rule.text, None, rule.place, end, start, over, -rule.greatest, diverts=False)
             if rule.least is not None:
-                yield Obligation(rule.text, None, rule.place, start, end, under, rule.least)
+                yield Obligation(rule.text, None, rule.place, start, end, under, rule.least, diverts=False)
 
 
 CHECK = Check("over-limit", Severity.ERROR, "a cycle or a way takes longer, or shorter, than it may", _obligations)

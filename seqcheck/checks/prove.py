@@ -127,8 +127,7 @@ def _prove_one(
         for one in check.obligations(study)
         if max(study.time(event) for pair in one.pairs for event in pair) >= since
     ]
-    pairs = (pair for _, one in stated for pair in one.pairs)
-    rows = greatest_separations(study.trace.graph, both_ways(pairs))
+    rows = _rows(study, [one for _, one in stated])
     turn = _turning_point(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
     shown: dict[_Key, set[Segment]] = {}
@@ -159,6 +158,19 @@ def _prove_one(
     return _ProofOfOne(tuple(seen), tuple(margins), turn is not None)
 
 
+def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:
+    """The separations of all pairs, each under the orders that its obligation takes for granted."""
+    graph = study.trace.graph
+    by_assumed: dict[tuple[tuple[int, int], ...], list[tuple[int, int]]] = {}
+    for one in stated:
+        by_assumed.setdefault(one.assumed, []).extend(one.pairs)
+    rows: Rows = {}
+    for assumed in sorted(by_assumed):
+        with graph.not_assuming(assumed):
+            rows |= greatest_separations(graph, both_ways(by_assumed[assumed]))
+    return rows
+
+
 def _best_pair(one: Obligation, rows: Rows) -> Obligation:
     """The obligation by the pair that keeps it best."""
     if not one.others:
@@ -178,7 +190,7 @@ def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) 
         (
             study.time(one.second)
             for one in obligations
-            if not one.others
+            if one.diverts
             and study.time(one.first) + one.least > study.time(one.second)
             and rows[one.first, one.second] >= one.least
         ),
@@ -187,7 +199,8 @@ def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) 
 
 
 def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
-    run = witness(study.trace, one.first, one.second)
+    with study.trace.graph.not_assuming(one.assumed):
+        run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
     by = "an unlimited time" if shown is None else in_time(-shown)
     mend = one.wording.mend

@@ -26,7 +26,11 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
     elif study.settlement.path.first is not None and study.settlement.path.last is not None:
         passages = study.settlement.path.passages
         begin, last = (passages[number].at for number in (study.settlement.path.first, study.settlement.path.last))
-        stuck = [wait for wait in _waiting_since(trace, study.time(begin)) if not _may_yet_end(study, wait)]
+        stuck = [
+            wait
+            for wait in _waiting_since(trace, study.time(begin))
+            if not _may_yet_end(study, wait) and not (isinstance(wait, Visit) and wait.step.name in study.left)
+        ]
         more = "nothing else brings that"
     else:
         return

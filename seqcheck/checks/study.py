@@ -34,12 +34,18 @@ class _Wait:
 
 class Study:
     def __init__(
-        self, machine: Machine, settlement: Settlement, draw: Draw = typical, entered: frozenset[str] = frozenset()
+        self,
+        machine: Machine,
+        settlement: Settlement,
+        draw: Draw = typical,
+        entered: frozenset[str] = frozenset(),
+        left: frozenset[str] = frozenset(),
     ) -> None:
         """``draw``: how the delays of the events that the study adds are drawn. ``entered``: the steps that any play
-        has entered."""
+        has entered; ``left``: those that any play has left."""
         self.machine = machine
         self.entered = entered
+        self.left = left
         self._draw = draw
         self.settlement = settlement
         self.trace = settlement.trace
@@ -261,6 +267,8 @@ class Study:
 
 
 def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
-    """A study of each play; all know which steps any of them has entered."""
-    entered = frozenset(visit.step.name for one in graph.settlements for visit in one.trace.visits)
-    return [Study(machine, settlement, entered=entered) for settlement in graph.settlements]
+    """A study of each play; all know which steps any of them has entered and left."""
+    visits = [visit for one in graph.settlements for visit in one.trace.visits]
+    entered = frozenset(visit.step.name for visit in visits)
+    left = frozenset(visit.step.name for visit in visits if visit.left is not None)
+    return [Study(machine, settlement, entered=entered, left=left) for settlement in graph.settlements]

@@ -52,6 +52,8 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None, name: str) -> 
         expires,
         _wording(name, watchdog, isinstance(wait, Choice)),
         severity=Severity.WARNING if watchdog.target is not None else None,
+        diverts=watchdog.target is None,
+        assumed=tuple(pair for pair in study.trace.graph.assumed if expires in pair),
     )
 
 

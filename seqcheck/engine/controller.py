@@ -312,7 +312,7 @@ class Controller:
                 self._knowledge.held[aspect] = value
                 self.see(aspect, known)
 
-            self._timeline.at(read.floor, Order.CONTROLLER, learn)
+            self._timeline.at(read.floor, Order.SEEN, learn)
 
     def _finish_read(self, read: Read) -> None:
         """Settle what is commanded after this read, and write the changes."""

@@ -25,13 +25,13 @@ from seqcheck.engine.strokes import Region
 from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.engine.witness import Witness, witness
-from seqcheck.machine.model import Machine
+from seqcheck.machine.model import Machine, items_of
+from seqcheck.machine.steps import Choose
 
 #: More ways than this in which orders may turn out between two states are not played; the report then says so.
 MOST_ORDERS = 16
-#: More plays than this are not made; the report then says so.
-MOST_PLAYS = 2_000
 _MOST_ROUNDS = 8
+_PLAYS_WITHOUT_END = 16
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,7 +96,8 @@ class _Explorer:
 
     def explore(self) -> StateGraph:
         self.waiting.append(Recipe(Way(), {}))
-        while self.waiting and len(self.found) < MOST_PLAYS:
+        most = most_plays(self.machine)
+        while self.waiting and len(self.found) < most:
             recipe = self.waiting.popleft()
             settlement = play(self.machine, recipe, self.orders, self.states)
             if settlement.path.astray:
@@ -108,6 +109,8 @@ class _Explorer:
             self.found.append(replace(settlement, states=numbered))
             if settlement.trace.too_long:
                 break
+            if not self.found[0].settled:
+                most = _PLAYS_WITHOUT_END
             self._plan(self.found[-1])
         return StateGraph(tuple(self.found), self.complete and not self.waiting)
 
@@ -147,19 +150,21 @@ class _Explorer:
 
 def _turned_run(trace: Trace, order: Order) -> Witness | None:
     """A run that has the order the other way round and all others as they were played; None where there is none."""
-    assumed = trace.graph.assumed
-    pair = order.first, order.second
-    others = [one for one in assumed if one != pair]
-    trace.graph.assumed = others
-    turns = greatest_separation(trace.graph, order.second, order.first) > 0
-    run = witness(trace, order.first, order.second) if turns else None
-    trace.graph.assumed = assumed
-    return run
+    with trace.graph.not_assuming([(order.first, order.second)]):
+        turns = greatest_separation(trace.graph, order.second, order.first) > 0
+        return witness(trace, order.first, order.second) if turns else None
 
 
 def _outcomes(path: Path, number: int) -> tuple[Outcome, ...]:
     """How the choices at the first so many passages came out."""
     return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
+
+
+def most_plays(machine: Machine) -> int:
+    """More plays than this are not made; the report then says so. Sequences that go side by side and never wait for one
+    another come to ever new states; where the first play shows that, little more is tried."""
+    items = [item for sequence in machine.sequences for item in items_of(sequence.items)]
+    return 60 + 20 * sum(isinstance(item, Choose) for item in items) + 4 * len(items)
 
 
 def explore(machine: Machine) -> StateGraph:

@@ -27,7 +27,7 @@ Signature = tuple[object, ...]
 Prefer = Callable[[Choice, Sequence[Outcome]], Outcome]
 
 #: So many rounds are played in search of a state that comes up again.
-MOST_ROUNDS = 12
+MOST_ROUNDS = 16
 
 
 def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
@@ -134,7 +134,7 @@ class Scout:
         else:
             self._own[passage.signature] = index
             self._rounds_since += bool(passage.rounds)
-            if self._rounds_since > MOST_ROUNDS * len(self._machine.sequences):
+            if self._rounds_since > MOST_ROUNDS:
                 player.stop()
 
     def _end_of_round(self, index: int) -> None:
