@@ -13,11 +13,13 @@ from seqcheck.checks.assumptions import assumptions
 from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
 from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
-from seqcheck.checks.study import Study
-from seqcheck.checks.times import critical_path, cycle_times, step_times, together
+from seqcheck.checks.shown_states import shown_runs, shown_states
+from seqcheck.checks.study import Study, studies_of
+from seqcheck.checks.times import choice_times, critical_path, cycle_times, step_times
+from seqcheck.engine.explore import explore
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
-from seqcheck.engine.worlds import play_worlds
+from seqcheck.engine.states import TimedStates, timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Problem, Report
@@ -40,11 +42,12 @@ def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int =
     refused = outside_scope(machine)
     if refused:
         return _refused(source, machine, refused)
-    worlds = play_worlds(machine)
-    if any(settlement.trace.too_long for settlement in worlds.settlements):
+    graph = explore(machine)
+    if any(settlement.trace.too_long for settlement in graph.settlements):
         return _refused(source, machine, (_too_long(machine),))
-    studies = [Study(machine, settlement) for settlement in worlds.settlements]
-    report = _report(studies, prove(studies, CHECKS, reserve_us), worlds.complete)
+    studies = studies_of(machine, graph)
+    timed = timed_states(machine, graph)
+    report = _report(studies, timed, prove(studies, CHECKS, reserve_us), graph.complete)
     lines = _lines_of(source)
     return replace(report, findings=tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings))
 
@@ -67,7 +70,7 @@ def _too_long(machine: Machine) -> Problem:
     )
 
 
-def _report(studies: Sequence[Study], proof: Proof, complete: bool) -> Report:
+def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete: bool) -> Report:
     """``complete``: every order that is a matter of time was played both ways."""
     typical, machine = studies[0], studies[0].machine
     findings = tuple(one.finding for one in proof.broken)
@@ -78,8 +81,11 @@ def _report(studies: Sequence[Study], proof: Proof, complete: bool) -> Report:
         findings=findings,
         sheets=machine.sheets,
         assumptions=assumptions(typical, complete, accepted, proof.strays),
-        cycles=together(cycle_times(study) for study in studies),
-        steps=together(step_times(study) for study in studies),
+        cycles=cycle_times(studies, timed),
+        choices=choice_times(machine, timed),
+        states=shown_states(timed),
+        runs=shown_runs(timed),
+        steps=step_times(studies),
         critical_path=critical_path(typical),
         handovers=tightest_handovers(handovers(study) for study in studies),
         margins=proof.margins,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 
 from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.study import Study
@@ -64,9 +64,9 @@ def _few(words: list[str], between: str) -> str:
     return between.join(words[:_MOST_NAMED] + more)
 
 
-def _assumed_times(study: Study) -> Iterable[Sight]:
+def _assumed_times(studies: Sequence[Study]) -> Iterable[Sight]:
     """One note for all of them."""
-    machine = study.machine
+    machine = studies[0].machine
     devices = told_devices(machine)
     if devices is None:
         return
@@ -86,5 +86,5 @@ def _assumed_times(study: Study) -> Iterable[Sight]:
 
 
 CHECK = Check(
-    "assumed-times", Severity.NOTE, "ordinary times stand in for some that nobody gives", sights=_assumed_times
+    "assumed-times", Severity.NOTE, "ordinary times stand in for some that nobody gives", omissions=_assumed_times
 )

@@ -4,10 +4,13 @@ from __future__ import annotations
 
 from seqcheck.checks import (
     assumed_times,
+    broken_never,
+    choice_race,
     command_race,
     cut_stroke,
     early_dwell,
     missed_signal,
+    over_limit,
     overshoot,
     short_pulse,
     stale_accept,
@@ -31,6 +34,9 @@ CHECKS: tuple[Check, ...] = (
     tight_watchdog.CHECK,
     NO_WATCHDOG,
     command_race.CHECK,
+    choice_race.CHECK,
+    broken_never.CHECK,
+    over_limit.CHECK,
     DEAD_END,
     ENDLESS_LOOP,
     UNREACHABLE,

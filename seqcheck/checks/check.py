@@ -6,7 +6,7 @@ them all at once and makes findings of those that do not hold.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 
 from seqcheck.checks.study import Study
@@ -35,7 +35,9 @@ class Wording:
 @dataclass(frozen=True, slots=True)
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
-    brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does."""
+    brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.
+    ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than others do,
+    in a way that nobody plays. ``assumed``: orders that this play takes for granted, but that are in question here."""
 
     subject: str
     step: str | None
@@ -45,12 +47,21 @@ class Obligation:
     wording: Wording
     least: int = 0
     lever: int | None = None
+    #: Or, just as well, one of these pairs as far apart.
+    others: tuple[tuple[int, int], ...] = ()
+    severity: Severity | None = None
+    diverts: bool = True
+    assumed: tuple[tuple[int, int], ...] = ()
+
+    @property
+    def pairs(self) -> tuple[tuple[int, int], ...]:
+        return ((self.first, self.second), *self.others)
 
 
 @dataclass(frozen=True, slots=True)
 class Sight:
     """What a check sees without holding times against each other. ``run``: what happens at typical times, where that
-    shows it."""
+    shows it; ``at``: the event by which it has come about, None where it is there from the start."""
 
     subject: str
     step: str | None
@@ -59,6 +70,7 @@ class Sight:
     run: tuple[Moment, ...] = ()
     mend: str | None = None
     certain: bool = True
+    at: int | None = None
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:
@@ -69,15 +81,21 @@ def no_sights(study: Study) -> Iterable[Sight]:
     return ()
 
 
+def no_omissions(studies: Sequence[Study]) -> Iterable[Sight]:
+    return ()
+
+
 @dataclass(frozen=True, slots=True)
 class Check:
-    """``title``: the kind in a few words. Either function may be left out."""
+    """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
+    together: what none of them comes to. Any function may be left out."""
 
     kind: str
     severity: Severity
     title: str
     obligations: Callable[[Study], Iterable[Obligation]] = no_obligations
     sights: Callable[[Study], Iterable[Sight]] = no_sights
+    omissions: Callable[[Sequence[Study]], Iterable[Sight]] = no_omissions
 
     def finding(self, sight: Sight) -> Finding:
         return Finding(

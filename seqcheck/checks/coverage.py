@@ -2,32 +2,44 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 
 from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.study import Study
+from seqcheck.engine.knowledge import asked_conditions
+from seqcheck.engine.program import compile_sequence
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import FollowingSignal, OnConditions
 from seqcheck.machine.findings import Severity
-from seqcheck.machine.model import steps_of
+from seqcheck.machine.model import Machine, items_of, steps_of
 from seqcheck.machine.rules import CycleLimit, Never
-from seqcheck.machine.steps import Step
+from seqcheck.machine.steps import Choose, Step
+from seqcheck.machine.steps import Sequence as StepSequence
 
 
-def _unreachable(study: Study) -> Iterator[Sight]:
-    """What only a dead end keeps from being entered is told with the dead end."""
-    if study.trace.finished and any(visit.left is None for visit in study.trace.visits):
+def _unreachable(studies: Sequence[Study]) -> Iterator[Sight]:
+    """What only a dead end keeps from being entered is told with the dead end. Steps to which a watchdog leads are
+    there for the day on which a part fails, and no healthy machine enters them."""
+    if any(one.trace.finished and any(visit.left is None for visit in one.trace.visits) for one in studies):
         return
-    entered = {visit.step.name for visit in study.trace.visits}
-    for sequence in study.machine.sequences:
-        missing = [step for step in steps_of(sequence) if step.name not in entered]
+    for sequence in studies[0].machine.sequences:
+        known = studies[0].entered | _behind_watchdogs(sequence)
+        missing = [step for step in steps_of(sequence) if step.name not in known]
         if missing:
             more = f", nor {len(missing) - 1} more" if len(missing) > 1 else ""
             message = f"no run enters {missing[0].name}{more}"
             yield Sight(missing[0].name, missing[0].name, missing[0].place, message)
 
 
-def _no_watchdog(study: Study) -> Iterator[Sight]:
+def _behind_watchdogs(sequence: StepSequence) -> set[str]:
+    program = compile_sequence(sequence)
+    watchdogs = [item.watchdog for item in items_of(sequence.items) if isinstance(item, Step | Choose)]
+    targets = {one.target for one in watchdogs if one is not None and one.target is not None}
+    return {name for target in targets for name in program.steps_behind(target)}
+
+
+def _no_watchdog(studies: Sequence[Study]) -> Iterator[Sight]:
+    study = studies[0]
     for sequence in study.machine.sequences:
         bare = [step.name for step in steps_of(sequence) if _waits_for_sensor(study, step) and step.watchdog is None]
         if bare:
@@ -44,9 +56,9 @@ def _waits_for_sensor(study: Study, step: Step) -> bool:
     )
 
 
-def _unused(study: Study) -> Iterator[Sight]:
-    machine = study.machine
-    used = set(_used_names(study))
+def _unused(studies: Sequence[Study]) -> Iterator[Sight]:
+    machine = studies[0].machine
+    used = set(_used_names(machine))
     idle = [
         (device.place, device.name)
         for devices in (machine.coils, machine.outputs, machine.sensors, machine.signals, machine.flags)
@@ -60,12 +72,12 @@ def _unused(study: Study) -> Iterator[Sight]:
         yield Sight(idle[0][1], None, idle[0][0], message)
 
 
-def _used_names(study: Study) -> Iterable[str]:
-    machine = study.machine
+def _used_names(machine: Machine) -> Iterable[str]:
     for sequence in machine.sequences:
         for step in steps_of(sequence):
             yield from (command.target for command in step.commands)
-            yield from (term.subject for term in terms_of(step.until))
+    for condition in asked_conditions(machine):
+        yield from (term.subject for term in terms_of(condition))
     for signal in machine.signals.values():
         if isinstance(signal, FollowingSignal):
             yield from (term.subject for term in terms_of(signal.follows))
@@ -84,6 +96,6 @@ def _used_names(study: Study) -> Iterable[str]:
                     yield from (term.subject for term in terms_of(condition))
 
 
-UNREACHABLE = Check("unreachable", Severity.WARNING, "a step that no run enters", sights=_unreachable)
-NO_WATCHDOG = Check("no-watchdog", Severity.NOTE, "steps wait for sensors without a watchdog", sights=_no_watchdog)
-UNUSED = Check("unused", Severity.NOTE, "coils, outputs, sensors or signals never used", sights=_unused)
+UNREACHABLE = Check("unreachable", Severity.WARNING, "a step that no run enters", omissions=_unreachable)
+NO_WATCHDOG = Check("no-watchdog", Severity.NOTE, "steps wait for sensors without a watchdog", omissions=_no_watchdog)
+UNUSED = Check("unused", Severity.NOTE, "coils, outputs, sensors or signals never used", omissions=_unused)

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
-from seqcheck.engine.settle import may_have_centred
+from seqcheck.engine.regions import may_have_centred
 from seqcheck.engine.trace import Stroke
 from seqcheck.machine.devices import Position
 from seqcheck.machine.findings import Severity

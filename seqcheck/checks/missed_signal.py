@@ -9,8 +9,8 @@ from seqcheck.checks.stale_signal import own_move_missed
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
 from seqcheck.engine.bounds import greatest_separation
+from seqcheck.engine.conditions import Literal
 from seqcheck.engine.graph import Event
-from seqcheck.engine.scope import Literal
 from seqcheck.engine.strokes import reached_by
 from seqcheck.engine.trace import Answer, Edge, Visit
 from seqcheck.machine.conditions import TermKind

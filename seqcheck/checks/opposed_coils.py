@@ -82,7 +82,9 @@ def _never_ended(study: Study) -> Iterator[Sight]:
             run = narrate_typical(study, earlier.begun.read.event, later.on)
             message = f"{later.target} is commanded while {earlier.target} still is"
             mend = f"end the command of {earlier.target} first"
-            yield Sight(pair.valve.name, later.begun.step, later.begun.place, message, run, mend)
+            yield Sight(
+                pair.valve.name, later.begun.step, later.begun.place, message, run, mend, at=later.begun.read.event
+            )
 
 
 def _decayed(study: Study, spell: Spell) -> int:

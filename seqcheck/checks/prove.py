@@ -7,9 +7,11 @@ them.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
+from functools import partial
 
+from seqcheck.checks.certainty import Segment, Ways
 from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
 from seqcheck.checks.stale_accept import stale_accepts, with_reasons
@@ -23,9 +25,9 @@ from seqcheck.engine.bounds import (
     greatest_separations,
     longest_least_chain,
 )
-from seqcheck.engine.settle import Settlement
+from seqcheck.engine.explore import Settlement, replay
 from seqcheck.engine.timeline import given
-from seqcheck.engine.witness import Witness, replay, witness
+from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.findings import Finding, Margin, Severity
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
@@ -54,39 +56,45 @@ class Proof:
 _Key = tuple[str, str, str | None, Place]
 
 
+@dataclass(frozen=True, slots=True)
+class _Seen:
+    """A finding of one study; ``shown``: the segments of the play in which every timing shows it."""
+
+    broken: Broken
+    shown: frozenset[Segment] = frozenset()
+
+
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
-    """Prove every way in which the machine was played, and put the results together. A margin that holds, but leaves
-    less than ``reserve_us``, is a finding too."""
-    proofs = [_prove_one(study, checks, reserve_us) for study in studies]
-    by_key: dict[_Key, list[Broken]] = {}
-    for proof in proofs:
-        for one in proof.broken:
-            by_key.setdefault((one.finding.kind, one.finding.subject, one.finding.step, one.finding.place), []).append(
-                one
-            )
-    broken = [_one_of(found, len(proofs)) for found in by_key.values() if _stands(found, len(proofs))]
-    broken = _accepted(broken, studies[0].machine)
+    """Prove every play of the machine, and put the results together. A margin that holds, but leaves less than
+    ``reserve_us``, is a finding too."""
+    ways = Ways([study.settlement for study in studies])
+    by_key: dict[_Key, list[_Seen]] = {}
     margins: dict[_Key, Margin] = {}
-    for proof in proofs:
-        for margin in proof.margins:
+    strays = False
+    for number, study in enumerate(studies):
+        one = _prove_one(study, checks, reserve_us, partial(ways.segment, number))
+        strays = strays or one.strays
+        for seen in one.seen:
+            finding = seen.broken.finding
+            by_key.setdefault((finding.kind, finding.subject, finding.step, finding.place), []).append(seen)
+        for margin in one.margins:
             key = (margin.kind, margin.subject, margin.step, margin.place)
             margins[key] = min(margins.get(key, margin), margin, key=_by_margin)
-    strays = any(proof.strays for proof in proofs)
+    broken = [_one_of(found, ways) for found in by_key.values()]
+    broken += [Broken(check.finding(sight), None) for check in checks for sight in check.omissions(studies)]
+    broken = _accepted(broken, studies[0].machine)
     return Proof(_sorted(broken), tuple(sorted(margins.values(), key=_by_margin)), strays)
 
 
-def _stands(found: Sequence[Broken], worlds: int) -> bool:
-    """What a sequence leaves out, it must leave out in every way that it is played."""
-    one = found[0]
-    timed = one.witness is not None or one.finding.margin_us is not None
-    return one.finding.severity is Severity.ERROR or timed or len(found) == worlds
-
-
-def _one_of(found: Sequence[Broken], worlds: int) -> Broken:
+def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
     """The finding whose run was replayed, and that by most; certain only where every way shows it for certain. What
     is thin in one way may be broken in another."""
-    best = min(found, key=lambda one: (_is_thin(one), one.finding.replayed is False, one.finding.margin_us or 0))
-    certain = len(found) == worlds and all(one.finding.certain for one in found)
+    best = min(
+        (seen.broken for seen in found),
+        key=lambda one: (_is_thin(one), one.finding.replayed is False, one.finding.margin_us or 0),
+    )
+    shown = frozenset(segment for seen in found for segment in seen.shown)
+    certain = bool(shown) and ways.all_show(shown)
     return replace(best, finding=replace(best.finding, certain=certain))
 
 
@@ -102,26 +110,77 @@ def _accepted(broken: Sequence[Broken], machine: Machine) -> list[Broken]:
     return [*(replace(one, finding=finding) for finding, one in reasoned), *(Broken(one, None) for one in stale)]
 
 
-def _prove_one(study: Study, checks: Sequence[Check], reserve_us: int) -> Proof:
-    stated = [(check, obligation) for check in checks for obligation in check.obligations(study)]
-    rows = greatest_separations(study.trace.graph, both_ways((one.first, one.second) for _, one in stated))
+@dataclass(frozen=True, slots=True)
+class _ProofOfOne:
+    seen: tuple[_Seen, ...]
+    margins: tuple[Margin, ...]
+    strays: bool
+
+
+def _prove_one(
+    study: Study, checks: Sequence[Check], reserve_us: int, segment_of: Callable[[int], Segment]
+) -> _ProofOfOne:
+    since = study.settlement.fresh_since
+    stated = [
+        (check, one)
+        for check in checks
+        for one in check.obligations(study)
+        if max(study.time(event) for pair in one.pairs for event in pair) >= since
+    ]
+    rows = _rows(study, [one for _, one in stated])
+    turn = _turning_point(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
-    for check, one in stated:
+    shown: dict[_Key, set[Segment]] = {}
+    for check, obligation in stated:
+        one = _best_pair(obligation, rows)
         margin = -rows[one.second, one.first] - one.least
         key = (check.kind, one.subject, one.step, one.place)
         if key not in tightest or margin < tightest[key][2]:
             tightest[key] = (check, one, margin)
-    turn = _turning_point(study, (one for _, one in stated), rows)
-    broken = [_broken(study, check, one, margin, rows, turn) for check, one, margin in tightest.values() if margin < 0]
-    thin = [_thin(study, *found, reserve_us) for found in tightest.values() if 0 <= found[2] < reserve_us]
-    seen = [check.finding(sight) for check in checks for sight in check.sights(study)]
-    if turn is not None:
-        seen = [one if one.severity is Severity.NOTE else replace(one, certain=False) for one in seen]
-    broken += [Broken(finding, None) for finding in (*thin, *seen)]
-    margins = [
-        Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
+        if _always_broken(one, rows) and (turn is None or study.time(one.first) <= turn):
+            shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
+    seen = [
+        _Seen(_broken(study, *found), frozenset(shown.get(key, ()))) for key, found in tightest.items() if found[2] < 0
     ]
-    return Proof(tuple(broken), tuple(margins), turn is not None)
+    seen += [
+        _Seen(Broken(_thin(study, *found, reserve_us), None))
+        for found in tightest.values()
+        if 0 <= found[2] < reserve_us
+    ]
+    for check in checks:
+        for sight in check.sights(study):
+            shows = sight.certain and turn is None
+            at = segment_of(sight.at) if sight.at is not None else (segment_of(0)[0], -1)
+            seen.append(_Seen(Broken(check.finding(sight), None), frozenset({at} if shows else ())))
+    margins = (
+        Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
+    )
+    return _ProofOfOne(tuple(seen), tuple(margins), turn is not None)
+
+
+def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:
+    """The separations of all pairs, each under the orders that its obligation takes for granted."""
+    graph = study.trace.graph
+    by_assumed: dict[tuple[tuple[int, int], ...], list[tuple[int, int]]] = {}
+    for one in stated:
+        by_assumed.setdefault(one.assumed, []).extend(one.pairs)
+    rows: Rows = {}
+    for assumed in sorted(by_assumed):
+        with graph.not_assuming(assumed):
+            rows |= greatest_separations(graph, both_ways(by_assumed[assumed]))
+    return rows
+
+
+def _best_pair(one: Obligation, rows: Rows) -> Obligation:
+    """The obligation by the pair that keeps it best."""
+    if not one.others:
+        return one
+    first, second = min(one.pairs, key=lambda pair: rows[pair[1], pair[0]])
+    return replace(one, first=first, second=second, others=())
+
+
+def _always_broken(one: Obligation, rows: Rows) -> bool:
+    return rows[one.first, one.second] < one.least
 
 
 def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) -> int | None:
@@ -131,21 +190,24 @@ def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) 
         (
             study.time(one.second)
             for one in obligations
-            if study.time(one.first) + one.least > study.time(one.second) and rows[one.first, one.second] >= one.least
+            if one.diverts
+            and study.time(one.first) + one.least > study.time(one.second)
+            and rows[one.first, one.second] >= one.least
         ),
         default=None,
     )
 
 
-def _broken(study: Study, check: Check, one: Obligation, margin: int, rows: Rows, turn: int | None) -> Broken:
-    run = witness(study.trace, one.first, one.second)
+def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
+    with study.trace.graph.not_assuming(one.assumed):
+        run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
     by = "an unlimited time" if shown is None else in_time(-shown)
     mend = one.wording.mend
     finding = Finding(
         kind=check.kind,
-        severity=check.severity,
-        certain=rows[one.first, one.second] < one.least and (turn is None or study.time(one.first) <= turn),
+        severity=one.severity or check.severity,
+        certain=False,
         subject=one.subject,
         step=one.step,
         place=one.place,
@@ -163,7 +225,7 @@ def _shows(study: Study, check: Check, one: Obligation, run: Witness) -> bool:
     played = replay(study.machine, study.settlement, run)
     again = Study(study.machine, played, given(played.delays))
     return any(
-        again.time(other.first) + other.least > again.time(other.second)
+        all(again.time(first) + other.least > again.time(second) for first, second in other.pairs)
         for other in check.obligations(again)
         if again.comes(other.second) and (other.subject, other.step, other.place) == (one.subject, one.step, one.place)
     )

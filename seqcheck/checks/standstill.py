@@ -8,33 +8,70 @@ from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import both_ways, greatest_separations
-from seqcheck.engine.trace import Visit
+from seqcheck.engine.trace import Choice, Trace, Visit, Wait
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Moment, Severity
 from seqcheck.machine.model import steps_of
+from seqcheck.machine.places import Place
 
 
 def _dead_ends(study: Study) -> Iterator[Sight]:
-    """Once nothing is due any more, every step that is still active waits for ever: a signal from outside would be
-    due. A watchdog that would then expire is no finding of its own."""
-    if not study.trace.finished:
+    """Once nothing is due any more, every wait that is not over lasts for ever: a signal from outside would be due. So
+    does one that goes on all round, while other sequences come round again. A watchdog that would then expire is no
+    finding of its own."""
+    trace = study.trace
+    if trace.finished:
+        stuck, last = _waiting_since(trace, None), max(trace.happened, key=study.time)
+        more = "nothing more happens"
+    elif study.settlement.path.first is not None and study.settlement.path.last is not None:
+        passages = study.settlement.path.passages
+        begin, last = (passages[number].at for number in (study.settlement.path.first, study.settlement.path.last))
+        stuck = [
+            wait
+            for wait in _waiting_since(trace, study.time(begin))
+            if not _may_yet_end(study, wait) and not (isinstance(wait, Visit) and wait.step.name in study.left)
+        ]
+        more = "nothing else brings that"
+    else:
         return
-    entered = {visit.step.name for visit in study.trace.visits}
-    missing = [step.name for one in study.machine.sequences for step in steps_of(one) if step.name not in entered]
-    more = f" and {len(missing) - 1} more" if len(missing) > 1 else ""
-    never = f" ({missing[0]}{more} never entered)" if missing else ""
-    last = max(study.trace.happened, key=study.time)
-    for visit in study.trace.visits:
-        if visit.left is None:
-            waits = ", ".join(_missing(study, visit)) or "its exit"
-            name = visit.step.name
-            message = f"{name} is never left: it waits for {waits}, and nothing more happens{never}"
-            run = narrate_typical(study, visit.entered.event, last)
-            yield Sight(name, name, visit.step.place, message, run)
+    steps = [step.name for one in study.machine.sequences for step in steps_of(one)]
+    missing = [name for name in steps if name not in study.entered]
+    others = f" and {len(missing) - 1} more" if len(missing) > 1 else ""
+    never = f" ({missing[0]}{others} never entered)" if missing else ""
+    for wait in stuck:
+        name, place = _who(wait)
+        waits = ", ".join(_missing(study, wait)) or "its exit"
+        message = f"{name} is never left: it waits for {waits}, and {more}{never}"
+        run = narrate_typical(study, wait.entered.event, last)
+        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last)
 
 
-def _missing(study: Study, visit: Visit) -> Iterator[str]:
-    for literal in visit.literals:
+def _who(wait: Wait) -> tuple[str, Place]:
+    if isinstance(wait, Visit):
+        return wait.step.name, wait.step.place
+    assert isinstance(wait, Choice)
+    return wait.after or f"choose in line {wait.choose.place.line}", wait.choose.place
+
+
+def _waiting_since(trace: Trace, since: int | None) -> list[Wait]:
+    """The waits that are not over, begun before ``since`` (at any time, if None)."""
+    return [
+        wait
+        for wait in (*trace.visits, *trace.choices)
+        if wait.left is None and (since is None or trace.times[wait.entered.event] < since)
+    ]
+
+
+def _may_yet_end(study: Study, wait: Wait) -> bool:
+    """Whether something is due that may end it: a signal from outside, a dwell, a watchdog."""
+    due = [seen for _, seen in wait.signals.values()]
+    due += [event for event in (wait.dwell_seen, wait.steady_seen) if event is not None]
+    due += [wait.alarm.over] if wait.alarm is not None else []
+    return any(event not in study.trace.happened for event in due)
+
+
+def _missing(study: Study, wait: Wait) -> Iterator[str]:
+    for literal in wait.literals:
         term = literal.term
         edges = [edge for edge in study.trace.edges.get(term.subject, ()) if edge.seen in study.trace.happened]
         starts_on = study.starts_on(term.subject) if term.kind is TermKind.SENSOR else False
@@ -51,7 +88,7 @@ def _endless(study: Study) -> Iterator[Sight]:
     for number in range(settlement.first, settlement.last):
         begin, end = trace.cycles[number].event, trace.cycles[number + 1].event
         visits = [visit for visit in trace.visits if visit.cycle == number]
-        if any(literal.term.kind is TermKind.SIGNAL for visit in visits for literal in visit.literals):
+        if any(visit.signals for visit in visits):
             continue
         rows = greatest_separations(trace.graph, both_ways([(begin, end)]))
         if rows[end, begin] >= 0:

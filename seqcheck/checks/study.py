@@ -13,8 +13,8 @@ from functools import cached_property
 from itertools import pairwise
 
 from seqcheck.engine.bounds import causes_since
+from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
-from seqcheck.engine.settle import Settlement
 from seqcheck.engine.timeline import Draw, typical
 from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Visit
 from seqcheck.machine.conditions import TermKind
@@ -33,9 +33,19 @@ class _Wait:
 
 
 class Study:
-    def __init__(self, machine: Machine, settlement: Settlement, draw: Draw = typical) -> None:
-        """``draw``: how the delays of the events that the study adds are drawn."""
+    def __init__(
+        self,
+        machine: Machine,
+        settlement: Settlement,
+        draw: Draw = typical,
+        entered: frozenset[str] = frozenset(),
+        left: frozenset[str] = frozenset(),
+    ) -> None:
+        """``draw``: how the delays of the events that the study adds are drawn. ``entered``: the steps that any play
+        has entered; ``left``: those that any play has left."""
         self.machine = machine
+        self.entered = entered
+        self.left = left
         self._draw = draw
         self.settlement = settlement
         self.trace = settlement.trace
@@ -99,7 +109,8 @@ class Study:
     def _strokes_by_shift(self) -> dict[Shift, list[Stroke]]:
         found: dict[Shift, list[Stroke]] = {}
         for stroke in self.trace.strokes:
-            found.setdefault(stroke.shift, []).append(stroke)
+            for shift in stroke.shift.parts or (stroke.shift,):
+                found.setdefault(shift, []).append(stroke)
         return found
 
     @cached_property
@@ -253,3 +264,11 @@ class Study:
                     for stroke in self._strokes_by_event.get(answer.edge.at, ()):
                         found.setdefault(stroke, []).append((visit.left, answer.edge))
         return found
+
+
+def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
+    """A study of each play; all know which steps any of them has entered and left."""
+    visits = [visit for one in graph.settlements for visit in one.trace.visits]
+    entered = frozenset(visit.step.name for visit in visits)
+    left = frozenset(visit.step.name for visit in visits if visit.left is not None)
+    return [Study(machine, settlement, entered=entered, left=left) for settlement in graph.settlements]

@@ -2,7 +2,7 @@
 
 It expires where its time is over before the exit has come to hold: before the inputs have changed (seen or not), the
 dwell is over and the condition has been steady. A step that waits for a signal from outside that may take any time is
-left out: nobody can say how long that is.
+left out: nobody can say how long that is. Where the watchdog leads to another step it is a warning.
 """
 
 from __future__ import annotations
@@ -13,33 +13,64 @@ from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
 from seqcheck.engine.graph import Event
-from seqcheck.engine.trace import Visit
+from seqcheck.engine.orders import held_too_late, what_held
+from seqcheck.engine.trace import Choice, Visit, Wait
+from seqcheck.machine.conditions import TermKind
+from seqcheck.machine.devices import OutsideSignal
 from seqcheck.machine.findings import Severity
-from seqcheck.machine.steps import Step, Watchdog
+from seqcheck.machine.steps import Watchdog
 from seqcheck.machine.time import Span
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
-        watchdog = visit.step.watchdog
-        if watchdog is None or visit.left is None or any(answer.outside for answer in visit.answers):
-            continue
-        step = visit.step
-        expires = study.later(Event("watchdog", step.name), visit.entered.event, Span.exactly(watchdog.within))
-        holds = study.last_of(Event("exit holds", step.name), _what_must_hold(visit))
-        yield Obligation(step.name, step.name, watchdog.place, holds, expires, _wording(step, watchdog))
+        yield from _of_wait(study, visit, visit.step.watchdog, visit.step.name)
+    for choice in study.trace.choices:
+        if choice.left is not choice.entered:
+            name = choice.after or f"choose in line {choice.choose.place.line}"
+            yield from _of_wait(study, choice, choice.choose.watchdog, name)
 
 
-def _what_must_hold(visit: Visit) -> list[int]:
-    held = [answer.held for answer in visit.answers]
-    return held + [event for event in (visit.dwell_over, visit.steady_over) if event is not None] or [
-        visit.entered.event
-    ]
+def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None, name: str) -> Iterator[Obligation]:
+    if watchdog is None or wait.left is None or _at_any_time(study, wait):
+        return
+    if wait.alarm is not None:
+        expires = wait.alarm.over
+        holding = [held_too_late(study.trace, wait)] if wait.alarm.expired else what_held(wait)
+    else:
+        expires = study.later(Event("watchdog", name), wait.entered.event, Span.exactly(watchdog.within))
+        holding = what_held(wait)
+    held = [event for event in holding if event is not None]
+    if wait.alarm is not None and wait.alarm.expired and not held:
+        return
+    holds = study.last_of(Event("exit holds", name), held or [wait.entered.event])
+    yield Obligation(
+        name,
+        wait.step.name if isinstance(wait, Visit) else wait.after if isinstance(wait, Choice) else None,
+        watchdog.place,
+        holds,
+        expires,
+        _wording(name, watchdog, isinstance(wait, Choice)),
+        severity=Severity.WARNING if watchdog.target is not None else None,
+        diverts=watchdog.target is None,
+        assumed=tuple(pair for pair in study.trace.graph.assumed if expires in pair),
+    )
 
 
-def _wording(step: Step, watchdog: Watchdog) -> Wording:
+def _at_any_time(study: Study, wait: Wait) -> bool:
+    signals = study.machine.signals
+    return any(
+        literal.term.kind is TermKind.SIGNAL
+        and isinstance(signal := signals[literal.term.subject], OutsideSignal)
+        and signal.after is None
+        for literal in wait.literals
+    )
+
+
+def _wording(name: str, watchdog: Watchdog, choice: bool) -> Wording:
+    whose, until = (f"the choice behind {name}", "it is taken") if choice else (name, "the step is done")
     return Wording(
-        f"the watchdog of {step.name} can expire {{by}} before the step is done",
+        f"the watchdog of {whose} can expire {{by}} before {until}",
         lambda by: f"within {round_up(watchdog.within + by)} is safe",
     )
 

@@ -1,50 +1,53 @@
-"""The controller: threads that walk the sequence, reads that change commands, writes that carry them out.
+"""The controller: reads at which threads walk on and commands change, and writes that carry the changes out.
 
-Takes a machine and a timeline; fills the trace with reads, visits and spells and hands every written change on to
-the valves. What it sees of the inputs comes in through ``see``.
+Takes a machine and a timeline; fills the trace with reads, visits, choices and spells and hands every written change
+on to the valves. What it sees of the inputs comes in through ``see``.
 """
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
+from functools import partial
+from itertools import product
+from typing import Protocol
 
 from seqcheck.engine.commands import Commands
-from seqcheck.engine.graph import OPEN, Event
-from seqcheck.engine.program import Again, BranchEnd, Count, Enter, Fork, Last, Program, compile_sequence
-from seqcheck.engine.scope import Literal, literals_of
+from seqcheck.engine.conditions import Aspect, Literal, holding, literals_of
+from seqcheck.engine.exits import Exits, name_of
+from seqcheck.engine.graph import Event
+from seqcheck.engine.knowledge import Knowledge
+from seqcheck.engine.plant import Plant
+from seqcheck.engine.program import Enter, Fork, Select, compile_sequence
+from seqcheck.engine.threads import Course, Thread, Threads
 from seqcheck.engine.timeline import Order, Timeline
-from seqcheck.engine.trace import Answer, Edge, Origin, Read, Spell, Trace, Visit
-from seqcheck.machine.conditions import TermKind, terms_of
-from seqcheck.machine.devices import ControllerKind, OutsideSignal
+from seqcheck.engine.trace import Answer, Choice, Edge, Known, Origin, Read, Spell, Trace, Visit, Wait
+from seqcheck.machine.conditions import TermKind
+from seqcheck.machine.devices import ControllerKind
 from seqcheck.machine.model import Machine, steps_of
-from seqcheck.machine.time import Span
 
 #: Hands on: coil or output, on or off, the event at which it switches, the origin.
 Switch = Callable[[str, bool, int, Origin], None]
 
 
-@dataclass(slots=True, eq=False)
-class Thread:
-    """A place in a program. A parent waits for its branches and keeps the floors of those that have ended."""
-
-    program: Program
-    at: int
-    counts: tuple[int, ...] = ()
-    parent: Thread | None = None
-    branches: int = 0
-    ended: list[int] = field(default_factory=list)
-    visit: Visit | None = None
-
-
 @dataclass(frozen=True, slots=True)
-class Known:
-    """What the controller knows of a term: its value, since which event, and since when it holds at the input."""
+class Outcome:
+    """One way in which a choice may come out at a read: the branch, None where no condition holds yet; ``signals``
+    from outside that bring it about, by whether they are on."""
 
-    value: bool
-    seen: int
-    held: int
-    edge: Edge | None = None
+    taken: int | None
+    signals: tuple[tuple[str, bool], ...] = ()
+
+
+class Guide(Protocol):
+    """Decides what nothing in the machine does, and hears of each round."""
+
+    def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
+        """Which of several outcomes a choice has in this run."""
+
+    def cycle_started(self, read: Read) -> None:
+        """A sequence has begun anew at this read, which is done."""
 
 
 class Controller:
@@ -53,27 +56,28 @@ class Controller:
         machine: Machine,
         timeline: Timeline,
         trace: Trace,
+        knowledge: Knowledge,
+        plant: Plant,
         switch: Switch,
-        cycle_started: Callable[[Read], None],
+        guide: Guide,
     ) -> None:
         self._machine = machine
         self._settings = machine.controller
         self._timeline = timeline
         self._trace = trace
+        self._knowledge = knowledge
+        self._plant = plant
         self._switch = switch
-        self._cycle_started = cycle_started
-        self._threads: list[Thread] = []
-        self._known: dict[tuple[TermKind, str], Known] = {}
+        self._guide = guide
+        self._threads = Threads(self)
+        self._exits = Exits(machine, timeline, knowledge, self._wake)
         self._read_events: set[int] = set()
         self._commands = Commands(trace.touches)
-        self.asked = {
-            (term.kind, term.subject)
-            for sequence in machine.sequences
-            for step in steps_of(sequence)
-            for term in terms_of(step.until)
-        }
         self._wait = self._settings.wait
-        self._cycle = 0
+        self._begun = False
+        #: Where the threads stand that this read has yet to let walk on.
+        self._walking: list[tuple[object, ...]] = []
+        self._waiting_for: Counter[str] = Counter()
         self._last_time = -1
         self._reads_at_once = 0
         self._patience = 50 + 4 * sum(len(list(steps_of(sequence))) for sequence in machine.sequences)
@@ -82,94 +86,53 @@ class Controller:
 
     def start(self) -> None:
         """The read that activates the first step of each sequence, at event 0."""
-        threads = [Thread(compile_sequence(sequence), 0) for sequence in self._machine.sequences]
-        self._trace.cycles.append(self._read(0, threads, "start"))
+        courses = [
+            Course(compile_sequence(sequence), number) for number, sequence in enumerate(self._machine.sequences)
+        ]
+        read = self._read(0, [Thread(course, 0) for course in courses], "start")
+        for course in courses:
+            self._trace.rounds.setdefault(course.program.name, []).insert(0, read)
+        self._trace.cycles.insert(0, read)
 
-    def see(self, kind: TermKind, subject: str, known: Known) -> None:
-        self._known[kind, subject] = known
+    def see(self, aspect: Aspect, known: Known) -> None:
+        self._knowledge.see(aspect, known)
+        if aspect[0] in (TermKind.SENSOR, TermKind.SIGNAL):
+            self._plant.notice(known.seen, {aspect: known.value})
         self._wake()
-
-    def initially(self, kind: TermKind, subject: str, value: bool) -> None:
-        self._known[kind, subject] = Known(value, 0, 0)
-
-    def waits_for(self, kind: TermKind, subject: str) -> bool:
-        return (kind, subject) in self.asked
 
     @property
     def state(self) -> tuple[object, ...]:
         """What the controller remembers, without times."""
-        known = sorted((kind.value, subject, known.value) for (kind, subject), known in self._known.items())
-        places = [(thread.at, thread.counts, thread.branches, len(thread.ended)) for thread in self._threads]
-        return tuple(known), tuple(places), self._commands.state
+        return self._knowledge.state, self._threads.state, tuple(self._walking), self._commands.state
 
     def _wake(self) -> None:
-        """Let every thread whose exit holds go on; those that what happens now lets go on share a read."""
+        """Let every thread whose wait is over go on; those that what happens now lets go on share a read."""
         ready: dict[tuple[int, ...], list[Thread]] = {}
-        for thread in self._threads:
-            causes = self._exit_causes(thread.visit) if thread.visit else None
+        for thread in self._threads.in_order(lambda thread: thread.wait is not None):
+            causes = self._exits.causes(thread.wait) if thread.wait else None
             if causes is not None:
                 ready.setdefault(self._timeline.graph.without_idle(causes), []).append(thread)
         for last, threads in ready.items():
-            reader = min(thread.visit.step.name for thread in threads if thread.visit)
+            reader = min(_name_of(thread.wait) for thread in threads if thread.wait)
             event = self._timeline.last_of(Event("read", reader), last)
             self._read(event, threads, reader)
-
-    def _exit_causes(self, visit: Visit) -> list[int] | None:
-        """The events that the exit has waited for; None where it does not hold yet."""
-        happened = self._timeline.happened
-        answers = [self._answer(visit, literal) for literal in visit.literals]
-        holds = all(answer is not None for answer in answers)
-        if visit.step.steady is not None:
-            self._keep_steady(visit, [answer.seen for answer in answers if answer] if holds else None)
-        causes = [visit.entered.floor]
-        causes += [event for event in (visit.dwell_seen, visit.steady_seen) if event is not None]
-        if not holds or (visit.step.steady is not None and visit.steady_seen is None):
-            return None
-        if any(event not in happened for event in causes):
-            return None
-        visit.answers = tuple(answer for answer in answers if answer)
-        return causes + [answer.seen for answer in visit.answers]
-
-    def _answer(self, visit: Visit, literal: Literal) -> Answer | None:
-        if literal in visit.signals:
-            held, seen = visit.signals[literal]
-            signal = self._machine.signals[literal.term.subject]
-            unlimited = isinstance(signal, OutsideSignal) and signal.after is None
-            return Answer(literal, seen, held, outside=unlimited) if seen in self._timeline.happened else None
-        known = self._known[literal.term.kind, literal.term.subject]
-        return Answer(literal, known.seen, known.held, known.edge) if known.value == literal.wanted else None
-
-    def _keep_steady(self, visit: Visit, seen: list[int] | None) -> None:
-        """Begin to count once the whole condition is seen, stop when it no longer is."""
-        step, timeline = visit.step, self._timeline
-        if seen is None:
-            if visit.steady_seen is not None:
-                timeline.call_off(visit.steady_seen)
-            visit.steady_over = visit.steady_seen = None
-        elif visit.steady_seen is None:
-            since = timeline.last_of(Event("condition seen", step.name), seen)
-            over = timeline.event(Event("steady over", step.name), timeline.fixed(since, step.steady or 0))
-            visit.steady_over = over
-            visit.steady_seen = timeline.event(
-                Event("steady seen", step.name), timeline.delay(over, self._wait, "steady", step.name)
-            )
-            timeline.at(visit.steady_seen, Order.CONTROLLER, self._wake)
 
     # Changing --------------------------------------------------------------------------------------------------
 
     def _read(self, event: int, threads: Sequence[Thread], reader: str) -> Read:
         """One read: steps are left and entered, and what this changes is written."""
         read = self._begin_read(event, reader)
-        started_cycle = False
+        self._begun = False
         for thread in threads:
-            if thread.visit is not None:
+            if thread.wait is not None:
                 self._leave(thread, read)
+        self._walking = [(thread.course.number, thread.at, thread.counts) for thread in threads]
         for thread in threads:
-            started_cycle = self._advance(thread, read) or started_cycle
+            self._threads.advance(thread, read)
+            self._walking.pop(0)
         self._finish_read(read)
-        if started_cycle:
-            self._trace.cycles.append(read)
-            self._cycle_started(read)
+        if self._begun:
+            self._guide.cycle_started(read)
         return read
 
     def _begin_read(self, event: int, reader: str) -> Read:
@@ -197,122 +160,159 @@ class Controller:
             self._trace.endless = True
 
     def _leave(self, thread: Thread, read: Read) -> None:
-        visit = thread.visit
-        assert visit is not None
-        visit.left = read
-        read.left.append(visit)
-        thread.visit = None
-        thread.at += 1
-        self._threads.remove(thread)
-        self._commands.leave(visit, read)
-        self._know_later(TermKind.STEP, visit.step.name, False, read)
+        wait = thread.wait
+        assert wait is not None
+        self._exits.end(wait)
+        wait.left = read
+        expired = wait.alarm is not None and wait.alarm.expired
+        if expired:
+            wait.answers = ()
+        self._threads.rouse(thread)
+        thread.go_behind(wait)
+        if isinstance(wait, Visit):
+            read.left.append(wait)
+            thread.after = wait.step.name
+            self._commands.leave(wait, read)
+            self._know_later((TermKind.STEP, wait.step.name, None), False, read)
+        elif isinstance(wait, Choice):
+            wait.taken = None if expired else wait.taken
+            read.chosen.append(wait)
+        if expired and wait.alarm is not None and wait.alarm.watchdog.target == thread.program.first:
+            self.begin_anew(thread.course, read)
+        self._let_signals_go(wait, read)
 
-    def _advance(self, thread: Thread, read: Read) -> bool:
-        """Walk on to the next steps; whether the sequence has begun anew."""
-        again = False
-        while True:
-            match thread.program[thread.at]:
-                case Enter(step):
-                    self._enter(thread, step.name, read)
-                    return again
-                case Count(times, behind):
-                    if times:
-                        thread.counts = (*thread.counts, times)
-                        thread.at += 1
-                    else:
-                        thread.at = behind
-                case Again(start):
-                    left = thread.counts[-1] - 1
-                    thread.counts = (*thread.counts[:-1], left) if left else thread.counts[:-1]
-                    thread.at = start + 1 if left else thread.at + 1
-                case Fork(branches, _, _):
-                    thread.branches, thread.ended = len(branches), []
-                    self._threads.append(thread)
-                    branch_threads = [Thread(thread.program, start, parent=thread) for start in branches]
-                    for branch in branch_threads:
-                        self._advance(branch, read)
-                    return again
-                case BranchEnd():
-                    self._end_branch(thread, read)
-                    return again
-                case Last(once):
-                    if once or again:
-                        self._trace.endless = self._trace.endless or again
-                        return again
-                    again = True
-                    self._cycle += 1
-                    thread.at = 0
+    def _let_signals_go(self, wait: Wait, read: Read) -> None:
+        """A signal from outside stays until every step that waits for it is left."""
+        for name in {literal.term.subject for literal in wait.signals}:
+            self._waiting_for[name] -= 1
+            if not self._waiting_for[name]:
+                self._plant.notice(read.event, {(TermKind.SIGNAL, name, None): False})
 
-    def _end_branch(self, thread: Thread, read: Read) -> None:
-        """The branch has ended; the last one to be known lets the parent go on, at a read of its own."""
-        parent = thread.parent
-        assert parent is not None
-        parent.ended.append(read.floor)
-        if len(parent.ended) < parent.branches:
-            return
-        fork = parent.program[parent.at]
-        assert isinstance(fork, Fork)
+    def _await_signals(self, wait: Wait) -> None:
+        for name in {literal.term.subject for literal in wait.signals}:
+            self._waiting_for[name] += 1
+        for literal, (_, seen) in wait.signals.items():
+            if literal.wanted:
+                self._timeline.at(seen, Order.SEEN, partial(self._read_signal, literal.term.subject, seen))
+
+    def _read_signal(self, name: str, seen: int) -> None:
+        if self._waiting_for[name]:
+            self._plant.notice(seen, {(TermKind.SIGNAL, name, None): True})
+
+    # Host of the threads ---------------------------------------------------------------------------------------
+
+    def enter(self, thread: Thread, enter: Enter, read: Read) -> Visit:
+        step = enter.step
+        visit = Visit(entered=read, alternatives=enter.alternatives, cycle=thread.course.cycle, step=step)
+        self._trace.visits.append(visit)
+        read.entered.append(visit)
+        self._exits.begin(visit)
+        self._await_signals(visit)
+        self._know_later((TermKind.STEP, step.name, None), True, read)
+        return visit
+
+    def choose(self, thread: Thread, select: Select, read: Read) -> Choice:
+        choice = Choice(
+            entered=read,
+            alternatives=tuple(one for condition in select.waited for one in condition),
+            cycle=thread.course.cycle,
+            choose=select.choose,
+            after=thread.after,
+            conditions=select.conditions,
+            told={
+                literal.aspect: len(self._trace.known.get(literal.aspect, ()))
+                for condition in select.conditions
+                for literal in literals_of(condition)
+                if not self._knowledge.from_outside(literal.term)
+            },
+        )
+        outcomes = self._outcomes(select)
+        outcome = outcomes[0] if len(outcomes) == 1 else self._guide.decide(choice, outcomes)
+        choice.taken, choice.asked = outcome.taken, dict(outcome.signals)
+        self._trace.choices.append(choice)
+        if choice.taken is None:
+            self._exits.stand(choice)
+            self._await_signals(choice)
+        else:
+            choice.left = read
+            choice.answers = tuple(self._answers(choice, select))
+            read.chosen.append(choice)
+        return choice
+
+    def _outcomes(self, select: Select) -> list[Outcome]:
+        """What a choice may come to at this read. Where several ways for the signals from outside lead to one branch,
+        they are all alike."""
+        asked = dict.fromkeys(
+            literal.term.subject
+            for condition in select.conditions
+            for literal in literals_of(condition)
+            if self._knowledge.from_outside(literal.term)
+        )
+        found: dict[object, Outcome] = {}
+        for values in product((True, False), repeat=len(asked)):
+            signals = dict(zip(asked, values, strict=True))
+
+            def is_so(literal: Literal, signals: dict[str, bool] = signals) -> bool:
+                if literal.term.subject in signals:
+                    return signals[literal.term.subject] == literal.wanted
+                return self._knowledge.of(literal.aspect).value == literal.wanted
+
+            taken = next((n for n, one in enumerate(select.conditions) if holding(one, is_so) is not None), None)
+            outcome = Outcome(taken, tuple(signals.items()))
+            found.setdefault(outcome if taken is None else taken, outcome)
+        return sorted(found.values(), key=lambda one: len(select.conditions) if one.taken is None else one.taken)
+
+    def _answers(self, choice: Choice, select: Select) -> list[Answer]:
+        """What made the branch be taken at once; signals from outside are of no account here."""
+        assert choice.taken is not None
+
+        def is_so(literal: Literal) -> bool:
+            if literal.term.subject in choice.asked:
+                return choice.asked[literal.term.subject] == literal.wanted
+            return self._knowledge.of(literal.aspect).value == literal.wanted
+
+        held = holding(select.conditions[choice.taken], is_so) or ()
+        plain = [literal for literal in held if not self._knowledge.from_outside(literal.term)]
+        return [answer for literal in plain if (answer := self._exits.answer(choice, literal)) is not None]
+
+    def begin_anew(self, course: Course, read: Read) -> None:
+        course.cycle += 1
+        self._begun = True
+        self._trace.rounds.setdefault(course.program.name, []).append(read)
+        if course.number == 0:
+            self._trace.cycles.append(read)
+
+    def join(self, thread: Thread, fork: Fork) -> None:
         reader = f"join {fork.place.line}:{fork.place.column}"
-        joined = self._timeline.last_of(Event("join", reader), parent.ended)
+        joined = self._timeline.last_of(Event("join", reader), thread.ended)
 
         def go_on() -> None:
-            self._threads.remove(parent)
-            parent.at, parent.branches, parent.ended = fork.join, 0, []
-            self._read(joined, [parent], reader)
+            self._threads.rouse(thread)
+            thread.at, thread.branches, thread.ended = fork.join, 0, []
+            self._read(joined, [thread], reader)
 
         self._timeline.at(joined, Order.CONTROLLER, go_on)
 
-    def _enter(self, thread: Thread, name: str, read: Read) -> None:
-        enter = thread.program[thread.at]
-        assert isinstance(enter, Enter)
-        step, timeline = enter.step, self._timeline
-        visit = Visit(step, literals_of(step.until), read, self._cycle)
-        thread.visit = visit
-        self._threads.append(thread)
-        self._trace.visits.append(visit)
-        read.entered.append(visit)
-        if step.dwell is not None:
-            visit.dwell_over = timeline.event(Event("dwell over", name), timeline.fixed(read.event, step.dwell))
-            visit.dwell_seen = timeline.event(
-                Event("dwell seen", name), timeline.delay(visit.dwell_over, self._wait, "dwell", name)
-            )
-            timeline.at(visit.dwell_seen, Order.CONTROLLER, self._wake)
-        for literal in visit.literals:
-            if literal.term.kind is TermKind.SIGNAL:
-                self._await_signal(visit, literal)
-        self._know_later(TermKind.STEP, name, True, read)
-        timeline.at(read.floor, Order.CONTROLLER, self._wake)
+    def never_enters(self) -> None:
+        self._trace.endless = True
 
-    def _await_signal(self, visit: Visit, literal: Literal) -> None:
-        """A signal from outside comes some time after a step begins to wait for it."""
-        name, timeline = literal.term.subject, self._timeline
-        arrival = visit.entered.signals.get((name, literal.wanted))
-        if arrival is None:
-            arrival = visit.entered.signals[name, literal.wanted] = self._let_come(visit, literal)
-        visit.signals[literal] = arrival
-        timeline.at(arrival[1], Order.SEEN, self._wake)
+    # Writing ---------------------------------------------------------------------------------------------------
 
-    def _let_come(self, visit: Visit, literal: Literal) -> tuple[int, int]:
-        name, timeline = literal.term.subject, self._timeline
-        signal = self._machine.signals[name]
-        assert isinstance(signal, OutsideSignal)
-        delay = signal.after or Span(0, 0, OPEN)
-        detail = "on" if literal.wanted else "off"
-        filtered = self._settings.input_on if literal.wanted else self._settings.input_off
-        comes = timeline.event(
-            Event("signal", name, detail), timeline.delay(visit.entered.event, delay, "outside", name)
-        )
-        held = timeline.event(Event("input", name, detail), timeline.delay(comes, filtered, "filter", name))
-        seen = timeline.event(Event("seen", name, detail), timeline.delay(held, self._wait, "see", name))
-        return held, seen
-
-    def _know_later(self, kind: TermKind, subject: str, value: bool, read: Read) -> None:
+    def _know_later(self, aspect: Aspect, value: bool, read: Read) -> None:
         """Steps and commands change at a read and are known to the next one."""
-        if self.waits_for(kind, subject):
+        kind, subject, _ = aspect
+        if kind in (TermKind.STEP, TermKind.FLAG):
+            self._plant.notice(read.event, {aspect: value})
+        if aspect in self._knowledge.asked:
             edge = Edge(subject, value, read.event, read.floor, read.floor)
             self._trace.edges.setdefault(subject, []).append(edge)
             known = Known(value, read.floor, read.floor, edge)
-            self._timeline.at(read.floor, Order.CONTROLLER, lambda: self.see(kind, subject, known))
+
+            def learn() -> None:
+                self._knowledge.held[aspect] = value
+                self.see(aspect, known)
+
+            self._timeline.at(read.floor, Order.SEEN, learn)
 
     def _finish_read(self, read: Read) -> None:
         """Settle what is commanded after this read, and write the changes."""
@@ -320,7 +320,10 @@ class Controller:
             for origin, target in self._commands.enter(visit):
                 self._end_pulse_later(origin, target)
         for target, origin in self._commands.changes(read):
-            self._write(target, origin)
+            if target in self._machine.flags:
+                self._know_later((TermKind.FLAG, target, None), self._commands.commanded(target), read)
+            else:
+                self._write(target, origin)
 
     def _end_pulse_later(self, origin: Origin, coil: str) -> None:
         timeline, read = self._timeline, origin.read
@@ -343,16 +346,35 @@ class Controller:
         """A command has changed: it switches its own output delay after the write."""
         read, timeline = origin.read, self._timeline
         on = self._commands.commanded(target)
-        span = self._settings.output_on if on else self._settings.output_off
+        is_coil = target in self._machine.coils
+        device = self._machine.coils[target] if is_coil else self._machine.outputs[target]
+        settings = self._settings if device.via is None else self._machine.islands[device.via]
         event = timeline.event(
-            Event("coil" if target in self._machine.coils else "output", target, "on" if on else "off"),
-            timeline.delay(read.write, span, "output", target),
+            Event("coil" if is_coil else "output", target, "on" if on else "off"),
+            timeline.delay(
+                read.write if device.via is None else self._updated(read, device.via),
+                settings.output_on if on else settings.output_off,
+                "output",
+                target,
+            ),
         )
         spells = self._trace.spells.setdefault(target, [])
         if on:
             spells.append(Spell(target, origin, event))
         else:
             spells[-1].ended, spells[-1].off = origin, event
-        kind = TermKind.COIL if target in self._machine.coils else TermKind.OUTPUT
-        self._know_later(kind, target, on, read)
+        self._know_later((TermKind.COIL if is_coil else TermKind.OUTPUT, target, None), on, read)
         self._switch(target, on, event, origin)
+
+    def _updated(self, read: Read, island: str) -> int:
+        """The event at which the island has what this read writes: one for all its outputs."""
+        if island not in read.updates:
+            read.updates[island] = self._timeline.event(
+                Event("update", island),
+                self._timeline.delay(read.write, self._machine.islands[island].update, "update", island),
+            )
+        return read.updates[island]
+
+
+def _name_of(wait: Wait) -> str:
+    return wait.step.name if isinstance(wait, Visit) else name_of(wait) if isinstance(wait, Choice) else ""

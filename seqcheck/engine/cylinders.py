@@ -9,15 +9,17 @@ as its start.
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import partial
 
+from seqcheck.engine.conditions import Alternatives, Aspect, Literal, alternatives_of, holding
 from seqcheck.engine.graph import Event
 from seqcheck.engine.strokes import Region, marks_of, reached_by
 from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Shift, Stroke, Trace
 from seqcheck.engine.travel import LEAVING, START, Travel
-from seqcheck.machine.devices import Cylinder, OnValve
+from seqcheck.machine.conditions import Term, TermKind
+from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve
 from seqcheck.machine.model import Machine
 from seqcheck.machine.time import NO_TIME
 
@@ -26,16 +28,25 @@ Sense = Callable[[str, bool, int], None]
 
 Regions = Mapping[tuple[str, int], Region]
 
+#: Told what aspects of a cylinder have become by an event.
+Notice = Callable[[int, Mapping[Aspect, bool]], None]
+
 
 @dataclass(slots=True)
 class _Piston:
+    """``drives``: for out (True) and in, when the valves ask for it."""
+
     cylinder: Cylinder
+    drives: Mapping[bool, Alternatives]
     marks: tuple[int, ...]
     region: Region
     #: Where the run that is being played has it, within ``region``.
     stood: Region
+    sent: bool | None
     stroke: Stroke | None = None
     strokes: int = 0
+    #: Off its end, or started between its marks, and not yet standing again.
+    moving: bool = False
     #: The event at which a stopped piston stands still; None unless it is running on.
     runs_on_until: int | None = None
 
@@ -45,22 +56,37 @@ class _Piston:
 
 
 class Cylinders:
-    def __init__(self, machine: Machine, timeline: Timeline, trace: Trace, regions: Regions, sense: Sense) -> None:
+    def __init__(
+        self,
+        machine: Machine,
+        timeline: Timeline,
+        trace: Trace,
+        regions: Regions,
+        sense: Sense,
+        notice: Notice,
+    ) -> None:
         self._machine = machine
         self._timeline = timeline
         self._trace = trace
         self._regions = regions
         self._sense = sense
+        self._notice = notice
         self._pistons: dict[str, _Piston] = {}
-        self._on_valve: dict[str, list[tuple[_Piston, OnValve]]] = {}
+        self._on_valve: dict[str, list[_Piston]] = {}
+        #: For each valve the position that it has reached last, and by which shift.
+        self._reached = {name: valve.starts for name, valve in machine.valves.items()}
+        self._shifts: dict[str, Shift] = {}
         self._sensor_on: dict[str, bool] = {}
         for name, cylinder in machine.cylinders.items():
             marks = trace.marks[name] = marks_of(machine, cylinder)
             start = Region.exactly(marks.index(cylinder.start))
-            piston = _Piston(cylinder, marks, start, start)
+            drives = drives_of(machine, cylinder)
+            piston = _Piston(cylinder, drives, marks, start, start, None)
+            piston.sent = self._sent(piston)[0]
             self._pistons[name] = piston
-            assert isinstance(cylinder.drive, OnValve)
-            self._on_valve.setdefault(cylinder.drive.valve, []).append((piston, cylinder.drive))
+            valves = {literal.term.subject for either in drives.values() for one in either for literal in one}
+            for valve in sorted(valves):
+                self._on_valve.setdefault(valve, []).append(piston)
             for sensor_name in cylinder.sensors:
                 sensor = machine.sensors[sensor_name]
                 self._sensor_on[sensor_name] = sensor.covers(cylinder.start)
@@ -68,6 +94,11 @@ class Cylinders:
     @property
     def sensors_on(self) -> Mapping[str, bool]:
         return self._sensor_on
+
+    @property
+    def aspects(self) -> Mapping[Aspect, bool]:
+        """All of them, as they are."""
+        return {aspect: value for piston in self._pistons.values() for aspect, value in _aspects_of(piston).items()}
 
     @property
     def state(self) -> tuple[object, ...]:
@@ -78,6 +109,9 @@ class Cylinders:
                 piston.region.high,
                 tuple(sorted(piston.region.rests)),
                 piston.stroke is not None and piston.stroke.out,
+                piston.stroke is not None,
+                piston.sent,
+                piston.moving,
             )
             for name, piston in self._pistons.items()
         )
@@ -85,13 +119,38 @@ class Cylinders:
 
     def follow(self, valve: str, shift: Shift) -> None:
         """The valve has reached a position: what it feeds sets out, turns or stops."""
-        for piston, drive in self._on_valve.get(valve, ()):
-            out = drive.sends_out(shift.to)
-            self._part_from(piston, shift, out)
-            if out is None or piston.stroke is not None:
+        self._reached[valve] = shift.to
+        self._shifts[valve] = shift
+        for piston in self._on_valve.get(valve, ()):
+            sent, reason = self._sent(piston)
+            if sent == piston.sent:
                 continue
-            if piston.region != Region.exactly(piston.last if out else 0):
-                self._begin(piston, out, shift)
+            piston.sent = sent
+            drive = self._drive(piston, shift, reason)
+            self._part_from(piston, drive, sent)
+            at_end = piston.region == Region.exactly(piston.last if sent else 0)
+            if sent is not None and piston.stroke is None and not at_end:
+                self._begin(piston, sent, drive)
+            self._notice(drive.reached, _aspects_of(piston))
+
+    def _sent(self, piston: _Piston) -> tuple[bool | None, tuple[Literal, ...]]:
+        """Out, in (False) or nowhere, and which positions of valves make it so."""
+        held = {out: holding(piston.drives[out], self._is_so) for out in (True, False)}
+        asked = [out for out, reason in held.items() if reason is not None]
+        if len(asked) == 1:
+            return asked[0], held[asked[0]] or ()
+        return None, tuple(literal for reason in held.values() for literal in reason or ())
+
+    def _is_so(self, literal: Literal) -> bool:
+        valve = self._machine.valves[literal.term.subject]
+        return stands(valve, self._reached[valve.name], literal.term) == literal.wanted
+
+    def _drive(self, piston: _Piston, shift: Shift, reason: tuple[Literal, ...]) -> Shift:
+        """The shift that drives the piston otherwise; where it takes several valves, the last of theirs."""
+        valves = {literal.term.subject for literal in reason} | {shift.valve}
+        shifts = [self._shifts[valve] for valve in sorted(valves) if valve in self._shifts]
+        reached = self._timeline.last_of(Event("drive", piston.cylinder.name), [one.reached for one in shifts])
+        return shift if len(shifts) == 1 else replace(shift, reached=reached, parts=tuple(shifts))
 
     # Ending a stroke -------------------------------------------------------------------------------------------
 
@@ -109,7 +168,7 @@ class Cylinders:
                 stroke.stands = self._timeline.event(Event("stands", stroke.cylinder), arc)
                 if piston.stroke is not None:
                     piston.runs_on_until = stroke.stands
-                    self._timeline.at(stroke.stands, Order.STOP, lambda: self._stand_still(piston))
+                    self._timeline.at(stroke.stands, Order.STOP, lambda: self._run_out(piston, stroke))
                     return
             self._stand_still(piston)
         elif piston.runs_on_until is not None and out is not None:
@@ -119,6 +178,11 @@ class Cylinders:
     def _latest(self, piston: _Piston) -> Stroke | None:
         strokes = self._trace.strokes_of.get(piston.cylinder.name)
         return strokes[-1] if strokes else None
+
+    def _run_out(self, piston: _Piston, stroke: Stroke) -> None:
+        assert stroke.stands is not None
+        self._stand_still(piston)
+        self._notice(stroke.stands, _aspects_of(piston))
 
     def _stand_still(self, piston: _Piston) -> None:
         stroke = self._latest(piston)
@@ -133,6 +197,7 @@ class Cylinders:
                 self._timeline.call_off(stroke.leaves)
             stroke.cut = True
             piston.stroke = None
+            piston.moving = False
         piston.stood = stroke.stood = piston.region
         piston.region = self._regions.get((stroke.cylinder, stroke.number), piston.region)
 
@@ -146,6 +211,7 @@ class Cylinders:
         self._trace.strokes.append(stroke)
         self._trace.strokes_of.setdefault(name, []).append(stroke)
         self._leave_end(piston, stroke)
+        piston.moving = stroke.leaves is None
         stroke.marks = self._plan(piston, stroke)
         for index, event in stroke.marks:
             self._timeline.at(event, Order.MARK, partial(self._pass, piston, index, event))
@@ -162,15 +228,17 @@ class Cylinders:
     def _come_off(self, piston: _Piston, start: int, event: int) -> None:
         if piston.region == Region.exactly(start):
             piston.region = Region(0, 1) if start == 0 else Region(start - 1, start)
+        piston.moving = True
         for name in piston.cylinder.sensors:
             sensor = self._machine.sensors[name]
             if sensor.low == sensor.high == piston.marks[start]:
                 self._set_sensor(name, False, event)
+        self._notice(event, _aspects_of(piston))
 
     def _plan(self, piston: _Piston, stroke: Stroke) -> tuple[tuple[int, int], ...]:
         """The events at which the marks ahead will be reached, in the order of travel."""
         timeline, shift, region = self._timeline, stroke.shift, piston.region
-        travel = Travel(piston.cylinder, piston.marks, stroke.out, timeline.graph.arcs[shift.reached][-1].span)
+        travel = Travel(piston.cylinder, piston.marks, stroke.out, shift.time)
         if region.low == region.high:
             assert stroke.leaves is not None
             start = shift.asked if travel.timed_from_coil else shift.reached
@@ -202,6 +270,7 @@ class Cylinders:
         if event == stroke.end:
             piston.region = Region.exactly(index)
             piston.stroke = None
+            piston.moving = False
         elif stroke.out:
             piston.region = Region(index, max(index + 1, piston.region.high))
         else:
@@ -210,8 +279,46 @@ class Cylinders:
             value = reached_by(self._machine.sensors[name], piston.marks[index], stroke.out)
             if value is not None:
                 self._set_sensor(name, value, event)
+        self._notice(event, _aspects_of(piston))
 
     def _set_sensor(self, name: str, value: bool, event: int) -> None:
         if self._sensor_on[name] != value:
             self._sensor_on[name] = value
             self._sense(name, value, event)
+
+
+def drives_of(machine: Machine, cylinder: Cylinder) -> Mapping[bool, Alternatives]:
+    """When the cylinder is sent out (True) and in."""
+    drive = cylinder.drive
+    if not isinstance(drive, OnValve):
+        return {True: alternatives_of(drive.out), False: alternatives_of(drive.back)}
+    valve = machine.valves[drive.valve]
+    found = {}
+    for position in (Position.A, Position.B):
+        term = Term(TermKind.VALVE, valve.name, position.value, cylinder.place)
+        found[drive.sends_out(position) is True] = ((Literal(term, True),),)
+    return found
+
+
+def stands(valve: Valve, reached: Position, term: Term) -> bool:
+    """Whether an aspect of the valve holds by the position that it has reached last."""
+    if term.aspect == "shifting":
+        return False
+    closed = Position.A if valve.normally_open else Position.B
+    if term.aspect in ("open", "closed"):
+        return (reached is closed) == (term.aspect == "closed")
+    return reached.value == term.aspect
+
+
+def _aspects_of(piston: _Piston) -> Mapping[Aspect, bool]:
+    name = piston.cylinder.name
+    resting = not piston.moving
+    extended = resting and piston.region == Region.exactly(piston.last)
+    retracted = resting and piston.region == Region.exactly(0)
+    values = {
+        "extended": extended,
+        "retracted": retracted,
+        "moving": piston.moving,
+        "between": not extended and not retracted,
+    }
+    return {(TermKind.CYLINDER, name, aspect): value for aspect, value in values.items()}

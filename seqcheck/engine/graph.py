@@ -11,7 +11,8 @@ with max-causality and bounded delays, as in McMillan & Dill, *Algorithms for in
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Collection, Iterable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -128,6 +129,16 @@ class EventGraph:
                 kept = [other for other in kept if not self.never_later(other, cause)]
                 kept.append(cause)
         return tuple(kept)
+
+    @contextmanager
+    def not_assuming(self, pairs: Collection[tuple[int, int]]) -> Iterator[None]:
+        """Meanwhile these orders are not taken for granted."""
+        assumed = self.assumed
+        self.assumed = [pair for pair in assumed if pair not in pairs]
+        try:
+            yield
+        finally:
+            self.assumed = assumed
 
     def as_networkx(self) -> networkx.DiGraph[int]:
         """The graph for other programs: nodes with ``what``, ``subject``, ``detail``, arcs with ``least`` and

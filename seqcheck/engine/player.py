@@ -6,54 +6,61 @@ they hand on: controller to valves to cylinders to inputs and back to the contro
 
 from __future__ import annotations
 
-from collections.abc import Callable
-
-from seqcheck.engine.controller import Controller
+from seqcheck.engine.controller import Controller, Guide
 from seqcheck.engine.cylinders import Cylinders, Regions
 from seqcheck.engine.inputs import Inputs
+from seqcheck.engine.knowledge import Knowledge
+from seqcheck.engine.plant import Plant
+from seqcheck.engine.switches import Switches
 from seqcheck.engine.timeline import Draw, Timeline, typical
-from seqcheck.engine.trace import Origin, Read, Trace
+from seqcheck.engine.trace import CoilChange, Trace
 from seqcheck.engine.valves import Valves
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
-
-#: Asked at each start of a cycle whether to go on.
-GoOn = Callable[["Player", Read], bool]
 
 #: A run of more events than this is given up, before memory runs out: some 20,000 steps, repetitions counted.
 MOST_EVENTS = 1_000_000
 
 
 class Player:
+    """``guide`` decides what is free, and may ``stop`` the play at any read."""
+
     def __init__(
         self,
         machine: Machine,
-        go_on: GoOn,
+        guide: Guide,
         draw: Draw = typical,
         regions: Regions | None = None,
         until_us: int | None = None,
     ) -> None:
-        self._go_on = go_on
+        self._guide = guide
         self._until_us = until_us
         self._stopped = False
         self.timeline = Timeline(draw)
         self.trace = Trace(self.timeline.graph, self.timeline.times, {}, self.timeline.happened)
-        self.controller = Controller(machine, self.timeline, self.trace, self._switch, self._cycle_started)
-        self.inputs = Inputs(machine, self.timeline, self.trace, self.controller)
-        self.cylinders = Cylinders(machine, self.timeline, self.trace, regions or {}, self.inputs.change)
-        self.valves = Valves(machine, self.timeline, self.trace, self.cylinders.follow)
+        self._knowledge = Knowledge(machine, self.trace)
+        self._plant = Plant(machine, self.timeline, self.trace, self._follow)
+        self.switches = Switches(machine, self.timeline, self.trace, self._plant, self._energize)
+        self.controller = Controller(
+            machine, self.timeline, self.trace, self._knowledge, self._plant, self.switches.switch, guide
+        )
+        self.inputs = Inputs(machine, self.timeline, self.trace, self._knowledge, self.controller.see)
+        self.cylinders = Cylinders(
+            machine, self.timeline, self.trace, regions or {}, self.inputs.change, self._plant.notice
+        )
+        self.valves = Valves(machine, self.timeline, self.trace, self.cylinders.follow, self._plant.notice)
         for sensor, value in self.cylinders.sensors_on.items():
-            self.controller.initially(TermKind.SENSOR, sensor, value)
-        for name in (*machine.coils, *machine.outputs):
-            kind = TermKind.COIL if name in machine.coils else TermKind.OUTPUT
-            self.controller.initially(kind, name, False)
-        for kind, name in self.controller.asked:
-            if kind is TermKind.STEP:
-                self.controller.initially(kind, name, False)
+            self._knowledge.initially((TermKind.SENSOR, sensor, None), value)
+            self._plant.initially({(TermKind.SENSOR, sensor, None): value})
+        self._plant.initially(self.valves.aspects)
+        self._plant.initially(self.cylinders.aspects)
 
     def play(self) -> Trace:
+        self._settle_signals()
         self.controller.start()
-        self._cycle_started(self.trace.cycles[0])
+        self._settle_signals()
+        self._plant.go_live()
+        self._guide.cycle_started(self.trace.cycles[0])
         while not self._stopped and not self.trace.endless:
             if self._until_us is not None and self.timeline.next_time > self._until_us:
                 break
@@ -73,11 +80,26 @@ class Player:
             (event.what, event.subject, event.detail)
             for event in (graph.events[number] for number in self.timeline.pending)
         )
-        return self.controller.state, self.valves.state, self.cylinders.state, self.inputs.state, tuple(pending)
+        return (
+            self.controller.state,
+            self.valves.state,
+            self.cylinders.state,
+            self.inputs.state,
+            self._plant.state,
+            tuple(pending),
+        )
 
-    def _switch(self, target: str, on: bool, event: int, origin: Origin) -> None:
-        self.valves.switch(target, on, event, origin)
+    def stop(self) -> None:
+        self._stopped = True
 
-    def _cycle_started(self, read: Read) -> None:
-        if not self._go_on(self, read):
-            self._stopped = True
+    def _settle_signals(self) -> None:
+        """A signal that follows the machine starts as the machine does; also once the first steps are active."""
+        for name, value in self._plant.settle():
+            self._knowledge.initially((TermKind.SIGNAL, name, None), value)
+            self._plant.initially({(TermKind.SIGNAL, name, None): value})
+
+    def _follow(self, signal: str, value: bool, event: int) -> None:
+        self.inputs.change(signal, value, event)
+
+    def _energize(self, change: CoilChange) -> None:
+        self.valves.change(change)

@@ -28,6 +28,7 @@ class Order(IntEnum):
     MARK = 4
     VALVE = 5
     COIL = 6
+    WATCHDOG = 7
 
 
 def typical(what: str, name: str, number: int, span: Span) -> int:
@@ -53,7 +54,7 @@ class Timeline:
         self._draw = draw
         self._occurred: Counter[tuple[str, str]] = Counter()
         self._due: list[tuple[int, int, int, int]] = []
-        self._actions: dict[int, list[Callable[[], None]]] = {}
+        self._actions: dict[int, list[tuple[Order, Callable[[], None]]]] = {}
         self._scheduled = 0
 
     def delay(self, cause: int, span: Span, what: str, name: str, number: int | None = None) -> tuple[Arc, int]:
@@ -86,11 +87,11 @@ class Timeline:
 
     def at(self, number: int, order: Order, action: Callable[[], None]) -> None:
         """Do this when the event comes, unless it is called off before. An event that has come already is due now."""
-        waiting = self._actions.get(number)
-        if waiting is not None:
-            waiting.append(action)
+        waiting = self._actions.setdefault(number, [])
+        first = all(order < other for other, _ in waiting)
+        waiting.append((order, action))
+        if not first:
             return
-        self._actions[number] = [action]
         self._scheduled += 1
         heapq.heappush(self._due, (self.times[number], order, self._scheduled, number))
 
@@ -115,7 +116,7 @@ class Timeline:
             actions = self._actions.pop(number, None)
             if actions is not None:
                 self.happened.add(number)
-                for action in actions:
+                for _, action in sorted(actions, key=lambda entry: entry[0]):
                     action()
                 return number
         return None

@@ -9,12 +9,13 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from enum import Enum
 
+from seqcheck.engine.conditions import Alternatives, Aspect, Literal, literals_of
 from seqcheck.engine.graph import EventGraph
-from seqcheck.engine.scope import Literal
 from seqcheck.engine.strokes import Region
 from seqcheck.machine.devices import Position
 from seqcheck.machine.places import Place
-from seqcheck.machine.steps import CommandKind, Step
+from seqcheck.machine.steps import Choose, CommandKind, Step, Watchdog
+from seqcheck.machine.time import Span
 
 
 @dataclass(slots=True, eq=False)
@@ -27,9 +28,12 @@ class Read:
     floor: int
     left: list[Visit] = field(default_factory=list)
     entered: list[Visit] = field(default_factory=list)
+    chosen: list[Choice] = field(default_factory=list)
     #: A signal that steps entered here begin to wait for comes once for all of them: (name, on or off) to the events
     #: at which it holds at the input and is seen.
     signals: dict[tuple[str, bool], tuple[int, int]] = field(default_factory=dict)
+    #: For each island that this read's write switches outputs of, the event at which its update is over.
+    updates: dict[str, int] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -91,20 +95,58 @@ class Answer:
 
 
 @dataclass(slots=True, eq=False)
-class Visit:
-    """A step, active from the read that ``entered`` it. Not left (yet): ``left`` is None."""
+class Alarm:
+    """A watchdog that leads to another step: its time is ``over`` at one event, noticed at another. ``expired``: that
+    was before the wait had come to hold."""
 
-    step: Step
-    literals: tuple[Literal, ...]
+    watchdog: Watchdog
+    over: int
+    noticed: int
+    expired: bool = False
+
+
+@dataclass(slots=True, eq=False, kw_only=True)
+class Wait:
+    """What a thread waits for since the read that ``entered`` it: one of ``alternatives`` to hold. Not ``left`` (yet):
+    None. ``answers``: what made true the alternative that held."""
+
     entered: Read
+    alternatives: Alternatives
     cycle: int
+    signals: dict[Literal, tuple[int, int]] = field(default_factory=dict)
+    alarm: Alarm | None = None
     dwell_over: int | None = None
     dwell_seen: int | None = None
-    signals: dict[Literal, tuple[int, int]] = field(default_factory=dict)
     steady_over: int | None = None
     steady_seen: int | None = None
     left: Read | None = None
     answers: tuple[Answer, ...] = ()
+
+    @property
+    def literals(self) -> tuple[Literal, ...]:
+        return literals_of(self.alternatives)
+
+
+@dataclass(slots=True, eq=False, kw_only=True)
+class Visit(Wait):
+    """A step, active from the read that ``entered`` it."""
+
+    step: Step
+
+
+@dataclass(slots=True, eq=False, kw_only=True)
+class Choice(Wait):
+    """A ``choose`` to which a thread has come at the read that ``entered`` it, behind step ``after``; ``taken``, by the
+    number of its branch, at the read ``left``. ``conditions``: those of its branches. ``asked``: whether each signal
+    from outside was on at the first of these reads; ``told``: how much of what is known of each
+    other term (``Trace.known``) was known by then."""
+
+    choose: Choose
+    after: str | None
+    conditions: tuple[Alternatives, ...]
+    asked: dict[str, bool] = field(default_factory=dict)
+    told: dict[Aspect, int] = field(default_factory=dict)
+    taken: int | None = None
 
 
 @dataclass(slots=True, eq=False)
@@ -126,21 +168,42 @@ class CoilChange:
     origin: Origin
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class Known:
+    """What the controller knows of a term: its value, since which event, and since when it holds at the input."""
+
+    value: bool
+    seen: int
+    held: int
+    edge: Edge | None = None
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Change:
+    """What an aspect of the machine has become, and the event that brought it."""
+
+    value: bool
+    event: int
+
+
 @dataclass(slots=True, eq=False)
 class Shift:
     """A valve on its way since ``asked``, after the valve's ``previous`` shift and before its ``following`` one.
     ``called_off`` by a coil change before it got there; ``taken_over`` where that was the other coil during a return
-    to centre."""
+    to centre. ``time``: the span of the way. ``parts``: where a cylinder follows several valves, their shifts, which
+    this one stands for."""
 
     valve: str
     to: Position
     asked: int
     reached: int
     by: CoilChange
+    time: Span
     previous: Shift | None = None
     following: Shift | None = None
     called_off: CoilChange | None = None
     taken_over: bool = False
+    parts: tuple[Shift, ...] = ()
 
 
 @dataclass(slots=True, eq=False)
@@ -170,7 +233,7 @@ class Stroke:
 
 @dataclass(slots=True, eq=False)
 class Trace:
-    """One play. ``cycles``: the reads that entered the first step again, the first entry included. ``finished``:
+    """One play. ``cycles``: the reads at which the first sequence began anew, the first one included. ``finished``:
     nothing was due any more. ``endless``: steps that followed one another without time passing. ``too_long``: given up
     for its sheer number of events, so that nothing is proved."""
 
@@ -188,7 +251,14 @@ class Trace:
     strokes: list[Stroke] = field(default_factory=list)
     strokes_of: dict[str, list[Stroke]] = field(default_factory=dict)
     edges: dict[str, list[Edge]] = field(default_factory=dict)
+    #: What the controller knew of each term that anybody asks, in the order in which it came to know it.
+    known: dict[Aspect, list[Known]] = field(default_factory=dict)
+    #: How the machine itself changed, for each of its aspects that a rule, a signal or a drive looks at.
+    changes: dict[Aspect, list[Change]] = field(default_factory=dict)
+    choices: list[Choice] = field(default_factory=list)
     cycles: list[Read] = field(default_factory=list)
+    #: For each sequence the reads at which it began anew, the first one included.
+    rounds: dict[str, list[Read]] = field(default_factory=dict)
     finished: bool = False
     endless: bool = False
     too_long: bool = False

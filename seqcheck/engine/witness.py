@@ -1,4 +1,4 @@
-"""One concrete run for an order that does not hold, and whether the player really plays it so.
+"""One concrete run for an order that does not hold.
 
 Takes a trace and two events of which the first ought to come before the second; gives the delays of the run in which
 it comes as late as it can. Setting ``t(j) = S[i, j]`` for the second event ``i`` is itself a possible run (McMillan &
@@ -13,11 +13,7 @@ from dataclasses import dataclass
 
 from seqcheck.engine.bounds import causes_since, greatest_of, separation_table
 from seqcheck.engine.graph import Arc, DelayName, EventGraph
-from seqcheck.engine.player import Player
-from seqcheck.engine.settle import Settlement
-from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Trace
-from seqcheck.machine.model import Machine
 
 #: How long a wait that nothing limits lasts in a concrete run.
 _LONG_US = 60_000_000
@@ -62,14 +58,3 @@ def _binding(graph: EventGraph, times: Mapping[int, int], common: int, event: in
 def _brings(times: Mapping[int, int], arc: Arc, event: int) -> int:
     """How late this cause lets the event be."""
     return min(times[arc.cause] + greatest_of(arc.span, _LONG_US), times[event])
-
-
-def replay(machine: Machine, settlement: Settlement, run: Witness) -> Settlement:
-    """The machine played with the delays of the witness, until a little after its last event."""
-    delays = {**settlement.delays, **run.delays}
-    cycles = len(settlement.trace.cycles) + 1
-    last = max(run.times.values())
-    limit = last + last // 10 + 1_000_000
-    player = Player(machine, lambda player, _: len(player.trace.cycles) < cycles, given(delays), until_us=limit)
-    trace = player.play()
-    return Settlement(trace, delays, {}, False, 0, len(trace.cycles) - 1)

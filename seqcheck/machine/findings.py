@@ -99,6 +99,37 @@ class Duration:
 
 
 @dataclass(frozen=True, slots=True)
+class ChoiceTime:
+    """How long a cycle of ``sequence`` takes in which a choice takes the branch at ``place``, called ``way``. The
+    typical time is that of the shortest way: nobody says which ways are typical."""
+
+    sequence: str
+    place: Place
+    way: str
+    duration: Duration
+
+
+@dataclass(frozen=True, slots=True)
+class State:
+    """A state that a machine comes to: where sequences begin anew, or where a choice may come out in several ways.
+    ``name`` says which; ``choice`` is the place of the choice."""
+
+    number: int
+    name: str
+    choice: Place | None
+
+
+@dataclass(frozen=True, slots=True)
+class StateRun:
+    """A run from one state to the next, by their numbers. ``way``: how the choice at the first of them came out."""
+
+    begin: int
+    end: int
+    way: str | None
+    duration: Duration
+
+
+@dataclass(frozen=True, slots=True)
 class PathPart:
     """One event on the critical path: how late it can come after the start of the cycle, the delay that brings it
     (least, greatest, the latter None where open) and where it stands."""
@@ -120,6 +151,9 @@ class Report:
     sheets: tuple[str, ...] = ()
     assumptions: tuple[str, ...] = ()
     cycles: tuple[tuple[str, Duration], ...] = ()
+    choices: tuple[ChoiceTime, ...] = ()
+    states: tuple[State, ...] = ()
+    runs: tuple[StateRun, ...] = ()
     steps: tuple[tuple[str, Duration], ...] = ()
     critical_path: tuple[PathPart, ...] = ()
     handovers: tuple[Handover, ...] = ()

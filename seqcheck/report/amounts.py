@@ -30,7 +30,7 @@ def spelled_range(duration: Duration) -> str:
     """``1.905 s to 2.374 s, typically 2.1395 s``."""
     least, typical = format_duration(duration.least), format_duration(duration.typical)
     if duration.greatest is None:
-        return f"at least {least}, typically {typical}, at most {OPEN} (waits for a signal from outside)"
+        return f"at least {least}, typically {typical}, at most {OPEN} (hangs on signals from outside)"
     if duration.least == duration.greatest:
         return f"always {least}"
     return f"{least} to {format_duration(duration.greatest)}, typically {typical}"

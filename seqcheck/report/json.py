@@ -10,7 +10,7 @@ import json
 import re
 from collections.abc import Sequence
 
-from seqcheck.machine.findings import Duration, Finding, Handover, Margin, Problem, Report
+from seqcheck.machine.findings import ChoiceTime, Duration, Finding, Handover, Margin, Problem, Report
 
 FORMAT = "seqcheck-report"
 VERSION = 1
@@ -54,6 +54,7 @@ def report_object(report: Report) -> Json:
         "steps": {name: _duration(duration) for name, duration in report.steps},
         "handovers": [_handover(handover) for handover in report.handovers],
         "margins": [_margin(margin) for margin in report.margins],
+        "choices": [_choice(one) for one in report.choices],
     }
 
 
@@ -97,6 +98,17 @@ def _error(problem: Problem, file: str) -> Json:
 
 def _duration(duration: Duration) -> Json:
     return {"min_us": duration.least, "typical_us": duration.typical, "max_us": duration.greatest}
+
+
+def _choice(one: ChoiceTime) -> Json:
+    """The cycle in which a choice takes this branch; which way is typical nobody says."""
+    return {
+        "sequence": one.sequence,
+        "line": one.place.line,
+        "way": one.way,
+        "min_us": one.duration.least,
+        "max_us": one.duration.greatest,
+    }
 
 
 def _handover(handover: Handover) -> Json:

@@ -6,7 +6,7 @@ shows its problems, as ``check`` does.
 
 from __future__ import annotations
 
-from seqcheck.machine.findings import Duration, Handover, Margin, Report
+from seqcheck.machine.findings import ChoiceTime, Duration, Handover, Margin, Report
 from seqcheck.report.amounts import OPEN, counted, decimals_of, milliseconds
 from seqcheck.report.layout import BLANK, Column, Line, Tone, labelled, paragraph, table
 from seqcheck.report.plain import plain_report
@@ -22,6 +22,7 @@ def times_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
     return (
         *_heading(shown),
         *_section("Cycle times (ms)", _durations("sequence", shown.cycles)),
+        *(_section("Cycle times by choice (ms)", _choices(shown.choices)) if shown.choices else ()),
         *_section("Step times (ms)", _durations("step", shown.steps)),
         *_section("Critical path: what makes the longest cycle (ms)", _critical_path(shown)),
         *_closing(shown, any(time.greatest is None for _, time in (*shown.cycles, *shown.steps))),
@@ -51,7 +52,7 @@ def _section(title: str, lines: tuple[Line, ...]) -> tuple[Line, ...]:
 
 def _closing(report: Report, has_open: bool) -> tuple[Line, ...]:
     """What the figures rest on. They hold for runs in which nothing that was found comes about."""
-    rows = [(OPEN, "a signal from outside decides")] if has_open else []
+    rows = [(OPEN, "nothing limits it but signals from outside")] if has_open else []
     if found := [finding for finding in report.findings if finding.happens]:
         accepted = sum(finding.accepted is not None for finding in found)
         how = f" ({accepted} accepted)" if accepted else ""
@@ -67,6 +68,15 @@ def _durations(name: str, durations: tuple[tuple[str, Duration], ...]) -> tuple[
     decimals = decimals_of([figure for row in figures for figure in row])
     columns = (Column(name), *(Column(head, right=True) for head in ("least", "typical", "greatest")))
     rows = [(durations[number][0], *milliseconds(row, decimals)) for number, row in enumerate(figures)]
+    return table(columns, rows)
+
+
+def _choices(choices: tuple[ChoiceTime, ...]) -> tuple[Line, ...]:
+    decimals = decimals_of([time for one in choices for time in (one.duration.least, one.duration.greatest)])
+    columns = (Column("sequence"), Column("way"), Column("least", right=True), Column("greatest", right=True))
+    rows = [
+        (one.sequence, one.way, *milliseconds((one.duration.least, one.duration.greatest), decimals)) for one in choices
+    ]
     return table(columns, rows)
 
 

@@ -1,6 +1,6 @@
 """``python -m tests.fuzz --inputs 200000``: a fuzzing run with its figures; exit status 1 where a fault was found.
 
-``--language`` has texts read and laid out only; else each is checked or charted. ``--inputs`` that are not reached within
+``--language`` has texts read and laid out only; else each is checked or charted. ``--inputs`` not reached within
 ``--minutes`` are left out, and the figures say so.
 """
 

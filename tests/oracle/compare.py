@@ -18,11 +18,11 @@ from itertools import pairwise
 
 from seqcheck.checks.catalogue import CHECKS
 from seqcheck.checks.prove import Broken, Proof, prove
-from seqcheck.checks.study import Study
+from seqcheck.checks.study import Study, studies_of
 from seqcheck.checks.times import cycle_times, step_times, together
 from seqcheck.engine.graph import DelayName
 from seqcheck.engine.scope import outside_scope
-from seqcheck.engine.worlds import play_worlds
+from seqcheck.engine.explore import explore
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.conditions import TermKind
@@ -90,8 +90,8 @@ def examine(text: str) -> Examined:
     if not isinstance(machine, Machine):
         raise AssertionError("\n".join([*(str(problem) for problem in machine), text]))
     assert not outside_scope(machine), text
-    worlds = play_worlds(machine)
-    studies = tuple(Study(machine, settlement) for settlement in worlds.settlements)
+    worlds = explore(machine)
+    studies = tuple(studies_of(machine, worlds))
     return Examined(machine, studies, worlds.complete, prove(studies, CHECKS))
 
 

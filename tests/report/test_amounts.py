@@ -29,7 +29,7 @@ def test_ranges_in_words() -> None:
     assert spelled_range(Duration(1_905_000, 2_139_500, 2_374_000)) == "1.905 s to 2.374 s, typically 2.1395 s"
     assert spelled_range(Duration(5_000, 5_000, 5_000)) == "always 5 ms"
     open_range = spelled_range(Duration(5_000, 6_000, None))
-    assert open_range == "at least 5 ms, typically 6 ms, at most open (waits for a signal from outside)"
+    assert open_range == "at least 5 ms, typically 6 ms, at most open (hangs on signals from outside)"
 
 
 def test_counts() -> None:

@@ -1,0 +1,95 @@
+"""When a condition of the machine itself held in a play.
+
+Takes a study and a condition of a rule; gives the spells of each of its literals, and those of the whole, by the events
+that begin and end them.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from itertools import product
+
+from seqcheck.checks.study import Study
+from seqcheck.engine.conditions import Alternative, Alternatives, Aspect, Literal, holding
+
+
+@dataclass(frozen=True, slots=True)
+class Holds:
+    """Since the event ``begin``, to ``end``; None where the play ended before."""
+
+    begin: int
+    end: int | None
+
+
+def spells_of(study: Study, literal: Literal) -> list[Holds]:
+    """The spells in which one literal was as wanted, in the order of the play."""
+    found: list[Holds] = []
+    begin: int | None = None if literal.wanted else 0
+    for change in study.trace.changes.get(literal.aspect, ()):
+        if change.value == literal.wanted:
+            begin = change.event
+        elif begin is not None:
+            if begin != change.event:
+                found.append(Holds(begin, change.event))
+            begin = None
+    if begin is not None:
+        found.append(Holds(begin, None))
+    return found
+
+
+def together(study: Study, alternative: Alternative) -> Iterator[tuple[Holds, ...]]:
+    """Spells of every literal that hold together, or would if one of them came a little earlier or later: each spell
+    with those of the others that hold as it begins, and their neighbours."""
+    spells = [spells_of(study, literal) for literal in alternative]
+    given = set()
+    for number, own in enumerate(spells):
+        for one in own:
+            near = [[one] if other == number else _near(study, spells[other], one) for other in range(len(spells))]
+            for together in product(*near):
+                if together not in given:
+                    given.add(together)
+                    yield together
+
+
+def _near(study: Study, spells: Sequence[Holds], one: Holds) -> Sequence[Holds]:
+    """The last spell that had begun as this one begins, and the next."""
+    begun = [other for other in spells if study.time(other.begin) <= study.time(one.begin)]
+    return spells[max(0, len(begun) - 1) : len(begun) + 1]
+
+
+def whole_spells(study: Study, alternatives: Alternatives) -> list[Holds]:
+    """When the whole condition held in the play, by the change that made it so and the one that ended it."""
+    aspects = {literal.aspect for one in alternatives for literal in one}
+    changes = sorted(
+        (
+            (study.time(change.event), change.event, aspect, change.value)
+            for aspect in aspects
+            for change in study.trace.changes.get(aspect, ())
+        ),
+        key=lambda entry: entry[:2],
+    )
+    values: dict[Aspect, bool] = dict.fromkeys(aspects, False)
+    found: list[Holds] = []
+    begin: int | None = 0 if _holds(alternatives, values) else None
+    number = 0
+    while number < len(changes):
+        event = changes[number][1]
+        while number < len(changes) and changes[number][1] == event:
+            _, _, aspect, value = changes[number]
+            values[aspect] = value
+            number += 1
+        holds = _holds(alternatives, values)
+        if holds and begin is None:
+            begin = event
+        elif not holds and begin is not None:
+            if event != begin:
+                found.append(Holds(begin, event))
+            begin = None
+    if begin is not None:
+        found.append(Holds(begin, None))
+    return found
+
+
+def _holds(alternatives: Alternatives, values: dict[Aspect, bool]) -> bool:
+    return holding(alternatives, lambda literal: values[literal.aspect] == literal.wanted) is not None

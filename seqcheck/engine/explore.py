@@ -1,0 +1,237 @@
+"""The timed state graph: every state that a machine comes through, and every run between two of them.
+
+Takes a machine; gives plays that together stand for all runs, and the graph over them. A play goes on from the start,
+as typical times and the first outcome of each choice have it, until a state comes up again. What might have come out
+otherwise on its way is played otherwise from there: other outcomes of a choice, and the other way round every order
+that the bounds leave open and that is nobody's fault. Runs that come to a known state join there; work grows with
+states.
+"""
+
+from __future__ import annotations
+
+from collections import Counter, deque
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, field, replace
+
+from seqcheck.engine.bounds import greatest_separation
+from seqcheck.engine.controller import Outcome
+from seqcheck.engine.cylinders import Regions
+from seqcheck.engine.graph import DelayName
+from seqcheck.engine.guide import Passage, Path, Prefer, Scout, Signature, Way, first_of
+from seqcheck.engine.orders import Order, OrderKey, Orders
+from seqcheck.engine.player import Player
+from seqcheck.engine.regions import regions_of
+from seqcheck.engine.strokes import Region
+from seqcheck.engine.timeline import given
+from seqcheck.engine.trace import Choice, Read, Trace
+from seqcheck.engine.witness import Witness, witness
+from seqcheck.machine.model import Machine, items_of
+from seqcheck.machine.steps import Choose
+
+#: More ways than this in which orders may turn out between two states are not played; the report then says so.
+MOST_ORDERS = 16
+_MOST_ROUNDS = 8
+_PLAYS_WITHOUT_END = 16
+
+
+@dataclass(frozen=True, slots=True)
+class Recipe:
+    """How to play one way: the outcomes of its choices, delays that are not typical, and which orders between the
+    states at passage ``fresh`` and the next one they turn."""
+
+    way: Way
+    delays: Mapping[DelayName, int]
+    turned: frozenset[OrderKey] = frozenset()
+
+
+@dataclass(frozen=True, slots=True)
+class Settlement:
+    """One play. ``first`` and ``last``: the settled cycles run from one to the other of ``trace.cycles`` (none for a
+    sequence that runs once or does not come round). ``settled``: a known state has come up, or nothing was due any
+    more. ``states``: the numbers of the states that it came through, by passage."""
+
+    trace: Trace
+    recipe: Recipe
+    regions: Regions
+    path: Path
+    settled: bool
+    first: int
+    last: int
+    states: tuple[int, ...] = ()
+
+    @property
+    def delays(self) -> Mapping[DelayName, int]:
+        return self.recipe.delays
+
+    @property
+    def fresh_since(self) -> int:
+        """The typical time from which on the play shows what no other play has shown before."""
+        fresh = self.recipe.way.fresh
+        return self.trace.times[self.path.passages[fresh].at] if fresh >= 0 else 0
+
+    def segments(self) -> Iterator[tuple[int, Passage, Passage]]:
+        """Each run from one state to the next, by the number of its first passage."""
+        for number, (begin, end) in enumerate(zip(self.path.passages, self.path.passages[1:], strict=False)):
+            yield number, begin, end
+
+
+@dataclass(frozen=True, slots=True)
+class StateGraph:
+    """The first settlement is the typical one. ``complete``: whatever may come out otherwise was played."""
+
+    settlements: tuple[Settlement, ...]
+    complete: bool
+
+
+@dataclass(slots=True)
+class _Explorer:
+    machine: Machine
+    orders: Orders
+    states: dict[Signature, int] = field(default_factory=dict)
+    found: list[Settlement] = field(default_factory=list)
+    waiting: deque[Recipe] = field(default_factory=deque)
+    planned: set[tuple[object, ...]] = field(default_factory=set)
+    turns: Counter[tuple[object, ...]] = field(default_factory=Counter)
+    complete: bool = True
+
+    def explore(self) -> StateGraph:
+        self.waiting.append(Recipe(Way(), {}))
+        most = most_plays(self.machine)
+        while self.waiting and len(self.found) < most:
+            recipe = self.waiting.popleft()
+            settlement = play(self.machine, recipe, self.orders, self.states)
+            if settlement.path.astray:
+                self.complete = False
+                continue
+            numbered = tuple(
+                self.states.setdefault(passage.signature, len(self.states)) for passage in settlement.path.passages
+            )
+            self.found.append(replace(settlement, states=numbered))
+            if settlement.trace.too_long:
+                break
+            if not self.found[0].settled:
+                most = _PLAYS_WITHOUT_END
+            self._plan(self.found[-1])
+        return StateGraph(tuple(self.found), self.complete and not self.waiting)
+
+    def _plan(self, settlement: Settlement) -> None:
+        """What else may come out between the states that this play was the first to come through."""
+        path, recipe = settlement.path, settlement.recipe
+        joined = len(path.passages) if path.joined is None else path.joined
+        for number in range(recipe.way.fresh + 1, joined):
+            passage = path.passages[number]
+            for outcome in passage.outcomes:
+                if outcome is not passage.outcome:
+                    self.waiting.append(Recipe(Way((*_outcomes(path, number), outcome), number), recipe.delays))
+        for number, order in path.orders:
+            if recipe.way.fresh <= number < joined:
+                self._turn(settlement, number, order)
+
+    def _turn(self, settlement: Settlement, number: int, order: Order) -> None:
+        recipe, path = settlement.recipe, settlement.path
+        turned = recipe.turned if number == recipe.way.fresh else frozenset()
+        if order.key in turned:
+            return
+        both = turned | {order.key}
+        where = (settlement.states[number], path.passages[number].outcome)
+        if (where, both) in self.planned:
+            return
+        run = _turned_run(settlement.trace, order)
+        if run is None:
+            return
+        if self.turns[where] >= MOST_ORDERS - 1:
+            self.complete = False
+            return
+        self.turns[where] += 1
+        self.planned.add((where, both))
+        way = Way(_outcomes(path, number + 1), number)
+        self.waiting.append(Recipe(way, {**recipe.delays, **run.delays}, both))
+
+
+def _turned_run(trace: Trace, order: Order) -> Witness | None:
+    """A run that has the order the other way round and all others as they were played; None where there is none."""
+    with trace.graph.not_assuming([(order.first, order.second)]):
+        turns = greatest_separation(trace.graph, order.second, order.first) > 0
+        return witness(trace, order.first, order.second) if turns else None
+
+
+def _outcomes(path: Path, number: int) -> tuple[Outcome, ...]:
+    """How the choices at the first so many passages came out."""
+    return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
+
+
+def most_plays(machine: Machine) -> int:
+    """More plays than this are not made; the report then says so. Sequences that go side by side and never wait for one
+    another come to ever new states; where the first play shows that, little more is tried."""
+    items = [item for sequence in machine.sequences for item in items_of(sequence.items)]
+    return 60 + 20 * sum(isinstance(item, Choose) for item in items) + 4 * len(items)
+
+
+def explore(machine: Machine) -> StateGraph:
+    return _Explorer(machine, Orders(machine)).explore()
+
+
+def play(
+    machine: Machine,
+    recipe: Recipe,
+    orders: Orders,
+    known: Mapping[Signature, int],
+    prefer: Prefer = first_of,
+) -> Settlement:
+    """One way, pistons anywhere that its own bounds leave them."""
+    regions: dict[tuple[str, int], Region] = {}
+    for _ in range(_MOST_ROUNDS):
+        scout = Scout(machine, recipe.way, known, orders, prefer)
+        player = scout.player = Player(machine, scout, given(recipe.delays), regions)
+        trace = player.play()
+        scout.finish()
+        found = dict(regions_of(trace))
+        if trace.too_long or found == regions:
+            break
+        regions = found
+    return _settlement(machine, recipe, trace, regions, scout.path)
+
+
+def _settlement(machine: Machine, recipe: Recipe, trace: Trace, regions: Regions, path: Path) -> Settlement:
+    done = len(trace.cycles) - 1
+    if path.first is None or path.last is None or path.last >= len(path.passages):
+        settled = path.joined is not None or trace.finished or trace.endless
+        return Settlement(trace, recipe, regions, path, settled, max(0, done - 1), done)
+    begin, end = (trace.times[path.passages[number].at] for number in (path.first, path.last))
+    within = [number for number, read in enumerate(trace.cycles) if begin <= trace.times[read.event] <= end]
+    return Settlement(trace, recipe, regions, path, True, min(within, default=done), max(within, default=done))
+
+
+def replay(machine: Machine, settlement: Settlement, run: Witness) -> Settlement:
+    """The machine played with the delays of the witness, until a little after its last event."""
+    delays = {**settlement.delays, **run.delays}
+    outcomes = _outcomes(settlement.path, len(settlement.path.passages))
+    last = max(run.times.values())
+    limit = last + last // 10 + 1_000_000
+    follower = _Follower(outcomes, len(settlement.path.passages) + 1)
+    player = follower.player = Player(machine, follower, given(delays), until_us=limit)
+    trace = player.play()
+    recipe = Recipe(Way(outcomes), delays)
+    return Settlement(trace, recipe, {}, Path(), False, 0, len(trace.cycles) - 1)
+
+
+class _Follower:
+    """Takes choices as another play has taken them, and goes through no more states than so many."""
+
+    def __init__(self, outcomes: Sequence[Outcome], passages: int) -> None:
+        self.player: Player | None = None
+        self._outcomes = list(outcomes)
+        self._passages = passages
+
+    def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
+        self._count()
+        wanted = self._outcomes.pop(0) if self._outcomes else outcomes[0]
+        return wanted if wanted in outcomes else outcomes[0]
+
+    def cycle_started(self, read: Read) -> None:
+        self._count()
+
+    def _count(self) -> None:
+        self._passages -= 1
+        if self._passages < 0 and self.player is not None:
+            self.player.stop()

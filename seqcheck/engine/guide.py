@@ -1,0 +1,205 @@
+"""Where a play is on the timed state graph, and when it has gone far enough.
+
+Takes the way to go (outcomes of choices, in order) and the states that are known; follows a player through its states,
+at starts of rounds and at choices that may come out in several ways. Once a state comes up again the play goes on a
+little (round again, if it was its own), so that every pair of events across the border is in the trace, and stops.
+
+A state is the machine and all that is under way, with the bounds of when it will come; what has come already but may
+yet come after the state in other runs belongs to it, too, and so does a coil released so lately that its valve's
+``gap`` is not over.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field
+
+from seqcheck.engine.bounds import both_ways, greatest_separations
+from seqcheck.engine.controller import Outcome
+from seqcheck.engine.orders import Order, Orders
+from seqcheck.engine.player import Player
+from seqcheck.engine.trace import Choice, Read
+from seqcheck.machine.model import Machine
+
+Signature = tuple[object, ...]
+
+#: Prefers one of the outcomes of a choice that nothing else decides.
+Prefer = Callable[[Choice, Sequence[Outcome]], Outcome]
+
+#: So many rounds are played in search of a state that comes up again.
+MOST_ROUNDS = 16
+
+
+def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
+    return outcomes[0]
+
+
+@dataclass(slots=True, eq=False)
+class Passage:
+    """A state as one play has come through it, at the read event ``at``. ``choice`` and ``outcomes`` where it is one
+    that could come out otherwise, ``outcome`` as it did; else ``rounds``: the sequences that begin anew."""
+
+    at: int
+    signature: Signature
+    rounds: tuple[str, ...] = ()
+    choice: Choice | None = None
+    outcomes: tuple[Outcome, ...] = ()
+    outcome: Outcome | None = None
+    #: How many choices were decided before.
+    decided: int = 0
+
+
+@dataclass(slots=True)
+class Way:
+    """How to play: the ``outcomes`` of the first choices. Everything behind passage ``fresh`` is new (-1: all is)."""
+
+    outcomes: tuple[Outcome, ...] = ()
+    fresh: int = -1
+
+
+@dataclass(slots=True)
+class Path:
+    """What the guide has seen. ``joined``: the passage at which a known state came up again, None while none has;
+    ``first`` to ``last``: the passages between which the play goes once round (the same where it does not)."""
+
+    passages: list[Passage] = field(default_factory=list)
+    orders: list[tuple[int, Order]] = field(default_factory=list)
+    joined: int | None = None
+    first: int | None = None
+    last: int | None = None
+    #: The way cannot be gone: a choice had no such outcome.
+    astray: bool = False
+
+
+class Scout:
+    """``known``: signatures that other plays have come through."""
+
+    def __init__(
+        self, machine: Machine, way: Way, known: Mapping[Signature, int], orders: Orders, prefer: Prefer = first_of
+    ) -> None:
+        self.path = Path()
+        self.player: Player | None = None
+        self._machine = machine
+        self._way = way
+        self._known = known
+        self._own: dict[Signature, int] = {}
+        self._orders = orders
+        self._prefer = prefer
+        self._decided = 0
+        self._rounds_since = 0
+        self._period = 0
+        self._pool: list[int] = []
+        self._seen_events = 0
+
+    def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
+        outcome = self._prefer(choice, outcomes)
+        if self._decided < len(self._way.outcomes):
+            wanted = self._way.outcomes[self._decided]
+            self.path.astray = self.path.astray or wanted not in outcomes
+            outcome = wanted if wanted in outcomes else outcome
+        passage = Passage(choice.entered.event, (), (), choice, tuple(outcomes), outcome, self._decided)
+        self._decided += 1
+        self._pass(passage, ("choice", choice.choose.place))
+        return outcome
+
+    def cycle_started(self, read: Read) -> None:
+        assert self.player is not None
+        begun = tuple(name for name, reads in self.player.trace.rounds.items() if reads and reads[-1] is read)
+        self._pass(Passage(read.event, (), begun, decided=self._decided), ("round", begun))
+
+    def _pass(self, passage: Passage, where: tuple[object, ...]) -> None:
+        path, player = self.path, self.player
+        assert player is not None
+        index = len(path.passages)
+        self._assume_orders(player, passage, index)
+        passage.signature = (where, player.state, self._under_way(player, passage.at))
+        path.passages.append(passage)
+        if path.last is not None:
+            if index >= path.last:
+                player.stop()
+        elif self._period:
+            self._end_of_round(index)
+        elif index > self._way.fresh:
+            self._look_up(player, index)
+
+    def _look_up(self, player: Player, index: int) -> None:
+        path = self.path
+        passage = path.passages[index]
+        before = self._own.get(passage.signature)
+        if before is not None:
+            path.joined, self._period = index, index - before
+            self._end_of_round(index)
+        elif passage.signature in self._known:
+            path.joined, path.last = index, index + 1
+        else:
+            self._own[passage.signature] = index
+            self._rounds_since += bool(passage.rounds)
+            if self._rounds_since > MOST_ROUNDS:
+                player.stop()
+
+    def _end_of_round(self, index: int) -> None:
+        """The play goes round once more from the first start of a round of the first sequence, if there is one."""
+        path = self.path
+        assert path.joined is not None
+        name = self._machine.sequences[0].name
+        if name in path.passages[index].rounds or index == path.joined + self._period - 1:
+            path.first, path.last = index, index + self._period
+            self._period = 0
+
+    def _assume_orders(self, player: Player, passage: Passage, index: int) -> None:
+        """What was open since the last state is taken to be as it was played."""
+        trace = player.trace
+        begin = trace.times[self.path.passages[-1].at] if self.path.passages else 0
+        found = self._orders.open(trace, begin, trace.times[passage.at])
+        trace.graph.assumed += [(order.first, order.second) for order in found]
+        self.path.orders += [(index - 1, order) for order in found]
+
+    def finish(self) -> None:
+        """What was open behind the last state."""
+        assert self.player is not None
+        trace, passages = self.player.trace, self.path.passages
+        begin = trace.times[passages[-1].at] if passages else 0
+        found = self._orders.open(trace, begin, max(trace.times) + 1)
+        trace.graph.assumed += [(order.first, order.second) for order in found]
+        self.path.orders += [(len(passages) - 1, order) for order in found]
+
+    def _under_way(self, player: Player, at: int) -> tuple[object, ...]:
+        """What is still to come, and what may yet come later than the state, by when that is."""
+        graph, times = player.trace.graph, player.timeline.times
+        pending = player.timeline.pending
+        came = [
+            number
+            for number in (*self._pool, *range(self._seen_events, len(times)))
+            if number in player.timeline.happened and self._may_matter(player, number, at)
+        ]
+        bounds = greatest_separations(graph, both_ways((at, one) for one in (*pending, *came)))
+        late = [one for one in came if bounds[at, one] > -self._gap_after(player, one)]
+        self._pool = [*late, *pending]
+        self._seen_events = len(times)
+        return tuple(
+            sorted(
+                (
+                    number in player.timeline.happened,
+                    graph.events[number].what,
+                    graph.events[number].subject,
+                    graph.events[number].detail,
+                    bounds[at, number],
+                    bounds[number, at],
+                )
+                for number in (*pending, *late)
+            )
+        )
+
+    def _may_matter(self, player: Player, number: int, at: int) -> bool:
+        """Whether plain intervals leave it open that the event comes after the state, or too shortly before it."""
+        graph = player.trace.graph
+        common = graph.common_dominator(number, at)
+        latest = graph.latest[number] - graph.latest[common]
+        return latest + self._gap_after(player, number) > graph.earliest[at] - graph.earliest[common]
+
+    def _gap_after(self, player: Player, number: int) -> int:
+        event = player.trace.graph.events[number]
+        coil = self._machine.coils.get(event.subject) if (event.what, event.detail) == ("coil", "off") else None
+        if coil is None:
+            return 0
+        return (self._machine.valves[coil.valve].gap or 0) + coil.decay.greatest

@@ -1,0 +1,63 @@
+"""What the controller knows: inputs as read, and what it does itself as known to the next read.
+
+Takes what is seen; gives the value of any term that a step, a choice, a signal or a rule asks as the controller sees
+it. Signals from outside are not among them: they come for each wait anew.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from seqcheck.engine.conditions import Aspect, aspect_of
+from seqcheck.engine.trace import Known, Trace
+from seqcheck.machine.conditions import Condition, Term, TermKind, terms_of
+from seqcheck.machine.devices import OutsideSignal
+from seqcheck.machine.model import Machine, items_of
+from seqcheck.machine.steps import Choose, Step
+
+#: What a controller does itself, and knows without an input.
+_OWN = (TermKind.COIL, TermKind.OUTPUT, TermKind.FLAG, TermKind.STEP)
+
+
+class Knowledge:
+    """``asked``: what steps and choices ask. ``held``: what holds at the inputs, seen or not."""
+
+    def __init__(self, machine: Machine, trace: Trace) -> None:
+        self._machine = machine
+        self._trace = trace
+        self.asked: set[Aspect] = {
+            aspect_of(term) for condition in asked_conditions(machine) for term in terms_of(condition)
+        }
+        self._known: dict[Aspect, Known] = {aspect: Known(False, 0, 0) for aspect in self.asked if aspect[0] in _OWN}
+        self.held: dict[Aspect, bool] = dict.fromkeys(self._known, False)
+
+    def initially(self, aspect: Aspect, value: bool) -> None:
+        self._known[aspect] = Known(value, 0, 0)
+        self.held[aspect] = value
+
+    def see(self, aspect: Aspect, known: Known) -> None:
+        self._known[aspect] = known
+        self._trace.known.setdefault(aspect, []).append(known)
+
+    def of(self, aspect: Aspect) -> Known:
+        return self._known[aspect]
+
+    def from_outside(self, term: Term) -> bool:
+        return term.kind is TermKind.SIGNAL and isinstance(self._machine.signals[term.subject], OutsideSignal)
+
+    @property
+    def state(self) -> tuple[object, ...]:
+        return tuple(sorted((kind.value, subject, known.value) for (kind, subject, _), known in self._known.items()))
+
+
+def asked_conditions(machine: Machine) -> Iterator[Condition]:
+    """Every condition that steps and choices wait for."""
+    for sequence in machine.sequences:
+        for item in items_of(sequence.items):
+            match item:
+                case Step(until=until) if until is not None:
+                    yield until
+                case Choose(choices):
+                    yield from (choice.condition for choice in choices if choice.condition is not None)
+                case _:
+                    pass

@@ -1,0 +1,79 @@
+"""Where a piston that was stopped between its ends may stand.
+
+Takes a trace; gives, for each stroke that the valve ended, the stretch in which the bounds leave the piston. The order
+of a stop and of the marks ahead may be a matter of time that nobody looks at; the round is then played again with the
+piston anywhere in that stretch.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+from seqcheck.engine.bounds import Rows, both_ways, greatest_separation, greatest_separations
+from seqcheck.engine.graph import EventGraph
+from seqcheck.engine.strokes import Region
+from seqcheck.engine.trace import Shift, Stroke, Trace
+from seqcheck.machine.devices import Position
+
+
+def regions_of(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
+    """Where each piston that the valve drove otherwise may stand, if that is more than one stretch between marks."""
+    parted = [(stroke, _may_stand_at(trace.graph, stroke)) for stroke in trace.strokes if stroke.stands is not None]
+    pairs = ((at, event) for stroke, stands in parted for event in _passings(stroke) for at in stands)
+    rows = greatest_separations(trace.graph, both_ways(pairs))
+    for stroke, stands in parted:
+        region = _region(stroke, stands, rows)
+        if region is not None and region != stroke.stood:
+            yield (stroke.cylinder, stroke.number), region
+
+
+def _may_stand_at(graph: EventGraph, stroke: Stroke) -> list[int]:
+    """The event at which the stroke ends as played; and as it ends where the other coil may take over the valve's
+    return to centre although it did not, or may not although it did."""
+    shift = stroke.away
+    assert shift is not None and stroke.stands is not None
+    stands = [stroke.stands]
+    after, before = shift.following, shift.previous
+    if shift.to is Position.CENTRE and after is not None and after.by.coil != shift.by.coil:
+        if greatest_separation(graph, after.asked, shift.reached) > 0:
+            stands.append(after.reached)
+    elif may_have_centred(graph, shift) and before is not None:
+        stands.append(before.reached)
+    return stands
+
+
+def may_have_centred(graph: EventGraph, shift: Shift) -> bool:
+    """Whether the return to centre that this shift took over can be done before."""
+    before = shift.previous
+    return before is not None and before.taken_over and greatest_separation(graph, before.reached, shift.asked) > 0
+
+
+def _passings(stroke: Stroke) -> list[int]:
+    return [event for _, event in stroke.marks] + ([stroke.leaves] if stroke.leaves is not None else [])
+
+
+def _region(stroke: Stroke, stands: Sequence[int], rows: Rows) -> Region | None:
+    """From the last mark that is passed in every run to the first that is reached in none."""
+
+    def always_passed(event: int) -> bool:
+        return all(rows[at, event] <= 0 for at in stands)
+
+    def never_reached(event: int) -> bool:
+        return all(rows[event, at] <= 0 for at in stands)
+
+    behind = stroke.started.low if stroke.out else stroke.started.high
+    rests = set()
+    if behind in stroke.started.rests and stroke.leaves is not None and not always_passed(stroke.leaves):
+        rests.add(behind)
+    ahead = stroke.marks[-1][0]
+    for index, event in stroke.marks:
+        if always_passed(event):
+            behind = index
+        elif never_reached(event):
+            ahead = index
+            break
+    if always_passed(stroke.end):
+        return None
+    if ahead == stroke.marks[-1][0] and not never_reached(stroke.end):
+        rests.add(ahead)
+    return Region(min(behind, ahead), max(behind, ahead), frozenset(rests & {behind, ahead}))
