@@ -15,7 +15,7 @@ from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Proof, prove
 from seqcheck.checks.shown_states import shown_runs, shown_states
 from seqcheck.checks.study import Study, studies_of
-from seqcheck.checks.times import choice_times, critical_path, cycle_times, step_times
+from seqcheck.checks.times import critical_path, times_of
 from seqcheck.engine.explore import explore
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
@@ -46,7 +46,7 @@ def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int =
     if any(settlement.trace.too_long for settlement in graph.settlements):
         return _refused(source, machine, (_too_long(machine),))
     studies = studies_of(machine, graph)
-    timed = timed_states(machine, graph)
+    timed = timed_states(graph)
     report = _report(studies, timed, prove(studies, CHECKS, reserve_us), graph.complete)
     lines = _lines_of(source)
     return replace(report, findings=tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings))
@@ -74,6 +74,7 @@ def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete
     """``complete``: every order that is a matter of time was played both ways."""
     typical, machine = studies[0], studies[0].machine
     findings = tuple(one.finding for one in proof.broken)
+    times = times_of(studies, timed)
     accepted = any(one.accepted is not None and one.happens and not one.certain for one in findings)
     return Report(
         file=machine.file,
@@ -81,11 +82,11 @@ def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete
         findings=findings,
         sheets=machine.sheets,
         assumptions=assumptions(typical, complete, accepted, proof.strays),
-        cycles=cycle_times(studies, timed),
-        choices=choice_times(machine, timed),
+        cycles=times.cycles,
+        choices=times.choices,
         states=shown_states(timed),
         runs=shown_runs(timed),
-        steps=step_times(studies),
+        steps=times.steps,
         critical_path=critical_path(typical),
         handovers=tightest_handovers(handovers(study) for study in studies),
         margins=proof.margins,

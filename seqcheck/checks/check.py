@@ -71,6 +71,7 @@ class Sight:
     mend: str | None = None
     certain: bool = True
     at: int | None = None
+    severity: Severity | None = None
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:
@@ -100,7 +101,7 @@ class Check:
     def finding(self, sight: Sight) -> Finding:
         return Finding(
             kind=self.kind,
-            severity=self.severity,
+            severity=sight.severity or self.severity,
             certain=sight.certain,
             subject=sight.subject,
             step=sight.step,

@@ -8,10 +8,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
-from itertools import product
+from itertools import pairwise, product
 
 from seqcheck.checks.study import Study
 from seqcheck.engine.conditions import Alternative, Alternatives, Aspect, Literal, holding
+from seqcheck.machine.conditions import TermKind
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,7 +36,20 @@ def spells_of(study: Study, literal: Literal) -> list[Holds]:
             begin = None
     if begin is not None:
         found.append(Holds(begin, None))
-    return found
+    return [*found, *_run_together(study, literal, found)]
+
+
+def _run_together(study: Study, literal: Literal, spells: Sequence[Holds]) -> Iterator[Holds]:
+    """What a cylinder does is one long spell where it can be turned before the end of a stroke between two."""
+    if literal.term.kind is not TermKind.CYLINDER:
+        return
+    begin = None
+    for one, following in pairwise(spells):
+        begin = one.begin if begin is None else begin
+        if one.end is not None and study.can_be_turned_before(literal.term.subject, one.end):
+            yield Holds(begin, following.end)
+        else:
+            begin = None
 
 
 def together(study: Study, alternative: Alternative) -> Iterator[tuple[Holds, ...]]:

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
-from seqcheck.engine.bounds import causes_since
+from seqcheck.engine.bounds import causes_since, greatest_separation
 from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
 from seqcheck.engine.timeline import Draw, typical
@@ -163,6 +163,16 @@ class Study:
     def strokes_through(self, event: int) -> list[Stroke]:
         """The stroke, if any, in which the piston comes to this mark or leaves this end."""
         return self._strokes_by_event.get(event, [])
+
+    def can_be_turned_before(self, cylinder: str, end: int) -> bool:
+        """Whether some runs turn a stroke round, or stop it, before it ends as the played one does at this event."""
+        return any(
+            stroke.cylinder == cylinder
+            and stroke.end == end
+            and stroke.away is not None
+            and greatest_separation(self.trace.graph, stroke.away.reached, end) > 0
+            for stroke in self.strokes_through(end)
+        )
 
     @cached_property
     def _seen_edges(self) -> dict[str, list[Edge]]:

@@ -9,7 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.check import Check, Obligation, Sight, Wording
+from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
 from seqcheck.engine.graph import Event
@@ -24,14 +25,14 @@ from seqcheck.machine.time import Span
 
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
-        yield from _of_wait(study, visit, visit.step.watchdog, visit.step.name)
+        yield from _of_wait(study, visit, visit.step.watchdog)
     for choice in study.trace.choices:
         if choice.left is not choice.entered:
-            name = choice.after or f"choose in line {choice.choose.place.line}"
-            yield from _of_wait(study, choice, choice.choose.watchdog, name)
+            yield from _of_wait(study, choice, choice.choose.watchdog)
 
 
-def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None, name: str) -> Iterator[Obligation]:
+def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None) -> Iterator[Obligation]:
+    name, step = _name(wait)
     if watchdog is None or wait.left is None or _at_any_time(study, wait):
         return
     if wait.alarm is not None:
@@ -46,7 +47,7 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None, name: str) -> 
     holds = study.last_of(Event("exit holds", name), held or [wait.entered.event])
     yield Obligation(
         name,
-        wait.step.name if isinstance(wait, Visit) else wait.after if isinstance(wait, Choice) else None,
+        step,
         watchdog.place,
         holds,
         expires,
@@ -75,4 +76,24 @@ def _wording(name: str, watchdog: Watchdog, choice: bool) -> Wording:
     )
 
 
-CHECK = Check("tight-watchdog", Severity.ERROR, "a watchdog expires on a healthy machine", _obligations)
+def _always(study: Study) -> Iterator[Sight]:
+    """A wait for which nothing comes at all is ended by its watchdog whenever it is entered so."""
+    for wait in (*study.trace.visits, *study.trace.choices):
+        alarm = wait.alarm
+        if alarm is None or not alarm.expired or wait.left is None or _at_any_time(study, wait):
+            continue
+        if held_too_late(study.trace, wait) is None:
+            name, step = _name(wait)
+            message = f"nothing that {name} waits for comes before its watchdog expires"
+            run = narrate_typical(study, wait.entered.event, wait.left.event)
+            yield Sight(name, step, alarm.watchdog.place, message, run, at=wait.left.event, severity=Severity.WARNING)
+
+
+def _name(wait: Wait) -> tuple[str, str | None]:
+    if isinstance(wait, Visit):
+        return wait.step.name, wait.step.name
+    assert isinstance(wait, Choice)
+    return wait.after or f"choose in line {wait.choose.place.line}", wait.after
+
+
+CHECK = Check("tight-watchdog", Severity.ERROR, "a watchdog expires on a healthy machine", _obligations, _always)

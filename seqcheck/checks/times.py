@@ -7,17 +7,18 @@ that runs once, from its start to its end.
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterable, Iterator, Sequence
-from functools import partial, reduce
+from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+from functools import partial
 from itertools import pairwise
 
-from seqcheck.checks.cycle_ways import CycleWays
+from seqcheck.checks.crossings import Crossings, Edge, Spell, come_up_again, crossings
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations, separation_table
 from seqcheck.engine.graph import Event
-from seqcheck.engine.states import Run, TimedStates, waits_for_outside
+from seqcheck.engine.states import TimedStates, waits_for_outside
 from seqcheck.engine.trace import Read
 from seqcheck.machine.findings import ChoiceTime, Duration, PathPart
 from seqcheck.machine.model import Machine, items_of, steps_of
@@ -26,73 +27,110 @@ from seqcheck.machine.steps import Choose
 _Interval = tuple[int, int]
 
 
-def cycle_times(studies: Sequence[Study], timed: TimedStates) -> tuple[tuple[str, Duration], ...]:
-    """Of every sequence. Where nothing comes out in several ways, as the plays themselves show it, exactly; else by
-    all ways through the timed state graph."""
-    found = []
-    one_way = not any(state.choose for state in timed.states) and len(studies[0].machine.sequences) == 1
-    for sequence in studies[0].machine.sequences:
-        played = [duration for study in studies if (duration := _played(study, sequence.name)) is not None]
-        ways = None if one_way or sequence.once else CycleWays(timed, sequence.name).duration()
-        if ways is not None:
-            typical = played[0].typical if played else ways.typical
-            found.append((sequence.name, Duration(ways.least, typical, ways.greatest)))
-        elif played:
-            found.append((sequence.name, reduce(longer_of, played)))
-    return tuple(found)
+@dataclass(frozen=True, slots=True)
+class Times:
+    """``cycles`` of every sequence and ``choices``: the cycle for every branch that a choice can take; ``steps`` in the
+    order of the text, those left out that no settled cycle leaves."""
+
+    cycles: tuple[tuple[str, Duration], ...]
+    choices: tuple[ChoiceTime, ...]
+    steps: tuple[tuple[str, Duration], ...]
 
 
-def choice_times(machine: Machine, timed: TimedStates) -> tuple[ChoiceTime, ...]:
-    """The cycle of the sequence that chooses, for every branch that can be taken."""
-    found = []
-    owners = {
-        id(item): one.name for one in machine.sequences for item in items_of(one.items) if isinstance(item, Choose)
-    }
+def times_of(studies: Sequence[Study], timed: TimedStates) -> Times:
+    machine = studies[0].machine
+    settlements = [study.settlement for study in studies]
+    again = come_up_again(settlements)
+    cycles = crossings([(study.settlement, dict(_cycle_spells(study))) for study in studies], again)
+    steps = crossings([(study.settlement, _step_spells(study)) for study in studies], again)
+    return Times(
+        tuple(_shown(cycles, studies, [sequence.name for sequence in machine.sequences], _typical_cycle)),
+        tuple(_choices(machine, timed, cycles)),
+        tuple(_shown(steps, studies, [one.name for all in machine.sequences for one in steps_of(all)], _typical_step)),
+    )
+
+
+def _shown(
+    found: Mapping[str, Crossings],
+    studies: Sequence[Study],
+    names: Iterable[str],
+    typical: Callable[[Study, str], int | None],
+) -> Iterator[tuple[str, Duration]]:
+    for name in names:
+        if name in found and (least := found[name].least()) is not None:
+            times = (typical(study, name) for study in studies)
+            usual = next((time for time in times if time is not None), least)
+            yield name, Duration(least, max(least, usual), found[name].greatest())
+
+
+def _choices(machine: Machine, timed: TimedStates, cycles: Mapping[str, Crossings]) -> Iterator[ChoiceTime]:
     choices = {state.choose.place: state.choose for state in timed.states if state.choose is not None}
-    for choose in (choices[place] for place in sorted(choices)):
-        ways = CycleWays(timed, owners[id(choose)])
-        at = {state.number for state in timed.states if state.choose is choose}
-        for number, choice in enumerate(choose.choices):
-            duration = ways.duration(partial(_takes, at, number))
-            if duration is not None:
-                found.append(ChoiceTime(owners[id(choose)], choice.place, branch_name(choose, number), duration))
-    return tuple(found)
+    for sequence in machine.sequences:
+        for item in items_of(sequence.items):
+            if not isinstance(item, Choose) or item.place not in choices or sequence.name not in cycles:
+                continue
+            at = {state.number for state in timed.states if state.choose is item}
+            for number, choice in enumerate(item.choices):
+                through = partial(_takes, at, number)
+                duration = cycles[sequence.name].duration(0, through)
+                if duration is not None:
+                    duration = replace(duration, typical=duration.least)
+                    yield ChoiceTime(sequence.name, choice.place, branch_name(item, number), duration)
 
 
-def _takes(states: Collection[int], branch: int, run: Run) -> bool:
-    return run.begin in states and run.outcome is not None and run.outcome.taken == branch
+def _takes(states: Collection[int], branch: int, edge: Edge) -> bool:
+    return edge[0] in states and edge[2] is not None and edge[2].taken == branch
 
 
-def _played(study: Study, sequence: str) -> Duration | None:
-    intervals = list(cycles_in(study, sequence, settled=True))
-    return _duration(study, intervals, _bounds(study, intervals)) if intervals else None
+def _cycle_spells(study: Study) -> Iterator[tuple[str, list[Spell]]]:
+    for sequence in study.machine.sequences:
+        yield sequence.name, cycle_spells(study, sequence.name)
 
 
-def longer_of(one: Duration, other: Duration) -> Duration:
-    """From the least of both to the greatest of both; typical as the first."""
-    longest = None if one.greatest is None or other.greatest is None else max(one.greatest, other.greatest)
-    return Duration(min(one.least, other.least), one.typical, longest)
+def cycle_spells(study: Study, name: str) -> list[Spell]:
+    """The cycles of a sequence, the last one, which the play has not come through, included."""
+    if {one.name: one.once for one in study.machine.sequences}[name]:
+        return [Spell(begin, end) for begin, end in cycles_in(study, name)]
+    at = {passage.at: number for number, passage in enumerate(study.settlement.path.passages) if name in passage.rounds}
+    spells = []
+    rounds = study.trace.rounds[name]
+    for read, following in zip(rounds, (*rounds[1:], None), strict=True):
+        begin = _begin(study, read, name)
+        first = at.get(read.event) if begin == read.event else None
+        if following is None:
+            spells.append(Spell(begin, None, first))
+        else:
+            spells.append(Spell(begin, following.event, first, at.get(following.event)))
+    return spells
 
 
-def step_times(studies: Sequence[Study]) -> tuple[tuple[str, Duration], ...]:
-    """In the order of the text; steps that no settled cycle leaves are left out."""
-    found: dict[str, Duration] = {}
-    for study in studies:
-        for name, duration in _step_times(study):
-            found[name] = longer_of(found[name], duration) if name in found else duration
-    steps = [step.name for sequence in studies[0].machine.sequences for step in steps_of(sequence)]
-    return tuple((name, found[name]) for name in steps if name in found)
-
-
-def _step_times(study: Study) -> Iterator[tuple[str, Duration]]:
-    by_step: dict[str, list[_Interval]] = {}
-    since = _settled_since(study)
+def _step_spells(study: Study) -> dict[str, list[Spell]]:
+    found: dict[str, list[Spell]] = {}
     for visit in study.trace.visits:
-        if visit.left is not None and study.time(visit.entered.event) >= since:
-            by_step.setdefault(visit.step.name, []).append((visit.entered.event, visit.left.event))
-    rows = _bounds(study, (interval for intervals in by_step.values() for interval in intervals))
-    for name, intervals in by_step.items():
-        yield name, _duration(study, intervals, rows)
+        left = visit.left.event if visit.left is not None else None
+        found.setdefault(visit.step.name, []).append(Spell(visit.entered.event, left))
+    return found
+
+
+def _typical_cycle(study: Study, sequence: str) -> int | None:
+    return _mean(study, list(cycles_in(study, sequence, settled=True)))
+
+
+def _typical_step(study: Study, step: str) -> int | None:
+    since = _settled_since(study)
+    return _mean(
+        study,
+        [
+            (visit.entered.event, visit.left.event)
+            for visit in study.trace.visits
+            if visit.step.name == step and visit.left is not None and study.time(visit.entered.event) >= since
+        ],
+    )
+
+
+def _mean(study: Study, intervals: Sequence[_Interval]) -> int | None:
+    lengths = [study.time(end) - study.time(begin) for begin, end in intervals]
+    return sum(lengths) // len(lengths) if lengths else None
 
 
 def critical_path(study: Study) -> tuple[PathPart, ...]:
@@ -175,12 +213,3 @@ def _settled_since(study: Study) -> int:
 
 def _bounds(study: Study, intervals: Iterable[_Interval]) -> Rows:
     return greatest_separations(study.trace.graph, both_ways(intervals))
-
-
-def _duration(study: Study, intervals: list[_Interval], rows: Rows) -> Duration:
-    typical = sum(study.time(end) - study.time(start) for start, end in intervals) // len(intervals)
-    return Duration(
-        min(-rows[end, start] for start, end in intervals),
-        typical,
-        closed(max(rows[interval] for interval in intervals)),
-    )

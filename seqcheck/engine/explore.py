@@ -9,6 +9,7 @@ states.
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections import Counter, deque
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
@@ -123,9 +124,12 @@ class _Explorer:
             for outcome in passage.outcomes:
                 if outcome is not passage.outcome:
                     self.waiting.append(Recipe(Way((*_outcomes(path, number), outcome), number), recipe.delays))
+        at = [settlement.trace.times[passage.at] for passage in path.passages]
         for number, order in path.orders:
-            if recipe.way.fresh <= number < joined:
-                self._turn(settlement, number, order)
+            # The other way round, the play parts from this one where the first of the two is due.
+            parts = max(0, min(number, bisect_right(at, settlement.trace.times[order.first]) - 1))
+            if recipe.way.fresh <= parts < joined:
+                self._turn(settlement, parts, order)
 
     def _turn(self, settlement: Settlement, number: int, order: Order) -> None:
         recipe, path = settlement.recipe, settlement.path

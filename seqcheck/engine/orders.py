@@ -17,7 +17,7 @@ from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.branches import Branches
 from seqcheck.engine.conditions import Alternative, Alternatives, Aspect, Literal, alternatives_of, aspect_of, holding
 from seqcheck.engine.cylinders import drives_of, stands
-from seqcheck.engine.trace import Change, Choice, Effect, Known, Touch, Trace, Visit, Wait
+from seqcheck.engine.trace import Change, Choice, Edge, Effect, Known, Touch, Trace, Visit, Wait
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import FollowingSignal, OnValve, OutsideSignal
 from seqcheck.machine.model import Machine
@@ -56,6 +56,10 @@ class Orders:
         for visit in trace.visits:
             if visit.left is not None and (len(visit.alternatives) > 1 or visit.alarm is not None):
                 yield from _of_wait(trace, visit, ("step", visit.step.name))
+        for visit in trace.visits:
+            if len(visit.alternatives) > 1:
+                for subject in {literal.term.subject for literal in visit.literals}:
+                    yield from (order for order, _ in passing(trace, visit, subject))
         for choice in trace.choices:
             yield from choice_orders(self._machine, trace, choice)
             if choice.left is not None and choice.alarm is not None:
@@ -101,6 +105,23 @@ def _of_wait(trace: Trace, wait: Visit, what: tuple[object, ...]) -> Iterator[Or
             comes = _completed(trace, wait, other)
             if comes is not None and came is not None:
                 yield Order((*what, "before", _named(other), _named(held)), came, comes)
+
+
+def passing(trace: Trace, wait: Wait, subject: str) -> Iterator[tuple[Order, Edge]]:
+    """An input that is asked, but that nobody has to see, comes and goes: whether a read falls between the two."""
+    begin = trace.times[wait.entered.event]
+    end = trace.times[wait.left.event] if wait.left is not None else None
+    edges = trace.edges.get(subject, [])
+    for number, edge in enumerate(edges):
+        gone = edges[number + 1].arrived if number + 1 < len(edges) else None
+        if trace.times[edge.arrived] < begin or (end is not None and trace.times[edge.arrived] > end):
+            continue
+        key = (subject, "passes", edge.value, wait.entered.reader)
+        if edge.lost_to is not None:
+            comes = edge.arrived if edge.seen is None else edge.seen
+            yield Order((*key, "unseen"), edge.lost_to, comes), edge
+        elif gone is not None and edge.seen is not None and any(one.edge is edge for one in wait.answers):
+            yield Order((*key, "seen"), edge.seen, gone), edge
 
 
 def _of_alarm(trace: Trace, wait: Wait, what: tuple[object, ...]) -> Iterator[Order]:
@@ -188,6 +209,7 @@ def asked_in_time(machine: Machine, trace: Trace, choice: Choice) -> Iterator[Ch
     yield from _at_the_first_read(trace, choice)
     if choice.left is not None and choice.left is not choice.entered and choice.taken is not None:
         yield from _while_it_stands(machine, trace, choice)
+        yield from _in_passing(trace, choice)
 
 
 def _at_the_first_read(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
@@ -251,6 +273,24 @@ def _while_it_stands(machine: Machine, trace: Trace, choice: Choice) -> Iterator
             asked = " and ".join(one.term.subject for one in other)
             how = f"{asked} coming {{by}} before {' and '.join(one.term.subject for one in own)}"
             yield ChoiceOrder(Order(key, came, comes), asked, how, number, outside)
+
+
+def _in_passing(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
+    """What would have another branch taken comes and goes, and no read falls between the two, or one does."""
+    aspects = {literal.aspect for literal in choice.literals if literal not in choice.signals}
+    for aspect in aspects:
+        for order, edge in passing(trace, choice, aspect[1]):
+            values = {other: _known_at(trace, other, edge.arrived) for other in aspects}
+            other = _outcome(choice, {**values, aspect: edge.value})
+            if order.key[-1] == "seen":
+                other = next((n for n in range(len(choice.conditions)) if n != choice.taken), None)
+            how = f"{aspect[1]} {'seen' if edge.lost_to is not None else 'passing unseen'} by {{by}}"
+            yield ChoiceOrder(order, aspect[1], how, other, False)
+
+
+def _known_at(trace: Trace, aspect: Aspect, event: int) -> bool:
+    log = trace.known.get(aspect, [])
+    return _value_before(log, bisect_right(log, trace.times[event], key=lambda known: trace.times[known.seen]))
 
 
 def _from_outside(machine: Machine, literal: Literal) -> bool:
