@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
 from seqcheck.engine.orders import ChoiceOrder, asked_in_time
 from seqcheck.engine.trace import Choice
@@ -28,15 +29,12 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 
 
 def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
-    subject = choice.after or _first_step(choice) or f"choose in line {choice.choose.place.line}"
-    where = f"behind {choice.after}" if choice.after else f"in line {choice.choose.place.line}"
     assert one.other is not None
-    other = choice.choose.choices[one.other]
-    way = "otherwise" if other.condition is None else f"the branch in line {other.place.line}"
-    message = f"the choice {where} can take {way} instead, {one.how}"
+    where = f"behind {choice.after}" if choice.after else f"in line {choice.choose.place.line}"
+    message = f"the choice {where} can take {branch_name(choice.choose, one.other)} instead, {one.how}"
     return Obligation(
-        subject,
-        choice.after,
+        choice_name(choice),
+        None,
         choice.choose.place,
         one.order.first,
         one.order.second,
@@ -46,9 +44,10 @@ def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
     )
 
 
-def _first_step(choice: Choice) -> str | None:
+def choice_name(choice: Choice) -> str:
+    """A choice is known by the first step in it."""
     items = (item for one in choice.choose.choices for item in items_of(one.items))
-    return next((item.name for item in items if isinstance(item, Step)), None)
+    return next((item.name for item in items if isinstance(item, Step)), f"line {choice.choose.place.line}")
 
 
 CHECK = Check("choice-race", Severity.WARNING, "which way a choice goes is a matter of plant times", _obligations)

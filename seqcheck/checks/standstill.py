@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from seqcheck.checks.check import Check, Sight
+from seqcheck.checks.choice_race import choice_name
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import both_ways, greatest_separations
@@ -50,7 +51,7 @@ def _who(wait: Wait) -> tuple[str, Place]:
     if isinstance(wait, Visit):
         return wait.step.name, wait.step.place
     assert isinstance(wait, Choice)
-    return wait.after or f"choose in line {wait.choose.place.line}", wait.choose.place
+    return choice_name(wait), wait.choose.place
 
 
 def _waiting_since(trace: Trace, since: int | None) -> list[Wait]:

@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
+from seqcheck.checks.choice_race import choice_name
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
@@ -69,7 +70,7 @@ def _at_any_time(study: Study, wait: Wait) -> bool:
 
 
 def _wording(name: str, watchdog: Watchdog, choice: bool) -> Wording:
-    whose, until = (f"the choice behind {name}", "it is taken") if choice else (name, "the step is done")
+    whose, until = (f"the choice with {name}", "it is taken") if choice else (name, "the step is done")
     return Wording(
         f"the watchdog of {whose} can expire {{by}} before {until}",
         lambda by: f"within {round_up(watchdog.within + by)} is safe",
@@ -93,7 +94,7 @@ def _name(wait: Wait) -> tuple[str, str | None]:
     if isinstance(wait, Visit):
         return wait.step.name, wait.step.name
     assert isinstance(wait, Choice)
-    return wait.after or f"choose in line {wait.choose.place.line}", wait.after
+    return choice_name(wait), None
 
 
 CHECK = Check("tight-watchdog", Severity.ERROR, "a watchdog expires on a healthy machine", _obligations, _always)

@@ -23,6 +23,7 @@ from seqcheck.engine.trace import Read
 from seqcheck.machine.findings import ChoiceTime, Duration, PathPart
 from seqcheck.machine.model import Machine, items_of, steps_of
 from seqcheck.machine.steps import Choose
+from seqcheck.machine.time import NO_TIME, Span
 
 _Interval = tuple[int, int]
 
@@ -134,39 +135,50 @@ def _mean(study: Study, intervals: Sequence[_Interval]) -> int | None:
 
 
 def critical_path(study: Study) -> tuple[PathPart, ...]:
-    """The chain of causes that makes the longest settled cycle as long as it can be."""
+    """The chain of causes that makes the longest settled cycle as long as it can be; the delays of events that have no
+    words of their own go to the next one."""
     intervals = list(cycles_in(study, study.machine.sequences[0].name, settled=True))
     if not intervals:
         return ()
     rows = _bounds(study, intervals)
     start, end = max(intervals, key=lambda interval: rows[interval])
+    path: list[PathPart] = []
+    least = greatest = 0
+    for link in critical_chain(study, start, end):
+        least, greatest = least + link.span.least, greatest + link.span.greatest
+        words = _words(study, link.event)
+        if words or link.event == end:
+            path.append(PathPart(words or "end of the cycle", closed(link.latest), least, closed(greatest)))
+            least = greatest = 0
+    return tuple(path)
+
+
+@dataclass(frozen=True, slots=True)
+class Link:
+    """An event of a chain of causes: how late it can come after the start of the chain, and the delay that brings
+    it."""
+
+    event: int
+    latest: int
+    span: Span
+
+
+def critical_chain(study: Study, start: int, end: int) -> tuple[Link, ...]:
+    """The chain of causes that makes ``end`` come as late after ``start`` as it can, in the order of time."""
     graph = study.trace.graph
     members = causes_since(graph, graph.common_dominator(start, end), {start, end})
     column = separation_table(graph, members, [start])[:, 0].tolist()
     latest = dict(zip(members, column, strict=True))
-    return tuple(reversed(list(_told_backwards(study, latest, start, end))))
-
-
-def _told_backwards(study: Study, latest: dict[int, int], start: int, end: int) -> Iterator[PathPart]:
-    """From the end back to the start; the delays of events that have no words of their own go to the next one."""
-    graph = study.trace.graph
-    event, text, at = end, "", 0
-    least = greatest = 0
-    while True:
-        words = _words(study, event)
-        if words or event == end:
-            if text:
-                yield PathPart(text, closed(at), least, closed(greatest))
-            text, at, least, greatest = words or "end of the cycle", latest[event], 0, 0
-        if event == start or not graph.arcs[event]:
-            yield PathPart(text, closed(at), least, closed(greatest))
-            return
-        arc = max(graph.arcs[event], key=lambda arc: latest.get(arc.cause, -(1 << 60)) + arc.span.greatest)
-        if arc.cause not in latest:
-            yield PathPart(text, closed(at), least, closed(greatest))
-            return
-        least, greatest = least + arc.span.least, greatest + arc.span.greatest
+    chain: list[Link] = []
+    event = end
+    while event != start:
+        known = [arc for arc in graph.arcs[event] if arc.cause in latest]
+        if not known:
+            break
+        arc = max(known, key=lambda arc: latest[arc.cause] + arc.span.greatest)
+        chain.append(Link(event, latest[event], arc.span))
         event = arc.cause
+    return (Link(event, latest[event], NO_TIME), *reversed(chain))
 
 
 def _words(study: Study, event: int) -> str:

@@ -18,16 +18,26 @@ from seqcheck.engine.bounds import both_ways, greatest_separations
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.orders import Order, Orders
 from seqcheck.engine.player import Player
-from seqcheck.engine.trace import Choice, Read
-from seqcheck.machine.model import Machine
+from seqcheck.engine.trace import Choice, Read, Trace
+from seqcheck.machine.model import Machine, items_of
+from seqcheck.machine.steps import Choose
 
 Signature = tuple[object, ...]
 
 #: Prefers one of the outcomes of a choice that nothing else decides.
 Prefer = Callable[[Choice, Sequence[Outcome]], Outcome]
 
-#: So many rounds are played in search of a state that comes up again.
-MOST_ROUNDS = 16
+#: So many rounds of one sequence are played in search of a state that comes up again.
+MOST_ROUNDS = 12
+
+
+#: What was over so many states ago has no open order any more.
+_LATE = 8
+
+
+def _states_of_one_round(machine: Machine) -> int:
+    items = [item for sequence in machine.sequences for item in items_of(sequence.items)]
+    return len(machine.sequences) + sum(isinstance(item, Choose) for item in items)
 
 
 def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
@@ -86,7 +96,7 @@ class Scout:
         self._orders = orders
         self._prefer = prefer
         self._decided = 0
-        self._rounds_since = 0
+        self._most_passages = MOST_ROUNDS * _states_of_one_round(machine)
         self._period = 0
         self._pool: list[int] = []
         self._seen_events = 0
@@ -133,8 +143,7 @@ class Scout:
             path.joined, path.last = index, index + 1
         else:
             self._own[passage.signature] = index
-            self._rounds_since += bool(passage.rounds)
-            if self._rounds_since > MOST_ROUNDS:
+            if index - self._way.fresh > self._most_passages:
                 player.stop()
 
     def _end_of_round(self, index: int) -> None:
@@ -149,8 +158,8 @@ class Scout:
     def _assume_orders(self, player: Player, passage: Passage, index: int) -> None:
         """What was open since the last state is taken to be as it was played."""
         trace = player.trace
-        begin = trace.times[self.path.passages[-1].at] if self.path.passages else 0
-        found = self._orders.open(trace, begin, trace.times[passage.at])
+        since, begin = self._looked_at(trace)
+        found = self._orders.open(trace, since, begin, trace.times[passage.at])
         trace.graph.assumed += [(order.first, order.second) for order in found]
         self.path.orders += [(index - 1, order) for order in found]
 
@@ -158,10 +167,15 @@ class Scout:
         """What was open behind the last state."""
         assert self.player is not None
         trace, passages = self.player.trace, self.path.passages
-        begin = trace.times[passages[-1].at] if passages else 0
-        found = self._orders.open(trace, begin, max(trace.times) + 1)
+        since, begin = self._looked_at(trace)
+        found = self._orders.open(trace, since, begin, max(trace.times) + 1)
         trace.graph.assumed += [(order.first, order.second) for order in found]
         self.path.orders += [(len(passages) - 1, order) for order in found]
+
+    def _looked_at(self, trace: Trace) -> tuple[int, int]:
+        """Since when something may still have orders that are open, and up to when they have been looked at."""
+        at = [trace.times[passage.at] for passage in self.path.passages[-_LATE:]]
+        return (at[0] if len(at) == _LATE else 0), (at[-1] if at else 0)
 
     def _under_way(self, player: Player, at: int) -> tuple[object, ...]:
         """What is still to come, and what may yet come later than the state, by when that is."""

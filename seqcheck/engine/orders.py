@@ -41,29 +41,27 @@ class Orders:
         self._followed = list(_followed(machine))
         self._driven = list(_driven(machine))
 
-    def open(self, trace: Trace, begin: int, end: int) -> list[Order]:
-        """Those whose second event came from ``begin`` to before ``end`` and that can be the other way round."""
+    def open(self, trace: Trace, since: int, begin: int, end: int) -> list[Order]:
+        """Those whose second event came from ``begin`` to before ``end`` and that can be the other way round. What was
+        over before ``since`` has had its orders found."""
         found = [
             one
-            for one in self._all(trace, begin, end)
+            for one in self._all(trace, since, begin)
             if one.first != one.second and begin <= trace.times[one.second] < end
         ]
         rows = greatest_separations(trace.graph, ((one.second, one.first) for one in found))
         return [one for one in found if rows[one.second, one.first] > 0]
 
-    def _all(self, trace: Trace, begin: int, end: int) -> Iterator[Order]:
+    def _all(self, trace: Trace, since: int, begin: int) -> Iterator[Order]:
         yield from self._of_commands(trace, begin)
         for visit in trace.visits:
-            if visit.left is not None and (len(visit.alternatives) > 1 or visit.alarm is not None):
-                yield from _of_wait(trace, visit, ("step", visit.step.name))
-        for visit in trace.visits:
-            if len(visit.alternatives) > 1:
-                for subject in {literal.term.subject for literal in visit.literals}:
-                    yield from (order for order, _ in passing(trace, visit, subject))
+            if _is_of_late(trace, visit, since) and (len(visit.alternatives) > 1 or visit.alarm is not None):
+                yield from _of_visit(trace, visit)
         for choice in trace.choices:
-            yield from choice_orders(self._machine, trace, choice)
-            if choice.left is not None and choice.alarm is not None:
-                yield from _of_alarm(trace, choice, ("choose", choice.choose.place))
+            if _is_of_late(trace, choice, since):
+                yield from choice_orders(self._machine, trace, choice)
+                if choice.left is not None and choice.alarm is not None:
+                    yield from _of_alarm(trace, choice, ("choose", choice.choose.place))
         for name, condition in self._followed:
             yield from _of_condition(trace, trace.changes, name, condition, begin)
         if self._driven:
@@ -74,12 +72,28 @@ class Orders:
     def _of_commands(self, trace: Trace, begin: int) -> Iterator[Order]:
         """All but those that are a fault in themselves: branches that race for a coil."""
         for target, touches in trace.touches.items():
-            in_order = sorted(touches, key=lambda touch: (trace.times[touch.event], touch.event))
-            for first, second in pairwise(in_order):
+            for first, second in _in_order_since(trace, touches, begin):
+                if first.event == second.event or not _differs(first, second):
+                    continue
                 races = first.conflicts_with(second) and self._branches.parallel(first.origin.step, second.origin.step)
-                if first.event != second.event and _differs(first, second) and not races:
+                if not races:
                     named = frozenset((touch.origin.place, touch.effect) for touch in (first, second))
                     yield Order((target, named), first.event, second.event)
+
+
+def _in_order_since(trace: Trace, touches: Sequence[Touch], begin: int) -> Iterator[tuple[Touch, Touch]]:
+    """Each touch that came since, with the one before it, in the order of the play. (A pulse that a reset has ended is
+    noted with when it would have ended: touches are only nearly in order.)"""
+    late = [touch for touch in touches if trace.times[touch.event] >= begin]
+    if late:
+        early = [touch for touch in touches if trace.times[touch.event] < begin]
+        before = max(early, key=lambda touch: (trace.times[touch.event], touch.event), default=None)
+        late.sort(key=lambda touch: (trace.times[touch.event], touch.event))
+        yield from pairwise([*([before] if before is not None else []), *late])
+
+
+def _is_of_late(trace: Trace, wait: Wait, since: int) -> bool:
+    return wait.left is None or trace.times[wait.left.event] >= since
 
 
 def _differs(first: Touch, second: Touch) -> bool:
@@ -92,17 +106,26 @@ def _differs(first: Touch, second: Touch) -> bool:
 # Alternatives and watchdogs of a wait -----------------------------------------------------------------------------
 
 
-def _of_wait(trace: Trace, wait: Visit, what: tuple[object, ...]) -> Iterator[Order]:
-    assert wait.left is not None
-    if wait.alarm is not None:
-        yield from _of_alarm(trace, wait, what)
-    if wait.alarm is not None and wait.alarm.expired:
+def _of_visit(trace: Trace, visit: Visit) -> Iterator[Order]:
+    what = ("step", visit.step.name)
+    if len(visit.alternatives) > 1:
+        for subject in {literal.term.subject for literal in visit.literals}:
+            yield from (order for order, _ in passing(trace, visit, subject))
+    if visit.left is None:
         return
-    held = {answer.literal for answer in wait.answers}
-    came = _latest(trace, [answer.seen for answer in wait.answers])
-    for other in wait.alternatives:
-        if not held <= set(other) or len(held) != len(other):
-            comes = _completed(trace, wait, other)
+    if visit.alarm is not None:
+        yield from _of_alarm(trace, visit, what)
+    if visit.alarm is None or not visit.alarm.expired:
+        yield from _of_alternatives(trace, visit, what)
+
+
+def _of_alternatives(trace: Trace, visit: Visit, what: tuple[object, ...]) -> Iterator[Order]:
+    """The alternative that held first, against all others."""
+    held = {answer.literal for answer in visit.answers}
+    came = _latest(trace, [answer.seen for answer in visit.answers])
+    for other in visit.alternatives:
+        if set(other) != held:
+            comes = _completed(trace, visit, other)
             if comes is not None and came is not None:
                 yield Order((*what, "before", _named(other), _named(held)), came, comes)
 

@@ -130,18 +130,24 @@ def _outside(what: str, name: str, time: int, bounds: Duration) -> Iterator[Disa
 def unforeseen(examined: Examined, name: str, run: Run) -> Iterator[Disagreement]:
     """Incidents, up to the first that diverts the machine, that no finding tells of."""
     for incident in run.incidents:
-        if not any(_tells_of(finding, incident) for finding in examined.report.findings):
+        if not any(_tells_of(examined.machine, finding, incident) for finding in examined.report.findings):
             yield Disagreement("foreseen", name, str(incident))
         if incident.diverts:
             return
 
 
-def _tells_of(finding: Finding, incident: Incident) -> bool:
-    """By kind, subject and, where both name one, step. A choice is known by its line."""
+def _tells_of(machine: Machine, finding: Finding, incident: Incident) -> bool:
+    """By kind, subject and, where both name one, step. A choice is known by the lines in which it stands."""
     if finding.kind != incident.kind:
         return False
     if incident.subject.startswith("choose "):
-        return finding.place.line == int(incident.subject.removeprefix("choose ").partition(":")[0])
+        line = int(incident.subject.removeprefix("choose ").partition(":")[0])
+        return any(
+            line <= finding.place.line <= item.place.end_line
+            for sequence in machine.sequences
+            for item in items_of(sequence.items)
+            if isinstance(item, Choose) and item.place.line == line
+        )
     return finding.subject == incident.subject and (finding.step is None or incident.step in (finding.step, None))
 
 
