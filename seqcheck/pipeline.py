@@ -7,12 +7,12 @@ problem and everything that is wrong with the machine a finding.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from seqcheck.checks.assumptions import assumptions
 from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
 from seqcheck.checks.opposed_coils import handovers, tightest_handovers
-from seqcheck.checks.prove import Proof, prove
+from seqcheck.checks.prove import Broken, Proof, prove
 from seqcheck.checks.shown_states import shown_runs, shown_states
 from seqcheck.checks.study import Study, studies_of
 from seqcheck.checks.times import critical_path, times_of
@@ -26,30 +26,51 @@ from seqcheck.machine.findings import Problem, Report
 from seqcheck.machine.model import Machine
 
 
+@dataclass(frozen=True, slots=True)
+class Studied:
+    """A machine with every play of it, the typical one first, and what is behind its report: ``broken`` in the order of
+    the report's findings."""
+
+    machine: Machine
+    studies: Sequence[Study]
+    broken: Sequence[Broken]
+
+
 def examine(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
     """Read, play, prove. ``name`` is a path, or ``-`` for standard input. What holds, but with less than
     ``reserve_us`` left, is a finding too."""
-    source = read_source(name)
-    if isinstance(source, Problem):
-        return Report(name, None, problems=(source,))
-    return examine_source(source, sheets, reserve_us)
+    return study(name, sheets, reserve_us)[0]
 
 
 def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
+    return study_source(source, sheets, reserve_us)[0]
+
+
+def study(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> tuple[Report, Studied | None]:
+    """The same, with what is behind the report; None where the report has problems."""
+    source = read_source(name)
+    if isinstance(source, Problem):
+        return Report(name, None, problems=(source,)), None
+    return study_source(source, sheets, reserve_us)
+
+
+def study_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0) -> tuple[Report, Studied | None]:
     machine = read_machine(source, sheets, ACCEPTABLE)
     if not isinstance(machine, Machine):
-        return Report(source.name, None, problems=machine)
+        return Report(source.name, None, problems=machine), None
     refused = outside_scope(machine)
     if refused:
-        return _refused(source, machine, refused)
+        return _refused(source, machine, refused), None
     graph = explore(machine)
     if any(settlement.trace.too_long for settlement in graph.settlements):
-        return _refused(source, machine, (_too_long(machine),))
+        return _refused(source, machine, (_too_long(machine),)), None
     studies = studies_of(machine, graph)
     timed = timed_states(graph)
-    report = _report(studies, timed, prove(studies, CHECKS, reserve_us), graph.complete)
+    proof = prove(studies, CHECKS, reserve_us)
+    report = _report(studies, timed, proof, graph.complete)
     lines = _lines_of(source)
-    return replace(report, findings=tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings))
+    findings = tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings)
+    return replace(report, findings=findings), Studied(machine, studies, proof.broken)
 
 
 def _refused(source: Source, machine: Machine, problems: Sequence[Problem]) -> Report:

@@ -1,8 +1,8 @@
-"""From a text to its report and its chart.
+"""From an examined machine to its chart.
 
-Takes the name of a text and those of sheets; gives the report with the machine, and of that the chart of a part. Every
-edge of the chart has the exact bounds of the engine: the greatest separation from the anchor to the event, and from the
-event to the anchor. Refuses what cannot be shown, in words (``Unplaceable``).
+Takes a report with what is behind it, and the part to show; gives the chart. Every edge of it has the exact bounds of
+the engine: the greatest separation from the anchor to the event, and from the event to the anchor. Refuses what cannot
+be shown, in words (``Unplaceable``).
 """
 
 from __future__ import annotations
@@ -12,69 +12,48 @@ from bisect import bisect_left
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
-from seqcheck.chart.events import Change, Line, Sequenced, lines, sequences
+from seqcheck.chart.asked import Part, Unplaceable
+from seqcheck.chart.changes import Change
+from seqcheck.chart.decisions import decision_words, way_shown
+from seqcheck.chart.events import Line, Sequenced, lines, sequences
 from seqcheck.chart.marks import critical_events, names_of, spots
-from seqcheck.chart.model import Band, Chart, Edge, Mark, PathPoint, Row, RowKind
+from seqcheck.chart.model import Band, Chart, Decision, Edge, Mark, PathPoint, Row, RowKind
 from seqcheck.chart.run import window_of_run
-from seqcheck.chart.window import Part, Unplaceable, Window, window_of
-from seqcheck.checks.catalogue import ACCEPTABLE
+from seqcheck.chart.window import Window, window_of
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
-from seqcheck.engine.trace import Visit
-from seqcheck.engine.worlds import Worlds, play_worlds
-from seqcheck.language.read import read_machine
-from seqcheck.language.source import read_source
-from seqcheck.machine.findings import Problem, Report
-from seqcheck.machine.model import Machine
-from seqcheck.pipeline import examine_source
+from seqcheck.engine.trace import Choice, Visit
+from seqcheck.machine.findings import Report
+from seqcheck.pipeline import Studied
 
 
-@dataclass(frozen=True, slots=True)
-class Examined:
-    """A report, with the machine and the ways in which it was played; these are None where it cannot be read."""
-
-    report: Report
-    machine: Machine | None = None
-    worlds: Worlds | None = None
+def chart_of(studied: Studied, report: Report, part: Part) -> Chart:
+    """The typical run, or one whose choices go as is asked, with the bounds of all runs that have its order of events.
+    Raises ``Unplaceable``."""
+    window = window_of(studied.machine, studied.studies, part)
+    return _Drawing(window, part.rows).chart(report, _notes(studied, report, window))
 
 
-def examined(name: str, sheets: Sequence[str] = ()) -> Examined:
-    """Read, examine, play. ``name`` is a path, or ``-`` for standard input."""
-    source = read_source(name)
-    if isinstance(source, Problem):
-        return Examined(Report(name, None, problems=(source,)))
-    report = examine_source(source, sheets)
-    machine = read_machine(source, sheets, ACCEPTABLE)
-    if report.problems or not isinstance(machine, Machine):
-        return Examined(report)
-    return Examined(report, machine, play_worlds(machine))
-
-
-def chart_of(machine: Machine, worlds: Worlds, report: Report, part: Part) -> Chart:
-    """The typical run, with the bounds of all runs that have its order of events. Raises ``Unplaceable``."""
-    window = window_of(machine, worlds.settlements[0], part)
-    return _Drawing(window, machine, part.rows).chart(report, _notes(worlds, report))
-
-
-def chart_of_run(machine: Machine, worlds: Worlds, report: Report, part: Part, number: int) -> Chart:
+def chart_of_run(studied: Studied, report: Report, part: Part, number: int) -> Chart:
     """The run that shows finding ``number`` of the report, played again with its own delays, as one run without any
     spans. Raises ``Unplaceable`` where there is no such run."""
-    window, at = window_of_run(machine, worlds, report, number)
-    return _Drawing(window, machine, part.rows, (number, at)).chart(report, _notes_on_run(report, number))
+    window, at = window_of_run(studied, report, number)
+    return _Drawing(window, part.rows, (number, at)).chart(report, _notes_on_run(report, window, number))
 
 
-def _notes(worlds: Worlds, report: Report) -> tuple[str, ...]:
-    notes = []
-    if len(worlds.settlements) > 1:
-        notes.append("More than one order of events is possible here; the chart shows the typical one.")
+def _notes(studied: Studied, report: Report, window: Window) -> tuple[str, ...]:
+    notes = list(way_shown(window, others=True))
+    if any(study.settlement.recipe.turned for study in studied.studies):
+        notes.append("More than one order of events is possible here; the chart shows one.")
     if any(one.happens and not one.certain for one in report.findings):
         notes.append("The times hold for runs in which each finding comes about, or does not, as at typical times.")
     return tuple(notes)
 
 
-def _notes_on_run(report: Report, number: int) -> tuple[str, ...]:
+def _notes_on_run(report: Report, window: Window, number: int) -> tuple[str, ...]:
+    notes = list(way_shown(window, others=False))
     if report.findings[number - 1].replayed is False:
-        return ("Something else gets in the way of this run before the finding comes about.",)
-    return ()
+        notes.append("Something else gets in the way of this run before the finding comes about.")
+    return tuple(notes)
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,11 +68,9 @@ class _Drawing:
     """One window, its rows chosen and its events bounded once for all. ``shown``: the finding whose run this is, and
     the time of the run at which it lies; None for the bounds of all runs."""
 
-    def __init__(
-        self, window: Window, machine: Machine, names: Sequence[str], shown: tuple[int, int] | None = None
-    ) -> None:
+    def __init__(self, window: Window, names: Sequence[str], shown: tuple[int, int] | None = None) -> None:
         self._window = window
-        self._machine = machine
+        self._machine = window.study.machine
         self._study = window.study
         self._shown_finding = shown
         self._run = shown is not None
@@ -150,6 +127,7 @@ class _Drawing:
                 yield visit.entered.event
                 if visit.left is not None:
                     yield visit.left.event
+            yield from (choice.left.event for choice in one.choices if choice.left is not None)
 
     def _shown(self, event: int) -> bool:
         return self._window.begin <= self._study.time(event) <= self._window.end
@@ -175,8 +153,9 @@ class _Drawing:
             begin_level=self._level(line, changes, self._window.begin),
             end_level=self._level(line, changes, self._window.end),
             edges=tuple(self._edge(one.event, one.text, one.level, one.lasting) for one in shown),
+            ends=line.ends,
         )
-        return _Placed(row, {change.event: change.text for change in shown})
+        return _Placed(row, {change.event: change.text for change in shown if not change.found})
 
     def _level(self, line: Line, changes: Sequence[Change], time: int) -> int:
         """Where the row's line is at a typical time, before whatever happens at that very time."""
@@ -204,9 +183,26 @@ class _Drawing:
             also = f"{entered}, " if entered and entered.endswith("entered") else ""
             events[visit.entered.event] = f"{also}step {visit.step.name} entered"
             if visit.left is not None:
-                events.setdefault(visit.left.event, f"step {visit.step.name} left")
-        row = Row(RowKind.STEPS, one.sequence.name, one.sequence.label, None, bands=tuple(bands))
+                events.setdefault(visit.left.event, _left(visit))
+        decisions = tuple(self._decision(choice, bands) for choice in one.choices if self._decides(choice))
+        row = Row(RowKind.STEPS, one.sequence.name, one.sequence.label, None, bands=tuple(bands), decisions=decisions)
         return _Placed(row, events)
+
+    def _decides(self, choice: Choice) -> bool:
+        return choice.left is not None and self._window.begin <= self._study.time(choice.left.event) < self._window.end
+
+    def _decision(self, choice: Choice, bands: Sequence[Band]) -> Decision:
+        """In the lane of the step that ends or begins by it."""
+        assert choice.left is not None
+        words, line, count = decision_words(choice), choice.choose.place.line, len(choice.conditions)
+        branch = None if choice.taken is None else choice.taken + 1
+        edge = self._edge(choice.left.event, f"choice in line {line}: {words}")
+        lanes = [
+            band.lane
+            for band in bands
+            if edge.typical_us in (one.typical_us for one in (band.begin, band.end) if one is not None)
+        ]
+        return Decision(edge, line, branch, count, words, min(lanes, default=0))
 
     def _active(self, visit: Visit) -> tuple[int, int]:
         begin = self._study.time(visit.entered.event)
@@ -222,7 +218,7 @@ class _Drawing:
             label=step.label,
             lane=lane,
             begin=self._edge(entered, f"step {step.name} entered") if self._shown(entered) else None,
-            end=self._edge(left, f"step {step.name} left") if left is not None and self._shown(left) else None,
+            end=self._edge(left, _left(visit)) if left is not None and self._shown(left) else None,
         )
 
     # Findings and path -----------------------------------------------------------------------------------------
@@ -232,7 +228,7 @@ class _Drawing:
         if self._shown_finding is not None:
             number, time = self._shown_finding
             finding = report.findings[number - 1]
-            yield Mark(number, finding, time - self._zero, _row_of(placed, names_of(finding)))
+            yield Mark(number, finding, time - self._zero, _row_of(placed, names_of(finding, self._machine.rules)))
             return
         places = spots(self._window, report.findings)
         for number, (finding, spot) in enumerate(zip(report.findings, places, strict=True), start=1):
@@ -251,6 +247,11 @@ class _Drawing:
                 if text is not None:
                     edge = self._edge(event, text)
                     yield PathPoint(number, edge.typical_us, edge.latest_us, text)
+
+
+def _left(visit: Visit) -> str:
+    expired = visit.alarm is not None and visit.alarm.expired
+    return f"step {visit.step.name} left{', its time run out' if expired else ''}"
 
 
 def _row_of(placed: Iterable[_Placed], names: Sequence[str]) -> int | None:

@@ -5,17 +5,21 @@ Takes a window with its report; gives events of the window's graph. May add even
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import partial
 
 from seqcheck.chart.window import Window
 from seqcheck.checks.catalogue import CHECKS
 from seqcheck.checks.check import Obligation
-from seqcheck.engine.bounds import causes_since, greatest_separations, separation_table
+from seqcheck.checks.times import critical_chain
+from seqcheck.engine.bounds import greatest_separations
+from seqcheck.engine.conditions import aspect_of
+from seqcheck.machine.conditions import Condition, terms_of
 from seqcheck.machine.findings import Finding
 from seqcheck.machine.places import Place
+from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
 
-_NEVER = -(1 << 60)
 _Key = tuple[str, str, str | None, Place]
 
 
@@ -31,17 +35,19 @@ class Spot:
 def spots(window: Window, findings: Sequence[Finding]) -> tuple[Spot | None, ...]:
     """For each finding where it lies; None where that is nowhere in the window."""
     stated = _stated(window, findings)
-    pairs = [(one.second, one.first) for found in stated.values() for one in found]
-    rows = greatest_separations(window.study.trace.graph, pairs)
     found = []
     for finding in findings:
-        tightest = min(
-            stated.get(_key(finding), ()),
-            key=lambda one: -rows[one.second, one.first] - one.least,
-            default=None,
-        )
+        tightest = min(stated.get(_key(finding), ()), key=partial(_margin, window), default=None)
         found.append(_at_step(window, finding) if tightest is None else _at(window, finding, tightest))
     return tuple(found)
+
+
+def _margin(window: Window, one: Obligation) -> int:
+    """By the pair that keeps it best, whatever the order of events that is in question."""
+    graph = window.study.trace.graph
+    with graph.not_assuming(one.assumed):
+        rows = greatest_separations(graph, [(second, first) for first, second in one.pairs])
+    return max(-rows[second, first] for first, second in one.pairs) - one.least
 
 
 def _key(finding: Finding) -> _Key:
@@ -67,8 +73,27 @@ def _shown_time(window: Window, one: Obligation) -> int | None:
 
 
 def _at(window: Window, finding: Finding, one: Obligation) -> Spot | None:
-    time = _shown_time(window, one)
-    return None if time is None else Spot(time, names_of(finding))
+    """What a rule forbids lies where the last of its parts comes."""
+    rule = next((rule for rule in window.study.machine.rules if rule.place == finding.place), None)
+    if isinstance(rule, Never):
+        begin = max((second for _, second in one.pairs), key=window.study.time)
+        time = window.study.time(begin)
+        if window.begin <= time <= window.end:
+            return Spot(time, _parts_of(window, rule.condition, begin))
+    shown = _shown_time(window, one)
+    if shown is None:
+        return None
+    if isinstance(rule, PathLimit):
+        return Spot(shown, (*_parts_of(window, rule.end, one.first), *_parts_of(window, rule.start, one.second)))
+    return Spot(shown, (rule.sequence,) if isinstance(rule, CycleLimit) else names_of(finding))
+
+
+def _parts_of(window: Window, condition: Condition, event: int) -> tuple[str, ...]:
+    """What a condition is about; first of all what changes by the event."""
+    changes = window.study.trace.changes
+    terms = list(terms_of(condition))
+    own = [term for term in terms if any(one.event == event for one in changes.get(aspect_of(term), ()))]
+    return tuple(dict.fromkeys(term.subject for term in (*own, *terms)))
 
 
 def _at_step(window: Window, finding: Finding) -> Spot | None:
@@ -80,8 +105,17 @@ def _at_step(window: Window, finding: Finding) -> Spot | None:
     return None
 
 
-def names_of(finding: Finding) -> tuple[str, ...]:
-    """What a finding is about: its subject, and its step."""
+def names_of(finding: Finding, rules: Sequence[Rule] = ()) -> tuple[str, ...]:
+    """What a finding is about: its subject, and its step; of a rule what that looks at."""
+    for rule in rules:
+        if rule.place == finding.place:
+            match rule:
+                case Never(condition):
+                    return tuple(term.subject for term in terms_of(condition))
+                case CycleLimit(sequence):
+                    return (sequence,)
+                case PathLimit(start, end):
+                    return tuple(term.subject for one in (end, start) for term in terms_of(one))
     return tuple(name for name in (finding.subject, finding.step) if name)
 
 
@@ -89,20 +123,4 @@ def critical_events(window: Window) -> tuple[int, ...]:
     """The chain of causes that makes the first shown cycle as long as it can be, in the order of time."""
     if window.cycle is None:
         return ()
-    return tuple(reversed(list(_backwards(window, *window.cycle))))
-
-
-def _backwards(window: Window, start: int, end: int) -> Iterator[int]:
-    graph = window.study.trace.graph
-    members = causes_since(graph, graph.common_dominator(start, end), {start, end})
-    column = separation_table(graph, members, [start])[:, 0].tolist()
-    latest = dict(zip(members, column, strict=True))
-    event = end
-    while True:
-        yield event
-        if event == start or not graph.arcs[event]:
-            return
-        arc = max(graph.arcs[event], key=lambda arc: latest.get(arc.cause, _NEVER) + arc.span.greatest)
-        if arc.cause not in latest:
-            return
-        event = arc.cause
+    return tuple(link.event for link in critical_chain(window.study, *window.cycle))

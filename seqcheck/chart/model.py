@@ -15,6 +15,8 @@ from seqcheck.machine.time import WHOLE_SHARE
 
 #: The levels of a row's line: off, retracted or position ``b``; on, extended or position ``a``; a valve's centre.
 LOW, HIGH, MIDDLE = 0, WHOLE_SHARE, WHOLE_SHARE // 2
+#: What the lowest and the highest level of a 2/2 valve mean.
+TAP = ("closed", "open")
 
 
 class RowKind(Enum):
@@ -76,9 +78,23 @@ class Band:
 
 
 @dataclass(frozen=True, slots=True)
+class Decision:
+    """Where a sequence takes ``branch`` (from 1, ``of`` so many) of the choice in a ``line`` of the text; ``way`` is
+    that branch in words. ``lane``: among the steps. ``branch`` is None where its time ran out before."""
+
+    edge: Edge
+    line: int
+    branch: int | None
+    of: int
+    way: str
+    lane: int = 0
+
+
+@dataclass(frozen=True, slots=True)
 class Row:
-    """One device, or the steps of one sequence (which have ``bands`` and no line). ``edges`` in the order of their
-    typical times, all within the part shown; the line starts at ``begin_level`` and ends at ``end_level``."""
+    """One device, or the steps of one sequence (which have ``bands`` and ``decisions`` and no line). ``edges`` in the
+    order of their typical times, all within the part shown; the line starts at ``begin_level`` and ends at
+    ``end_level``. ``ends``: what the lowest and the highest level mean, in words."""
 
     kind: RowKind
     name: str
@@ -88,6 +104,8 @@ class Row:
     end_level: int = LOW
     edges: tuple[Edge, ...] = ()
     bands: tuple[Band, ...] = ()
+    decisions: tuple[Decision, ...] = ()
+    ends: tuple[str, str] = ("off", "on")
 
     @property
     def lanes(self) -> int:

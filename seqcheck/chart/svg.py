@@ -10,8 +10,8 @@ from __future__ import annotations
 from seqcheck.chart.canvas import Canvas, escaped, fitted, number, text_width
 from seqcheck.chart.model import Chart, RowKind
 from seqcheck.chart.svg_marks import captions_height, draw_captions, draw_marks, draw_path
-from seqcheck.chart.svg_rows import FAINT, INK, draw_line, draw_spans
-from seqcheck.chart.svg_steps import draw_slanted_names, draw_step_lines, draw_steps
+from seqcheck.chart.svg_rows import FAINT, INK, draw_ends, draw_line, draw_spans
+from seqcheck.chart.svg_steps import draw_slanted_names, draw_step_lines, draw_steps, slanted_places
 from seqcheck.chart.view import (
     AXIS_HEIGHT,
     NAME_SIZE,
@@ -53,6 +53,7 @@ def svg(chart: Chart, view: View | None = None) -> str:
             draw_steps(canvas, frame, spot)
     for spot in devices:
         draw_line(canvas, frame, spot)
+        draw_ends(canvas, frame, spot)
     draw_slanted_names(canvas, frame)
     draw_marks(canvas, chart, frame)
     if view.captions:
@@ -110,7 +111,9 @@ def _draw_cycles(canvas: Canvas, chart: Chart, frame: Frame, above: float) -> No
             x = frame.x(time)
             canvas.line(x, above, x, frame.bottom, stroke=INK, stroke_width=1.4, stroke_dasharray="8 3")
             if time == chart.end_us and frame.right - x > _ROOM_FOR_NEXT:
-                canvas.text(x + 5, above + 13, "next cycle", SMALL_SIZE, fill=INK)
+                slanted = [at for _, at, _ in slanted_places(frame)]
+                beside = max(x + 5, slanted[-1] + 14) if slanted else x + 5
+                canvas.text(beside, frame.top - 6 if slanted else above + 13, "next cycle", SMALL_SIZE, fill=INK)
 
 
 def _draw_name(canvas: Canvas, frame: Frame, spot: Spot) -> None:
@@ -118,7 +121,7 @@ def _draw_name(canvas: Canvas, frame: Frame, spot: Spot) -> None:
     room = frame.left - 14
     middle = spot.top + spot.height / 2
     if spot.row.kind is RowKind.STEPS:
-        middle, second = spot.top + 11, spot.row.label or ""
+        middle, second = spot.top + 14, spot.row.label or ""
     with canvas.group(f"{spot.row.kind.value} {first}" + (f", {second}" if second else "")):
         y = middle - 2 if second else middle + 4
         canvas.text(8, y, fitted(first, room, NAME_SIZE), NAME_SIZE, font_weight="bold", fill=INK)

@@ -70,13 +70,13 @@ def _along(frame: Frame, spot: Spot, begin_us: int, end_us: int) -> Iterator[Poi
 
 
 def _height(frame: Frame, spot: Spot, time_us: int) -> float:
-    """Where the row's line is as the event comes; for steps the middle of the box that ends then, or begins."""
+    """Where the row's line is as the event comes; for steps below the box that ends then, or begins."""
     if spot.row.kind is not RowKind.STEPS:
         return spot.at(round(level_at(spot.row, frame, time_us)))
     ending = [band.lane for band in spot.row.bands if band.end is not None and band.end.typical_us == time_us]
     beginning = [band.lane for band in spot.row.bands if band.begin is not None and band.begin.typical_us == time_us]
     lane = (ending or beginning or [0])[0]
-    return spot.lane_tops[lane] + BOX_HEIGHT / 2
+    return spot.lane_tops[lane] + BOX_HEIGHT + 1.5
 
 
 def draw_marks(canvas: Canvas, chart: Chart, frame: Frame) -> None:
@@ -86,10 +86,12 @@ def draw_marks(canvas: Canvas, chart: Chart, frame: Frame) -> None:
         spot = frame.spot_of(mark.row) if mark.row is not None else None
         if mark.time_us is None or spot is None or not frame.shows(mark.time_us):
             continue
-        # On the upper border of the boxes of steps, so that their names stay readable.
-        x, y = frame.x(mark.time_us), spot.top + (-2 if spot.row.kind is RowKind.STEPS else 4)
+        x = frame.x(mark.time_us)
+        beside = _by_a_choice(frame, spot, x)
+        # On the upper border of the boxes of steps, so that their names stay readable; clear of the sign of a choice.
+        y = spot.top + (4 if spot.row.kind is not RowKind.STEPS else -9 if beside else -2)
         with canvas.group(f"finding {mark.number}: {finding_in_a_line(mark)}", data_finding=str(mark.number)):
-            canvas.line(x, spot.top, x, spot.top + spot.height, stroke=INK, stroke_width=2.2)
+            canvas.line(x, spot.top + (BOX_HEIGHT if beside else 0), x, spot.top + spot.height, stroke=INK, stroke_width=2.2)
             at = x
             while any(
                 abs(at - other_x) < 2.2 * _RADIUS and abs(y - other_y) < 2 * _RADIUS for other_x, other_y in taken
@@ -97,6 +99,10 @@ def draw_marks(canvas: Canvas, chart: Chart, frame: Frame) -> None:
                 at += 2.2 * _RADIUS
             taken.append((at, y))
             draw_sign(canvas, mark, at, y)
+
+
+def _by_a_choice(frame: Frame, spot: Spot, x: float) -> bool:
+    return any(abs(frame.x(one.edge.typical_us) - x) < 2 * _RADIUS for one in spot.row.decisions)
 
 
 def draw_sign(canvas: Canvas, mark: Mark, x: float, y: float) -> None:
@@ -158,6 +164,10 @@ def _draw_key(canvas: Canvas, chart: Chart, left: float, y: float) -> None:
         canvas.line(x, y - 4, x + 30, y - 4, stroke=PATH, stroke_width=5, stroke_opacity=0.75)
         canvas.circle(x + 15, y - 4, 4, fill=PATH)
         x = _key_text(canvas, x + 36, y, "critical path")
+    if any(row.decisions for row in chart.rows):
+        sign = [(x, y - 4), (x + 8, y - 12), (x + 16, y - 4), (x + 8, y + 4)]
+        canvas.polygon(sign, fill="#ffffff", stroke=INK, stroke_width=1.4)
+        x = _key_text(canvas, x + 21, y, "choice, with its branch")
     if any(mark.time_us is not None for mark in chart.marks):
         canvas.circle(x + 9, y - 4, _RADIUS - 1, fill=INK)
         _key_text(canvas, x + 24, y, "finding, below")

@@ -18,6 +18,7 @@ from seqcheck.chart.wording import OPEN, told
 INK, SHADE, SHADE_END, FAINT = "#111111", "#9fb0c2", "#3d4a57", "#a0a0a0"
 _ARROW = 13
 _ROOM_FOR_OPEN = 52
+_ENDS_SIZE = 9
 
 
 def draw_spans(canvas: Canvas, frame: Frame, spot: Spot) -> None:
@@ -113,6 +114,22 @@ def _levels(canvas: Canvas, frame: Frame, spot: Spot) -> None:
     for level in levels:
         y = spot.at(level)
         canvas.line(frame.left, y, frame.right, y, stroke=FAINT, stroke_width=0.6, stroke_dasharray="1 4")
+
+
+def draw_ends(canvas: Canvas, frame: Frame, spot: Spot) -> None:
+    """What the levels of a valve or piston mean, behind the end of the line; not where an open time is told there."""
+    opens = any(
+        None in (edge.earliest_us, edge.latest_us)
+        and frame.shows(edge.typical_us)
+        and frame.x(edge.typical_us) > frame.right - _ROOM_FOR_OPEN
+        for edge in spot.row.edges
+    )
+    if spot.row.kind.sloped and not opens:
+        levels = dict(zip((LOW, HIGH), spot.row.ends, strict=True))
+        if spot.row.kind is RowKind.VALVE and _has_centre(spot.row):
+            levels[MIDDLE] = "centre"
+        for level, words in levels.items():
+            canvas.text(frame.right + 4, spot.at(level) + 3, words, _ENDS_SIZE, fill=INK)
 
 
 def _has_centre(row: Row) -> bool:

@@ -5,8 +5,10 @@ Takes a frame and a canvas; draws. A name that its box has no room for stands sl
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 from seqcheck.chart.canvas import Canvas, fitted, text_width
-from seqcheck.chart.model import Band
+from seqcheck.chart.model import Band, Decision
 from seqcheck.chart.svg_rows import FAINT, INK, draw_open, draw_span, edge_attributes, touches
 from seqcheck.chart.view import (
     BAR_HEIGHT,
@@ -22,6 +24,8 @@ from seqcheck.chart.view import (
 from seqcheck.chart.wording import told
 
 _SLANT_SPACING = 16
+#: Half the width of the sign of a choice.
+LOZENGE = 9
 
 
 def draw_steps(canvas: Canvas, frame: Frame, spot: Spot) -> None:
@@ -31,6 +35,8 @@ def draw_steps(canvas: Canvas, frame: Frame, spot: Spot) -> None:
             _box(canvas, frame, spot, band)
         for lane in range(spot.row.lanes):
             _spans(canvas, frame, spot, lane)
+        for decision in spot.row.decisions:
+            _decision(canvas, frame, spot, decision)
 
 
 def draw_step_lines(canvas: Canvas, frame: Frame) -> None:
@@ -42,7 +48,17 @@ def draw_step_lines(canvas: Canvas, frame: Frame) -> None:
 
 
 def draw_slanted_names(canvas: Canvas, frame: Frame) -> None:
-    """From left to right, each as near to its step as the one before leaves room."""
+    for x, at, name in slanted_places(frame):
+        room = (frame.slanted - 14) / SLANT_RISE + 1
+        bottom = frame.top - 8
+        canvas.polyline([(x, frame.top), (at - 3, bottom + 2)], stroke=FAINT, stroke_width=0.8)
+        turn = f"rotate(-45 {at:.2f} {bottom:.2f})"
+        canvas.text(at, bottom, fitted(name, room, STEP_SIZE), STEP_SIZE, fill=INK, transform=turn)
+
+
+def slanted_places(frame: Frame) -> Iterator[tuple[float, float, str]]:
+    """Where its step begins, where its name begins, and the name: from left to right, each as near to its step as the
+    one before leaves room."""
     narrow = sorted(
         (frame.x(times[0]), band.name)
         for spot in frame.spots
@@ -53,11 +69,7 @@ def draw_slanted_names(canvas: Canvas, frame: Frame) -> None:
     for x, name in narrow:
         at = max(x + 4, free)
         free = at + _SLANT_SPACING
-        room = (frame.slanted - 14) / SLANT_RISE + 1
-        bottom = frame.top - 8
-        canvas.polyline([(x, frame.top), (at - 3, bottom + 2)], stroke=FAINT, stroke_width=0.8)
-        turn = f"rotate(-45 {at:.2f} {bottom:.2f})"
-        canvas.text(at, bottom, fitted(name, room, STEP_SIZE), STEP_SIZE, fill=INK, transform=turn)
+        yield x, at, name
 
 
 def _beginnings(frame: Frame) -> set[int]:
@@ -87,6 +99,18 @@ def _box(canvas: Canvas, frame: Frame, spot: Spot, band: Band) -> None:
             named = f"{band.name}: {band.label}" if band.label else band.name
             shown = named if text_width(named, STEP_SIZE) <= room else band.name
             canvas.text(middle, top + 15, shown, STEP_SIZE, text_anchor="middle", fill=INK)
+
+
+def _decision(canvas: Canvas, frame: Frame, spot: Spot, decision: Decision) -> None:
+    """A lozenge with the number of the branch, on the border between the steps."""
+    if not frame.shows(decision.edge.typical_us):
+        return
+    x, y = frame.x(decision.edge.typical_us), spot.lane_tops[decision.lane] + BOX_HEIGHT / 2
+    with canvas.group(told(decision.edge), data_choice=str(decision.line), **edge_attributes(decision.edge)):
+        around = [(x - LOZENGE, y), (x, y - LOZENGE), (x + LOZENGE, y), (x, y + LOZENGE)]
+        canvas.polygon(around, fill="#ffffff", stroke=INK, stroke_width=1.4)
+        number = "-" if decision.branch is None else str(decision.branch)
+        canvas.text(x, y + 3.5, number, 10, text_anchor="middle", font_weight="bold", fill=INK)
 
 
 def _spans(canvas: Canvas, frame: Frame, spot: Spot, lane: int) -> None:

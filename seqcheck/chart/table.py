@@ -35,6 +35,7 @@ def _edges(row: Row) -> Iterator[Edge]:
         return
     for band in row.bands:
         yield from (edge for edge in (band.begin, band.end) if edge is not None)
+    yield from (decision.edge for decision in row.decisions)
 
 
 def _harmless(text: str) -> str:

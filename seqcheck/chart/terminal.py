@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from seqcheck.chart.model import HIGH, MIDDLE, Band, Chart, Edge, Row, RowKind
+from seqcheck.chart.model import HIGH, LOW, MIDDLE, TAP, Band, Chart, Edge, Row, RowKind
 from seqcheck.chart.view import band_times, ticks, whole_time
 from seqcheck.chart.wording import finding_in_a_line, measured_from, time_in_words
 from seqcheck.machine.findings import Severity
@@ -37,11 +37,12 @@ class Signs:
     perhaps_still: str
     swept: str
     path: str
+    choice: str
     open: str
 
 
-FULL = Signs("█", "▓", "▁", "░", "─", "╌", "░", "◆", "→")
-ASCII = Signs("#", "+", "_", ".", "-", "~", ".", "*", ">")
+FULL = Signs("█", "▓", "▁", "░", "─", "╌", "░", "◆", "◇", "→")
+ASCII = Signs("#", "+", "_", ".", "-", "~", ".", "*", "?", ">")
 
 
 def chart_lines(chart: Chart, encoding: str = "utf-8", width: int = 80, ascii_only: bool = False) -> tuple[Line, ...]:
@@ -127,6 +128,9 @@ class _Page:
             for band in row.bands:
                 if band.lane == lane:
                     self._put_band(band, letters)
+            for decision in row.decisions:
+                if decision.lane == lane:
+                    letters[self._column(decision.edge.typical_us)] = self._signs.choice
             yield self._named(row.name if lane == 0 else "", "".join(letters))
 
     def _put_band(self, band: Band, letters: list[str]) -> None:
@@ -161,11 +165,13 @@ class _Page:
     def _put_edges(self, index: int, row: Row, letters: list[str]) -> None:
         """A valve by a slope where it sets out and the letter of what it reaches; the critical path, open times."""
         if row.kind is RowKind.VALVE:
-            letters[self._column(self._chart.begin_us)] = _position(row.begin_level)
+            letters[self._column(self._chart.begin_us)] = _position(row, row.begin_level)
             levels = [*(edge.level for edge in row.edges), row.end_level]
             for edge, following in zip(row.edges, levels[1:], strict=True):
                 slope = "/" if following > edge.level else "\\"
-                letters[self._column(edge.typical_us)] = _position(edge.level) if following == edge.level else slope
+                letters[self._column(edge.typical_us)] = (
+                    _position(row, edge.level) if following == edge.level else slope
+                )
         for edge in row.edges:
             column = self._column(edge.typical_us)
             if edge.latest_us is None and column + 1 < self._columns:
@@ -217,6 +223,10 @@ class _Page:
             words.append(f"may still be otherwise {signs.perhaps_on}{signs.perhaps_off}{signs.perhaps_still}")
         if self._chart.path:
             words.append(f"critical path {signs.path}")
+        if any(row.decisions for row in self._chart.rows):
+            words.append(f"choice {signs.choice}")
+        if any(row.ends == TAP for row in self._chart.rows):
+            words.append("o open x closed")
         if any(edge.latest_us is None for row in self._chart.rows for edge in row.edges):
             words.append(f"open {signs.open}")
         yield from paragraph(", ".join(words))
@@ -239,8 +249,10 @@ def _unsure_stroke(row: Row, since: int, until: int) -> bool:
     return bool(edges) and min(edge.drawn_from_us for edge in edges) < until and edges[-1].drawn_to_us > since
 
 
-def _position(level: int) -> str:
-    return "a" if level == HIGH else "c" if level == MIDDLE else "b"
+def _position(row: Row, level: int) -> str:
+    """``:`` where a motor valve stands between its ends."""
+    letters = {LOW: "x", HIGH: "o"} if row.ends == TAP else {LOW: "b", MIDDLE: "c", HIGH: "a"}
+    return letters.get(level, ":")
 
 
 def _place(level: int) -> int:

@@ -32,7 +32,7 @@ _MANY_ROWS = 30
 #: What a step should have on average, and the least and greatest width of a whole picture's time axis.
 _STEP_WIDTH, LEAST_WIDTH, MOST_WIDTH = 62, 860, 12_000
 #: Over the first row, where findings have their signs on its upper border.
-_ROOM_FOR_SIGNS = 14
+_ROOM_FOR_SIGNS = 20
 #: How high slanted names may reach, and how much they rise for their length (about 45 degrees).
 _MOST_SLANTED, SLANT_RISE = 110, 0.71
 

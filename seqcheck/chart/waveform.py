@@ -1,8 +1,9 @@
 """The chart as a value change dump (VCD, IEEE 1364-2005, clause 18) for waveform viewers.
 
 Takes a chart; gives its line at typical times, or that of one run. Time 0 is the beginning of the part shown. Coils,
-outputs, sensors, signals, flags and steps are wires; a valve is two bits, 10 for ``a``, 01 for the centre, 00 for ``b``
-and x while it shifts; a cylinder is a real, its stroke in per cent at every event.
+outputs, sensors, signals, flags and steps are wires; a valve is two bits, 10 for ``a`` (of a 2/2 valve: open), 01 for
+the centre, 00 for ``b`` (closed) and x while it shifts or stands between; a cylinder is a real, its stroke in per cent
+at every event.
 """
 
 from __future__ import annotations
@@ -53,7 +54,8 @@ def vcd(chart: Chart) -> str:
 
 def _comment(chart: Chart) -> str:
     """In ASCII, and without anything that could end it."""
-    words = f"{chart.machine}: {chart.title}; valves: 10 is a, 01 centre, 00 b, xx shifting; cylinders in per cent"
+    valves = "valves: 10 is a (2/2: open), 01 centre, 00 b (2/2: closed), xx shifting or between"
+    words = f"{chart.machine}: {chart.title}; {valves}; cylinders in per cent"
     return words.encode("ascii", "replace").decode("ascii").replace("$", "?")
 
 

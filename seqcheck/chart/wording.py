@@ -49,7 +49,9 @@ def finding_in_a_line(mark: Mark) -> str:
         rank = f"{finding.severity.value} ({'certain' if finding.certain else 'possible'})"
     step = f" in step {finding.step}" if finding.step and finding.step != finding.subject else ""
     place = f"line {finding.place.line}"
-    words = f"{rank} {finding.kind} of {finding.subject}{step}, {place}{_amount(finding.margin_us)}: {finding.message}"
+    # A rule stands in the message as it was written.
+    about = "" if f"`{finding.subject}`" in finding.message else f" of {finding.subject}"
+    words = f"{rank} {finding.kind}{about}{step}, {place}{_amount(finding.margin_us)}: {finding.message}"
     beside = mark.time_us is None and finding.margin_us is not None
     return f"{words} (not in the part shown)" if beside else words
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import argparse
 import shutil
 import sys
+from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -16,8 +17,9 @@ from seqcheck.report.delivery import save, show
 from seqcheck.report.terminal import encoding_of
 
 if TYPE_CHECKING:
-    from seqcheck.chart.build import Examined
     from seqcheck.chart.model import Chart
+    from seqcheck.machine.findings import Report
+    from seqcheck.pipeline import Studied
 
 EPILOG = (
     "Forms by the ending of --output: .svg a picture, .html a report for screen and paper, .csv a table of all events,"
@@ -42,7 +44,12 @@ def add_arguments(command: argparse.ArgumentParser) -> None:
         "--rows", action="append", default=[], metavar="NAME,...", help="only these devices and sequences"
     )
     command.add_argument(
-        "--choice", action="append", default=[], metavar="PLACE=BRANCH", help="which way the choice at this place goes"
+        "--choice",
+        action="append",
+        default=[],
+        metavar="PLACE=BRANCH,...",
+        help="which way a choice goes: the line of its choose, or a step inside it, and the number of a branch, or"
+        " otherwise; the same place again: one after another (default: the first branch)",
     )
     command.add_argument("--witness", type=count, metavar="N", help="the run that shows finding N")
     command.add_argument("--ascii", action="store_true", help="draw the page of the terminal in plain ASCII")
@@ -54,24 +61,24 @@ def run(options: argparse.Namespace) -> int:
     refusal = _refused(options)
     if refusal:
         return ended(UNREADABLE, refusal)
-    from seqcheck.chart.build import examined
-    from seqcheck.chart.window import Unplaceable
+    from seqcheck.chart.asked import Unplaceable
+    from seqcheck.pipeline import study
     from seqcheck.report.progress import working_on
 
     with working_on(options.file, sys.stderr):
-        found = examined(options.file, options.times)
-        if found.machine is None:
-            return _unreadable(found)
+        report, studied = study(options.file, options.times)
+        if studied is None:
+            return _unreadable(report)
         try:
-            chart = _chart(found, options)
+            chart = _chart(report, studied, options)
         except Unplaceable as refused:
             return ended(UNREADABLE, str(refused))
     if options.output is None:
         from seqcheck.chart.terminal import chart_lines
 
         return ended(FINE, show(chart_lines(chart, encoding_of(sys.stdout), _width(), options.ascii)))
-    trouble = overwriting(options.output, read_for([options.file], [found.report]))
-    return ended(FINE, trouble or save(_written(found, chart, options), options.output))
+    trouble = overwriting(options.output, read_for([options.file], [report]))
+    return ended(FINE, trouble or save(_written(report, studied, chart, options), options.output))
 
 
 def _refused(options: argparse.Namespace) -> str | None:
@@ -81,30 +88,35 @@ def _refused(options: argparse.Namespace) -> str | None:
         return f"--output {options.output}: its ending says no form of a chart; there are {', '.join(_ENDINGS)}"
     if (options.date or options.revision) and ending not in _HTML:
         return "--date and --revision stand on the pages of the HTML report: write --output FILE.html"
-    if options.witness and (options.from_step or options.to_step or options.anchor or options.cycles > 1):
-        return "--witness shows one run from the start of its cycle: leave out --from, --to, --anchor and --cycles"
+    if options.witness and (
+        options.from_step or options.to_step or options.anchor or options.choice or options.cycles > 1
+    ):
+        return "--witness shows one run, its whole cycle: leave out --from, --to, --anchor, --choice and --cycles"
     return overwriting(options.output, (options.file, *options.times)) if options.output else None
 
 
-def _chart(found: Examined, options: argparse.Namespace) -> Chart:
+def _chart(report: Report, studied: Studied, options: argparse.Namespace) -> Chart:
+    from seqcheck.chart.asked import Part
     from seqcheck.chart.build import chart_of, chart_of_run
-    from seqcheck.chart.window import Part
 
-    assert found.machine is not None and found.worlds is not None
     part = Part(
         cycles=options.cycles,
         from_step=options.from_step,
         to_step=options.to_step,
         anchor=options.anchor,
-        rows=tuple(name for names in options.rows for name in names.split(",") if name),
-        choices=tuple(options.choice),
+        rows=_listed(options.rows),
+        choices=_listed(options.choice),
     )
     if options.witness:
-        return chart_of_run(found.machine, found.worlds, found.report, part, options.witness)
-    return chart_of(found.machine, found.worlds, found.report, part)
+        return chart_of_run(studied, report, part, options.witness)
+    return chart_of(studied, report, part)
 
 
-def _written(found: Examined, chart: Chart, options: argparse.Namespace) -> str:
+def _listed(names: Sequence[str]) -> tuple[str, ...]:
+    return tuple(name for one in names for name in one.split(",") if name)
+
+
+def _written(report: Report, studied: Studied, chart: Chart, options: argparse.Namespace) -> str:
     """The chart in the form that the ending asks for; plain text, whatever the names hold."""
     from seqcheck.report.layout import page
     from seqcheck.report.plain import plain_record
@@ -112,7 +124,7 @@ def _written(found: Examined, chart: Chart, options: argparse.Namespace) -> str:
     ending = Path(options.output).suffix.lower()
     shown: Chart = plain_record(chart, "utf-8")
     if ending in _HTML:
-        return _html(found, shown, options)
+        return _html(report, studied, shown, options)
     if ending == ".svg":
         from seqcheck.chart.svg import svg
 
@@ -130,22 +142,19 @@ def _written(found: Examined, chart: Chart, options: argparse.Namespace) -> str:
     return page(chart_lines(shown, "utf-8", _WIDTH, options.ascii))
 
 
-def _html(found: Examined, chart: Chart, options: argparse.Namespace) -> str:
+def _html(report: Report, studied: Studied, chart: Chart, options: argparse.Namespace) -> str:
     from seqcheck.chart.page import html_page
     from seqcheck.chart.page_imprint import Imprint
     from seqcheck.chart.page_moves import move_times
-    from seqcheck.checks.study import Study
 
-    assert found.machine is not None and found.worlds is not None
-    studies = [Study(found.machine, settlement) for settlement in found.worlds.settlements]
-    moves = move_times(found.machine, studies)
-    return html_page(found.report, found.machine, (chart,), moves, Imprint(options.date, options.revision))
+    moves = move_times(studied.machine, studied.studies)
+    return html_page(report, studied.machine, (chart,), moves, Imprint(options.date, options.revision))
 
 
-def _unreadable(found: Examined) -> int:
+def _unreadable(report: Report) -> int:
     from seqcheck.report.text import text_lines
 
-    return ended(UNREADABLE, show(text_lines([found.report], encoding_of(sys.stdout))))
+    return ended(UNREADABLE, show(text_lines([report], encoding_of(sys.stdout))))
 
 
 def _width() -> int:

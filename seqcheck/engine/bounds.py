@@ -170,6 +170,7 @@ def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[
 def separation_table(graph: EventGraph, members: Sequence[int], sources: Sequence[int], open_us: int = OPEN) -> Table:
     """``S`` for every source, shape ``(members, sources)``, microseconds. ``members`` are closed under causes but for
     the first, which dominates the others; the sources are among them. ``open_us`` stands in for open delays."""
+    graph.work += len(members) * len(sources)
     index = {number: position for position, number in enumerate(members)}
     arcs = [[(index[arc.cause], arc.span) for arc in graph.arcs[number]] for number in members[1:]]
     assumed = [(index[one], index[other]) for one, other in graph.assumed if one in index and other in index]

@@ -32,7 +32,6 @@ from seqcheck.machine.steps import Choose
 #: More ways than this in which orders may turn out between two states are not played; the report then says so.
 MOST_ORDERS = 16
 _MOST_ROUNDS = 8
-_PLAYS_WITHOUT_END = 16
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,10 +96,11 @@ class _Explorer:
 
     def explore(self) -> StateGraph:
         self.waiting.append(Recipe(Way(), {}))
-        most = most_plays(self.machine)
-        while self.waiting and len(self.found) < most:
+        work = most_work(self.machine)
+        while self.waiting and work > 0:
             recipe = self.waiting.popleft()
             settlement = play(self.machine, recipe, self.orders, self.states)
+            work -= settlement.trace.graph.work
             if settlement.path.astray:
                 self.complete = False
                 continue
@@ -110,8 +110,6 @@ class _Explorer:
             self.found.append(replace(settlement, states=numbered))
             if settlement.trace.too_long:
                 break
-            if not self.found[0].settled:
-                most = _PLAYS_WITHOUT_END
             self._plan(self.found[-1])
         return StateGraph(tuple(self.found), self.complete and not self.waiting)
 
@@ -164,11 +162,11 @@ def _outcomes(path: Path, number: int) -> tuple[Outcome, ...]:
     return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
 
 
-def most_plays(machine: Machine) -> int:
-    """More plays than this are not made; the report then says so. Sequences that go side by side and never wait for one
-    another come to ever new states; where the first play shows that, little more is tried."""
-    items = [item for sequence in machine.sequences for item in items_of(sequence.items)]
-    return 60 + 20 * sum(isinstance(item, Choose) for item in items) + 4 * len(items)
+def most_work(machine: Machine) -> int:
+    """More work than this, in separations worked out, is not done; the report then says so. Sequences that go side by
+    side and never wait for one another come to ever new states, whose pasts have nothing in common."""
+    items = (item for sequence in machine.sequences for item in items_of(sequence.items))
+    return 400_000 + 10_000 * sum(isinstance(item, Choose) for item in items)
 
 
 def explore(machine: Machine) -> StateGraph:

@@ -56,6 +56,8 @@ class EventGraph:
         self.arcs: list[tuple[Arc, ...]] = [()]
         #: Pairs of events of which the first is taken not to come after the second, though causes do not say so.
         self.assumed: list[tuple[int, int]] = []
+        #: How many separations have been worked out over it, those on the way included.
+        self.work = 0
         self.earliest: list[int] = [0]
         self.latest: list[int] = [0]
         self._dominator: list[int] = [0]

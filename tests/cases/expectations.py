@@ -5,6 +5,9 @@ Takes the text of a case; gives its expectations. Behind a statement, separated 
 - ``# short-pulse V3 -4.5 ms possible``: this finding on this line (``no time`` where no time is involved)
 - ``# kept coil-handover V2 0 ms``: this margin on this line, not broken
 - ``# handover Y2 Y3 -0.5 ms overlap 0.5 ms``: this row of the handover table
+- ``# way main 150 ms .. 174 ms``: the cycle of this sequence through the branch on this line
+
+The subject of a rule, which is its own text, is written ``rule``.
 
 On a line of its own: ``# cycle main 1905 ms .. 2374 ms`` and ``# step main.out 58.5 ms .. 107 ms`` (``.. open`` where
 an outside signal leaves it open). Refuses a comment behind a statement that is none of these: a slip is no expectation.
@@ -23,6 +26,7 @@ _FINDING = re.compile(
 )
 _KEPT = re.compile(rf"kept (?P<kind>[a-z-]+) (?P<subject>\S+) (?P<time>{_TIME})")
 _HANDOVER = re.compile(rf"handover (?P<earlier>\S+) (?P<later>\S+) (?P<gap>{_TIME}) overlap (?P<overlap>{_TIME})")
+_WAY = re.compile(rf"way (?P<name>\S+) (?P<least>{_TIME}) \.\. (?P<greatest>{_TIME}|open)")
 _DURATION = re.compile(rf"# (?P<what>cycle|step) (?P<name>\S+) (?P<least>{_TIME}) \.\. (?P<greatest>{_TIME}|open)")
 
 
@@ -61,11 +65,18 @@ class Lasts:
     greatest_us: int | None
 
 
+@dataclass(frozen=True, slots=True, order=True)
+class Way:
+    line: int
+    lasts: Lasts
+
+
 @dataclass(frozen=True, slots=True)
 class Expectations:
     findings: frozenset[Found]
     kept: frozenset[Kept]
     handovers: frozenset[Exchange]
+    ways: frozenset[Way]
     cycles: frozenset[Lasts]
     steps: frozenset[Lasts]
 
@@ -79,7 +90,7 @@ def microseconds(time: str) -> int:
 
 
 def expectations_of(text: str) -> Expectations:
-    found: set[Found | Kept | Exchange] = set()
+    found: set[Found | Kept | Exchange | Way] = set()
     lasts: dict[str, set[Lasts]] = {"cycle": set(), "step": set()}
     for number, line in enumerate(text.splitlines(), start=1):
         statement, mark, comment = line.partition("#")
@@ -91,12 +102,15 @@ def expectations_of(text: str) -> Expectations:
         frozenset(one for one in found if isinstance(one, Found)),
         frozenset(one for one in found if isinstance(one, Kept)),
         frozenset(one for one in found if isinstance(one, Exchange)),
+        frozenset(one for one in found if isinstance(one, Way)),
         frozenset(lasts["cycle"]),
         frozenset(lasts["step"]),
     )
 
 
-def _expectation(line: int, text: str) -> Found | Kept | Exchange:
+def _expectation(line: int, text: str) -> Found | Kept | Exchange | Way:
+    if match := _WAY.fullmatch(text):
+        return Way(line, _duration(match))
     if match := _KEPT.fullmatch(text):
         return Kept(line, match["kind"], match["subject"], microseconds(match["time"]))
     if match := _HANDOVER.fullmatch(text):

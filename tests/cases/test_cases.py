@@ -10,16 +10,24 @@ from pathlib import Path
 
 import pytest
 
-from seqcheck.machine.findings import Report
+from seqcheck.machine.findings import Finding, Margin, Report
 from seqcheck.pipeline import examine
-from tests.cases.expectations import Exchange, Found, Kept, Lasts, expectations_of
+from tests.cases.expectations import Exchange, Found, Kept, Lasts, Way, expectations_of
 
 HERE = Path(__file__).parent
 CASES = sorted(file.stem for file in HERE.glob("*.steps"))
 
 
+#: Kinds whose subject is the text of the rule.
+RULES = {"broken-never", "over-limit"}
+
+
+def _subject(one: Finding | Margin) -> str:
+    return "rule" if one.kind in RULES else one.subject
+
+
 def _found(report: Report) -> set[Found]:
-    return {Found(one.place.line, one.kind, one.subject, one.margin_us, one.certain) for one in report.findings}
+    return {Found(one.place.line, one.kind, _subject(one), one.margin_us, one.certain) for one in report.findings}
 
 
 def _lasts(durations: tuple[tuple[str, object], ...]) -> set[Lasts]:
@@ -36,7 +44,7 @@ def test_case(name: str) -> None:
     assert _lasts(report.cycles) == expected.cycles
     assert expected.steps <= _lasts(report.steps)
     margins = {
-        Kept(one.place.line, one.kind, one.subject, one.margin_us)
+        Kept(one.place.line, one.kind, _subject(one), one.margin_us)
         for one in report.margins
         if one.margin_us is not None
     }
@@ -46,6 +54,10 @@ def test_case(name: str) -> None:
         for one in report.handovers
     }
     assert expected.handovers <= table
+    ways = {
+        Way(one.place.line, Lasts(one.sequence, one.duration.least, one.duration.greatest)) for one in report.choices
+    }
+    assert expected.ways <= ways
 
 
 @pytest.mark.parametrize("name", CASES)
@@ -61,4 +73,4 @@ def test_every_case_expects_something() -> None:
     assert len(CASES) >= 25
     for name in CASES:
         expected = expectations_of((HERE / f"{name}.steps").read_text(encoding="utf-8"))
-        assert expected.findings or expected.kept or expected.cycles, name
+        assert expected.findings or expected.kept or expected.cycles or expected.ways, name

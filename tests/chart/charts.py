@@ -5,10 +5,12 @@ from __future__ import annotations
 from collections.abc import Iterator
 from pathlib import Path
 
-from seqcheck.chart.build import Examined, chart_of, chart_of_run, examined
+from seqcheck.chart.asked import Part
+from seqcheck.chart.build import chart_of, chart_of_run
 from seqcheck.chart.model import Chart, Edge, Row, RowKind
 from seqcheck.chart.view import edges_of_bands
-from seqcheck.chart.window import Part
+from seqcheck.machine.findings import Report
+from seqcheck.pipeline import Studied, study
 
 #: The worked case of the design, less its lift: round 8..12, input 2..4, output 0.5..1 ms.
 CLAMP = """
@@ -78,24 +80,22 @@ TEXTS = {"clamp": CLAMP, "question": QUESTION, "hostile": HOSTILE, "mixed": MIXE
 EXAMPLES = sorted((Path(__file__).parents[2] / "examples").rglob("*.steps"))
 
 
-def examined_text(folder: Path, text: str) -> Examined:
+def studied_text(folder: Path, text: str) -> tuple[Report, Studied]:
     file = folder / "sample.steps"
     file.write_text(text, "utf-8")
-    found = examined(str(file))
-    assert found.machine is not None, found.report.problems
-    return found
+    report, studied = study(str(file))
+    assert studied is not None, report.problems
+    return report, studied
 
 
 def chart(folder: Path, text: str, part: Part | None = None) -> Chart:
-    found = examined_text(folder, text)
-    assert found.machine is not None and found.worlds is not None
-    return chart_of(found.machine, found.worlds, found.report, part or Part())
+    report, studied = studied_text(folder, text)
+    return chart_of(studied, report, part or Part())
 
 
 def chart_of_finding(folder: Path, text: str, number: int) -> Chart:
-    found = examined_text(folder, text)
-    assert found.machine is not None and found.worlds is not None
-    return chart_of_run(found.machine, found.worlds, found.report, Part(), number)
+    report, studied = studied_text(folder, text)
+    return chart_of_run(studied, report, Part(), number)
 
 
 def row(chart: Chart, name: str) -> Row:

@@ -5,20 +5,16 @@ from __future__ import annotations
 from dataclasses import dataclass
 from pathlib import Path
 
+from seqcheck.chart.asked import Part
 from seqcheck.chart.build import chart_of
 from seqcheck.chart.model import Chart
 from seqcheck.chart.page import html_page
 from seqcheck.chart.page_imprint import Imprint
 from seqcheck.chart.page_moves import MoveTimes, move_times
-from seqcheck.chart.window import Part
-from seqcheck.checks.catalogue import ACCEPTABLE
-from seqcheck.checks.study import Study
-from seqcheck.engine.worlds import play_worlds
-from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Report
 from seqcheck.machine.model import Machine
-from seqcheck.pipeline import examine_source
+from seqcheck.pipeline import study_source
 from tests.bench.stations import in_a_row
 
 EXAMPLES = sorted(
@@ -91,11 +87,8 @@ def example(name: str) -> Sample:
 
 
 def _sample(source: Source) -> Sample:
-    report = examine_source(source)
-    machine = read_machine(source, (), ACCEPTABLE)
-    if report.problems or not isinstance(machine, Machine):
+    report, studied = study_source(source)
+    if studied is None:
         return Sample(report, None, (), ())
-    worlds = play_worlds(machine)
-    studies = [Study(machine, settlement) for settlement in worlds.settlements]
-    charts = (chart_of(machine, worlds, report, Part()),)
-    return Sample(report, machine, charts, move_times(machine, studies))
+    charts = (chart_of(studied, report, Part()),)
+    return Sample(report, studied.machine, charts, move_times(studied.machine, studied.studies))

@@ -3,18 +3,22 @@
 from __future__ import annotations
 
 import random
+from collections.abc import Sequence
 from itertools import pairwise
 from pathlib import Path
 
 import pytest
 
+from seqcheck.chart.asked import Part, Unplaceable
 from seqcheck.chart.build import chart_of
 from seqcheck.chart.events import lines
 from seqcheck.chart.model import HIGH, LOW, MIDDLE, RowKind
-from seqcheck.chart.window import Part, Unplaceable, window_of
+from seqcheck.chart.window import window_of
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import both_ways, greatest_separations
+from seqcheck.engine.controller import Outcome
 from seqcheck.engine.player import Player
+from seqcheck.engine.trace import Choice, Read
 from seqcheck.machine.time import Span
 from tests.chart.charts import (
     CLAMP,
@@ -25,10 +29,26 @@ from tests.chart.charts import (
     all_edges,
     chart,
     chart_of_finding,
-    examined_text,
     row,
+    studied_text,
     times,
 )
+
+
+class Rounds:
+    """Lets a play go on for so many cycles; takes the first outcome of each choice."""
+
+    def __init__(self, cycles: int) -> None:
+        self.player: Player | None = None
+        self._cycles = cycles
+
+    def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
+        return outcomes[0]
+
+    def cycle_started(self, read: Read) -> None:
+        if self.player is not None and len(self.player.trace.cycles) > self._cycles:
+            self.player.stop()
+
 
 _FAULTY = Path(__file__).parents[2] / "examples" / "faulty"
 
@@ -76,20 +96,18 @@ def test_an_unlimited_wait_leaves_the_latest_open_and_the_axis_typical(tmp_path:
 @pytest.mark.parametrize("name", ["clamp", "mixed"])
 def test_random_runs_keep_to_the_bounds(tmp_path: Path, name: str) -> None:
     """The same edge of the same row, in runs whose delays are drawn anywhere within their spans."""
-    found = examined_text(tmp_path, TEXTS[name])
-    machine, worlds = found.machine, found.worlds
-    assert machine is not None and worlds is not None
-    drawn = chart_of(machine, worlds, found.report, Part())
-    settlement = worlds.settlements[0]
-    assert not found.report.counting
+    report, studied = studied_text(tmp_path, TEXTS[name])
+    machine, settlement = studied.machine, studied.studies[0].settlement
+    drawn = chart_of(studied, report, Part())
+    assert not report.counting
     for seed in range(25):
         source = random.Random(seed)
 
         def draw(what: str, name: str, number: int, span: Span, source: random.Random = source) -> int:
             return source.choice((span.least, span.greatest, source.randint(span.least, span.greatest)))
 
-        stop = settlement.last + 1
-        player = Player(machine, lambda player, _: len(player.trace.cycles) <= stop, draw, settlement.regions)  # noqa: B023
+        guide = Rounds(settlement.last + 1)
+        player = guide.player = Player(machine, guide, draw, settlement.regions)
         study = Study(machine, settlement)
         study.trace = player.play()
         zero = study.time(study.trace.cycles[settlement.first].event)
@@ -172,11 +190,10 @@ def test_further_cycles_repeat_the_first_with_wider_bounds(tmp_path: Path, text:
 def test_further_cycles_know_where_a_stopped_piston_may_stand(tmp_path: Path) -> None:
     """A table that is stopped on its way may stand between several marks: from the start of its own cycle every event
     of the fourth cycle, which only the chart plays, has the bounds of the first settled one."""
-    found = examined_text(tmp_path, (_FAULTY / "overshoot.steps").read_text("utf-8"))
-    assert found.machine is not None and found.worlds is not None
-    settlement = found.worlds.settlements[0]
+    _, studied = studied_text(tmp_path, (_FAULTY / "overshoot.steps").read_text("utf-8"))
+    settlement = studied.studies[0].settlement
     assert settlement.regions
-    window = window_of(found.machine, settlement, Part(cycles=4))
+    window = window_of(studied.machine, studied.studies, Part(cycles=4))
     study = window.study
     starts = study.trace.cycles[settlement.first : settlement.first + 5]
     bounds = []
@@ -251,10 +268,9 @@ def test_a_finding_lies_at_its_device(tmp_path: Path, name: str, where: str) -> 
 
 @pytest.mark.parametrize("name", ["clamp", "mixed", "question"])
 def test_the_critical_path_is_as_long_as_the_longest_cycle(tmp_path: Path, name: str) -> None:
-    found = examined_text(tmp_path, TEXTS[name])
-    assert found.machine is not None and found.worlds is not None
-    drawn = chart_of(found.machine, found.worlds, found.report, Part())
-    ((_, cycle),) = found.report.cycles
+    report, studied = studied_text(tmp_path, TEXTS[name])
+    drawn = chart_of(studied, report, Part())
+    ((_, cycle),) = report.cycles
     assert drawn.path[0].latest_us == 0
     assert drawn.path[-1].latest_us == cycle.greatest
     typical = [point.typical_us for point in drawn.path]

@@ -105,7 +105,7 @@ def test_the_run_of_a_finding(clamp: str, capsys: pytest.CaptureFixture[str]) ->
         (["--rows", "clam"], "there is no row clam; did you mean clamp?"),
         (["--choice", "main=1"], "this text has nothing to choose"),
         (["--witness", "1"], "there is no finding 1"),
-        (["--witness", "1", "--cycles", "2"], "leave out --from, --to, --anchor and --cycles"),
+        (["--witness", "1", "--cycles", "2"], "leave out --from, --to, --anchor, --choice and --cycles"),
         (["--output", "no/such/folder.svg"], "cannot write the report to no/such/folder.svg"),
     ],
 )

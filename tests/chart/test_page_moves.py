@@ -5,8 +5,8 @@ from __future__ import annotations
 import pytest
 
 from seqcheck.chart.page_moves import Move, move_times
-from seqcheck.checks.study import Study
-from seqcheck.engine.worlds import play_worlds
+from seqcheck.checks.study import studies_of
+from seqcheck.engine.explore import explore
 from seqcheck.machine.findings import Duration
 from tests.chart.page_samples import TWO_MOVES, sample
 
@@ -77,6 +77,6 @@ def test_all_ways_in_which_a_machine_was_played_count(wider: int) -> None:
     other = sample(TWO_MOVES.replace("on 18..28 ms", "on 8..58 ms"))
     assert one.machine and other.machine
     ways = [one.machine, other.machine][: wider + 1]
-    studies = [Study(machine, settlement) for machine in ways for settlement in play_worlds(machine).settlements]
+    studies = [study for machine in ways for study in studies_of(machine, explore(machine))]
     _, time = move_times(one.machine, studies)[0]
     assert time == Duration((390 if wider else 400) * MS, 441 * MS, (512 if wider else 482) * MS)

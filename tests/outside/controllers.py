@@ -45,6 +45,8 @@ class Controller:
         self.env, self.draw, self._scan, self._task, self._run = env, draw, scan, task, run
         self.round = scan or task or NONE
         self._seen: dict[str, Line] = {}
+        #: Steps and flags: from when on they are known, and as what.
+        self._memory: dict[str, list[tuple[int, bool]]] = {}
         self._moved = env.event()
 
     def watch(self, name: str, source: Line, delay: Times, on: Times, off: Times) -> None:
@@ -53,6 +55,14 @@ class Controller:
 
     def sees(self, name: str) -> bool:
         return self._seen[name].on
+
+    def remember(self, name: str, value: bool, read: Read) -> None:
+        """A step or a flag that this read changes; the next one knows it."""
+        self._memory.setdefault(name, []).append((read.floor, value))
+
+    def knows(self, name: str) -> bool:
+        known = [value for since, value in self._memory.get(name, ()) if since <= self.env.now]
+        return bool(known) and known[-1]
 
     def _input(self, filtered: Line) -> Line:
         raise NotImplementedError
@@ -108,6 +118,14 @@ class Drawing(Controller):
         seen = Delayed(self.env, self.draw, filtered, self._wait)
         seen.tell.append(self._told)
         return seen
+
+    def remember(self, name: str, value: bool, read: Read) -> None:
+        super().remember(name, value, read)
+        self.env.process(self._wake(read))
+
+    def _wake(self, read: Read) -> Waits:
+        yield self.env.timeout(read.floor - self.env.now)
+        self._told(True)
 
     def start(self) -> Leaving:
         yield self.env.timeout(0)

@@ -39,6 +39,15 @@ class Line:
                 each(on)
 
 
+class Derived(Line):
+    """On while a condition on other lines holds."""
+
+    def __init__(self, holds: Callable[[], bool], *lines: Line) -> None:
+        super().__init__(holds())
+        for line in lines:
+            line.tell.append(lambda _: self.put(holds()))
+
+
 class Delayed(Line):
     """Follows another line; a change that is taken back before its delay is over never shows."""
 
@@ -74,6 +83,8 @@ class Valve:
         self._on, self._off, self._turn = on, off, 0
         self.position = self._asked = rest or "b"
         self.tell: list[Callable[[str], None]] = []
+        #: By position: on while it is reached and no shift is under way.
+        self.reached: dict[str, Line] = {name: Line(name == self.position) for name in "ab"}
         for coil in (a, b):
             if coil is not None:
                 coil.tell.append(lambda _: self._ask())
@@ -88,11 +99,17 @@ class Valve:
             self._turn += 1
             if wanted != self.position:
                 self._env.process(self._shift(wanted, self._on if a or b else self._off, self._turn))
+            self._stands(self.position if wanted == self.position else None)
+
+    def _stands(self, position: str | None) -> None:
+        for name, line in self.reached.items():
+            line.put(name == position)
 
     def _shift(self, wanted: str, time: Times, turn: int) -> Waits:
         yield self._env.timeout(self._draw(time))
         if turn == self._turn:
             self.position = wanted
+            self._stands(wanted)
             for each in self.tell:
                 each(wanted)
 

@@ -12,11 +12,8 @@ from typing import Any
 
 import simpy
 
-from tests.outside.controllers import Condition, Controller, Read
+from tests.outside.controllers import Condition, Controller, Filtered, Read
 from tests.outside.plant import NONE, Cylinder, Delayed, Draw, Line, Times, Valve, Waits
-
-#: How long a run may take, in microseconds.
-PATIENCE = 40_000_000
 
 #: Goes through steps from the read that enters the first to the one that leaves the last.
 Course = Generator[simpy.Event, Any, Read]
@@ -26,6 +23,8 @@ class Station:
     """What the controller takes; a cycle counts from entering the first step, or from leaving it where that step waits
     for a signal from outside."""
 
+    #: How long a run may take, in microseconds.
+    PATIENCE = 40_000_000
     SCAN: Times | None = None
     TASK: Times | None = None
     RUN: Times = NONE
@@ -37,7 +36,6 @@ class Station:
         self.draw = draw
         self.plc = make(self.env, draw, self.SCAN, self.TASK, self.RUN)
         self._images: dict[str, Line] = {}
-        self._coils: dict[str, Line] = {}
         self._holds: Counter[str] = Counter()
         self.cycles: list[int] = []
         self.left_first: int | None = None
@@ -52,7 +50,7 @@ class Station:
 
     def run(self, cycles: int) -> list[int]:
         """The durations of the cycles; fewer where the program waits for ever for something that does not come."""
-        self.env.run(simpy.AnyOf(self.env, [self.env.process(self._go(cycles)), self.env.timeout(PATIENCE)]))
+        self.env.run(simpy.AnyOf(self.env, [self.env.process(self._go(cycles)), self.env.timeout(self.PATIENCE)]))
         return self.cycles
 
     def _go(self, cycles: int) -> Waits:
@@ -64,10 +62,13 @@ class Station:
 
     # Parts
 
-    def coil(self, name: str) -> Line:
+    def coil(self, name: str, *delays: Times) -> Line:
+        """``delays``: those of an island, in place of the controller's own."""
         self._images[name] = Line()
-        self._coils[name] = Delayed(self.env, self.draw, self._images[name], self.OUTPUT)
-        return self._coils[name]
+        return Delayed(self.env, self.draw, self._images[name], *(delays or [self.OUTPUT]))
+
+    def follows(self, name: str, source: Line, on: Times, off: Times) -> None:
+        self.plc.watch(name, Filtered(self.env, self.draw, source, NONE, on, off), NONE, self.INPUT, self.INPUT)
 
     def spring(self, coil: str, on: Times, off: Times) -> Valve:
         return Valve(self.env, self.draw, self.coil(coil), None, "b", on, off)

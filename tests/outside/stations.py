@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from tests.outside.controllers import Read
-from tests.outside.plant import ms
+from tests.outside.plant import Derived, Valve, Waits, ms
 from tests.outside.station import Course, Station
 
 END = (1.0, 1.0)
@@ -90,6 +90,50 @@ class BinShaker(Station):
             read = yield from self.step(read, also=self.reset("YR"), until="BR")
         read = yield from self.step(read, also=self.set("YS"), until="BS2")
         return (yield from self.step(read, also=self.reset("YS"), until="BS1"))
+
+
+class RinseSkid(Station):
+    """The stirrer's sequence runs beside. The water is cloudy now and then: never where all times are least, typical or
+    greatest."""
+
+    PATIENCE = 900_000_000
+    TASK, RUN, INPUT, OUTPUT = ms(20), ms(2, 6), ms(2, 4), ms(0.5, 1)
+    RACK = ms(2, 8), ms(1, 2)
+
+    def build(self) -> None:
+        m1, m2, y1, y2 = (self.coil(name, *self.RACK) for name in ("M1", "M2", "Y1", "Y2"))
+        fill = Valve(self.env, self.draw, m1, m2, None, ms(900, 1200))
+        drain = Valve(self.env, self.draw, y1, None, "b", ms(20, 40), ms(30, 60))
+        vent = Valve(self.env, self.draw, y2, None, "b", ms(20, 40), ms(30, 60))
+        self.coil("pump")
+        shut, closed, no_vent = fill.reached["b"], drain.reached["b"], vent.reached["a"]
+        self.follows("dosed", Derived(lambda: not shut.on, shut), ms(8_000, 11_000), ms(100, 300))
+        running_out = Derived(lambda: not closed.on and not no_vent.on, closed, no_vent)
+        self.follows("low", running_out, ms(5_000, 8_000), ms(200, 500))
+        self.env.process(self._stirrer())
+
+    def cycle(self, read: Read) -> Course:
+        read = yield from self.outside(read)
+        cloudy = True
+        while cloudy:
+            read = yield from self.step(read, on="M1", until="dosed")
+            read = yield from self.step(read, on="M2", dwell=1500)
+            self.plc.remember("stir", True, read)
+            read = yield from self.step(read, until=lambda: self.plc.knows("stirred"))
+            self.plc.remember("stir", False, read)
+            self.plc.remember("stirred", False, read)
+            read = yield from self.step(read, on="Y1", until="low")
+            read = yield from self.step(read, dwell=300)
+            cloudy = self.draw((0, 3)) == 2
+        return (yield from self.step(read, on="Y2", dwell=1000))
+
+    def _stirrer(self) -> Waits:
+        read = yield from self.plc.start()
+        while True:
+            read = yield from self.step(read, until=lambda: self.plc.knows("stir"))
+            read = yield from self.step(read, on="pump", dwell=4000)
+            self.plc.remember("stirred", True, read)
+            read = yield from self.step(read, until=lambda: not self.plc.knows("stir"))
 
 
 class LiftBefore(Scanned):

@@ -29,6 +29,7 @@ MODELS: dict[str, type[Station]] = {
     "crate_stapler": stations.CrateStapler,
     "tile_press": stations.TilePress,
     "bin_shaker": stations.BinShaker,
+    "rinse_skid": stations.RinseSkid,
     "change/before": stations.LiftBefore,
     "change/after": stations.LiftAfter,
     "faulty/coil_handover": faulty_stations.BottleLift,
@@ -75,15 +76,17 @@ def at_random(seed: int) -> Draw:
 
 def report_on(name: str) -> Report:
     report = examine(str(CHECKOUT / "examples" / f"{name}.steps"))
-    if any("cannot be checked yet" in problem.message for problem in report.problems):
-        pytest.skip("this version does not analyse it")
     assert not report.problems
     return report
 
 
 def cycle_of(report: Report) -> Duration:
-    (cycle,) = (duration for name, duration in report.cycles)
-    return cycle
+    return dict(report.cycles)["main"]
+
+
+def course_of(report: Report) -> int:
+    """What a cycle takes at most where signals from outside leave it open: the sum of the steps that they do not."""
+    return sum(one.greatest or 0 for name, one in report.steps if name.startswith("main."))
 
 
 def is_wide(report: Report) -> bool:
@@ -111,12 +114,12 @@ def test_typical_cycle(name: str) -> None:
 def test_least_and_greatest_cycle(name: str) -> None:
     report = report_on(name)
     cycle = cycle_of(report)
-    assert cycle.greatest is not None
+    most = course_of(report) if cycle.greatest is None else cycle.greatest
     shortest, longest = min(settled(name, Drawing, least)), max(settled(name, Drawing, greatest))
     if is_wide(report):
-        assert cycle.least <= shortest and longest <= cycle.greatest
+        assert cycle.least <= shortest and longest <= most
     else:
-        assert (shortest, longest) == (cycle.least, cycle.greatest)
+        assert (shortest, longest) == (cycle.least, most)
 
 
 @pytest.mark.slow
