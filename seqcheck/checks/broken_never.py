@@ -10,7 +10,7 @@ from collections.abc import Iterator
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.narrate import narrate_typical
-from seqcheck.checks.spells_of import Holds, together, whole_spells
+from seqcheck.checks.spells_of import Holds, together, whole_spells, without_breaks
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
 from seqcheck.engine.conditions import alternatives_of
@@ -27,7 +27,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
         if len(alternatives) > 1 and rule.tolerated:
-            for spell in whole_spells(study, alternatives):
+            for spell in without_breaks(study, whole_spells(study, alternatives)):
                 yield from _obligation(rule, (spell,))
 
 

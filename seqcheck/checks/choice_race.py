@@ -20,8 +20,10 @@ from seqcheck.machine.steps import Step
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
+    turned = {key[1] for key in study.settlement.recipe.turned if key[0] == "choose"}
     for choice in study.trace.choices:
-        if choice.taken is None:
+        # Where this play turned the choice, how far it is from turning back says nothing.
+        if choice.taken is None or choice.choose.place in turned:
             continue
         for one in asked_in_time(study.machine, study.trace, choice):
             if one.other is not None and one.other != choice.taken and not one.outside:
@@ -39,15 +41,17 @@ def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
         one.order.first,
         one.order.second,
         Wording(message, lambda by: f"let the step before wait until {one.asked} is sure to be as it will stay"),
+        least=1 if one.order.strict else 0,
         diverts=False,
         assumed=((one.order.first, one.order.second),),
     )
 
 
 def choice_name(choice: Choice) -> str:
-    """A choice is known by the first step in it."""
+    """A choice is known by the step behind which it stands, or by the first step in it."""
     items = (item for one in choice.choose.choices for item in items_of(one.items))
-    return next((item.name for item in items if isinstance(item, Step)), f"line {choice.choose.place.line}")
+    inside = next((item.name for item in items if isinstance(item, Step)), f"line {choice.choose.place.line}")
+    return choice.after or inside
 
 
 CHECK = Check("choice-race", Severity.WARNING, "which way a choice goes is a matter of plant times", _obligations)

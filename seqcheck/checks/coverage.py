@@ -23,7 +23,7 @@ def _unreachable(studies: Sequence[Study]) -> Iterator[Sight]:
     if any(one.trace.finished and any(visit.left is None for visit in one.trace.visits) for one in studies):
         return
     for sequence in studies[0].machine.sequences:
-        known = studies[0].entered | _behind_watchdogs(sequence)
+        known = studies[0].entered | _behind_watchdogs(sequence, studies[0].entered)
         missing = [step for step in steps_of(sequence) if step.name not in known]
         if missing:
             more = f", nor {len(missing) - 1} more" if len(missing) > 1 else ""
@@ -31,11 +31,11 @@ def _unreachable(studies: Sequence[Study]) -> Iterator[Sight]:
             yield Sight(missing[0].name, missing[0].name, missing[0].place, message)
 
 
-def _behind_watchdogs(sequence: StepSequence) -> set[str]:
+def _behind_watchdogs(sequence: StepSequence, entered: frozenset[str]) -> set[str]:
     program = compile_sequence(sequence)
     watchdogs = [item.watchdog for item in items_of(sequence.items) if isinstance(item, Step | Choose)]
     targets = {one.target for one in watchdogs if one is not None and one.target is not None}
-    return {name for target in targets for name in program.steps_behind(target)}
+    return {name for target in targets for name in program.steps_behind(target, entered)}
 
 
 def _no_watchdog(studies: Sequence[Study]) -> Iterator[Sight]:

@@ -17,8 +17,8 @@ from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import Settlement
 from seqcheck.machine.findings import Duration
 
-#: From one state to the next, as the choice at the first came out.
-Edge = tuple[int, int, Outcome | None]
+#: From one state at which ways part or meet to the next, as the choice at the first came out and was taken.
+Edge = tuple[int, int, Outcome | None, int | None]
 #: Tells of an edge whether the ways in question go through it.
 Through = Callable[[Edge], bool]
 
@@ -62,8 +62,8 @@ class Crossings:
         return None if least is None else Duration(least, typical, self.greatest(through))
 
     def least(self, through: Through | None = None) -> int | None:
-        """None where there is no such spell."""
-        direct = [part.within.least for edge, part in self._going(through) if part.within is not None]
+        """None where there is no such spell. What begins behind the choice of an edge does not go through it."""
+        found = [part.within.least for part in self.parts.values() if part.within is not None and through is None]
         best: dict[tuple[int, bool], int] = {}
         waiting: list[tuple[int, bool]] = []
 
@@ -74,7 +74,7 @@ class Crossings:
 
         for edge, part in self.parts.items():
             if part.opens is not None:
-                reach((edge[1], through is None or through(edge)), part.opens.least)
+                reach((edge[1], through is None), part.opens.least)
         while waiting:
             state, passed = waiting.pop()
             for edge, part in self._from(state):
@@ -82,19 +82,19 @@ class Crossings:
                 if part.passes is not None:
                     reach((edge[1], now), best[state, passed] + part.passes.least)
                 if part.closes is not None and now:
-                    direct.append(best[state, passed] + part.closes.least)
-        return min(direct, default=None)
+                    found.append(best[state, passed] + part.closes.least)
+        return min(found, default=None)
 
     def greatest(self, through: Through | None = None) -> int | None:
         """None where nothing limits it, or there is no such spell."""
-        found = [part.within.greatest for _, part in self._going(through) if part.within is not None]
+        found = [part.within.greatest for part in self.parts.values() if part.within is not None and through is None]
         best: dict[tuple[int, bool], int | None] = {}
         for state in self._in_order():
             if state is None:
                 return None
             for edge, part in self.parts.items():
                 if edge[1] == state and part.opens is not None:
-                    _lengthen(best, (state, through is None or through(edge)), part.opens.greatest)
+                    _lengthen(best, (state, through is None), part.opens.greatest)
             for passed in (False, True):
                 if (state, passed) not in best:
                     continue
@@ -106,9 +106,6 @@ class Crossings:
                         found.append(_sum(best[state, passed], part.closes.greatest))
         known = [time for time in found if time is not None]
         return max(known) if known and len(known) == len(found) else None
-
-    def _going(self, through: Through | None) -> Iterator[tuple[Edge, _Part]]:
-        return ((edge, part) for edge, part in self.parts.items() if through is None or through(edge))
 
     def _from(self, state: int) -> Iterator[tuple[Edge, _Part]]:
         return iter(self._at.get(state, ()))
@@ -145,16 +142,32 @@ def _sum(one: int | None, other: int | None) -> int | None:
 
 
 def crossings(
-    plays: Sequence[tuple[Settlement, Mapping[str, Sequence[Spell]]]], edges: Callable[[Edge], bool] = lambda _: True
+    plays: Sequence[tuple[Settlement, Mapping[str, Sequence[Spell]]]], settled: bool = True
 ) -> Mapping[str, Crossings]:
-    """For each name, over those of the ``edges`` of the graph that are asked for."""
+    """For each name; ``settled``: only over what a machine goes through again and again, if there is such."""
+    settlements = [settlement for settlement, _ in plays]
+    parts = _where_ways_part(settlements)
+    again = come_up_again(settlements) if settled else lambda begin, end: True
     found: dict[str, Crossings] = {}
     for settlement, spells in plays:
-        for name, edge, kind, span in _portions(settlement, spells, edges):
-            part = found.setdefault(name, Crossings()).part(edge)
-            known = getattr(part, kind)
-            setattr(part, kind, span if known is None else _both(known, span))
+        for name, edge, kind, span in _portions(settlement, spells, parts):
+            if again(edge[0], edge[1]):
+                part = found.setdefault(name, Crossings()).part(edge)
+                known = getattr(part, kind)
+                setattr(part, kind, span if known is None else _both(known, span))
     return found
+
+
+def _where_ways_part(settlements: Sequence[Settlement]) -> set[int]:
+    """The states that more than one run leaves, and those at which plays end: there ways are added up."""
+    leaving: dict[int, set[object]] = {}
+    for one in settlements:
+        fresh = one.recipe.way.fresh
+        for passage in range(max(fresh, 0), len(one.states)):
+            turned = one.recipe.turned if passage == fresh else frozenset()
+            leaving.setdefault(one.states[passage], set()).add((one.path.passages[passage].outcome, turned))
+    ends = {one.states[one.path.last] for one in settlements if one.path.first is None and one.path.last is not None}
+    return ends | {state for state, ways in leaving.items() if len(ways) > 1}
 
 
 def _both(one: Duration, other: Duration) -> Duration:
@@ -162,58 +175,87 @@ def _both(one: Duration, other: Duration) -> Duration:
     return Duration(min(one.least, other.least), one.typical, greatest)
 
 
+@dataclass(frozen=True, slots=True)
+class _Stretch:
+    """What lies between two passages at which ways part, or the ends of a play; ``keys`` are their times in order."""
+
+    edge: Edge
+    begin: int
+    end: int | None
+    first: int
+    last: int
+
+
+def _stretches(settlement: Settlement, parts: set[int]) -> list[_Stretch]:
+    """The part of a play that no other play has shown, cut where ways part. The last one of a play that has ended goes
+    on to the end."""
+    passages, states = settlement.path.passages, settlement.states
+    fresh = max(settlement.recipe.way.fresh, 0)
+    own = {fresh, settlement.path.settled if settlement.recipe.way.fresh < 0 else fresh}
+    cuts = [number for number in range(fresh, len(states)) if number in own or states[number] in parts]
+    ends = len(states) - 1
+    found = []
+    for first, last in zip(cuts, [*cuts[1:], None], strict=True):
+        choice, outcome = passages[first].choice, passages[first].outcome
+        end = ends if last is None else last
+        over = last is None and (settlement.trace.finished or settlement.path.last is None)
+        if end > first or over:
+            edge = states[first], states[end], outcome, None if choice is None else choice.taken
+            found.append(_Stretch(edge, passages[first].at, None if over else passages[end].at, first, end))
+    return found
+
+
 def _portions(
-    settlement: Settlement, named: Mapping[str, Sequence[Spell]], edges: Callable[[Edge], bool]
+    settlement: Settlement, named: Mapping[str, Sequence[Spell]], parts: set[int]
 ) -> Iterator[tuple[str, Edge, str, Duration]]:
-    trace, states, passages = settlement.trace, settlement.states, settlement.path.passages
-    at = [(trace.times[passage.at], passage.at) for passage in passages]
-    asked: list[tuple[str, Edge, str, int, int]] = []
-    for name, spells in named.items():
-        for spell in spells:
-            for number, kind, begin, end in _cut(settlement, at, spell):
-                edge = states[number], states[number + 1], passages[number].outcome
-                if number >= settlement.recipe.way.fresh and edges(edge):
-                    asked.append((name, edge, kind, begin, end))
+    trace = settlement.trace
+    at = [(trace.times[passage.at], passage.at) for passage in settlement.path.passages]
+    stretches = _stretches(settlement, parts)
+    asked = [
+        (name, stretch.edge, *part)
+        for name, spells in named.items()
+        for spell in spells
+        for stretch in stretches
+        if (part := _cut(trace.times, at, stretch, spell)) is not None
+    ]
     rows = greatest_separations(trace.graph, both_ways((begin, end) for _, _, _, begin, end in asked))
     for name, edge, kind, begin, end in asked:
         typical = trace.times[end] - trace.times[begin]
         yield name, edge, kind, Duration(-rows[end, begin], typical, closed(rows[begin, end]))
 
 
-def _cut(settlement: Settlement, at: Sequence[tuple[int, int]], spell: Spell) -> Iterator[tuple[int, str, int, int]]:
-    """What of a spell lies between each two states, by the number of the first."""
-    times, passages = settlement.trace.times, settlement.path.passages
-    last_run = len(passages) - 2
+def _cut(
+    times: Sequence[int], at: Sequence[tuple[int, int]], stretch: _Stretch, spell: Spell
+) -> tuple[str, int, int] | None:
+    """What of a spell lies in a stretch. ``first`` and ``last``: behind which passage it begins, and before which it
+    ends."""
     first = bisect_right(at, (times[spell.begin], spell.begin)) - 1 if spell.first is None else spell.first
-    if spell.end is None:
-        last = last_run + 1
-    else:
-        last = bisect_left(at, (times[spell.end], spell.end)) - 1 if spell.last is None else spell.last - 1
-    if first == last <= last_run and spell.end is not None:
-        yield first, "within", spell.begin, spell.end
-    elif first < last:
-        if first >= 0:
-            yield first, "opens", spell.begin, passages[first + 1].at
-        for number in range(max(first + 1, 0), min(last, last_run + 1)):
-            yield number, "passes", passages[number].at, passages[number + 1].at
-        if last <= last_run and spell.end is not None:
-            yield last, "closes", passages[last].at, spell.end
+    last = len(at)
+    if spell.end is not None:
+        last = bisect_left(at, (times[spell.end], spell.end)) if spell.last is None else spell.last
+    goes_on = stretch.end is None
+    begins = stretch.first <= first and (first < stretch.last or goes_on)
+    ends = spell.end is not None and stretch.first < last and (last <= stretch.last or goes_on)
+    if begins and ends and spell.end is not None:
+        return "within", spell.begin, spell.end
+    if begins and stretch.end is not None:
+        return "opens", spell.begin, stretch.end
+    if ends and first < stretch.first and spell.end is not None:
+        return "closes", stretch.begin, spell.end
+    if first < stretch.first and last > stretch.last and stretch.end is not None:
+        return "passes", stretch.begin, stretch.end
+    return None
 
 
-def come_up_again(settlements: Sequence[Settlement]) -> Callable[[Edge], bool]:
-    """Tells of an edge whether a machine goes through it again and again; true of all where it goes through none."""
+def come_up_again(settlements: Sequence[Settlement]) -> Callable[[int, int], bool]:
+    """Tells of two states whether a machine goes from the one to the other again and again; true of all where it goes
+    round nowhere."""
     following: dict[int, set[int]] = {}
     for one in settlements:
         for number, _, _ in one.segments():
             following.setdefault(one.states[number], set()).add(one.states[number + 1])
     group = _groups(following)
-    again = {
-        (begin, end)
-        for begin, ends in following.items()
-        for end in ends
-        if begin in group and end in group and group[begin] == group[end]
-    }
-    return (lambda edge: edge[:2] in again) if again else (lambda _: True)
+    return lambda begin, end: not group or (begin in group and end in group and group[begin] == group[end])
 
 
 def _groups(following: Mapping[int, set[int]]) -> dict[int, int]:

@@ -21,9 +21,9 @@ from seqcheck.machine.time import Span
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
-            if answer.literal.term.kind is not TermKind.SIGNAL:
+            if answer.literal not in visit.signals:
                 yield from _answered(study, visit, answer)
-        if len(visit.literals) == 1 and visit.literals[0].term.kind is not TermKind.SIGNAL:
+        if len(visit.literals) == 1 and not visit.signals:
             yield from _gone_again(study, visit, visit.literals[0])
     for sensor, edges in study.trace.edges.items():
         for edge in edges:
@@ -41,7 +41,7 @@ def _answered(study: Study, visit: Visit, answer: Answer) -> Iterator[Obligation
     if goes is None:
         return
     at, arrived = goes
-    if answer.edge is not None and answer.literal.term.kind is TermKind.SENSOR:
+    if answer.edge is not None and answer.literal.term.kind in (TermKind.SENSOR, TermKind.SIGNAL):
         yield _obligation(visit, answer.literal, answer.edge.arrived, at)
     yield _obligation(visit, answer.literal, visit.left.event, arrived)
 

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from itertools import pairwise, product
 
 from seqcheck.checks.study import Study
+from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.conditions import Alternative, Alternatives, Aspect, Literal, holding
 from seqcheck.machine.conditions import TermKind
 
@@ -107,3 +108,17 @@ def whole_spells(study: Study, alternatives: Alternatives) -> list[Holds]:
 
 def _holds(alternatives: Alternatives, values: dict[Aspect, bool]) -> bool:
     return holding(alternatives, lambda literal: values[literal.aspect] == literal.wanted) is not None
+
+
+def without_breaks(study: Study, spells: Sequence[Holds]) -> list[Holds]:
+    """The spells, and those that come of it where a break between two can be none: what begins the next one comes
+    before what ends the one."""
+    found = list(spells)
+    begin = None
+    for one, following in pairwise(spells):
+        begin = one.begin if begin is None else begin
+        if one.end is not None and greatest_separation(study.trace.graph, following.begin, one.end) > 0:
+            found.append(Holds(begin, following.end))
+        else:
+            begin = None
+    return found

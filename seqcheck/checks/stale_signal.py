@@ -10,14 +10,13 @@ from seqcheck.checks.wording import in_time
 from seqcheck.engine.graph import Event
 from seqcheck.engine.strokes import reached_by
 from seqcheck.engine.trace import Answer, Visit
-from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Severity
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
-            if answer.literal.term.kind is not TermKind.SIGNAL:
+            if answer.literal not in visit.signals:
                 pair = own_move_missed(study, visit, answer) or _last_change_back(study, visit, answer)
                 if pair is not None:
                     yield _obligation(visit, answer, *pair)

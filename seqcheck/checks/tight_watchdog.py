@@ -15,7 +15,7 @@ from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
 from seqcheck.engine.graph import Event
-from seqcheck.engine.orders import held_too_late, what_held
+from seqcheck.engine.orders import held_otherwise, held_too_late, what_held
 from seqcheck.engine.trace import Choice, Visit, Wait
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import OutsideSignal
@@ -46,6 +46,8 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None) -> Iterator[Ob
     if wait.alarm is not None and wait.alarm.expired and not held:
         return
     holds = study.last_of(Event("exit holds", name), held or [wait.entered.event])
+    expired = wait.alarm is not None and wait.alarm.expired
+    others = () if expired else tuple((event, expires) for event in held_otherwise(study.trace, wait))
     yield Obligation(
         name,
         step,
@@ -55,6 +57,7 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None) -> Iterator[Ob
         _wording(name, watchdog, isinstance(wait, Choice)),
         severity=Severity.WARNING if watchdog.target is not None else None,
         diverts=watchdog.target is None,
+        others=others,
         assumed=tuple(pair for pair in study.trace.graph.assumed if expires in pair),
     )
 

@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 from functools import partial
 from itertools import pairwise
 
-from seqcheck.checks.crossings import Crossings, Edge, Spell, come_up_again, crossings
+from seqcheck.checks.crossings import Crossings, Edge, Spell, crossings
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
@@ -40,10 +40,11 @@ class Times:
 
 def times_of(studies: Sequence[Study], timed: TimedStates) -> Times:
     machine = studies[0].machine
-    settlements = [study.settlement for study in studies]
-    again = come_up_again(settlements)
-    cycles = crossings([(study.settlement, dict(_cycle_spells(study))) for study in studies], again)
-    steps = crossings([(study.settlement, _step_spells(study)) for study in studies], again)
+    cycles = {
+        **crossings([(study.settlement, _cycle_spells(study, False)) for study in studies]),
+        **crossings([(study.settlement, _cycle_spells(study, True)) for study in studies], settled=False),
+    }
+    steps = crossings([(study.settlement, _step_spells(study)) for study in studies])
     return Times(
         tuple(_shown(cycles, studies, [sequence.name for sequence in machine.sequences], _typical_cycle)),
         tuple(_choices(machine, timed, cycles)),
@@ -80,22 +81,27 @@ def _choices(machine: Machine, timed: TimedStates, cycles: Mapping[str, Crossing
 
 
 def _takes(states: Collection[int], branch: int, edge: Edge) -> bool:
-    return edge[0] in states and edge[2] is not None and edge[2].taken == branch
+    return edge[0] in states and edge[3] == branch
 
 
-def _cycle_spells(study: Study) -> Iterator[tuple[str, list[Spell]]]:
-    for sequence in study.machine.sequences:
-        yield sequence.name, cycle_spells(study, sequence.name)
+def _cycle_spells(study: Study, once: bool) -> dict[str, list[Spell]]:
+    """Of the sequences that go round, or of those that run ``once``."""
+    names = [sequence.name for sequence in study.machine.sequences if sequence.once == once]
+    if once:
+        return {name: [Spell(begin, end) for begin, end in cycles_in(study, name)] for name in names}
+    return {name: cycle_spells(study, name) for name in names}
 
 
 def cycle_spells(study: Study, name: str) -> list[Spell]:
     """The cycles of a sequence, the last one, which the play has not come through, included."""
-    if {one.name: one.once for one in study.machine.sequences}[name]:
-        return [Spell(begin, end) for begin, end in cycles_in(study, name)]
-    at = {passage.at: number for number, passage in enumerate(study.settlement.path.passages) if name in passage.rounds}
+    since = _settled_since(study)
+    passages = enumerate(study.settlement.path.passages)
+    at = {passage.at: number for number, passage in passages if name == passage.sequence}
     spells = []
     rounds = study.trace.rounds[name]
     for read, following in zip(rounds, (*rounds[1:], None), strict=True):
+        if study.time(read.event) < since:
+            continue
         begin = _begin(study, read, name)
         first = at.get(read.event) if begin == read.event else None
         if following is None:
@@ -107,8 +113,11 @@ def cycle_spells(study: Study, name: str) -> list[Spell]:
 
 def _step_spells(study: Study) -> dict[str, list[Spell]]:
     found: dict[str, list[Spell]] = {}
+    since = _settled_since(study)
     for visit in study.trace.visits:
         left = visit.left.event if visit.left is not None else None
+        if left is not None and study.time(left) < since:
+            continue
         found.setdefault(visit.step.name, []).append(Spell(visit.entered.event, left))
     return found
 
@@ -218,9 +227,9 @@ def _settled_since(study: Study) -> int:
     """From when on the play shows cycles as they go on for ever. One in which something comes out otherwise shows it
     but once, and all that it has shown counts."""
     settlement = study.settlement
-    if settlement.recipe.way.fresh >= 0 or settlement.first == settlement.last:
+    if settlement.recipe.way.fresh >= 0 or settlement.path.settled is None:
         return 0
-    return study.time(settlement.trace.cycles[settlement.first].event)
+    return study.time(settlement.path.passages[settlement.path.settled].at)
 
 
 def _bounds(study: Study, intervals: Iterable[_Interval]) -> Rows:

@@ -47,12 +47,12 @@ def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) ->
     left: dict[int, list[tuple[int, int]]] = {}
     for source, event in set(pairs):
         common = graph.common_dominator(source, event)
-        if source == common:
-            rows[source, event] = graph.latest[event] - graph.latest[source]
-        elif event == common:
-            rows[source, event] = graph.earliest[event] - graph.earliest[source]
-        else:
+        if source != common != event or graph.assumes_below(common):
             left.setdefault(common, []).append((source, event))
+        elif source == common:
+            rows[source, event] = graph.latest[event] - graph.latest[source]
+        else:
+            rows[source, event] = graph.earliest[event] - graph.earliest[source]
     for common, group in left.items():
         rows.update(_Below(graph, common).separations(group))
     return rows

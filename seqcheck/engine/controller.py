@@ -46,8 +46,8 @@ class Guide(Protocol):
     def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
         """Which of several outcomes a choice has in this run."""
 
-    def cycle_started(self, read: Read) -> None:
-        """A sequence has begun anew at this read, which is done."""
+    def round_begins(self, read: Read, sequence: str) -> None:
+        """A sequence begins anew at this read, of which nothing has been done yet."""
 
 
 class Controller:
@@ -74,10 +74,11 @@ class Controller:
         self._read_events: set[int] = set()
         self._commands = Commands(trace.touches)
         self._wait = self._settings.wait
-        self._begun = False
         #: Where the threads stand that this read has yet to let walk on.
         self._walking: list[tuple[object, ...]] = []
+        #: How many waits there are for each signal from outside, and for each time that it comes.
         self._waiting_for: Counter[str] = Counter()
+        self._awaited: Counter[int] = Counter()
         self._last_time = -1
         self._reads_at_once = 0
         self._patience = 50 + 4 * sum(len(list(steps_of(sequence))) for sequence in machine.sequences)
@@ -89,10 +90,7 @@ class Controller:
         courses = [
             Course(compile_sequence(sequence), number) for number, sequence in enumerate(self._machine.sequences)
         ]
-        read = self._read(0, [Thread(course, 0) for course in courses], "start")
-        for course in courses:
-            self._trace.rounds.setdefault(course.program.name, []).insert(0, read)
-        self._trace.cycles.insert(0, read)
+        self._read(0, [Thread(course, 0) for course in courses], "start")
 
     def see(self, aspect: Aspect, known: Known) -> None:
         self._knowledge.see(aspect, known)
@@ -122,17 +120,16 @@ class Controller:
     def _read(self, event: int, threads: Sequence[Thread], reader: str) -> Read:
         """One read: steps are left and entered, and what this changes is written."""
         read = self._begin_read(event, reader)
-        self._begun = False
         for thread in threads:
             if thread.wait is not None:
                 self._leave(thread, read)
         self._walking = [(thread.course.number, thread.at, thread.counts) for thread in threads]
         for thread in threads:
+            if thread.course.cycle < 0:
+                self.begin_anew(thread.course, read)
             self._threads.advance(thread, read)
             self._walking.pop(0)
         self._finish_read(read)
-        if self._begun:
-            self._guide.cycle_started(read)
         return read
 
     def _begin_read(self, event: int, reader: str) -> Read:
@@ -171,7 +168,6 @@ class Controller:
         thread.go_behind(wait)
         if isinstance(wait, Visit):
             read.left.append(wait)
-            thread.after = wait.step.name
             self._commands.leave(wait, read)
             self._know_later((TermKind.STEP, wait.step.name, None), False, read)
         elif isinstance(wait, Choice):
@@ -183,13 +179,17 @@ class Controller:
 
     def _let_signals_go(self, wait: Wait, read: Read) -> None:
         """A signal from outside stays until every step that waits for it is left."""
-        for name in {literal.term.subject for literal in wait.signals}:
+        for name, seen in {(literal.term.subject, seen) for literal, (_, seen) in wait.signals.items()}:
+            self._awaited[seen] -= 1
+            if not self._awaited[seen]:
+                self._timeline.call_off(seen)
             self._waiting_for[name] -= 1
             if not self._waiting_for[name]:
                 self._plant.notice(read.event, {(TermKind.SIGNAL, name, None): False})
 
     def _await_signals(self, wait: Wait) -> None:
-        for name in {literal.term.subject for literal in wait.signals}:
+        for name, seen in {(literal.term.subject, seen) for literal, (_, seen) in wait.signals.items()}:
+            self._awaited[seen] += 1
             self._waiting_for[name] += 1
         for literal, (_, seen) in wait.signals.items():
             if literal.wanted:
@@ -217,7 +217,7 @@ class Controller:
             alternatives=tuple(one for condition in select.waited for one in condition),
             cycle=thread.course.cycle,
             choose=select.choose,
-            after=thread.after,
+            after=select.behind,
             conditions=select.conditions,
             told={
                 literal.aspect: len(self._trace.known.get(literal.aspect, ()))
@@ -277,10 +277,10 @@ class Controller:
 
     def begin_anew(self, course: Course, read: Read) -> None:
         course.cycle += 1
-        self._begun = True
         self._trace.rounds.setdefault(course.program.name, []).append(read)
         if course.number == 0:
             self._trace.cycles.append(read)
+        self._guide.round_begins(read, course.program.name)
 
     def join(self, thread: Thread, fork: Fork) -> None:
         reader = f"join {fork.place.line}:{fork.place.column}"

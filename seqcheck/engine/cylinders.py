@@ -149,8 +149,11 @@ class Cylinders:
         """The shift that drives the piston otherwise; where it takes several valves, the last of theirs."""
         valves = {literal.term.subject for literal in reason} | {shift.valve}
         shifts = [self._shifts[valve] for valve in sorted(valves) if valve in self._shifts]
-        reached = self._timeline.last_of(Event("drive", piston.cylinder.name), [one.reached for one in shifts])
-        return shift if len(shifts) == 1 else replace(shift, reached=reached, parts=tuple(shifts))
+        last = self._timeline.graph.without_idle(one.reached for one in shifts)
+        if last == (shift.reached,):
+            return shift
+        reached = self._timeline.last_of(Event("drive", piston.cylinder.name), last)
+        return replace(shift, reached=reached, parts=tuple(one for one in shifts if one.reached in last))
 
     # Ending a stroke -------------------------------------------------------------------------------------------
 

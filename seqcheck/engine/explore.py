@@ -230,7 +230,7 @@ class _Follower:
         wanted = self._outcomes.pop(0) if self._outcomes else outcomes[0]
         return wanted if wanted in outcomes else outcomes[0]
 
-    def cycle_started(self, read: Read) -> None:
+    def round_begins(self, read: Read, sequence: str) -> None:
         self._count()
 
     def _count(self) -> None:

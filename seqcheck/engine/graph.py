@@ -132,6 +132,16 @@ class EventGraph:
                 kept.append(cause)
         return tuple(kept)
 
+    def assumes_below(self, dominator: int) -> bool:
+        """Whether an order is taken for granted of two events that this one dominates."""
+        return any(
+            number > dominator
+            and other > dominator
+            and self.dominates(dominator, number)
+            and self.dominates(dominator, other)
+            for number, other in self.assumed
+        )
+
     @contextmanager
     def not_assuming(self, pairs: Collection[tuple[int, int]]) -> Iterator[None]:
         """Meanwhile these orders are not taken for granted."""

@@ -47,16 +47,14 @@ def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
 @dataclass(slots=True, eq=False)
 class Passage:
     """A state as one play has come through it, at the read event ``at``. ``choice`` and ``outcomes`` where it is one
-    that could come out otherwise, ``outcome`` as it did; else ``rounds``: the sequences that begin anew."""
+    that could come out otherwise, ``outcome`` as it did; else ``sequence``: which begins anew."""
 
     at: int
     signature: Signature
-    rounds: tuple[str, ...] = ()
+    sequence: str | None = None
     choice: Choice | None = None
     outcomes: tuple[Outcome, ...] = ()
     outcome: Outcome | None = None
-    #: How many choices were decided before.
-    decided: int = 0
 
 
 @dataclass(slots=True)
@@ -70,11 +68,13 @@ class Way:
 @dataclass(slots=True)
 class Path:
     """What the guide has seen. ``joined``: the passage at which a known state came up again, None while none has;
-    ``first`` to ``last``: the passages between which the play goes once round (the same where it does not)."""
+    ``settled``: where that state came up first in this very play. ``first`` to ``last``: the passages between which the
+    play then goes once round; up to ``last`` a little further, where the state is one of another play."""
 
     passages: list[Passage] = field(default_factory=list)
     orders: list[tuple[int, Order]] = field(default_factory=list)
     joined: int | None = None
+    settled: int | None = None
     first: int | None = None
     last: int | None = None
     #: The way cannot be gone: a choice had no such outcome.
@@ -107,15 +107,13 @@ class Scout:
             wanted = self._way.outcomes[self._decided]
             self.path.astray = self.path.astray or wanted not in outcomes
             outcome = wanted if wanted in outcomes else outcome
-        passage = Passage(choice.entered.event, (), (), choice, tuple(outcomes), outcome, self._decided)
+        passage = Passage(choice.entered.event, (), None, choice, tuple(outcomes), outcome)
         self._decided += 1
         self._pass(passage, ("choice", choice.choose.place))
         return outcome
 
-    def cycle_started(self, read: Read) -> None:
-        assert self.player is not None
-        begun = tuple(name for name, reads in self.player.trace.rounds.items() if reads and reads[-1] is read)
-        self._pass(Passage(read.event, (), begun, decided=self._decided), ("round", begun))
+    def round_begins(self, read: Read, sequence: str) -> None:
+        self._pass(Passage(read.event, (), sequence), ("round", sequence))
 
     def _pass(self, passage: Passage, where: tuple[object, ...]) -> None:
         path, player = self.path, self.player
@@ -129,6 +127,8 @@ class Scout:
                 player.stop()
         elif self._period:
             self._end_of_round(index)
+        elif path.joined is not None:
+            self._end_behind_join(index)
         elif index > self._way.fresh:
             self._look_up(player, index)
 
@@ -137,10 +137,10 @@ class Scout:
         passage = path.passages[index]
         before = self._own.get(passage.signature)
         if before is not None:
-            path.joined, self._period = index, index - before
+            path.joined, path.settled, self._period = index, before, index - before
             self._end_of_round(index)
         elif passage.signature in self._known:
-            path.joined, path.last = index, index + 1
+            path.joined = index
         else:
             self._own[passage.signature] = index
             if index - self._way.fresh > self._most_passages:
@@ -151,9 +151,19 @@ class Scout:
         path = self.path
         assert path.joined is not None
         name = self._machine.sequences[0].name
-        if name in path.passages[index].rounds or index == path.joined + self._period - 1:
+        if name == path.passages[index].sequence or index == path.joined + self._period - 1:
             path.first, path.last = index, index + self._period
             self._period = 0
+
+    def _end_behind_join(self, index: int) -> None:
+        """On to the next state at which ways part, or at which a round of the first sequence begins."""
+        path = self.path
+        assert path.joined is not None and self.player is not None
+        passage = path.passages[index]
+        begins = passage.sequence == self._machine.sequences[0].name
+        if passage.choice is not None or begins or index - path.joined >= _LATE:
+            path.last = index
+            self.player.stop()
 
     def _assume_orders(self, player: Player, passage: Passage, index: int) -> None:
         """What was open since the last state is taken to be as it was played."""

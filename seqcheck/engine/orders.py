@@ -29,9 +29,12 @@ OrderKey = tuple[object, ...]
 
 @dataclass(frozen=True, slots=True)
 class Order:
+    """``strict``: at the same instant it is the other way round already."""
+
     key: OrderKey
     first: int
     second: int
+    strict: bool = False
 
 
 class Orders:
@@ -47,10 +50,12 @@ class Orders:
         found = [
             one
             for one in self._all(trace, since, begin)
-            if one.first != one.second and begin <= trace.times[one.second] < end
+            if one.first != one.second
+            and trace.times[one.first] <= trace.times[one.second]
+            and begin <= trace.times[one.second] < end
         ]
         rows = greatest_separations(trace.graph, ((one.second, one.first) for one in found))
-        return [one for one in found if rows[one.second, one.first] > 0]
+        return [one for one in found if rows[one.second, one.first] >= (0 if one.strict else 1)]
 
     def _all(self, trace: Trace, since: int, begin: int) -> Iterator[Order]:
         yield from self._of_commands(trace, begin)
@@ -145,6 +150,7 @@ def passing(trace: Trace, wait: Wait, subject: str) -> Iterator[tuple[Order, Edg
             yield Order((*key, "unseen"), edge.lost_to, comes), edge
         elif gone is not None and edge.seen is not None and any(one.edge is edge for one in wait.answers):
             yield Order((*key, "seen"), edge.seen, gone), edge
+            yield Order((*key, "arrived"), edge.arrived, edges[number + 1].at), edge
 
 
 def _of_alarm(trace: Trace, wait: Wait, what: tuple[object, ...]) -> Iterator[Order]:
@@ -167,6 +173,17 @@ def held_too_late(trace: Trace, wait: Wait) -> int | None:
     timed = [event for event in (wait.dwell_over, wait.steady_over) if event is not None]
     first = min(events, key=lambda event: trace.times[event], default=None)
     return None if first is None else _latest(trace, [first, *timed])
+
+
+def held_otherwise(trace: Trace, wait: Wait) -> Iterator[int]:
+    """The events by which other alternatives than the one that held first would have come to hold, where all that is
+    awaited is the condition."""
+    held = {answer.literal for answer in wait.answers}
+    if wait.dwell_over is None and wait.steady_over is None:
+        for one in wait.alternatives:
+            comes = _completed(trace, wait, one, at_input=True) if set(one) != held else None
+            if comes is not None:
+                yield comes
 
 
 def what_held(wait: Wait) -> list[int]:
@@ -295,7 +312,7 @@ def _while_it_stands(machine: Machine, trace: Trace, choice: Choice) -> Iterator
             key = ("choose", choice.choose.place, choice.taken, number, _named(other))
             asked = " and ".join(one.term.subject for one in other)
             how = f"{asked} coming {{by}} before {' and '.join(one.term.subject for one in own)}"
-            yield ChoiceOrder(Order(key, came, comes), asked, how, number, outside)
+            yield ChoiceOrder(Order(key, came, comes, strict=number < choice.taken), asked, how, number, outside)
 
 
 def _in_passing(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
@@ -305,7 +322,7 @@ def _in_passing(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
         for order, edge in passing(trace, choice, aspect[1]):
             values = {other: _known_at(trace, other, edge.arrived) for other in aspects}
             other = _outcome(choice, {**values, aspect: edge.value})
-            if order.key[-1] == "seen":
+            if order.key[-1] != "unseen":
                 other = next((n for n in range(len(choice.conditions)) if n != choice.taken), None)
             how = f"{aspect[1]} {'seen' if edge.lost_to is not None else 'passing unseen'} by {{by}}"
             yield ChoiceOrder(order, aspect[1], how, other, False)

@@ -60,7 +60,6 @@ class Player:
         self.controller.start()
         self._settle_signals()
         self._plant.go_live()
-        self._guide.cycle_started(self.trace.cycles[0])
         while not self._stopped and not self.trace.endless:
             if self._until_us is not None and self.timeline.next_time > self._until_us:
                 break

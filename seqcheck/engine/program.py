@@ -6,6 +6,7 @@ a thread stands is a number and its loop counts.
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from dataclasses import dataclass, field
 
 from seqcheck.engine.conditions import Alternatives, alternatives_of
@@ -57,6 +58,7 @@ class Select:
     choose: Choose
     conditions: tuple[Alternatives, ...]
     branches: tuple[int, ...]
+    behind: str | None
 
     @property
     def waited(self) -> tuple[Alternatives, ...]:
@@ -103,15 +105,17 @@ class Program:
             kept.append(count)
         return (*kept, *(self._times(loop) for loop in self.loops[to][len(kept) :]))
 
-    def steps_behind(self, step: str) -> set[str]:
-        """The steps that can come to be active once this one is, itself included."""
+    def steps_behind(self, step: str, known: Collection[str]) -> set[str]:
+        """The steps that can come to be active once this one is, itself included, as far as the next ``known`` one."""
         found: set[int] = set()
         waiting = [self.steps[step]]
         while waiting:
             at = waiting.pop()
             if at not in found:
                 found.add(at)
-                waiting += self._following(at)
+                instruction = self.code[at]
+                if not isinstance(instruction, Enter) or instruction.step.name not in known:
+                    waiting += self._following(at)
         return {name for name, at in self.steps.items() if at in found}
 
     def _following(self, at: int) -> tuple[int, ...]:
@@ -158,6 +162,7 @@ class _Compiler:
     def __init__(self, program: Program) -> None:
         self.program = program
         self._loops: tuple[int, ...] = ()
+        self._behind: str | None = None
 
     def add(self, instruction: Instruction) -> int:
         self.program.code.append(instruction)
@@ -173,6 +178,7 @@ class _Compiler:
             match item:
                 case Step():
                     self.program.steps[item.name] = self.add(Enter(item, alternatives_of(item.until)))
+                    self._behind = item.name
                 case Repeat():
                     self._repeat(item)
                 case Together():
@@ -203,12 +209,13 @@ class _Compiler:
 
     def _choose(self, item: Choose) -> None:
         select = self.add(BranchEnd())
-        starts, ends = [], []
+        starts, ends, behind = [], [], self._behind
         for choice in item.choices:
+            self._behind = behind
             starts.append(self._next)
             self.compile(choice.items)
             ends.append(self.add(BranchEnd()))
         for end in ends:
             self.program.code[end] = Go(self._next)
         conditions = tuple(alternatives_of(choice.condition) for choice in item.choices)
-        self.program.code[select] = Select(item, conditions, tuple(starts))
+        self.program.code[select] = Select(item, conditions, tuple(starts), behind)

@@ -23,10 +23,10 @@ from seqcheck.machine.steps import Choose, Step
 
 @dataclass(frozen=True, slots=True)
 class State:
-    """``rounds``: the sequences that begin anew there; else a ``choose``, behind step ``after``."""
+    """``sequence``: which begins anew there; else a ``choose``, behind step ``after``."""
 
     number: int
-    rounds: tuple[str, ...]
+    sequence: str | None
     choose: Choose | None
     after: str | None
 
@@ -73,8 +73,8 @@ def waits_for_outside(machine: Machine, step: Step) -> bool:
 def _state(number: int, passage: Passage) -> State:
     choice = passage.choice
     if choice is None:
-        return State(number, passage.rounds, None, None)
-    return State(number, (), choice.choose, choice.after)
+        return State(number, passage.sequence, None, None)
+    return State(number, None, choice.choose, choice.after)
 
 
 def _runs(play: int, settlement: Settlement) -> Iterator[Run]:

@@ -20,13 +20,12 @@ class Course:
 
     program: Program
     number: int
-    cycle: int = 0
+    cycle: int = -1
 
 
 @dataclass(slots=True, eq=False)
 class Thread:
-    """A place in a program. A parent waits for its branches and keeps the floors of those that have ended. ``after``:
-    the last step that it has left."""
+    """A place in a program. A parent waits for its branches and keeps the floors of those that have ended."""
 
     course: Course
     at: int
@@ -35,7 +34,6 @@ class Thread:
     branches: int = 0
     ended: list[int] = field(default_factory=list)
     wait: Wait | None = None
-    after: str | None = None
 
     @property
     def program(self) -> Program:
@@ -158,7 +156,7 @@ class Threads:
         thread.branches, thread.ended = len(branches), []
         self.rest(thread)
         for start in branches:
-            self.advance(Thread(thread.course, start, parent=thread, after=thread.after), read)
+            self.advance(Thread(thread.course, start, parent=thread), read)
 
     def _end_branch(self, thread: Thread, read: Read) -> None:
         """The branch has ended; the last one to be known lets the parent go on, at a read of its own."""

@@ -136,9 +136,9 @@ class Visit(Wait):
 
 @dataclass(slots=True, eq=False, kw_only=True)
 class Choice(Wait):
-    """A ``choose`` to which a thread has come at the read that ``entered`` it, behind step ``after``; ``taken``, by the
-    number of its branch, at the read ``left``. ``conditions``: those of its branches. ``asked``: whether each signal
-    from outside was on at the first of these reads; ``told``: how much of what is known of each
+    """A ``choose`` to which a thread has come at the read that ``entered`` it, behind step ``after`` in the text;
+    ``taken``, by the number of its branch, at the read ``left``. ``conditions``: those of its branches. ``asked``:
+    whether each signal from outside was on at the first of these reads; ``told``: how much of what is known of each
     other term (``Trace.known``) was known by then."""
 
     choose: Choose
