@@ -12,7 +12,7 @@ from collections.abc import Iterator
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
-from seqcheck.engine.orders import ChoiceOrder, asked_in_time
+from seqcheck.engine.choice_orders import ChoiceOrder, asked_in_time
 from seqcheck.engine.trace import Choice
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.model import items_of

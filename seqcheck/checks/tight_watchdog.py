@@ -15,8 +15,8 @@ from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import round_up
 from seqcheck.engine.graph import Event
-from seqcheck.engine.orders import held_otherwise, held_too_late, what_held
 from seqcheck.engine.trace import Choice, Visit, Wait
+from seqcheck.engine.wait_orders import held_otherwise, held_too_late, what_held
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import OutsideSignal
 from seqcheck.machine.findings import Severity

@@ -100,6 +100,7 @@ class _Below:
         """From ``near`` down towards ``event``: the first dominator behind which none of the ``others`` lies, nor any
         event of an assumed order."""
         graph = self._graph
+        graph.work += len(others)
         for causes in (others, self._ordered):
             for other in reversed(causes):
                 if other <= near:

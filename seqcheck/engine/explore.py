@@ -19,7 +19,8 @@ from seqcheck.engine.controller import Outcome
 from seqcheck.engine.cylinders import Regions
 from seqcheck.engine.graph import DelayName
 from seqcheck.engine.guide import Passage, Path, Prefer, Scout, Signature, Way, first_of
-from seqcheck.engine.orders import Order, OrderKey, Orders
+from seqcheck.engine.order import Order, OrderKey
+from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
 from seqcheck.engine.regions import regions_of
 from seqcheck.engine.strokes import Region
@@ -166,7 +167,7 @@ def most_work(machine: Machine) -> int:
     """More work than this, in separations worked out, is not done; the report then says so. Sequences that go side by
     side and never wait for one another come to ever new states, whose pasts have nothing in common."""
     items = (item for sequence in machine.sequences for item in items_of(sequence.items))
-    return 400_000 + 10_000 * sum(isinstance(item, Choose) for item in items)
+    return 1_000_000 + 10_000 * sum(isinstance(item, Choose) for item in items)
 
 
 def explore(machine: Machine) -> StateGraph:

@@ -16,7 +16,8 @@ from dataclasses import dataclass, field
 
 from seqcheck.engine.bounds import both_ways, greatest_separations
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.orders import Order, Orders
+from seqcheck.engine.order import Order
+from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.machine.model import Machine, items_of

@@ -1,0 +1,18 @@
+"""An order of two events that decides what follows."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+#: What the text says of an order: where, and what the two events are.
+OrderKey = tuple[object, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Order:
+    """``strict``: at the same instant it is the other way round already."""
+
+    key: OrderKey
+    first: int
+    second: int
+    strict: bool = False
