@@ -65,9 +65,9 @@ def alarm_orders(trace: Trace, wait: Wait, what: tuple[object, ...]) -> Iterator
             yield Order((*what, "in time", trace.graph.events[held].subject), held, alarm.over)
         return
     late = [(named(one), completed(trace, wait, one, at_input=True)) for one in wait.alternatives]
-    for named, event in (*late, ("dwell", wait.dwell_over), ("steady", wait.steady_over)):
+    for which, event in (*late, ("dwell", wait.dwell_over), ("steady", wait.steady_over)):
         if event is not None:
-            yield Order((*what, "too late", named), alarm.over, event)
+            yield Order((*what, "too late", which), alarm.over, event)
 
 
 def held_too_late(trace: Trace, wait: Wait) -> int | None:

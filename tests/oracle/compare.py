@@ -19,10 +19,11 @@ from itertools import pairwise
 from seqcheck.checks.catalogue import CHECKS
 from seqcheck.checks.prove import Broken, Proof, prove
 from seqcheck.checks.study import Study, studies_of
-from seqcheck.checks.times import cycle_times, step_times, together
+from seqcheck.checks.times import Times, times_of
+from seqcheck.engine.explore import explore
 from seqcheck.engine.graph import DelayName
 from seqcheck.engine.scope import outside_scope
-from seqcheck.engine.explore import explore
+from seqcheck.engine.states import timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.conditions import TermKind
@@ -58,6 +59,7 @@ class Examined:
     studies: tuple[Study, ...]
     complete: bool
     proof: Proof
+    times: Times
 
     @property
     def cycles(self) -> int:
@@ -78,7 +80,7 @@ class Examined:
 
     @property
     def cycle_bounds(self) -> Duration | None:
-        return dict(together(cycle_times(study) for study in self.studies)).get(self.machine.sequences[0].name)
+        return dict(self.times.cycles).get(self.machine.sequences[0].name)
 
     @property
     def told(self) -> frozenset[tuple[str, str]]:
@@ -90,9 +92,9 @@ def examine(text: str) -> Examined:
     if not isinstance(machine, Machine):
         raise AssertionError("\n".join([*(str(problem) for problem in machine), text]))
     assert not outside_scope(machine), text
-    worlds = explore(machine)
-    studies = tuple(studies_of(machine, worlds))
-    return Examined(machine, studies, worlds.complete, prove(studies, CHECKS))
+    graph = explore(machine)
+    studies = tuple(studies_of(machine, graph))
+    return Examined(machine, studies, graph.complete, prove(studies, CHECKS), times_of(studies, timed_states(graph)))
 
 
 def some_draws(random: int, corners: int, first: int = 0) -> tuple[Choice, ...]:
@@ -134,7 +136,7 @@ def beyond_bounds(examined: Examined, name: str, run: Run) -> Iterator[Disagreem
     """Steps and cycles of a run without incidents that take less or more than the report says."""
     if not examined.settled:
         return
-    steps = dict(together(step_times(study) for study in examined.studies))
+    steps = dict(examined.times.steps)
     for visit in run.visits:
         if visit.left is not None and visit.step in steps and visit.cycle >= examined.first_settled:
             yield from _outside(f"step {visit.step}", name, visit.left - visit.entered, steps[visit.step])
