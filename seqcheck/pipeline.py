@@ -67,7 +67,7 @@ def study_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0
     studies = studies_of(machine, graph)
     timed = timed_states(graph)
     proof = prove(studies, CHECKS, reserve_us)
-    report = _report(studies, timed, proof, graph.complete)
+    report = _report(studies, timed, proof)
     lines = _lines_of(source)
     findings = tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings)
     return replace(report, findings=findings), Studied(machine, studies, proof.broken)
@@ -91,8 +91,7 @@ def _too_long(machine: Machine) -> Problem:
     )
 
 
-def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete: bool) -> Report:
-    """``complete``: every order that is a matter of time was played both ways."""
+def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof) -> Report:
     typical, machine = studies[0], studies[0].machine
     findings = tuple(one.finding for one in proof.broken)
     times = times_of(studies, timed)
@@ -102,7 +101,7 @@ def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof, complete
         machine=machine.name,
         findings=findings,
         sheets=machine.sheets,
-        assumptions=assumptions(typical, complete, accepted, proof.strays),
+        assumptions=assumptions(typical, accepted, proof.strays),
         cycles=times.cycles,
         choices=times.choices,
         states=shown_states(timed),

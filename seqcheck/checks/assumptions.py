@@ -12,9 +12,9 @@ from seqcheck.machine.model import Machine
 from seqcheck.machine.time import WHOLE_SHARE
 
 
-def assumptions(study: Study, complete: bool, accepted: bool = False, strays: bool = False) -> tuple[str, ...]:
-    """``complete``: every order that is a matter of time was played both ways; ``accepted``: the text accepts
-    something that happens in some runs only; ``strays``: the run at typical times breaks what others keep."""
+def assumptions(study: Study, accepted: bool = False, strays: bool = False) -> tuple[str, ...]:
+    """``accepted``: the text accepts something that happens in some runs only; ``strays``: the run at typical times
+    breaks what others keep."""
     machine = study.machine
     return (
         *_assumed(machine),
@@ -23,7 +23,7 @@ def assumptions(study: Study, complete: bool, accepted: bool = False, strays: bo
         "no faulty part",
         _start(machine),
         *_signals(machine),
-        *_proof(study, complete),
+        *_proof(study),
         *(("played on from what goes wrong at typical times, where other runs may go right",) if strays else ()),
         *(("what is accepted happens, or does not, as it does at typical times",) if accepted else ()),
     )
@@ -63,13 +63,11 @@ def _signals(machine: Machine) -> Iterator[str]:
             )
 
 
-def _proof(study: Study, complete: bool) -> Iterator[str]:
+def _proof(study: Study) -> Iterator[str]:
     """Where the bounds are safe but need not be exact, or the proof stops short."""
     settlement = study.settlement
     anywhere = sorted({cylinder for cylinder, _ in settlement.regions})
     if anywhere:
         yield f"{', '.join(anywhere)} stopped anywhere that the times allow (bounds safe there)"
-    if not complete:
-        yield "not every order of pulses and commands was played both ways"
-    if not settlement.settled:
-        yield f"not settled: proved for the first {len(study.trace.cycles) - 1} cycles only"
+    if not study.whole:
+        yield "not every run was played (see not-settled)"

@@ -33,6 +33,16 @@ class Wording:
 
 
 @dataclass(frozen=True, slots=True)
+class Instead:
+    """What a run comes to that breaks an order by which it would be another run: ``text`` in place of the steps that
+    are entered at event ``at``, and ``shown`` to tell of what was really played whether it came to that."""
+
+    at: int
+    text: str
+    shown: Callable[[Study], bool]
+
+
+@dataclass(frozen=True, slots=True)
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
     brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.
@@ -51,6 +61,7 @@ class Obligation:
     others: tuple[tuple[int, int], ...] = ()
     severity: Severity | None = None
     diverts: bool = True
+    instead: Instead | None = None
     assumed: tuple[tuple[int, int], ...] = ()
 
     @property
@@ -72,6 +83,7 @@ class Sight:
     certain: bool = True
     at: int | None = None
     severity: Severity | None = None
+    margin_us: int | None = None
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:
@@ -107,7 +119,7 @@ class Check:
             step=sight.step,
             place=sight.place,
             message=sight.message,
-            margin_us=None,
+            margin_us=sight.margin_us,
             replayed=True if sight.run else None,
             run=sight.run,
             mend=sight.mend,

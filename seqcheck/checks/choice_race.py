@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.check import Check, Instead, Obligation, Wording
 from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
 from seqcheck.engine.choice_orders import ChoiceOrder, asked_in_time
@@ -33,7 +33,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
     assert one.other is not None
     where = f"behind {choice.after}" if choice.after else f"in line {choice.choose.place.line}"
-    message = f"the choice {where} can take {branch_name(choice.choose, one.other)} instead, {one.how}"
+    message = f"the choice {where} can take `{branch_name(choice.choose, one.other)}` instead, {one.how}"
     return Obligation(
         choice_name(choice),
         None,
@@ -43,8 +43,21 @@ def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
         Wording(message, lambda by: f"let the step before wait until {one.asked} is sure to be as it will stay"),
         least=1 if one.order.strict else 0,
         diverts=False,
+        instead=_instead(choice, one.other),
         assumed=((one.order.first, one.order.second),),
     )
+
+
+def _instead(choice: Choice, other: int) -> Instead:
+    read = choice.entered if choice.left is None else choice.left
+    way = branch_name(choice.choose, other)
+
+    def shown(played: Study) -> bool:
+        return any(
+            one.choose is choice.choose and one.taken not in (None, choice.taken) for one in played.trace.choices
+        )
+
+    return Instead(read.event, f"the choice takes `{way}`", shown)
 
 
 def choice_name(choice: Choice) -> str:

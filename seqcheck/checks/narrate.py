@@ -6,6 +6,7 @@ Takes a witness; gives the moments that tell it, counted from the first of them.
 
 from __future__ import annotations
 
+from seqcheck.checks.check import Instead
 from seqcheck.checks.study import Study
 from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Visit
@@ -14,10 +15,10 @@ from seqcheck.machine.findings import Moment
 from seqcheck.machine.time import WHOLE_SHARE
 
 
-def narrate(study: Study, run: Witness, first: int, second: int) -> tuple[Moment, ...]:
+def narrate(study: Study, run: Witness, instead: Instead | None = None) -> tuple[Moment, ...]:
     """The moments on the way to a broken pair, the pair itself included."""
     numbers = (*_lead_in(study, run.chain[0]), *run.chain)
-    return _moments(study, [(run.times.get(number, study.time(number)), number) for number in numbers])
+    return _moments(study, [(run.times.get(number, study.time(number)), number) for number in numbers], instead)
 
 
 def narrate_typical(study: Study, begin: int, end: int) -> tuple[Moment, ...]:
@@ -27,14 +28,16 @@ def narrate_typical(study: Study, begin: int, end: int) -> tuple[Moment, ...]:
     return _moments(study, sorted(happened))
 
 
-def _moments(study: Study, timed: list[tuple[int, int]]) -> tuple[Moment, ...]:
+def _moments(study: Study, timed: list[tuple[int, int]], instead: Instead | None = None) -> tuple[Moment, ...]:
     reads = study.reads_by_event
     told: list[tuple[int, str]] = []
     for time, number in timed:
         event = study.trace.graph.events[number]
         texts = [text] if (text := describe(study, event)) else []
         if number in reads:
-            texts += _steps(reads[number].left, "left") + _steps(reads[number].entered, "entered")
+            texts += _steps(reads[number].left, "left")
+            turns = instead is not None and instead.at == number
+            texts += [instead.text] if instead is not None and turns else _steps(reads[number].entered, "entered")
         told += [(time, text) for text in texts]
     start = told[0][0] if told else 0
     return tuple(Moment(time - start, text) for time, text in told)

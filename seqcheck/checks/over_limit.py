@@ -3,44 +3,80 @@
 from __future__ import annotations
 
 from bisect import bisect_left
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
-from seqcheck.checks.check import Check, Obligation, Wording
+from seqcheck.checks.check import Check, Obligation, Sight, Wording
+from seqcheck.checks.crossings import Spell, crossings
 from seqcheck.checks.spells_of import whole_spells
 from seqcheck.checks.study import Study
-from seqcheck.checks.times import cycles_in
+from seqcheck.checks.times import cycle_spells
 from seqcheck.checks.wording import in_time
 from seqcheck.engine.conditions import alternatives_of
 from seqcheck.machine.findings import Severity
-from seqcheck.machine.rules import CycleLimit, PathLimit
+from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
     for rule in study.machine.rules:
-        match rule:
-            case CycleLimit(sequence, greatest):
-                over = f"a cycle of {sequence} can take {{by}} longer than {in_time(greatest)}"
-                for begin, end in cycles_in(study, sequence):
-                    yield Obligation(rule.text, None, rule.place, end, begin, Wording(over), -greatest, diverts=False)
-            case PathLimit():
-                yield from _between(study, rule)
-            case _:
-                pass
+        for spell in _spells(study, rule):
+            if spell.end is None or isinstance(rule, Never):
+                continue
+            over = Wording(_over(rule))
+            yield Obligation(rule.text, None, rule.place, spell.end, spell.begin, over, -rule.greatest, diverts=False)
+            if isinstance(rule, PathLimit) and rule.least is not None:
+                under = Wording(f"`{rule.text}` can be undercut by {{by}}")
+                yield Obligation(rule.text, None, rule.place, spell.begin, spell.end, under, rule.least, diverts=False)
 
 
-def _between(study: Study, rule: PathLimit) -> Iterator[Obligation]:
+def _over(rule: CycleLimit | PathLimit) -> str:
+    if isinstance(rule, CycleLimit):
+        return f"a cycle of {rule.sequence} can take {{by}} longer than {in_time(rule.greatest)}"
+    return f"`{rule.text}` can be exceeded by {{by}}"
+
+
+def _spells(study: Study, rule: Rule) -> list[Spell]:
+    """What the rule limits, the last one of a play, which it has not come to the end of, included."""
+    match rule:
+        case CycleLimit(sequence):
+            return cycle_spells(study, sequence)
+        case PathLimit():
+            return _from_one_to_the_other(study, rule)
+        case _:
+            return []
+
+
+def _from_one_to_the_other(study: Study, rule: PathLimit) -> list[Spell]:
     """From each time that the one condition comes to hold to the next time that the other does."""
     starts = [spell.begin for spell in whole_spells(study, alternatives_of(rule.start))]
     ends = [spell.begin for spell in whole_spells(study, alternatives_of(rule.end))]
     times = [study.time(event) for event in ends]
-    over = Wording(f"`{rule.text}` can be exceeded by {{by}}")
-    under = Wording(f"`{rule.text}` can be undercut by {{by}}")
+    spells = []
     for start in starts:
         at = bisect_left(times, study.time(start))
-        for end in ends[at : at + 1]:
-            yield Obligation(rule.text, None, rule.place, end, start, over, -rule.greatest, diverts=False)
-            if rule.least is not None:
-                yield Obligation(rule.text, None, rule.place, start, end, under, rule.least, diverts=False)
+        spells.append(Spell(start, ends[at] if at < len(ends) else None))
+    return spells
 
 
-CHECK = Check("over-limit", Severity.ERROR, "a cycle or a way takes longer, or shorter, than it may", _obligations)
+def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
+    """Where no play shows all of it in one: added up along the ways through the state graph."""
+    rules = [rule for rule in studies[0].machine.rules if isinstance(rule, CycleLimit | PathLimit)]
+    plays = [(study.settlement, {rule.text: _spells(study, rule) for rule in rules}) for study in studies]
+    found = crossings(plays, settled=False)
+    for rule in rules:
+        ways = found.get(rule.text)
+        if ways is None or ways.least() is None:
+            continue
+        greatest = ways.greatest()
+        if greatest is not None and greatest > rule.greatest:
+            message = _over(rule).replace("{by}", in_time(greatest - rule.greatest))
+            margin = rule.greatest - greatest
+            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
+
+
+CHECK = Check(
+    "over-limit",
+    Severity.ERROR,
+    "a cycle or a way takes longer, or shorter, than it may",
+    _obligations,
+    omissions=_over_several_runs,
+)

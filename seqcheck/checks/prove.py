@@ -75,15 +75,34 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
         one = _prove_one(study, checks, reserve_us, partial(ways.segment, number))
         strays = strays or one.strays
         for seen in one.seen:
-            finding = seen.broken.finding
-            by_key.setdefault((finding.kind, finding.subject, finding.step, finding.place), []).append(seen)
+            by_key.setdefault(_key(seen.broken.finding), []).append(seen)
         for margin in one.margins:
             key = (margin.kind, margin.subject, margin.step, margin.place)
             margins[key] = min(margins.get(key, margin), margin, key=_by_margin)
     broken = [_one_of(found, ways) for found in by_key.values()]
-    broken += [Broken(check.finding(sight), None) for check in checks for sight in check.omissions(studies)]
+    found = {_key(one.finding): number for number, one in enumerate(broken)}
+    for check in checks:
+        for sight in check.omissions(studies):
+            finding = check.finding(sight)
+            if _key(finding) in found:
+                number = found[_key(finding)]
+                broken[number] = _at_least_as_bad(broken[number], finding)
+            else:
+                broken.append(Broken(finding, None))
     broken = _accepted(broken, studies[0].machine)
     return Proof(_sorted(broken), tuple(sorted(margins.values(), key=_by_margin)), strays)
+
+
+def _key(finding: Finding) -> _Key:
+    return finding.kind, finding.subject, finding.step, finding.place
+
+
+def _at_least_as_bad(one: Broken, finding: Finding) -> Broken:
+    """What a run shows, with what it comes to at worst where that is more."""
+    shown = one.finding.margin_us
+    if shown is None or finding.margin_us is None or shown <= finding.margin_us:
+        return one
+    return replace(one, finding=replace(one.finding, message=finding.message, margin_us=finding.margin_us))
 
 
 def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
@@ -214,7 +233,7 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
         message=one.wording.broken(by),
         margin_us=shown,
         replayed=_shows(study, check, one, run),
-        run=narrate(study, run, one.first, one.second),
+        run=narrate(study, run, one.instead),
         mend=None if mend is None or shown is None else mend(_needed(study, one, -shown)),
     )
     return Broken(finding, run, study.settlement)
@@ -224,6 +243,8 @@ def _shows(study: Study, check: Check, one: Obligation, run: Witness) -> bool:
     """Whether the witness, really played, breaks what the check states at this place of the text."""
     played = replay(study.machine, study.settlement, run)
     again = Study(study.machine, played, given(played.delays))
+    if one.instead is not None:
+        return one.instead.shown(again)
     return any(
         all(again.time(first) + other.least > again.time(second) for first, second in other.pairs)
         for other in check.obligations(again)

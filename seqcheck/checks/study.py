@@ -40,12 +40,15 @@ class Study:
         draw: Draw = typical,
         entered: frozenset[str] = frozenset(),
         left: frozenset[str] = frozenset(),
+        whole: bool = True,
     ) -> None:
         """``draw``: how the delays of the events that the study adds are drawn. ``entered``: the steps that any play
-        has entered; ``left``: those that any play has left."""
+        has entered; ``left``: those that any play has left; ``whole``: all
+        ways were played, and come round."""
         self.machine = machine
         self.entered = entered
         self.left = left
+        self.whole = whole
         self._draw = draw
         self.settlement = settlement
         self.trace = settlement.trace
@@ -281,4 +284,5 @@ def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
     visits = [visit for one in graph.settlements for visit in one.trace.visits]
     entered = frozenset(visit.step.name for visit in visits)
     left = frozenset(visit.step.name for visit in visits if visit.left is not None)
-    return [Study(machine, settlement, entered=entered, left=left) for settlement in graph.settlements]
+    whole = graph.complete and all(one.settled for one in graph.settlements)
+    return [Study(machine, settlement, typical, entered, left, whole) for settlement in graph.settlements]

@@ -89,12 +89,13 @@ def _cycle_spells(study: Study, once: bool) -> dict[str, list[Spell]]:
     names = [sequence.name for sequence in study.machine.sequences if sequence.once == once]
     if once:
         return {name: [Spell(begin, end) for begin, end in cycles_in(study, name)] for name in names}
-    return {name: cycle_spells(study, name) for name in names}
+    return {name: cycle_spells(study, name, settled=True) for name in names}
 
 
-def cycle_spells(study: Study, name: str) -> list[Spell]:
-    """The cycles of a sequence, the last one, which the play has not come through, included."""
-    since = _settled_since(study)
+def cycle_spells(study: Study, name: str, settled: bool = False) -> list[Spell]:
+    """The cycles of a sequence that goes round, the last one, which the play has not come through, included; only those
+    that go on for ever, if ``settled``."""
+    since = _settled_since(study) if settled else 0
     passages = enumerate(study.settlement.path.passages)
     at = {passage.at: number for number, passage in passages if name == passage.sequence}
     spells = []

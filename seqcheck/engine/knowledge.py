@@ -13,7 +13,7 @@ from seqcheck.engine.trace import Known, Trace
 from seqcheck.machine.conditions import Condition, Term, TermKind, terms_of
 from seqcheck.machine.devices import OutsideSignal
 from seqcheck.machine.model import Machine, items_of
-from seqcheck.machine.steps import Choose, Step
+from seqcheck.machine.steps import Choose, Sequence, Step
 
 #: What a controller does itself, and knows without an input.
 _OWN = (TermKind.COIL, TermKind.OUTPUT, TermKind.FLAG, TermKind.STEP)
@@ -50,9 +50,9 @@ class Knowledge:
         return tuple(sorted((kind.value, subject, known.value) for (kind, subject, _), known in self._known.items()))
 
 
-def asked_conditions(machine: Machine) -> Iterator[Condition]:
-    """Every condition that steps and choices wait for."""
-    for sequence in machine.sequences:
+def asked_conditions(machine: Machine, sequences: tuple[Sequence, ...] | None = None) -> Iterator[Condition]:
+    """Every condition that steps and choices wait for, of all sequences or of some."""
+    for sequence in machine.sequences if sequences is None else sequences:
         for item in items_of(sequence.items):
             match item:
                 case Step(until=until) if until is not None:
