@@ -166,7 +166,7 @@ def _where_ways_part(settlements: Sequence[Settlement]) -> set[int]:
         for passage in range(max(fresh, 0), len(one.states)):
             turned = one.recipe.turned if passage == fresh else frozenset()
             leaving.setdefault(one.states[passage], set()).add((one.path.passages[passage].outcome, turned))
-    ends = {one.states[one.path.last] for one in settlements if one.path.first is None and one.path.last is not None}
+    ends = {one.states[-1] for one in settlements if one.round is None}
     return ends | {state for state, ways in leaving.items() if len(ways) > 1}
 
 

@@ -24,9 +24,8 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
     if trace.finished:
         stuck, last = _waiting_since(trace, None), max(trace.happened, key=study.time)
         more = "nothing more happens"
-    elif study.settlement.path.first is not None and study.settlement.path.last is not None:
-        passages = study.settlement.path.passages
-        begin, last = (passages[number].at for number in (study.settlement.path.first, study.settlement.path.last))
+    elif study.settlement.round is not None:
+        begin, last = (study.settlement.path.passages[number].at for number in study.settlement.round)
         stuck = [
             wait
             for wait in _waiting_since(trace, study.time(begin))

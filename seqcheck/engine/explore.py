@@ -70,6 +70,12 @@ class Settlement:
         fresh = self.recipe.way.fresh
         return self.trace.times[self.path.passages[fresh].at] if fresh >= 0 else 0
 
+    @property
+    def round(self) -> tuple[int, int] | None:
+        """The passages between which the play goes round, if it does."""
+        first, last = self.path.first, self.path.last
+        return None if first is None or last is None or last >= len(self.path.passages) else (first, last)
+
     def segments(self) -> Iterator[tuple[int, Passage, Passage]]:
         """Each run from one state to the next, by the number of its first passage."""
         for number, (begin, end) in enumerate(zip(self.path.passages, self.path.passages[1:], strict=False)):
@@ -108,10 +114,15 @@ class _Explorer:
             numbered = tuple(
                 self.states.setdefault(passage.signature, len(self.states)) for passage in settlement.path.passages
             )
+            ended = recipe.way.fresh >= len(numbered)
+            if ended:
+                # It has come to an end before it came to where it was to part from the others.
+                settlement = replace(settlement, recipe=replace(recipe, way=Way(recipe.way.outcomes)))
             self.found.append(replace(settlement, states=numbered))
             if settlement.trace.too_long:
                 break
-            self._plan(self.found[-1])
+            if not ended:
+                self._plan(self.found[-1])
         return StateGraph(tuple(self.found), self.complete and not self.waiting)
 
     def _plan(self, settlement: Settlement) -> None:
