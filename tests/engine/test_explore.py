@@ -1,0 +1,86 @@
+"""The timed state graph: what is played, where plays join, and how much of it there is."""
+
+from __future__ import annotations
+
+import pytest
+
+from seqcheck.engine.explore import StateGraph, explore
+from seqcheck.engine.states import timed_states
+from seqcheck.language.read import read_machine
+from seqcheck.language.source import Source
+from seqcheck.machine.model import Machine
+
+CONTROLLER = "controller { scan 8..12 ms  input 2..4 ms  output 0.5..1 ms }\n"
+CLAMP = """valve V1 5/2 spring { coil Y1  on 18..28 ms  off 25..40 ms }
+cylinder clamp on V1 { extend 380..450 ms  retract 300..360 ms  sensor B1 at retracted  sensor B2 at extended }
+"""
+
+
+def explored(text: str) -> StateGraph:
+    machine = read_machine(Source("a.steps", CONTROLLER + text))
+    assert isinstance(machine, Machine), machine
+    return explore(machine)
+
+
+def choices_in_a_row(count: int) -> str:
+    signals = "\n".join(f"signal s{number} from outside" for number in range(count))
+    steps = "\n".join(
+        f"choose {{ when s{number} {{ clamp+ clamp- }} otherwise {{ step w{number} {{ dwell {50 + number} ms }} }} }}"
+        for number in range(count)
+    )
+    return f"{CLAMP}{signals}\nsequence main {{\nevery step within 2 s\n{steps}\n}}"
+
+
+def test_a_machine_without_choices_is_played_once() -> None:
+    graph = explored(CLAMP + "sequence main { every step within 2 s  clamp+ clamp- }")
+    (only,) = graph.settlements
+    assert graph.complete and only.settled
+    assert only.round is not None
+
+
+@pytest.mark.parametrize("count", [10, 20, 40])
+def test_choices_in_a_row_cost_two_plays_and_four_runs_each(count: int) -> None:
+    """A thousand ways for ten choices: the plays are as many as the choices have outcomes. (Two more for the very first
+    choice, which the machine comes to at rest only once.)"""
+    graph = explored(choices_in_a_row(count))
+    assert graph.complete
+    assert len(graph.settlements) == 2 * count + 2
+    timed = timed_states(graph)
+    assert (len(timed.states), len(timed.runs)) == (2 * count + 4, 4 * count + 5)
+
+
+def test_both_outcomes_join_where_the_machine_is_the_same_again() -> None:
+    graph = explored(choices_in_a_row(2))
+    assert all(one.path.joined is not None for one in graph.settlements)
+    known: set[int] = set()
+    for one in graph.settlements:
+        assert one.path.joined is not None
+        assert one.states[one.path.joined] in known or one.path.settled is not None
+        known |= set(one.states)
+
+
+def test_an_order_that_is_open_is_played_both_ways_and_one_that_is_not_but_once() -> None:
+    """A pulse of 300 ms against a step that ends the command of its coil 250..262 ms or 400..412 ms later."""
+    text = (
+        "valve V1 5/2 spring {{ coil Y1  on 18..28 ms  off 25..40 ms }}\noutput K\n"
+        "sequence main {{ step go {{ pulse Y1 300 ms  on K  dwell {dwell} ms }}"
+        "  step hold {{ on Y1  dwell 20 ms }}  step rest {{ dwell 500 ms }} }}"
+    )
+    assert len(explored(text.format(dwell=290)).settlements) > 1
+    assert len(explored(text.format(dwell=400)).settlements) == 1
+
+
+def test_sequences_that_never_meet_are_not_whole() -> None:
+    text = (
+        "sequence main { step a { dwell 100 ms }  step b { dwell 50 ms } }\n"
+        "sequence side { step c { dwell 130 ms }  step d { dwell 70 ms } }"
+    )
+    graph = explored(text)
+    assert not graph.settlements[0].settled
+
+
+def test_the_same_machine_is_explored_the_same_way() -> None:
+    one, other = (timed_states(explored(choices_in_a_row(4))) for _ in range(2))
+    assert [(run.begin, run.end, run.duration) for run in one.runs] == [
+        (run.begin, run.end, run.duration) for run in other.runs
+    ]
