@@ -155,7 +155,9 @@ class _Drawing:
             edges=tuple(self._edge(one.event, one.text, one.level, one.lasting) for one in shown),
             ends=line.ends,
         )
-        return _Placed(row, {change.event: change.text for change in shown if not change.found})
+        # What comes in the very moment in which the part shown ends is no edge of it, but may be what ends it.
+        own = [one for one in changes if self._shown(one.event)] if line.kind.sloped else shown
+        return _Placed(row, {change.event: change.text for change in own if not change.found})
 
     def _level(self, line: Line, changes: Sequence[Change], time: int) -> int:
         """Where the row's line is at a typical time, before whatever happens at that very time."""

@@ -12,11 +12,10 @@ from dataclasses import dataclass
 from seqcheck.chart.bits import flag_changes, follower_starts_on, outside_line
 from seqcheck.chart.changes import Change, words
 from seqcheck.chart.model import HIGH, LOW, RowKind
-from seqcheck.chart.shifts import ends_of, level_of, shift_changes
+from seqcheck.chart.shifts import ends_of, level_of, shift_changes, valves_of
 from seqcheck.checks.study import Study
 from seqcheck.engine.trace import Choice, Stroke, Visit
-from seqcheck.machine.conditions import TermKind, terms_of
-from seqcheck.machine.devices import Cylinder, FollowingSignal, OnValve, OutsideSignal, Sensor
+from seqcheck.machine.devices import Cylinder, FollowingSignal, OutsideSignal, Sensor
 from seqcheck.machine.model import items_of, steps_of
 from seqcheck.machine.steps import Choose, Sequence
 from seqcheck.machine.time import WHOLE_SHARE
@@ -83,11 +82,8 @@ def lines(study: Study) -> Iterator[Line]:
 
 def _last_valve(study: Study, cylinder: Cylinder) -> str:
     """The valve below which a cylinder stands: its own, or the last of those whose positions drive it."""
-    if isinstance(cylinder.drive, OnValve):
-        return cylinder.drive.valve
-    conditions = (cylinder.drive.out, cylinder.drive.back)
-    named = {term.subject for one in conditions for term in terms_of(one) if term.kind is TermKind.VALVE}
-    return [name for name in study.machine.valves if name in named][-1]
+    driving = valves_of(cylinder)
+    return [name for name in study.machine.valves if name in driving][-1]
 
 
 def _cylinder_lines(study: Study, cylinder: Cylinder) -> Iterator[Line]:

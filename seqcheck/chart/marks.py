@@ -35,11 +35,14 @@ class Spot:
 def spots(window: Window, findings: Sequence[Finding]) -> tuple[Spot | None, ...]:
     """For each finding where it lies; None where that is nowhere in the window."""
     stated = _stated(window, findings)
-    found = []
-    for finding in findings:
-        tightest = min(stated.get(_key(finding), ()), key=partial(_margin, window), default=None)
-        found.append(_at_step(window, finding) if tightest is None else _at(window, finding, tightest))
-    return tuple(found)
+    return tuple(_spot(window, finding, stated.get(_key(finding), ())) for finding in findings)
+
+
+def _spot(window: Window, finding: Finding, stated: Sequence[Obligation]) -> Spot | None:
+    if finding.margin_us is None:
+        return _at_step(window, finding)
+    tightest = min(stated, key=partial(_margin, window), default=None)
+    return None if tightest is None else _at(window, finding, tightest)
 
 
 def _margin(window: Window, one: Obligation) -> int:

@@ -18,6 +18,7 @@ from seqcheck.chart.page_markup import NOTHING, Markup, columns, element, lines,
 from seqcheck.chart.page_moves import MoveTimes
 from seqcheck.chart.page_sheets import chart_sheets
 from seqcheck.chart.page_tables import (
+    choices_table,
     critical_path_table,
     cycles_table,
     devices_table,
@@ -25,6 +26,7 @@ from seqcheck.chart.page_tables import (
     margins_table,
     steps_table,
 )
+from seqcheck.chart.wording import SAFETY
 from seqcheck.machine.findings import Duration, Report, Severity
 from seqcheck.machine.model import Machine
 from seqcheck.report.amounts import OPEN, counted
@@ -33,12 +35,6 @@ from seqcheck.report.summary import summary_rows, verdict
 JOB = (
     "What can go wrong in the timing of this sequence, how much is left before it does, and how long everything takes:"
     " proved for all times within their tolerances at once."
-)
-#: The words of ``seqcheck --help``.
-SAFETY = (
-    "seqcheck finds timing faults in a sequence. It is no safety function and no proof of one: it replaces no risk"
-    " assessment, no guard, no emergency stop circuit and no licensed practitioner; local codes and licensed practice"
-    " come first."
 )
 
 _Section = tuple[str, str, str, Markup]
@@ -129,7 +125,12 @@ def _sections(
     yield "chart", "Timing chart", "", chart_sheets(charts, imprint_line(report, imprint))
     yield "commissioning", "Commissioning", MEANING, _commissioning(machine, moves)
     yield "devices", "Devices", "", columns(devices_table(machine))
-    yield "times", "Cycle and step times", open_too, lines((cycles_table(report), steps_table(report, machine)))
+    yield (
+        "times",
+        "Cycle and step times",
+        open_too,
+        lines((cycles_table(report), choices_table(report), steps_table(report, machine))),
+    )
     ends = "From the end of one coil, its decay included, to the start of the opposed one."
     yield "handovers", "Handovers", f"{ends} {milliseconds}", handovers_table(report.handovers)
     left = "How much later or earlier each thing may come before it breaks, tightest first; below 0 it is broken."

@@ -17,14 +17,14 @@ from seqcheck.machine.model import Machine, steps_of
 from seqcheck.machine.steps import Step
 
 MEANING = (
-    "From the coil switching to the input of the sensor that ends the move, in milliseconds, for all runs within the"
-    " tolerances. The watchdog counts from the start of its step. A measured time outside least and greatest belongs"
-    " into the timing sheet: then check again."
+    "From the coil switching to the input of the sensor that ends the move (without one: to the end of the stroke, or"
+    " the position of the valve), in milliseconds, for all runs within the tolerances. The watchdog counts from the"
+    " start of its step. A measured time outside least and greatest belongs into the timing sheet: then check again."
 )
 
 _COLUMNS: tuple[Column, ...] = (
     names("step"),
-    names("cylinder"),
+    names("device"),
     words("move"),
     names("from coil"),
     names("to sensor"),
@@ -47,15 +47,15 @@ def commissioning_table(machine: Machine, moves: MoveTimes) -> Markup:
 
 
 def _row(machine: Machine, steps: dict[str, Step], move: Move, span: Sequence[Markup]) -> list[Markup]:
-    cylinder = machine.cylinders[move.cylinder]
+    device = machine.cylinders.get(move.device) or machine.valves[move.device]
     return [
         _over(name(move.step), _small(steps[move.step].label)),
-        _over(name(move.cylinder), _small(cylinder.label)),
-        text("out" if move.out else "in"),
+        _over(name(move.device), _small(device.label)),
+        text(move.way),
         _over(_switching(move.coil, move.energized), _small(machine.coils[move.coil].address)),
         _sensor(machine, steps, move),
         *span,
-        _watchdog(steps, move),
+        _watchdog(machine, steps, move),
         NOTHING,
         NOTHING,
     ]
@@ -63,15 +63,15 @@ def _row(machine: Machine, steps: dict[str, Step], move: Move, span: Sequence[Ma
 
 def _sensor(machine: Machine, steps: dict[str, Step], move: Move) -> Markup:
     if move.sensor is not None:
-        address = machine.sensors[move.sensor].address
-        return _over(_switching(move.sensor, move.sensor_on), _small(address))
+        source = machine.sensors.get(move.sensor) or machine.signals[move.sensor]
+        return _over(_switching(move.sensor, move.sensor_on), _small(source.address))
     dwell = steps[move.step].dwell
     return _over(text("none"), text("" if dwell is None else f"dwell {format_duration(dwell)}"))
 
 
-def _watchdog(steps: dict[str, Step], move: Move) -> Markup:
+def _watchdog(machine: Machine, steps: dict[str, Step], move: Move) -> Markup:
     watchdog = steps[move.waiting].watchdog
-    if watchdog is None:
+    if watchdog is None or (move.device in machine.valves and move.sensor is None):
         return text("none")
     own = NOTHING if move.waiting == move.step else _small(move.waiting)
     return _over(text(spelled_watchdog(watchdog)), own)

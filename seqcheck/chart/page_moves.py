@@ -2,7 +2,8 @@
 
 Takes studies (the ways in which a machine was played); gives, for each stroke that the text starts at one place, how
 long it takes from the coil switching to the input of the sensor that the sequence then waits for, over all runs. Where
-nothing waits for a sensor of the cylinder, the time is that of the whole stroke.
+nothing waits for a sensor of the cylinder, the time is that of the whole stroke. Valves that move no cylinder (process
+valves) make moves of their own, from the coil switching to the position reached.
 """
 
 from __future__ import annotations
@@ -10,6 +11,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
+from seqcheck.chart.shifts import valves_of, way_of
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.trace import Edge, Stroke, Visit
@@ -20,18 +22,22 @@ from seqcheck.machine.steps import Step
 
 @dataclass(frozen=True, slots=True)
 class Move:
-    """``coil`` switches (``energized``, or released), ``sensor`` comes or goes (``sensor_on``): None where nothing
-    waits for one. ``waiting`` is the step that waits for it, which need not be the one that started the move."""
+    """``coil`` switches (``energized``, or released), ``sensor`` (or a signal that follows the piston) comes or goes
+    (``sensor_on``): None where nothing waits for one. ``waiting`` is the step that waits for it, which need not be the
+    one that started the move. ``way``: out or in; of a valve to which position, or that it opens or closes."""
 
     step: str
-    cylinder: str
-    out: bool
+    device: str
+    way: str
     coil: str
     energized: bool
     sensor: str | None
     sensor_on: bool
     waiting: str
 
+
+#: Where a step makes both, this comes before its opposite.
+_FIRST = ("out", "opens", "to a")
 
 #: None: the stroke is cut short before it comes to an end or to a sensor that is waited for.
 MoveTimes = tuple[tuple[Move, Duration | None], ...]
@@ -44,7 +50,7 @@ def move_times(machine: Machine, studies: Sequence[Study]) -> MoveTimes:
         for move, time in _timed(study):
             found[move] = _widened(found.get(move), time)
     order = {step.name: place for place, step in enumerate(_steps(machine))}
-    return tuple(sorted(found.items(), key=lambda one: (order[one[0].step], one[0].cylinder, not one[0].out)))
+    return tuple(sorted(found.items(), key=lambda one: (order[one[0].step], one[0].device, one[0].way not in _FIRST)))
 
 
 def _steps(machine: Machine) -> Iterator[Step]:
@@ -61,7 +67,7 @@ def _widened(known: Duration | None, other: Duration | None) -> Duration | None:
 
 
 def _timed(study: Study) -> Iterator[tuple[Move, Duration | None]]:
-    strokes = list(_strokes(study))
+    strokes = [*_strokes(study), *_shifts(study)]
     whole = ((begin, end) for _, begin, end in strokes if end is not None)
     rows = greatest_separations(study.trace.graph, both_ways(whole))
     for move, begin, end in strokes:
@@ -90,7 +96,20 @@ def _strokes(study: Study) -> Iterator[tuple[Move, int, int | None]]:
                 yield _move(stroke, visit, None, visit), stroke.shift.by.event, None if stroke.cut else stroke.end
 
 
+def _shifts(study: Study) -> Iterator[tuple[Move, int, int | None]]:
+    """Of valves that move no cylinder."""
+    machine = study.machine
+    moving = {valve for cylinder in machine.cylinders.values() for valve in valves_of(cylinder)}
+    for shift in study.trace.shifts:
+        if shift.valve not in moving:
+            step, by = shift.by.origin.step, shift.by
+            way = way_of(machine.valves[shift.valve], shift.to)
+            move = Move(step, shift.valve, way, by.coil, by.energized, None, True, step)
+            yield move, by.event, None if shift.called_off else shift.reached
+
+
 def _move(stroke: Stroke, visit: Visit, edge: Edge | None, waiting: Visit) -> Move:
     by = stroke.shift.by
     sensor, on = (None, True) if edge is None else (edge.sensor, edge.value)
-    return Move(visit.step.name, stroke.cylinder, stroke.out, by.coil, by.energized, sensor, on, waiting.step.name)
+    way = "out" if stroke.out else "in"
+    return Move(visit.step.name, stroke.cylinder, way, by.coil, by.energized, sensor, on, waiting.step.name)

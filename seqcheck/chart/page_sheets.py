@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
 
-from seqcheck.chart.model import HIGH, LOW, MIDDLE, Chart, Row, RowKind
+from seqcheck.chart.model import HIGH, LOW, MIDDLE, TAP, Chart, Row, RowKind
 from seqcheck.chart.page_markup import NOTHING, Markup, element, lines, name, text
 from seqcheck.chart.svg import svg
 from seqcheck.chart.view import AXIS_HEIGHT, View, begins_block, framed, views_side_by_side
@@ -28,6 +28,7 @@ _STANDS = {
     RowKind.CYLINDER: {LOW: "retracted", MIDDLE: "half way", HIGH: "extended"},
     RowKind.VALVE: {LOW: "at b", MIDDLE: "at centre", HIGH: "at a"},
 }
+_TAP_STANDS = {LOW: "closed", HIGH: "open"}
 
 
 def chart_sheets(charts: Sequence[Chart], imprint: str) -> Markup:
@@ -51,7 +52,7 @@ def _sheets(chart: Chart, imprint: str) -> Iterator[Markup]:
         begin, end = format_duration(view.begin_us), format_duration(view.end_us)
         captions = (f"{chart.title}, {begin} to {end}", imprint, f"sheet {number} of {len(views)}")
         caption = element("figcaption", *(element("span", text(one)) for one in captions))
-        yield element("figure", caption, Markup(svg(chart, view)), _at_rest(chart, view), class_="sheet")
+        yield element("figure", caption, Markup(svg(chart, view)), at_rest(chart, view), class_="sheet")
 
 
 def _reading(chart: Chart) -> Iterator[str]:
@@ -61,6 +62,8 @@ def _reading(chart: Chart) -> Iterator[str]:
         yield "Lines are drawn at typical times; what is shaded reaches from the earliest to the latest."
     if chart.path:
         yield "The broad line below them is the critical path."
+    if any(row.decisions for row in chart.rows):
+        yield "A lozenge is a choice, with the number of its branch."
     if any(mark.time_us is not None for mark in chart.marks):
         yield "Numbered marks are the findings above."
 
@@ -105,7 +108,7 @@ def _changes(row: Row, part: View) -> bool:
     return any(part.begin_us <= edge.typical_us <= part.end_us for edge in row.edges)
 
 
-def _at_rest(chart: Chart, view: View) -> Markup:
+def at_rest(chart: Chart, view: View) -> Markup:
     """How the rows stand that do not change in this part of time; NOTHING where all rows are drawn."""
     found: dict[str, list[str]] = {}
     for row in chart.rows:
@@ -113,7 +116,8 @@ def _at_rest(chart: Chart, view: View) -> Markup:
             level = next(
                 (edge.level for edge in reversed(row.edges) if edge.typical_us <= view.begin_us), row.begin_level
             )
-            words = _STANDS.get(row.kind, _ON_OR_OFF).get(level, "between its ends")
+            named = _TAP_STANDS if row.ends == TAP else _STANDS.get(row.kind, _ON_OR_OFF)
+            words = named.get(level, "between its ends")
             found.setdefault(words, []).append(row.name)
     shown = view.rows is not None and len(view.rows) == sum(row.kind is not RowKind.STEPS for row in chart.rows)
     if shown or not found:

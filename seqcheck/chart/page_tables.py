@@ -37,6 +37,21 @@ def cycles_table(report: Report) -> Markup:
     return table((names("sequence"), *_SPAN), rows) if rows else NOTHING
 
 
+def choices_table(report: Report) -> Markup:
+    """The cycles in which a choice takes one of its branches."""
+    decimals = decimals_of([time for one in report.choices for time in (one.duration.least, one.duration.greatest)])
+    rows = [
+        [
+            name(one.sequence),
+            text(one.way),
+            *map(text, milliseconds((one.duration.least, one.duration.greatest), decimals)),
+        ]
+        for one in report.choices
+    ]
+    columns = (names("sequence"), words("where the choice takes"), figures("least"), figures("greatest"))
+    return table(columns, rows) if rows else NOTHING
+
+
 def steps_table(report: Report, machine: Machine) -> Markup:
     """Each step from the read that enters it to the read that leaves it; one that no run leaves has no times."""
     spans = dict(zip((step for step, _ in report.steps), figures_of([time for _, time in report.steps]), strict=True))

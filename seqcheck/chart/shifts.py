@@ -12,7 +12,8 @@ from seqcheck.chart.changes import Change, words
 from seqcheck.chart.model import HIGH, LOW, MIDDLE, TAP
 from seqcheck.checks.study import Study
 from seqcheck.engine.trace import Shift
-from seqcheck.machine.devices import Position, Valve, ValveReturn
+from seqcheck.machine.conditions import TermKind, terms_of
+from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve, ValveReturn
 
 _LEVELS = {Position.A: HIGH, Position.B: LOW, Position.CENTRE: MIDDLE}
 _CLOSED, _OPEN = TAP
@@ -26,6 +27,21 @@ def level_of(valve: Valve, position: Position) -> int:
     """A 2/2 valve that is normally open is high at ``b``."""
     level = _LEVELS[position]
     return HIGH - level if _is_tap(valve) and valve.normally_open else level
+
+
+def way_of(valve: Valve, position: Position) -> str:
+    """What a valve does that goes there."""
+    if not _is_tap(valve):
+        return f"to {position.value}"
+    return "opens" if level_of(valve, position) == HIGH else "closes"
+
+
+def valves_of(cylinder: Cylinder) -> set[str]:
+    """Those whose positions drive it."""
+    if isinstance(cylinder.drive, OnValve):
+        return {cylinder.drive.valve}
+    conditions = (cylinder.drive.out, cylinder.drive.back)
+    return {term.subject for one in conditions for term in terms_of(one) if term.kind is TermKind.VALVE}
 
 
 def shift_changes(study: Study, valve: Valve) -> Iterator[Change]:

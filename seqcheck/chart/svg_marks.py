@@ -91,7 +91,9 @@ def draw_marks(canvas: Canvas, chart: Chart, frame: Frame) -> None:
         # On the upper border of the boxes of steps, so that their names stay readable; clear of the sign of a choice.
         y = spot.top + (4 if spot.row.kind is not RowKind.STEPS else -9 if beside else -2)
         with canvas.group(f"finding {mark.number}: {finding_in_a_line(mark)}", data_finding=str(mark.number)):
-            canvas.line(x, spot.top + (BOX_HEIGHT if beside else 0), x, spot.top + spot.height, stroke=INK, stroke_width=2.2)
+            canvas.line(
+                x, spot.top + (BOX_HEIGHT if beside else 0), x, spot.top + spot.height, stroke=INK, stroke_width=2.2
+            )
             at = x
             while any(
                 abs(at - other_x) < 2.2 * _RADIUS and abs(y - other_y) < 2 * _RADIUS for other_x, other_y in taken

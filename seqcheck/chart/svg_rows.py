@@ -18,7 +18,6 @@ from seqcheck.chart.wording import OPEN, told
 INK, SHADE, SHADE_END, FAINT = "#111111", "#9fb0c2", "#3d4a57", "#a0a0a0"
 _ARROW = 13
 _ROOM_FOR_OPEN = 52
-_ENDS_SIZE = 9
 
 
 def draw_spans(canvas: Canvas, frame: Frame, spot: Spot) -> None:
@@ -126,10 +125,10 @@ def draw_ends(canvas: Canvas, frame: Frame, spot: Spot) -> None:
     )
     if spot.row.kind.sloped and not opens:
         levels = dict(zip((LOW, HIGH), spot.row.ends, strict=True))
-        if spot.row.kind is RowKind.VALVE and _has_centre(spot.row):
+        if spot.row.kind is RowKind.VALVE and _has_centre(spot.row) and spot.low - spot.high >= 2 * SMALL_SIZE:
             levels[MIDDLE] = "centre"
         for level, words in levels.items():
-            canvas.text(frame.right + 4, spot.at(level) + 3, words, _ENDS_SIZE, fill=INK)
+            canvas.text(frame.right + 4, spot.at(level) + 3, words, SMALL_SIZE, fill=INK)
 
 
 def _has_centre(row: Row) -> bool:

@@ -14,6 +14,7 @@ from seqcheck.chart.view import (
     BAR_HEIGHT,
     BOX_HEIGHT,
     SLANT_RISE,
+    SMALL_SIZE,
     STEP_SIZE,
     Frame,
     Spot,
@@ -110,7 +111,7 @@ def _decision(canvas: Canvas, frame: Frame, spot: Spot, decision: Decision) -> N
         around = [(x - LOZENGE, y), (x, y - LOZENGE), (x + LOZENGE, y), (x, y + LOZENGE)]
         canvas.polygon(around, fill="#ffffff", stroke=INK, stroke_width=1.4)
         number = "-" if decision.branch is None else str(decision.branch)
-        canvas.text(x, y + 3.5, number, 10, text_anchor="middle", font_weight="bold", fill=INK)
+        canvas.text(x, y + 4, number, SMALL_SIZE, text_anchor="middle", font_weight="bold", fill=INK)
 
 
 def _spans(canvas: Canvas, frame: Frame, spot: Spot, lane: int) -> None:

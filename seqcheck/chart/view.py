@@ -113,11 +113,13 @@ def whole_view(chart: Chart) -> View:
 
 
 def whole_time(chart: Chart) -> tuple[int, int]:
-    """From the earliest time at which anything of the chart can come to the latest; open ones stand at their typical
-    times."""
+    """From the earliest time at which anything of the chart can come to the latest, but not further than the part shown
+    is long: spans that reach beyond are cut. Open ones stand at their typical times."""
     edges = [edge for row in chart.rows for edge in (*row.edges, *edges_of_bands(row.bands))]
     earliest, latest = (edge.drawn_from_us for edge in edges), (edge.drawn_to_us for edge in edges)
-    return min((chart.begin_us, *earliest)), max((chart.end_us, *latest))
+    length = chart.end_us - chart.begin_us
+    begin, end = min((chart.begin_us, *earliest)), max((chart.end_us, *latest))
+    return max(begin, chart.begin_us - length), min(end, chart.end_us + length)
 
 
 def edges_of_bands(bands: Sequence[Band]) -> tuple[Edge, ...]:

@@ -208,7 +208,8 @@ def _why_not(settlement: Settlement, first: int, wishes: Sequence[Wish]) -> str:
         return f"--choice {wish.asked}: a cycle that goes so does not come to the choose in line {line}"
     taken = " and then ".join(str((choice.taken or 0) + 1) for choice in choices)
     if len(choices) < len(wish.branches):
-        return f"--choice {wish.asked}: the choose in line {line} is come to {len(choices)} times in a cycle, not more"
+        often = "once" if len(choices) == 1 else f"{len(choices)} times"
+        return f"--choice {wish.asked}: a cycle that goes so comes to the choose in line {line} {often}, not more often"
     return f"--choice {wish.asked}: no known run goes so; by the machine itself it takes branch {taken}"
 
 
@@ -228,7 +229,7 @@ class _Onward:
         wanted = self._outcomes.pop(0) if self._outcomes else None
         return wanted if wanted in outcomes and wanted is not None else self._prefer(choice, outcomes)
 
-    def cycle_started(self, read: Read) -> None:
+    def round_begins(self, read: Read, sequence: str) -> None:
         if self.player is not None and len(self.player.trace.cycles) > self._cycles:
             self.player.stop()
 

@@ -134,10 +134,11 @@ class _Explorer:
             for outcome in passage.outcomes:
                 if outcome is not passage.outcome:
                     self.waiting.append(Recipe(Way((*_outcomes(path, number), outcome), number), recipe.delays))
-        at = [settlement.trace.times[passage.at] for passage in path.passages]
+        times = settlement.trace.times
+        at = [(times[passage.at], passage.at) for passage in path.passages]
         for number, order in path.orders:
             # The other way round, the play parts from this one where the first of the two is due.
-            parts = max(0, min(number, bisect_right(at, settlement.trace.times[order.first]) - 1))
+            parts = max(0, min(number, bisect_right(at, (times[order.first], order.first)) - 1))
             if recipe.way.fresh <= parts < joined:
                 self._turn(settlement, parts, order)
 

@@ -76,7 +76,54 @@ sequence main {
 }
 """
 
-TEXTS = {"clamp": CLAMP, "question": QUESTION, "hostile": HOSTILE, "mixed": MIXED}
+#: An ideal controller, dwells and a flag: every time can be added up by hand. A spoilt piece is looked at again.
+SORTER = """
+machine "Sorter"
+output K1 %Q0.0 "keep"
+output K2
+signal good %I0.0 from outside
+flag told "clerk knows"
+sequence main {
+    step load { dwell 20 ms }
+    step look { dwell 100 ms }
+    choose {
+        when good { step keep { on K1  dwell 200 ms } }
+        otherwise { step rest { dwell 50 ms }  jump look }
+    }
+    step tell { set told  until clerk.wipe }
+}
+sequence clerk {
+    step idle { until told }
+    step note { on K2  dwell 30 ms }
+    step wipe { reset told  dwell 40 ms }
+}
+"""
+#: The line of its choose.
+SORTING = 10
+
+#: A motor valve that is stopped on its way, a tap that is normally open, and a gate that two valves hold.
+PROCESS = """
+machine "Vessel"
+valve VM "inlet" 2/2 motor { coil M1 to a  coil M2 to b  travel 1 s }
+valve VT "vent" 2/2 spring normally open { coil Y2  on 40 ms  off 60 ms }
+valve V1 3/2 spring { coil Y1  on 20 ms  off 30 ms }
+valve V2 3/2 spring { coil Y3  on 20 ms  off 30 ms }
+cylinder gate out when V1.a and V2.a in when not V1.a and not V2.a {
+    extend 200 ms  retract 150 ms  sensor B1 at retracted  sensor B2 at extended
+}
+signal flow %I0.7 follows VM.open on 300 ms off 100 ms
+sequence main {
+    step crack { on M1  dwell 400 ms }
+    step wait  { dwell 200 ms }
+    step more  { on M1  on Y2  dwell 1.5 s }
+    step shut  { on M2  set Y1  dwell 1.2 s }
+    step out   { set Y3  until B2  within 1 s }
+    step back  { reset Y1  reset Y3  until B1 and not flow  within 1 s }
+}
+never VM.open and not VT.open "the vessel must breathe"
+"""
+
+TEXTS = {"clamp": CLAMP, "question": QUESTION, "hostile": HOSTILE, "mixed": MIXED, "sorter": SORTER, "process": PROCESS}
 EXAMPLES = sorted((Path(__file__).parents[2] / "examples").rglob("*.steps"))
 
 
@@ -113,8 +160,10 @@ def all_edges(chart: Chart) -> Iterator[tuple[Row, Edge]]:
 
 
 def band_edges(row: Row) -> Iterator[Edge]:
+    """Of steps and choices, as they are drawn."""
     for band in row.bands:
         yield from (edge for edge in (band.begin, band.end) if edge is not None)
+    yield from (decision.edge for decision in row.decisions)
 
 
 def times(edge: Edge) -> tuple[int | None, int, int | None]:

@@ -11,7 +11,7 @@ import pytest
 from lxml import etree
 
 from seqcheck.commandline import main
-from tests.chart.charts import CLAMP, MIXED
+from tests.chart.charts import CLAMP, MIXED, SORTER
 
 _FAULTY = Path(__file__).parents[2] / "examples" / "faulty"
 
@@ -74,6 +74,22 @@ def test_options_reach_the_chart(clamp: str, tmp_path: Path) -> None:
     assert main(["chart", "mixed.steps", "--from", "full", "--to", "down", "--output", "m.svg"]) == 0
     steps = {one.get("data-step") for one in etree.parse("m.svg").iter("{*}g")} - {None}
     assert steps == {"main.full", "main.turn", "main.down", "main.show"}
+
+
+def test_choices_go_as_they_are_asked_to(clamp: str, capsys: pytest.CaptureFixture[str]) -> None:
+    Path("sorter.steps").write_text(SORTER, "utf-8")
+    assert main(["chart", "sorter.steps", "--choice", "rest=otherwise,rest=1", "--output", "s.csv"]) == 0
+    rows = list(csv.DictReader(io.StringIO(Path("s.csv").read_text("utf-8"))))
+    told = [row["event"] for row in rows if row["event"].startswith("choice")]
+    assert told == [
+        "choice in line 10: otherwise (branch 2 of 2)",
+        "choice in line 10: when good (branch 1 of 2)",
+        "choice in line 10 finds good on",
+    ]
+    assert main(["chart", "sorter.steps", "--choice", "10=otherwise", "--ascii"]) == 0
+    assert "The way shown: in line 10 otherwise (branch 2 of 2)." in capsys.readouterr().out
+    assert main(["chart", "sorter.steps", "--choice", "10=1,10=9"]) == 2
+    assert "--choice 10=9: the choose in line 10 has the branches 1 to 2 or otherwise" in capsys.readouterr().err
 
 
 def test_date_and_revision_stand_in_the_html(clamp: str) -> None:

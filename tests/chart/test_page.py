@@ -14,11 +14,14 @@ import pytest
 from lxml import etree, html
 
 from seqcheck.arguments import SAFETY as SAFETY_OF_HELP
-from seqcheck.chart.page import SAFETY
 from seqcheck.chart.page_imprint import Imprint
+from seqcheck.chart.page_sheets import at_rest
+from seqcheck.chart.view import View
+from seqcheck.chart.wording import SAFETY
 from seqcheck.machine.findings import Report
 from seqcheck.machine.model import steps_of
 from seqcheck.report.plain import plain
+from tests.chart.charts import PROCESS
 from tests.chart.page_samples import EXAMPLES, HOSTILE, IMPRINT, LARGE, TWO_MOVES, Sample, example, sample
 
 XHTML = "{http://www.w3.org/1999/xhtml}"
@@ -281,3 +284,24 @@ def test_samples_are_what_their_tests_take_them_for() -> None:
     assert large.machine is not None
     assert len(large.machine.cylinders) == 30
     assert len(list(steps_of(large.machine.sequences[0]))) == 60
+
+
+def test_a_choice_has_its_cycle_times_and_its_way() -> None:
+    shown = example("rinse_skid.steps")
+    page = read(shown.page())
+    _, ways, _ = section(page, "times").iterfind(f"{XHTML}table")
+    cells = [[cell.xpath("string()") for cell in row.iterfind(f"{XHTML}td")] for row in ways.iter(f"{XHTML}tr")]
+    assert [row[:2] for row in cells if row] == [["main", one.way] for one in shown.report.choices]
+    assert shown.report.choices
+    about = section(page, "chart").xpath("string()")
+    assert "The way shown: in line 27 otherwise (branch 2 of 2)." in about and "A lozenge is a choice" in about
+
+
+def test_taps_that_rest_are_open_or_closed() -> None:
+    """On sheets that leave out what does not change."""
+    shown = sample(PROCESS)
+    (chart,) = shown.charts
+    names = [row.name for row in chart.rows]
+    part = View(3_400_000, 3_600_000, (names.index("gate"),))
+    words = at_rest(chart, part)
+    assert "<strong>open</strong> <bdi>VT</bdi>" in words and "<strong>closed</strong> <bdi>VM</bdi>" in words

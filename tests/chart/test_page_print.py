@@ -15,7 +15,7 @@ import pypdfium2
 import pytest
 from lxml import etree
 
-from seqcheck.chart.page import SAFETY
+from seqcheck.chart.wording import SAFETY
 from tests.chart.page_browser import Opened, Tab, browser_found, open_browser
 from tests.chart.page_samples import HOSTILE, IMPRINT, LARGE, TWO_MOVES, Sample, example, sample
 
@@ -42,7 +42,13 @@ TEXTS = {
     "hostile": (HOSTILE, "a&b <c> 'd' ]]>.steps"),
     "long names": (TWO_MOVES.replace("gate up", WIDE_NAME).replace("push it", WIDE_NAME), f"{'x' * 120}.steps"),
 }
-EXAMPLES = ("crate_stapler.steps", "tile_press.steps", "faulty/coil_handover.steps", "faulty/stale_signal.steps")
+EXAMPLES = (
+    "crate_stapler.steps",
+    "rinse_skid.steps",
+    "tile_press.steps",
+    "faulty/coil_handover.steps",
+    "faulty/stale_signal.steps",
+)
 
 
 Box = tuple[float, float, float, float]

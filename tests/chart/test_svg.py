@@ -12,19 +12,23 @@ from lxml import etree
 from svgelements import SVG, Rect
 
 from seqcheck.arguments import SAFETY
+from seqcheck.chart.asked import Part
 from seqcheck.chart.canvas import Canvas, escaped, fitted, text_width
 from seqcheck.chart.model import Chart, Edge, RowKind
 from seqcheck.chart.svg import svg
 from seqcheck.chart.svg_rows import cut
 from seqcheck.chart.view import View, views_side_by_side, whole_time, whole_view
-from seqcheck.chart.window import Part
 from seqcheck.chart.wording import span_in_words, told
 from tests.bench.stations import in_a_row
 from tests.chart.charts import (
+    CLAMP,
     EXAMPLES,
     HOSTILE,
     MIXED,
+    PROCESS,
     QUESTION,
+    SORTER,
+    SORTING,
     TEXTS,
     all_edges,
     band_edges,
@@ -282,3 +286,35 @@ def test_text_is_fitted() -> None:
     assert shorter.endswith("…") and text_width(shorter, 12) <= 60
     assert fitted("anything", 1, 12) == ""
     assert text_width("漢字", 10) == 20
+
+
+def test_a_choice_is_a_lozenge_with_its_branch(tmp_path: Path) -> None:
+    drawn = chart(tmp_path, SORTER, Part(choices=("rest=2", "rest=1")))
+    root = parsed(svg(drawn))
+    signs = [one for one in root.iter("{*}g") if one.get("data-choice")]
+    assert [one.findtext("s:text", namespaces=NAMESPACE) for one in signs] == ["2", "1"]
+    assert [one.get("data-typical") for one in signs] == ["120000", "270000"]
+    assert all(one.get("data-choice") == str(SORTING) for one in signs)
+    titles = [one.findtext("s:title", namespaces=NAMESPACE) for one in signs]
+    assert titles[0] == "choice in line 10: otherwise (branch 2 of 2): always 120 ms"
+    assert "choice, with its branch" in "".join(root.itertext())
+    assert "choice, with its branch" not in "".join(parsed(svg(chart(tmp_path, CLAMP))).itertext())
+
+
+def test_the_ends_of_valves_and_pistons_are_named(tmp_path: Path) -> None:
+    root = parsed(svg(chart(tmp_path, PROCESS)))
+    words = [one.text for one in root.iter("{*}text")]
+    assert [words.count(word) for word in ("open", "closed", "a", "b", "in", "out", "centre")] == [2, 2, 2, 2, 1, 2, 0]
+    assert [one.text for one in parsed(svg(chart(tmp_path, MIXED))).iter("{*}text")].count("centre") == 1
+
+
+def test_the_sign_of_a_finding_leaves_that_of_a_choice_clear(tmp_path: Path) -> None:
+    drawn = chart(tmp_path, next(file for file in EXAMPLES if file.stem == "choice_race").read_text("utf-8"))
+    root = parsed(svg(drawn))
+    (finding,) = (one for one in root.iter("{*}g") if one.get("data-finding"))
+    (choice,) = (one for one in root.iter("{*}g") if one.get("data-choice"))
+    circle = finding.find("s:circle", namespaces=NAMESPACE)
+    polygon = choice.find("s:polygon", namespaces=NAMESPACE)
+    assert circle is not None and polygon is not None
+    below = float(circle.get("cy")) + float(circle.get("r"))
+    assert below <= min(float(point.split(",")[1]) for point in polygon.get("points").split())

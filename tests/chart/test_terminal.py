@@ -8,8 +8,8 @@ from pathlib import Path
 import pytest
 from rich.cells import cell_len
 
+from seqcheck.chart.asked import Part
 from seqcheck.chart.terminal import ASCII, FULL, chart_lines
-from seqcheck.chart.window import Part
 from tests.chart.charts import CLAMP, EXAMPLES, HOSTILE, MIXED, QUESTION, TEXTS, chart, chart_of_finding
 
 Golden = Callable[[str, str], None]
@@ -19,7 +19,7 @@ def page(folder: Path, text: str, encoding: str = "utf-8", width: int = 80) -> s
     return "".join(f"{line.text}\n" for line in chart_lines(chart(folder, text), encoding, width))
 
 
-@pytest.mark.parametrize("name", ["clamp", "mixed", "question"])
+@pytest.mark.parametrize("name", ["clamp", "mixed", "process", "question", "sorter"])
 def test_pages(golden: Golden, tmp_path: Path, name: str, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.chdir(tmp_path)
     golden(f"{name}.txt", page(Path(), TEXTS[name]))

@@ -14,9 +14,9 @@ import pytest
 from vcd.reader import TokenKind, tokenize
 from vcdvcd import VCDVCD
 
-from seqcheck.chart.model import HIGH, MIDDLE, Chart, Row, RowKind
+from seqcheck.chart.asked import Part
+from seqcheck.chart.model import HIGH, LOW, MIDDLE, Chart, Row, RowKind
 from seqcheck.chart.waveform import vcd
-from seqcheck.chart.window import Part
 from tests.bench.stations import in_a_row
 from tests.chart.charts import HOSTILE, MIXED, TEXTS, all_edges, chart, chart_of_finding
 
@@ -120,7 +120,7 @@ def _device_at(row: Row, time: int) -> str | float:
     later = row.edges[len(past)].level if len(past) < len(row.edges) else row.end_level
     if past and later != level:
         return "xx"
-    return {HIGH: "10", MIDDLE: "01"}.get(level, "00")
+    return {HIGH: "10", MIDDLE: "01", LOW: "00"}.get(level, "xx")
 
 
 @pytest.mark.parametrize("name", sorted(TEXTS))
