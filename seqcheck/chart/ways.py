@@ -229,6 +229,9 @@ class _Onward:
         wanted = self._outcomes.pop(0) if self._outcomes else None
         return wanted if wanted in outcomes and wanted is not None else self._prefer(choice, outcomes)
 
+    def step_comes_again(self, read: Read, step: str) -> None:
+        """Of no account here."""
+
     def round_begins(self, read: Read, sequence: str) -> None:
         if self.player is not None and len(self.player.trace.cycles) > self._cycles:
             self.player.stop()

@@ -23,7 +23,7 @@ def shown_runs(timed: TimedStates) -> tuple[StateRun, ...]:
 
 def _name(state: State) -> str:
     if state.choose is None:
-        return f"{state.sequence} begins"
+        return f"{state.step} entered" if state.step is not None else f"{state.sequence} begins"
     behind = f" behind {state.after}" if state.after else ""
     return f"choose in line {state.choose.place.line}{behind}"
 

@@ -22,7 +22,7 @@ from seqcheck.engine.states import TimedStates, waits_for_outside
 from seqcheck.engine.trace import Read
 from seqcheck.machine.findings import ChoiceTime, Duration, PathPart
 from seqcheck.machine.model import Machine, items_of, steps_of
-from seqcheck.machine.steps import Choose
+from seqcheck.machine.steps import Choose, Step
 from seqcheck.machine.time import NO_TIME, Span
 
 _Interval = tuple[int, int]
@@ -101,7 +101,7 @@ def cycle_spells(study: Study, name: str, settled: bool = False) -> list[Spell]:
     spells = []
     rounds = study.trace.rounds[name]
     for read, following in zip(rounds, (*rounds[1:], None), strict=True):
-        if study.time(read.event) < since:
+        if following is not None and study.time(following.event) <= since:
             continue
         begin = _begin(study, read, name)
         first = at.get(read.event) if begin == read.event else None
@@ -218,10 +218,13 @@ def cycles_in(study: Study, sequence: str, settled: bool = False) -> Iterator[_I
 
 def _begin(study: Study, read: Read, sequence: str) -> int:
     """Entering the first step, or leaving it where it waits for a signal from outside."""
-    entered = [visit for visit in read.entered if visit.step.name.split(".", 1)[0] == sequence]
-    if len(entered) != 1 or entered[0].left is None:
-        return read.event
-    return entered[0].left.event if waits_for_outside(study.machine, entered[0].step) else read.event
+    items = next(one.items for one in study.machine.sequences if one.name == sequence)
+    first = items[0] if items else None
+    if isinstance(first, Step) and waits_for_outside(study.machine, first):
+        for visit in read.entered:
+            if visit.step is first and visit.left is not None:
+                return visit.left.event
+    return read.event
 
 
 def _settled_since(study: Study) -> int:

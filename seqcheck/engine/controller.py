@@ -49,6 +49,9 @@ class Guide(Protocol):
     def round_begins(self, read: Read, sequence: str) -> None:
         """A sequence begins anew at this read, of which nothing has been done yet."""
 
+    def step_comes_again(self, read: Read, step: str) -> None:
+        """A step to which a jump or a watchdog leads is entered at this read."""
+
 
 class Controller:
     def __init__(
@@ -169,7 +172,6 @@ class Controller:
         if isinstance(wait, Visit):
             read.left.append(wait)
             self._commands.leave(wait, read)
-            self._know_later((TermKind.STEP, wait.step.name, None), False, read)
         elif isinstance(wait, Choice):
             wait.taken = None if expired else wait.taken
             read.chosen.append(wait)
@@ -203,12 +205,13 @@ class Controller:
 
     def enter(self, thread: Thread, enter: Enter, read: Read) -> Visit:
         step = enter.step
+        if step.name in thread.program.heads:
+            self._guide.step_comes_again(read, step.name)
         visit = Visit(entered=read, alternatives=enter.alternatives, cycle=thread.course.cycle, step=step)
         self._trace.visits.append(visit)
         read.entered.append(visit)
         self._exits.begin(visit)
         self._await_signals(visit)
-        self._know_later((TermKind.STEP, step.name, None), True, read)
         return visit
 
     def choose(self, thread: Thread, select: Select, read: Read) -> Choice:
@@ -315,7 +318,14 @@ class Controller:
             self._timeline.at(read.floor, Order.SEEN, learn)
 
     def _finish_read(self, read: Read) -> None:
-        """Settle what is commanded after this read, and write the changes."""
+        """Settle which steps are active and what is commanded after this read, and write the changes."""
+        left, entered = ([visit.step.name for visit in visits] for visits in (read.left, read.entered))
+        for name in left:
+            if name not in entered:
+                self._know_later((TermKind.STEP, name, None), False, read)
+        for name in entered:
+            if name not in left:
+                self._know_later((TermKind.STEP, name, None), True, read)
         for visit in read.entered:
             for origin, target in self._commands.enter(visit):
                 self._end_pulse_later(origin, target)

@@ -246,6 +246,9 @@ class _Follower:
     def round_begins(self, read: Read, sequence: str) -> None:
         self._count()
 
+    def step_comes_again(self, read: Read, step: str) -> None:
+        self._count()
+
     def _count(self) -> None:
         self._passages -= 1
         if self._passages < 0 and self.player is not None:

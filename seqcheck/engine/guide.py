@@ -21,7 +21,7 @@ from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.machine.model import Machine, items_of
-from seqcheck.machine.steps import Choose
+from seqcheck.machine.steps import Choose, Jump, Step
 
 Signature = tuple[object, ...]
 
@@ -38,7 +38,9 @@ _LATE = 8
 
 def _states_of_one_round(machine: Machine) -> int:
     items = [item for sequence in machine.sequences for item in items_of(sequence.items)]
-    return len(machine.sequences) + sum(isinstance(item, Choose) for item in items)
+    return len(machine.sequences) + sum(
+        isinstance(item, Choose | Jump) or (isinstance(item, Step) and item.watchdog is not None) for item in items
+    )
 
 
 def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
@@ -48,7 +50,8 @@ def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
 @dataclass(slots=True, eq=False)
 class Passage:
     """A state as one play has come through it, at the read event ``at``. ``choice`` and ``outcomes`` where it is one
-    that could come out otherwise, ``outcome`` as it did; else ``sequence``: which begins anew."""
+    that could come out otherwise, ``outcome`` as it did; else ``sequence``: which begins anew, or ``step``: which a
+    jump or a watchdog may lead to."""
 
     at: int
     signature: Signature
@@ -56,6 +59,7 @@ class Passage:
     choice: Choice | None = None
     outcomes: tuple[Outcome, ...] = ()
     outcome: Outcome | None = None
+    step: str | None = None
 
 
 @dataclass(slots=True)
@@ -115,6 +119,9 @@ class Scout:
 
     def round_begins(self, read: Read, sequence: str) -> None:
         self._pass(Passage(read.event, (), sequence), ("round", sequence))
+
+    def step_comes_again(self, read: Read, step: str) -> None:
+        self._pass(Passage(read.event, (), step=step), ("step", step))
 
     def _pass(self, passage: Passage, where: tuple[object, ...]) -> None:
         path, player = self.path, self.player

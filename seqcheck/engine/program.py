@@ -10,6 +10,7 @@ from collections.abc import Collection
 from dataclasses import dataclass, field
 
 from seqcheck.engine.conditions import Alternatives, alternatives_of
+from seqcheck.machine.model import items_of
 from seqcheck.machine.places import Place
 from seqcheck.machine.steps import Choose, Item, Jump, Repeat, Sequence, Step, Together
 
@@ -88,13 +89,15 @@ Instruction = Enter | Count | Again | Fork | BranchEnd | Select | Go | Last
 class Program:
     """``loops``: for each instruction the loops around it, by the addresses of their beginnings, outer ones first.
     ``steps``: the address of each step by its qualified name. ``first``: the step that begins a cycle whenever it is
-    entered by a jump; None where the sequence begins with something else."""
+    entered by a jump; None where the sequence begins with something else. ``heads``: the steps to which jumps and
+    watchdogs lead."""
 
     name: str
     code: list[Instruction] = field(default_factory=list)
     loops: list[tuple[int, ...]] = field(default_factory=list)
     steps: dict[str, int] = field(default_factory=dict)
     first: str | None = None
+    heads: set[str] = field(default_factory=set)
 
     def counts_after_jump(self, at: int, counts: tuple[int, ...], to: int) -> tuple[int, ...]:
         """The rounds left of the loops around ``to``: those that are not left keep theirs."""
@@ -153,6 +156,9 @@ def compile_sequence(sequence: Sequence) -> Program:
     for address, instruction in enumerate(program.code):
         if isinstance(instruction, Go) and instruction.step is not None:
             program.code[address] = Go(program.steps[instruction.step], instruction.step)
+            program.heads.add(instruction.step)
+    watchdogs = (item.watchdog for item in items_of(sequence.items) if isinstance(item, Step | Choose))
+    program.heads |= {one.target for one in watchdogs if one is not None and one.target is not None}
     if sequence.items and isinstance(sequence.items[0], Step):
         program.first = sequence.items[0].name
     return program

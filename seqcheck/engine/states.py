@@ -23,12 +23,14 @@ from seqcheck.machine.steps import Choose, Step
 
 @dataclass(frozen=True, slots=True)
 class State:
-    """``sequence``: which begins anew there; else a ``choose``, behind step ``after``."""
+    """``sequence``: which begins anew there; or a ``choose``, behind step ``after``; or a ``step`` to which a jump or a
+    watchdog may lead."""
 
     number: int
     sequence: str | None
     choose: Choose | None
     after: str | None
+    step: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,7 +75,7 @@ def waits_for_outside(machine: Machine, step: Step) -> bool:
 def _state(number: int, passage: Passage) -> State:
     choice = passage.choice
     if choice is None:
-        return State(number, passage.sequence, None, None)
+        return State(number, passage.sequence, None, None, passage.step)
     return State(number, None, choice.choose, choice.after)
 
 
