@@ -100,7 +100,8 @@ class Timeline:
 
     @property
     def pending(self) -> list[int]:
-        return sorted(self._actions)
+        """What is still to come. (Behind an event that has come something may be due at that very instant.)"""
+        return sorted(number for number in self._actions if number not in self.happened)
 
     @property
     def next_time(self) -> int:
