@@ -1,7 +1,7 @@
 """Reports on machines of the whole language held against runs of the player.
 
-Takes texts; gives what does not agree, as values. All that is known of the examination is its report. A machine that
-is refused because it cannot be checked yet is left out, and counted by whoever asks.
+Takes texts; gives what does not agree, as values. All that is known of the examination is its report. A machine of
+which it says that not every run was played is left out, and counted by whoever asks.
 
 Bounds are asked of runs in which nothing diverts the machine, from the cycle on in which they are taken to have
 settled (``SETTLED``), and of sequences that run once. A broken rule, or a watchdog whose text says how to go on,
@@ -32,7 +32,6 @@ LIMIT = 60_000_000
 
 CYCLES = 5
 SETTLED = 2
-REFUSED = "cannot be checked yet"
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,9 +49,9 @@ class Examined:
     report: Report
 
     @property
-    def refused(self) -> bool:
-        """The language is known, but not all of it is checked yet."""
-        return any(REFUSED in problem.message for problem in self.report.problems)
+    def whole(self) -> bool:
+        """Every run was played; else the report says of which it speaks."""
+        return "not-settled" not in self.kinds
 
     @property
     def kinds(self) -> frozenset[str]:
@@ -86,11 +85,17 @@ def disagreements(examined: Examined, runs: dict[str, Run]) -> Iterator[Disagree
     diverted = runs[names[0]].first_diversion is not None
     for name in names[:1] if diverted else names:
         yield from unforeseen(examined, name, runs[name])
-        if runs[name].first_diversion is None:
+        if runs[name].first_diversion is None and not _stale_followers(examined):
             yield from beyond_bounds(examined, name, runs[name])
             yield from worse_than_told(examined, name, runs[name])
     if not diverted:
         yield from untold_races(examined, runs)
+
+
+def _stale_followers(examined: Examined) -> bool:
+    """A step may go on with a following signal as it was before: no incident to the player, but it diverts."""
+    signals = examined.machine.signals
+    return any(one.kind == "stale-signal" and one.subject in signals for one in examined.report.findings)
 
 
 # --- bounds ---

@@ -1,7 +1,7 @@
 """The reports on random machines of the whole language against the second player.
 
 A few hundred machines as it stands, the same ones each time; ``ORACLE_MACHINES=2000`` in the environment asks for more.
-How many are left out because they cannot be checked yet is told as the reason of a skip (``-rs``).
+Those of which the report says that not every run was played are left out; they are few.
 """
 
 from __future__ import annotations
@@ -26,17 +26,16 @@ pytestmark = pytest.mark.slow
 
 @pytest.mark.parametrize("first", range(0, MACHINES, AT_ONCE))
 def test_reports_agree_with_the_player(first: int) -> None:
-    refused = 0
+    left_out = 0
     for seed in range(first, first + AT_ONCE):
         text = whole_text(seed)
         examined = examine(text)
-        if examined.refused:
-            refused += 1
+        if not examined.whole:
+            left_out += 1
             continue
         assert not examined.report.problems, "\n".join([text, *map(str, examined.report.problems)])
         if "endless-loop" in examined.kinds:
             continue
         found = list(disagreements(examined, runs_of(examined.machine, seed, RUNS)))
         assert not found, "\n".join([f"machine {seed}", text, *map(str, found[:5])])
-    if refused:
-        pytest.skip(f"{refused} of {AT_ONCE} machines cannot be checked yet, the others agree")
+    assert left_out <= AT_ONCE // 4
