@@ -168,14 +168,12 @@ class Study:
         return self._strokes_by_event.get(event, [])
 
     def can_be_turned_before(self, cylinder: str, end: int) -> bool:
-        """Whether some runs turn a stroke round, or stop it, before it ends as the played one does at this event."""
-        return any(
-            stroke.cylinder == cylinder
-            and stroke.end == end
-            and stroke.away is not None
-            and greatest_separation(self.trace.graph, stroke.away.reached, end) > 0
-            for stroke in self.strokes_through(end)
-        )
+        """Whether some runs turn a stroke right round before it ends as the played one does at this event."""
+        for stroke in self.strokes_through(end):
+            following = self.trace.strokes_of[cylinder][stroke.number + 1 : stroke.number + 2]
+            if stroke.end == end and stroke.away is not None and following and following[0].shift is stroke.away:
+                return greatest_separation(self.trace.graph, stroke.away.reached, end) > 0
+        return False
 
     @cached_property
     def _seen_edges(self) -> dict[str, list[Edge]]:

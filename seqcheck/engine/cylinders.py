@@ -214,7 +214,7 @@ class Cylinders:
         self._trace.strokes.append(stroke)
         self._trace.strokes_of.setdefault(name, []).append(stroke)
         self._leave_end(piston, stroke)
-        piston.moving = stroke.leaves is None
+        piston.moving = stroke.leaves is None or piston.stood != Region.exactly(0 if out else piston.last)
         stroke.marks = self._plan(piston, stroke)
         for index, event in stroke.marks:
             self._timeline.at(event, Order.MARK, partial(self._pass, piston, index, event))
