@@ -7,6 +7,7 @@ from collections.abc import Iterator, Sequence
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.crossings import Spell, crossings
+from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.spells_of import whole_spells
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
@@ -57,6 +58,29 @@ def _from_one_to_the_other(study: Study, rule: PathLimit) -> list[Spell]:
     return spells
 
 
+def _never_comes(study: Study) -> Iterator[Sight]:
+    """The one condition comes to hold and the other never does again: the play has ended, or goes round without."""
+    trace, around = study.trace, study.settlement.round
+    if trace.finished:
+        last = max(trace.happened, key=study.time)
+        until = study.time(last)
+    elif around is not None:
+        until, last = (
+            study.time(study.settlement.path.passages[around[0]].at),
+            study.settlement.path.passages[around[1]].at,
+        )
+    else:
+        return
+    for rule in study.machine.rules:
+        if isinstance(rule, PathLimit):
+            for spell in _spells(study, rule):
+                if spell.end is None and study.time(spell.begin) <= until:
+                    run = narrate_typical(study, spell.begin, last)
+                    message = f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
+                    yield Sight(rule.text, None, rule.place, message, run, at=last)
+                    break
+
+
 def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
     """Where no play shows all of it in one: added up along the ways through the state graph."""
     rules = [rule for rule in studies[0].machine.rules if isinstance(rule, CycleLimit | PathLimit)]
@@ -78,5 +102,6 @@ CHECK = Check(
     Severity.ERROR,
     "a cycle or a way takes longer, or shorter, than it may",
     _obligations,
+    _never_comes,
     omissions=_over_several_runs,
 )

@@ -21,6 +21,7 @@ COMMANDS = {
     "check": "find what can go wrong",
     "times": "cycle time, each step's times, the critical path",
     "margins": "how far each thing is from breaking, tightest first",
+    "graph": "the states that a machine comes to, and how long the runs between them take",
     "chart": "the timing chart, on the terminal, to print or to open in a browser",
     "compare": "what a change did to findings, margins and times",
     "explain": "what a kind of finding means, and how it is mended",

@@ -27,6 +27,12 @@ def show(lines: Sequence[Line]) -> str | None:
     return _trouble(lambda: write_lines(lines, sys.stdout))
 
 
+def show_beside(lines: Sequence[Line]) -> None:
+    """A page for people on standard error, if that takes any: standard output is for a program."""
+    with contextlib.suppress(OSError):
+        write_lines(lines, sys.stderr)
+
+
 def send(text: str) -> str | None:
     """A text for programs on standard output."""
     return _trouble(lambda: write_text(text, sys.stdout))

@@ -1,4 +1,4 @@
-"""The page of ``graph``: the states that a machine comes to, and the runs between them.
+"""The page of ``graph``: the states that a machine comes to, the runs between them, and what cycles take over them.
 
 Takes one ``Report`` and the encoding of what it is written to; gives lines of an 80-column page. An unreadable report
 shows its problems, as ``check`` does.
@@ -10,8 +10,11 @@ from seqcheck.machine.findings import Report
 from seqcheck.report.amounts import counted, decimals_of, milliseconds
 from seqcheck.report.layout import BLANK, Column, Line, Tone, paragraph, table
 from seqcheck.report.plain import plain_report
-from seqcheck.report.summary import proved_under_lines, title
+from seqcheck.report.summary import is_whole, title
+from seqcheck.report.tables import closing, cycle_sections
 from seqcheck.report.text import report_lines
+
+_SIDE_BY_SIDE = "below 0: states of two sequences, of which either may come first"
 
 
 def state_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
@@ -19,17 +22,23 @@ def state_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
     if shown.problems:
         return report_lines(shown, encoding)
     heading = f"{title(shown)}: {counted(len(shown.states), 'state')}, {counted(len(shown.runs), 'run')}"
+    times = [one.duration for one in (*shown.runs, *shown.choices)] + [time for _, time in shown.cycles]
     return (
-        *paragraph(heading, hanging=4, tone=Tone.TITLE),
+        *paragraph(heading if is_whole(shown) else f"{heading}, and not all that there are", 0, 4, Tone.TITLE),
         BLANK,
         Line("States", Tone.TITLE),
         *table((Column("state", right=True), Column("where")), [(str(one.number), one.name) for one in shown.states]),
         BLANK,
-        Line("Runs from state to state (ms)", Tone.TITLE),
+        *paragraph(_runs_title(shown), hanging=2, tone=Tone.TITLE),
         *_runs(shown),
-        BLANK,
-        *proved_under_lines(shown),
+        *cycle_sections(shown),
+        *closing(shown, any(time.greatest is None for time in times)),
     )
+
+
+def _runs_title(report: Report) -> str:
+    parted = any(run.duration.least < 0 for run in report.runs)
+    return f"Runs from state to state (ms{f'; {_SIDE_BY_SIDE}' if parted else ''})"
 
 
 def _runs(report: Report) -> tuple[Line, ...]:

@@ -12,6 +12,9 @@ from seqcheck.machine.findings import Handover, Margin, Report, Severity
 from seqcheck.report.amounts import counted, spelled_range
 from seqcheck.report.layout import Line, Tone, labelled, paragraph
 
+#: How the assumption begins that says that not every run was played.
+_NOT_WHOLE = "not every run was played"
+
 
 def title(report: Report) -> str:
     """``a.steps: Crate stapler``."""
@@ -39,6 +42,11 @@ def proved_under_lines(report: Report) -> tuple[Line, ...]:
     """Where the times came from and what was assumed, in one run of text."""
     times = f"times from {', '.join(report.sheets)}" if report.sheets else "times from the text alone"
     return paragraph(f"Proved under: {'; '.join((times, *report.assumptions))}", indent=2, hanging=2)
+
+
+def is_whole(report: Report) -> bool:
+    """Whether every run was played, or stands for others that were."""
+    return not any(assumption.startswith(_NOT_WHOLE) for assumption in report.assumptions)
 
 
 def verdict(report: Report) -> str:

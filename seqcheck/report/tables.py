@@ -10,7 +10,7 @@ from seqcheck.machine.findings import ChoiceTime, Duration, Handover, Margin, Re
 from seqcheck.report.amounts import OPEN, counted, decimals_of, milliseconds
 from seqcheck.report.layout import BLANK, Column, Line, Tone, labelled, paragraph, table
 from seqcheck.report.plain import plain_report
-from seqcheck.report.summary import accepted_margins, proved_under_lines, title
+from seqcheck.report.summary import accepted_margins, is_whole, proved_under_lines, title
 from seqcheck.report.text import report_lines
 
 
@@ -21,11 +21,10 @@ def times_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
         return report_lines(shown, encoding)
     return (
         *_heading(shown),
-        *_section("Cycle times (ms)", _durations("sequence", shown.cycles)),
-        *(_section("Cycle times by choice (ms)", _choices(shown.choices)) if shown.choices else ()),
+        *cycle_sections(shown),
         *_section("Step times (ms)", _durations("step", shown.steps)),
         *_section("Critical path: what makes the longest cycle (ms)", _critical_path(shown)),
-        *_closing(shown, any(time.greatest is None for _, time in (*shown.cycles, *shown.steps))),
+        *closing(shown, any(time.greatest is None for _, time in (*shown.cycles, *shown.steps))),
     )
 
 
@@ -38,7 +37,15 @@ def margins_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
         *_heading(shown),
         *_section("Margins, tightest first (ms; below 0: broken by so much)", _margins(shown)),
         *_section("Handovers from coil to opposed coil (ms)", _handovers(shown.handovers)),
-        *_closing(shown, any(margin.margin_us is None for margin in shown.margins)),
+        *closing(shown, any(margin.margin_us is None for margin in shown.margins)),
+    )
+
+
+def cycle_sections(report: Report) -> tuple[Line, ...]:
+    """How long cycles take, and how long with each branch that a choice can take, if there is one."""
+    return (
+        *_section("Cycle times (ms)", _durations("sequence", report.cycles)),
+        *(_section("Cycle times by choice (ms)", _choices(report.choices)) if report.choices else ()),
     )
 
 
@@ -50,9 +57,12 @@ def _section(title: str, lines: tuple[Line, ...]) -> tuple[Line, ...]:
     return (BLANK, Line(title, Tone.TITLE), *(lines or (Line("  none"),)))
 
 
-def _closing(report: Report, has_open: bool) -> tuple[Line, ...]:
-    """What the figures rest on. They hold for runs in which nothing that was found comes about."""
+def closing(report: Report, has_open: bool) -> tuple[Line, ...]:
+    """What the figures rest on. They hold for runs in which nothing that was found comes about, and, where the machine
+    comes to ever new states, only as far as it was played."""
     rows = [(OPEN, "nothing limits it but signals from outside")] if has_open else []
+    if not is_whole(report):
+        rows.append(("But", "not every run was played: what was not may take other times; see seqcheck check"))
     if found := [finding for finding in report.findings if finding.happens]:
         accepted = sum(finding.accepted is not None for finding in found)
         how = f" ({accepted} accepted)" if accepted else ""

@@ -19,7 +19,7 @@ from seqcheck.language.source import Source
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import OutsideSignal
 from seqcheck.machine.findings import Duration, Finding, Report
-from seqcheck.machine.model import Machine, items_of
+from seqcheck.machine.model import Machine, items_of, steps_of
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit
 from seqcheck.machine.steps import Choose
 from seqcheck.pipeline import examine_source
@@ -110,18 +110,30 @@ def beyond_bounds(examined: Examined, name: str, run: Run) -> Iterator[Disagreem
         if visit.left is not None and visit.step in steps and settled:
             yield from _outside(f"step {visit.step}", name, visit.left - visit.entered, steps[visit.step])
     for sequence, bounds in examined.report.cycles:
-        for time in _cycle_times(run, sequence, sequence in once):
+        for time in _cycle_times(examined.machine, run, sequence, sequence in once):
             yield from _outside(f"cycle of {sequence}", name, time, bounds)
 
 
-def _cycle_times(run: Run, sequence: str, once: bool) -> list[int]:
+def _cycle_times(machine: Machine, run: Run, sequence: str, once: bool) -> list[int]:
     """Of a sequence that runs once: from its start to its end, if it has come to that."""
     if not once:
         return [cycle.end - cycle.begin for cycle in run.cycles[sequence][SETTLED:]]
     visits = [visit for visit in run.visits if visit.step.startswith(f"{sequence}.")]
+    if visits and visits[0].step in _waiting_for_outside(machine):
+        return []  # It counts from where that step is left.
     lefts = [visit.left for visit in visits if visit.left is not None]
     stands = any(choice.sequence == sequence for choice in run.choices)
     return [max(lefts)] if len(lefts) == len(visits) > 0 and not stands else []
+
+
+def _waiting_for_outside(machine: Machine) -> set[str]:
+    return {
+        step.name
+        for sequence in machine.sequences
+        for step in steps_of(sequence)
+        for term in terms_of(step.until)
+        if term.kind is TermKind.SIGNAL and isinstance(machine.signals[term.subject], OutsideSignal)
+    }
 
 
 def _outside(what: str, name: str, time: int, bounds: Duration) -> Iterator[Disagreement]:
