@@ -73,7 +73,7 @@ def add_formats(command: argparse.ArgumentParser, formats: Iterable[str], output
 
 
 def add_fail_on(command: argparse.ArgumentParser) -> None:
-    from seqcheck.machine.findings import Severity
+    from seqcheck.machine.severity import Severity
 
     command.add_argument(
         "--fail-on",

@@ -6,7 +6,9 @@ problem and everything that is wrong with the machine a finding.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import gc
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass, replace
 
 from seqcheck.checks.assumptions import assumptions
@@ -55,6 +57,23 @@ def study(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> tuple[R
 
 
 def study_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0) -> tuple[Report, Studied | None]:
+    with _collecting_later():
+        return _studied(source, sheets, reserve_us)
+
+
+@contextmanager
+def _collecting_later() -> Iterator[None]:
+    """All that an examination makes is kept until its end: looking for what could be given back only takes time."""
+    collecting = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if collecting:
+            gc.enable()
+
+
+def _studied(source: Source, sheets: Sequence[str], reserve_us: int) -> tuple[Report, Studied | None]:
     machine = read_machine(source, sheets, ACCEPTABLE)
     if not isinstance(machine, Machine):
         return Report(source.name, None, problems=machine), None

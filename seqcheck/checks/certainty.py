@@ -30,8 +30,10 @@ class Ways:
         """The segment of a settlement in which an event lies, by typical time."""
         one = self._settlements[number]
         times = one.trace.times
-        begun = [n for n, passage in enumerate(one.path.passages) if times[passage.at] <= times[event]]
-        return number, begun[-1] if begun else -1
+        for passage in range(len(one.path.passages) - 1, -1, -1):
+            if times[one.path.passages[passage].at] <= times[event]:
+                return number, passage
+        return number, -1
 
     def all_show(self, showing: Collection[Segment]) -> bool:
         """Whether no run avoids these segments."""

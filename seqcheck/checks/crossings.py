@@ -34,6 +34,14 @@ class Spell:
     last: int | None = None
 
 
+@dataclass(frozen=True, slots=True)
+class Longest:
+    """``time``, and the ``edges`` of the way that takes it, one after the other."""
+
+    time: int
+    edges: tuple[Edge, ...]
+
+
 @dataclass(slots=True)
 class _Part:
     """What one edge adds: spells ``within`` it, from its beginning to the end of one (``closes``), from the beginning
@@ -87,25 +95,34 @@ class Crossings:
 
     def greatest(self, through: Through | None = None) -> int | None:
         """None where nothing limits it, or there is no such spell."""
-        found = [part.within.greatest for part in self.parts.values() if part.within is not None and through is None]
-        best: dict[tuple[int, bool], int | None] = {}
+        longest = self.longest(through)
+        return None if longest is None else longest.time
+
+    def longest(self, through: Through | None = None) -> Longest | None:
+        """None where nothing limits it, or there is no such spell."""
+        found = [
+            _longer(None, part.within.greatest, edge)
+            for edge, part in self.parts.items()
+            if part.within is not None and through is None
+        ]
+        best: dict[tuple[int, bool], Longest | None] = {}
         for state in self._in_order():
             if state is None:
                 return None
             for edge, part in self.parts.items():
                 if edge[1] == state and part.opens is not None:
-                    _lengthen(best, (state, through is None), part.opens.greatest)
+                    _lengthen(best, (state, through is None), _longer(None, part.opens.greatest, edge))
             for passed in (False, True):
                 if (state, passed) not in best:
                     continue
                 for edge, part in self._from(state):
                     now = passed or (through is not None and through(edge))
                     if part.passes is not None:
-                        _lengthen(best, (edge[1], now), _sum(best[state, passed], part.passes.greatest))
+                        _lengthen(best, (edge[1], now), _longer(best[state, passed], part.passes.greatest, edge, True))
                     if part.closes is not None and now:
-                        found.append(_sum(best[state, passed], part.closes.greatest))
-        known = [time for time in found if time is not None]
-        return max(known) if known and len(known) == len(found) else None
+                        found.append(_longer(best[state, passed], part.closes.greatest, edge, True))
+        known = [one for one in found if one is not None]
+        return max(known, key=lambda one: one.time) if known and len(known) == len(found) else None
 
     def _from(self, state: int) -> Iterator[tuple[Edge, _Part]]:
         return iter(self._at.get(state, ()))
@@ -132,13 +149,16 @@ class Crossings:
                 yield state
 
 
-def _lengthen(best: dict[tuple[int, bool], int | None], key: tuple[int, bool], time: int | None) -> None:
-    known = best.get(key, -1)
-    best[key] = None if known is None or time is None else max(known, time)
+def _lengthen(best: dict[tuple[int, bool], Longest | None], key: tuple[int, bool], one: Longest | None) -> None:
+    known = best.get(key, one)
+    best[key] = None if known is None or one is None else max(known, one, key=lambda longest: longest.time)
 
 
-def _sum(one: int | None, other: int | None) -> int | None:
-    return None if one is None or other is None else one + other
+def _longer(before: Longest | None, time: int | None, edge: Edge, behind: bool = False) -> Longest | None:
+    """A way, and one edge more; None where nothing limits the one or the other."""
+    if time is None or (behind and before is None):
+        return None
+    return Longest(time, (edge,)) if before is None else Longest(before.time + time, (*before.edges, edge))
 
 
 def crossings(
@@ -147,11 +167,11 @@ def crossings(
     """For each name; ``settled``: only over what a machine goes through again and again, if there is such."""
     settlements = [settlement for settlement, _ in plays]
     parts = _where_ways_part(settlements)
-    again = come_up_again(settlements) if settled else lambda begin, end: True
+    lasting = _past_the_start(settlements) if settled else lambda begin: True
     found: dict[str, Crossings] = {}
     for settlement, spells in plays:
         for name, edge, kind, span in _portions(settlement, spells, parts):
-            if again(edge[0], edge[1]):
+            if lasting(edge[0]):
                 part = found.setdefault(name, Crossings()).part(edge)
                 known = getattr(part, kind)
                 setattr(part, kind, span if known is None else _both(known, span))
@@ -247,25 +267,16 @@ def _cut(
     return None
 
 
-def come_up_again(settlements: Sequence[Settlement]) -> Callable[[int, int], bool]:
-    """Tells of two states whether a machine goes from the one to the other again and again; true of all where it goes
-    round nowhere."""
+def _past_the_start(settlements: Sequence[Settlement]) -> Callable[[int], bool]:
+    """Tells of a state whether a machine comes to it again and again, or from there; true of all where it goes round
+    nowhere."""
     following: dict[int, set[int]] = {}
     for one in settlements:
         for number, _, _ in one.segments():
             following.setdefault(one.states[number], set()).add(one.states[number + 1])
-    group = _groups(following)
-    return lambda begin, end: not group or (begin in group and end in group and group[begin] == group[end])
-
-
-def _groups(following: Mapping[int, set[int]]) -> dict[int, int]:
-    """States that lie on one way round have the same number."""
-    reached = {state: _reached(following, ends) for state, ends in following.items()}
-    return {
-        state: min(other for other in there if state in reached.get(other, ()))
-        for state, there in reached.items()
-        if state in there
-    }
+    again = {state for state, ends in following.items() if state in _reached(following, ends)}
+    lasting = _reached(following, again)
+    return lambda begin: not again or begin in lasting
 
 
 def _reached(following: Mapping[int, set[int]], begin: set[int]) -> set[int]:

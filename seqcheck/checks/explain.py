@@ -6,13 +6,14 @@ that has none. Loads nothing that examines: help must come at once.
 
 from __future__ import annotations
 
+import os
 import re
-from dataclasses import dataclass
-from pathlib import Path
+from typing import NamedTuple
 
-from seqcheck.machine.findings import Severity
+from seqcheck.machine.severity import Severity
 
-_FOLDER = Path(__file__).resolve().parent / "explanations"
+_FOLDER = os.path.join(os.path.dirname(os.path.realpath(__file__)), "explanations")
+_ENDING = ".md"
 _WRITTEN = re.compile(
     r"# (?P<kind>\S+)\n\n(?P<severity>\w+): (?P<title>[^\n]+)\n\n(?P<meaning>.+)\n\n"
     r"## A sequence that shows it\n\n```steps\n(?P<faulty>.+)```\n\n> (?P<says>[^\n]+)\n\n"
@@ -21,10 +22,10 @@ _WRITTEN = re.compile(
 )
 
 
-@dataclass(frozen=True, slots=True)
-class Explanation:
+class Explanation(NamedTuple):
     """``meaning`` and ``how`` (what was done to mend it) are prose, paragraphs apart by an empty line. ``faulty`` and
-    ``mended`` are whole texts; ``says`` is the message of the first finding in the faulty one."""
+    ``mended`` are whole texts; ``says`` is the message of the first finding in the faulty one. (No dataclass: to load
+    what makes those takes longer than all else here.)"""
 
     kind: str
     severity: Severity
@@ -38,13 +39,14 @@ class Explanation:
 
 def explained_kinds() -> tuple[str, ...]:
     """Every kind that has an explanation, by name."""
-    return tuple(sorted(file.stem for file in _FOLDER.glob("*.md")))
+    return tuple(sorted(file.removesuffix(_ENDING) for file in os.listdir(_FOLDER) if file.endswith(_ENDING)))
 
 
 def explanation(kind: str) -> Explanation | None:
     if kind not in explained_kinds():
         return None
-    written = _WRITTEN.fullmatch((_FOLDER / f"{kind}.md").read_text(encoding="utf-8"))
+    with open(os.path.join(_FOLDER, f"{kind}{_ENDING}"), encoding="utf-8") as file:
+        written = _WRITTEN.fullmatch(file.read())
     if written is None or written["kind"] != kind:
         raise ValueError(f"the explanation of {kind} is not laid out as the others are")
     _, severity, title, meaning, faulty, says, how, mended = written.groups()

@@ -6,13 +6,14 @@ from bisect import bisect_left
 from collections.abc import Iterator, Sequence
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
-from seqcheck.checks.crossings import Spell, crossings
+from seqcheck.checks.crossings import Longest, Spell, crossings
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.spells_of import whole_spells
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
 from seqcheck.checks.wording import in_time
 from seqcheck.engine.conditions import alternatives_of
+from seqcheck.engine.explore import follow, outcomes_before
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
 
@@ -83,18 +84,37 @@ def _never_comes(study: Study) -> Iterator[Sight]:
 
 def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
     """Where no play shows all of it in one: added up along the ways through the state graph."""
+    for rule, longest in _longest(studies):
+        if longest.time > rule.greatest:
+            message = _over(rule).replace("{by}", in_time(longest.time - rule.greatest))
+            margin = rule.greatest - longest.time
+            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
+
+
+def _longest(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Longest]]:
     rules = [rule for rule in studies[0].machine.rules if isinstance(rule, CycleLimit | PathLimit)]
     plays = [(study.settlement, {rule.text: _spells(study, rule) for rule in rules}) for study in studies]
     found = crossings(plays, settled=False)
     for rule in rules:
-        ways = found.get(rule.text)
-        if ways is None or ways.least() is None:
-            continue
-        greatest = ways.greatest()
-        if greatest is not None and greatest > rule.greatest:
-            message = _over(rule).replace("{by}", in_time(greatest - rule.greatest))
-            margin = rule.greatest - greatest
-            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
+        longest = found[rule.text].longest() if rule.text in found else None
+        if longest is not None:
+            yield rule, longest
+
+
+def longest_ways(studies: Sequence[Study]) -> list[Study]:
+    """For what a rule limits the way that takes longest, played in one, where no play has shown it."""
+    found: dict[tuple[object, ...], Study] = {}
+    for _, longest in _longest(studies):
+        begin = longest.edges[0][0]
+        owner = next(one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
+        before = owner.states.index(begin)
+        chosen = [edge[2] for edge in longest.edges if edge[2] is not None]
+        if len(longest.edges) > 1 and chosen:
+            outcomes = (*outcomes_before(owner.path, before), *chosen)
+            passages = before + 4 * len(longest.edges) + 4
+            if outcomes not in found:
+                found[outcomes] = studies[0].alike(follow(studies[0].machine, outcomes, passages))
+    return list(found.values())
 
 
 CHECK = Check(

@@ -14,6 +14,7 @@ from functools import partial
 from seqcheck.checks.certainty import Segment, Ways
 from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
+from seqcheck.checks.over_limit import longest_ways
 from seqcheck.checks.stale_accept import stale_accepts, with_reasons
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
@@ -67,11 +68,12 @@ class _Seen:
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
     """Prove every play of the machine, and put the results together. A margin that holds, but leaves less than
     ``reserve_us``, is a finding too."""
-    ways = Ways([study.settlement for study in studies])
+    played = [*studies, *longest_ways(studies)]
+    ways = Ways([study.settlement for study in played])
     by_key: dict[_Key, list[_Seen]] = {}
     margins: dict[_Key, Margin] = {}
     strays = False
-    for number, study in enumerate(studies):
+    for number, study in enumerate(played):
         one = _prove_one(study, checks, reserve_us, partial(ways.segment, number))
         strays = strays or one.strays
         for seen in one.seen:
@@ -140,12 +142,7 @@ def _prove_one(
     study: Study, checks: Sequence[Check], reserve_us: int, segment_of: Callable[[int], Segment]
 ) -> _ProofOfOne:
     since = study.settlement.fresh_since
-    stated = [
-        (check, one)
-        for check in checks
-        for one in check.obligations(study)
-        if max(study.time(event) for pair in one.pairs for event in pair) >= since
-    ]
+    stated = [(check, one) for check in checks for one in check.obligations(study) if _is_fresh(study, one, since)]
     rows = _rows(study, [one for _, one in stated])
     turn = _turning_point(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
@@ -175,6 +172,12 @@ def _prove_one(
         Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
     )
     return _ProofOfOne(tuple(seen), tuple(margins), turn is not None)
+
+
+def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
+    """Whether no other play has shown this already: something of it comes at or after the typical time ``since``."""
+    times = study.trace.times
+    return since <= 0 or any(times[first] >= since or times[second] >= since for first, second in one.pairs)
 
 
 def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:

@@ -54,6 +54,10 @@ class Study:
         self.trace = settlement.trace
         self._played = len(self.trace.times)
 
+    def alike(self, settlement: Settlement) -> Study:
+        """A study of another play of the same machine."""
+        return Study(self.machine, settlement, self._draw, self.entered, self.left, self.whole)
+
     def time(self, event: int) -> int:
         """The typical time of an event, in microseconds from the start."""
         return self.trace.times[event]
@@ -86,6 +90,17 @@ class Study:
     @cached_property
     def reads_by_event(self) -> dict[int, Read]:
         return {read.event: read for read in self.trace.reads}
+
+    @cached_property
+    def _visits_by_step(self) -> dict[str, list[Visit]]:
+        found: dict[str, list[Visit]] = {}
+        for visit in self.trace.visits:
+            found.setdefault(visit.step.name, []).append(visit)
+        return found
+
+    def visits_of(self, step: str) -> Sequence[Visit]:
+        """The visits of a step, by its qualified name, in the order of the play."""
+        return self._visits_by_step.get(step, ())
 
     # Records by what connects them -----------------------------------------------------------------------------
 

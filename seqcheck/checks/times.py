@@ -16,7 +16,8 @@ from seqcheck.checks.crossings import Crossings, Edge, Spell, crossings
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
-from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations, separation_table
+from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations
+from seqcheck.engine.columns import separation_column
 from seqcheck.engine.graph import Event
 from seqcheck.engine.states import TimedStates, waits_for_outside
 from seqcheck.engine.trace import Read
@@ -133,8 +134,8 @@ def _typical_step(study: Study, step: str) -> int | None:
         study,
         [
             (visit.entered.event, visit.left.event)
-            for visit in study.trace.visits
-            if visit.step.name == step and visit.left is not None and study.time(visit.entered.event) >= since
+            for visit in study.visits_of(step)
+            if visit.left is not None and study.time(visit.entered.event) >= since
         ],
     )
 
@@ -177,8 +178,7 @@ def critical_chain(study: Study, start: int, end: int) -> tuple[Link, ...]:
     """The chain of causes that makes ``end`` come as late after ``start`` as it can, in the order of time."""
     graph = study.trace.graph
     members = causes_since(graph, graph.common_dominator(start, end), {start, end})
-    column = separation_table(graph, members, [start])[:, 0].tolist()
-    latest = dict(zip(members, column, strict=True))
+    latest = separation_column(graph, members, start)
     chain: list[Link] = []
     event = end
     while event != start:

@@ -39,7 +39,7 @@ def failing(finding: Finding, fail_on: Sequence[str]) -> bool:
 
 
 def severities() -> list[str]:
-    from seqcheck.machine.findings import Severity
+    from seqcheck.machine.severity import Severity
 
     return [severity.value for severity in Severity]
 

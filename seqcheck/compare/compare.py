@@ -13,7 +13,16 @@ from pathlib import Path, PurePosixPath
 from seqcheck.compare.differences import Change, FileComparison
 from seqcheck.compare.meaning import machine_changes
 from seqcheck.compare.names import matched
-from seqcheck.compare.results import Bar, cycle_changes, finding_changes, margin_changes, step_changes, under_new_names
+from seqcheck.compare.results import (
+    Bar,
+    choice_changes,
+    cycle_changes,
+    finding_changes,
+    margin_changes,
+    step_changes,
+    under_new_names,
+    with_other_choices,
+)
 from seqcheck.compare.stored import is_stored, stored_reports
 from seqcheck.language.folders import sequences_named
 from seqcheck.language.read import read_machine
@@ -88,11 +97,21 @@ def compare_sides(old: Side | None, new: Side | None, bar: Bar) -> FileCompariso
         findings=finding_changes(before, after, bar),
         margins=margin_changes(before, after, bar) if both else (),
         cycles=cycle_changes(before, after, bar) if both else (),
+        choices=choice_changes(before, after) if both else (),
         steps=step_changes(before, after) if both else (),
         changes=changes,
-        left_out=(STORED_HOLDS,) if old is not None and old.machine is None else (),
+        left_out=tuple(_left_out(old, before, after)),
         sheets=sheets,
+        stored=old is not None and old.machine is None,
     )
+
+
+def _left_out(old: Side | None, before: Report, after: Report) -> Iterator[str]:
+    """``before`` has its steps named as they are now."""
+    if old is not None and old.machine is None:
+        yield STORED_HOLDS
+    for name in with_other_choices(before, after):
+        yield f"the choices of {name} have more branches or fewer, so its cycle times by choice are not compared"
 
 
 def _sheets(side: Side) -> Iterator[str]:

@@ -70,8 +70,8 @@ class MarginChange:
 
 @dataclass(frozen=True, slots=True)
 class DurationChange:
-    """A cycle or a step; ``old`` is None where it is new, ``new`` where it is gone. ``worse``: the greatest grew by
-    more than is allowed."""
+    """A cycle, a cycle with one branch of a choice, or a step; ``old`` is None where it is new, ``new`` where it is
+    gone. ``worse``: the greatest grew by more than is allowed."""
 
     name: str
     old: Duration | None
@@ -83,7 +83,7 @@ class DurationChange:
 class FileComparison:
     """One text before and after; a name is None where there was no such text, or is none any more. ``compared`` is
     False where one of the two could not be examined: then only ``changes`` may be told. ``left_out`` says what could
-    not be held against each other, and why."""
+    not be held against each other, and why. ``stored``: of the old side there is but a stored report."""
 
     old: str | None
     new: str | None
@@ -93,10 +93,12 @@ class FileComparison:
     findings: tuple[FindingChange, ...] = ()
     margins: tuple[MarginChange, ...] = ()
     cycles: tuple[DurationChange, ...] = ()
+    choices: tuple[DurationChange, ...] = ()
     steps: tuple[DurationChange, ...] = ()
     changes: tuple[Change, ...] = ()
     left_out: tuple[str, ...] = ()
     sheets: tuple[str, ...] = ()
+    stored: bool = False
 
     @property
     def worse(self) -> tuple[FindingChange | MarginChange | DurationChange, ...]:
@@ -115,7 +117,7 @@ class FileComparison:
             return "unreadable"
         if self.worse:
             return "worse"
-        there = self.findings or self.margins or self.cycles or self.steps or self.changes
+        there = self.findings or self.margins or self.cycles or self.choices or self.steps or self.changes
         return "changed" if there or self.old is None or self.new is None else "same"
 
 

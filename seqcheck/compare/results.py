@@ -1,4 +1,4 @@
-"""What two reports differ in: findings, margins, cycle and step times, and which of that is worse.
+"""What two reports differ in: findings, margins, cycle and step times, cycles by choice, and which of that is worse.
 
 Takes two reports of texts that could be examined, and what counts as worse; gives changes in the order in which the
 new report has them, what is gone behind them. Where a text stands makes no difference: findings and margins are told
@@ -13,7 +13,7 @@ from dataclasses import dataclass, replace
 from itertools import zip_longest
 
 from seqcheck.compare.differences import Difference, DurationChange, FindingChange, MarginChange, growth, loss
-from seqcheck.machine.findings import Duration, Finding, Margin, Report
+from seqcheck.machine.findings import ChoiceTime, Duration, Finding, Margin, Report
 
 Key = tuple[str, str, str | None]
 
@@ -73,6 +73,29 @@ def cycle_changes(old: Report, new: Report, bar: Bar) -> tuple[DurationChange, .
     )
 
 
+def choice_changes(old: Report, new: Report) -> tuple[DurationChange, ...]:
+    """Cycles with one branch of a choice, in the words of the new report. Branches are told apart by their order, as
+    their lines move; a sequence that has more or fewer of them now is left out."""
+    before, after = _by_sequence(old.choices), _by_sequence(new.choices)
+    pairs = (
+        (was, now)
+        for name, branches in after.items()
+        if len(branches) == len(before.get(name, ()))
+        for was, now in zip(before[name], branches, strict=True)
+    )
+    return tuple(
+        DurationChange(f"{now.sequence}, {now.way}", was.duration, now.duration, False)
+        for was, now in pairs
+        if (was.duration.least, was.duration.greatest) != (now.duration.least, now.duration.greatest)
+    )
+
+
+def with_other_choices(old: Report, new: Report) -> tuple[str, ...]:
+    """The sequences whose choices have more branches now, or fewer."""
+    before, after = _by_sequence(old.choices), _by_sequence(new.choices)
+    return tuple(name for name in after if name in before and len(after[name]) != len(before[name]))
+
+
 def step_changes(old: Report, new: Report) -> tuple[DurationChange, ...]:
     """No step is worse by itself: what it costs shows in the cycle and in the margins."""
     return tuple(_duration_changes(old.steps, new.steps))
@@ -80,6 +103,13 @@ def step_changes(old: Report, new: Report) -> tuple[DurationChange, ...]:
 
 def _grown(old: Duration, new: Duration) -> float:
     return growth(old.greatest, new.greatest)
+
+
+def _by_sequence(choices: Iterable[ChoiceTime]) -> dict[str, list[ChoiceTime]]:
+    found: dict[str, list[ChoiceTime]] = defaultdict(list)
+    for one in choices:
+        found[one.sequence].append(one)
+    return dict(found)
 
 
 def _grouped(findings: Iterable[Finding]) -> dict[Key, list[Finding]]:

@@ -1,7 +1,7 @@
 """Reports that ``check --format json`` has stored, read back.
 
-Takes JSON text; gives reports with what it holds (findings, margins, cycle and step times), or a problem with its
-place where it is no such report. What a comparison does not ask (runs, handovers) is left out.
+Takes JSON text; gives reports with what it holds (findings, margins, cycle times, also by choice, and step times), or a
+problem with its place where it is no such report. What a comparison does not ask (runs, handovers) is left out.
 """
 
 from __future__ import annotations
@@ -10,7 +10,7 @@ import json
 from typing import Any
 
 from seqcheck.language.source import Source
-from seqcheck.machine.findings import Duration, Finding, Margin, Problem, Report, Severity
+from seqcheck.machine.findings import ChoiceTime, Duration, Finding, Margin, Problem, Report, Severity
 from seqcheck.machine.places import Place
 
 #: What ``report.json`` writes, and the versions of it that are understood here.
@@ -60,6 +60,8 @@ def _report(one: Any) -> Report:
         findings=tuple(_finding(part, file) for part in _get(one, "findings", list)),
         problems=tuple(_error(part, file) for part in _get(one, "errors", list)),
         cycles=_durations(_get(one, "cycles", dict)),
+        # Reports of before there were choices have no such key.
+        choices=tuple(_choice(part, file) for part in _get(one, "choices", list)) if "choices" in one else (),
         steps=_durations(_get(one, "steps", dict)),
         margins=tuple(_margin(part, file) for part in _get(one, "margins", list)),
     )
@@ -97,6 +99,16 @@ def _margin(one: Any, file: str) -> Margin:
         _get(one, "step", str, None),
         Place(file, line, 1, line, 1),
         _get(one, "margin_us", int, None),
+    )
+
+
+def _choice(one: Any, file: str) -> ChoiceTime:
+    line, least = _get(one, "line", int), _get(one, "min_us", int)
+    return ChoiceTime(
+        _get(one, "sequence", str),
+        Place(file, line, 1, line, 1),
+        _get(one, "way", str),
+        Duration(least, least, _get(one, "max_us", int, None)),
     )
 
 

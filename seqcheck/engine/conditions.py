@@ -83,6 +83,8 @@ def count_of(condition: Condition, wanted: bool = True) -> int:
 
 def literals_of(alternatives: Alternatives) -> tuple[Literal, ...]:
     """Every literal once, in order."""
+    if len(alternatives) == 1 and len(alternatives[0]) < 2:
+        return alternatives[0]
     return tuple(dict.fromkeys(literal for one in alternatives for literal in one))
 
 

@@ -7,7 +7,7 @@ on to the valves. What it sees of the inputs comes in through ``see``.
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import partial
 from itertools import product
@@ -19,7 +19,7 @@ from seqcheck.engine.exits import Exits, name_of
 from seqcheck.engine.graph import Event
 from seqcheck.engine.knowledge import Knowledge
 from seqcheck.engine.plant import Plant
-from seqcheck.engine.program import Enter, Fork, Select, compile_sequence
+from seqcheck.engine.program import Enter, Fork, Program, Select, programs_of
 from seqcheck.engine.threads import Course, Thread, Threads
 from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Answer, Choice, Edge, Known, Origin, Read, Spell, Trace, Visit, Wait
@@ -63,6 +63,7 @@ class Controller:
         plant: Plant,
         switch: Switch,
         guide: Guide,
+        programs: Mapping[str, Program] | None = None,
     ) -> None:
         self._machine = machine
         self._settings = machine.controller
@@ -72,13 +73,14 @@ class Controller:
         self._plant = plant
         self._switch = switch
         self._guide = guide
+        self._programs = programs
         self._threads = Threads(self)
         self._exits = Exits(machine, timeline, knowledge, self._wake)
         self._read_events: set[int] = set()
         self._commands = Commands(trace.touches)
         self._wait = self._settings.wait
         #: Where the threads stand that this read has yet to let walk on.
-        self._walking: list[tuple[object, ...]] = []
+        self._walking: list[Thread] = []
         #: How many waits there are for each signal from outside, and for each time that it comes.
         self._waiting_for: Counter[str] = Counter()
         self._awaited: Counter[int] = Counter()
@@ -90,9 +92,8 @@ class Controller:
 
     def start(self) -> None:
         """The read that activates the first step of each sequence, at event 0."""
-        courses = [
-            Course(compile_sequence(sequence), number) for number, sequence in enumerate(self._machine.sequences)
-        ]
+        programs = programs_of(self._machine) if self._programs is None else self._programs
+        courses = [Course(programs[one.name], number) for number, one in enumerate(self._machine.sequences)]
         self._read(0, [Thread(course, 0) for course in courses], "start")
 
     def see(self, aspect: Aspect, known: Known) -> None:
@@ -104,7 +105,8 @@ class Controller:
     @property
     def state(self) -> tuple[object, ...]:
         """What the controller remembers, without times."""
-        return self._knowledge.state, self._threads.state, tuple(self._walking), self._commands.state
+        walking = tuple((thread.course.number, thread.at, thread.counts) for thread in self._walking)
+        return self._knowledge.state, self._threads.state, walking, self._commands.state
 
     def _wake(self) -> None:
         """Let every thread whose wait is over go on; those that what happens now lets go on share a read."""
@@ -126,7 +128,7 @@ class Controller:
         for thread in threads:
             if thread.wait is not None:
                 self._leave(thread, read)
-        self._walking = [(thread.course.number, thread.at, thread.counts) for thread in threads]
+        self._walking = list(threads)
         for thread in threads:
             if thread.course.cycle < 0:
                 self.begin_anew(thread.course, read)
@@ -181,6 +183,8 @@ class Controller:
 
     def _let_signals_go(self, wait: Wait, read: Read) -> None:
         """A signal from outside stays until every step that waits for it is left."""
+        if not wait.signals:
+            return
         for name, seen in {(literal.term.subject, seen) for literal, (_, seen) in wait.signals.items()}:
             self._awaited[seen] -= 1
             if not self._awaited[seen]:
@@ -190,6 +194,8 @@ class Controller:
                 self._plant.notice(read.event, {(TermKind.SIGNAL, name, None): False})
 
     def _await_signals(self, wait: Wait) -> None:
+        if not wait.signals:
+            return
         for name, seen in {(literal.term.subject, seen) for literal, (_, seen) in wait.signals.items()}:
             self._awaited[seen] += 1
             self._waiting_for[name] += 1

@@ -3,25 +3,26 @@
 Takes positions that valves reach; gives strokes and stops to the trace and sensor changes to the inputs. Where a
 piston that was stopped between its ends may stand at one of several places, depending on times, and nobody looks,
 ``regions`` says so (by cylinder and number of the stroke that was stopped); the next stroke then takes any of them
-as its start.
+as its start. Where nobody knows them yet, they are found as each piston stops.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Container, Mapping
+from dataclasses import dataclass, field, replace
 from functools import partial
 
 from seqcheck.engine.conditions import Alternatives, Aspect, Literal, alternatives_of, holding
 from seqcheck.engine.graph import Event
+from seqcheck.engine.regions import region_of
 from seqcheck.engine.strokes import Region, marks_of, reached_by
 from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Shift, Stroke, Trace
-from seqcheck.engine.travel import LEAVING, START, Travel
+from seqcheck.engine.travel import LEAVING, START, Reach, Travel
 from seqcheck.machine.conditions import Term, TermKind
 from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve
 from seqcheck.machine.model import Machine
-from seqcheck.machine.time import NO_TIME
+from seqcheck.machine.time import NO_TIME, Span
 
 #: Told of a sensor's own change: the sensor, on or off, at which event.
 Sense = Callable[[str, bool, int], None]
@@ -50,9 +51,22 @@ class _Piston:
     #: The event at which a stopped piston stands still; None unless it is running on.
     runs_on_until: int | None = None
 
+    #: What lies ahead of it has been worked out for these strokes, from these places.
+    plans: dict[tuple[bool, Span, Region, Region], tuple[Reach, ...]] = field(default_factory=dict)
+
     @property
     def last(self) -> int:
         return len(self.marks) - 1
+
+    def plan(self, travel: Travel) -> tuple[Reach, ...]:
+        """The marks ahead of the piston where it is now."""
+        key = travel.out, travel.valve, self.region, self.stood
+        plan = self.plans.get(key)
+        if plan is None:
+            from_end = self.region.low == self.region.high
+            plan = travel.from_end(self.region.low) if from_end else travel.from_between(self.region, self.stood)
+            self.plans[key] = plan
+        return plan
 
 
 class Cylinders:
@@ -61,16 +75,20 @@ class Cylinders:
         machine: Machine,
         timeline: Timeline,
         trace: Trace,
-        regions: Regions,
+        regions: Regions | None,
         sense: Sense,
         notice: Notice,
+        looked_at: Container[str],
     ) -> None:
         self._machine = machine
         self._timeline = timeline
         self._trace = trace
-        self._regions = regions
+        self._given = regions
+        #: Those that strokes were started from, or would be.
+        self.regions: dict[tuple[str, int], Region] = {}
         self._sense = sense
         self._notice = notice
+        self._looked_at = looked_at
         self._pistons: dict[str, _Piston] = {}
         self._on_valve: dict[str, list[_Piston]] = {}
         #: For each valve the position that it has reached last, and by which shift.
@@ -131,7 +149,7 @@ class Cylinders:
             at_end = piston.region == Region.exactly(piston.last if sent else 0)
             if sent is not None and piston.stroke is None and not at_end:
                 self._begin(piston, sent, drive)
-            self._notice(drive.reached, _aspects_of(piston))
+            self._tell(piston, drive.reached)
 
     def _sent(self, piston: _Piston) -> tuple[bool | None, tuple[Literal, ...]]:
         """Out, in (False) or nowhere, and which positions of valves make it so."""
@@ -185,7 +203,7 @@ class Cylinders:
     def _run_out(self, piston: _Piston, stroke: Stroke) -> None:
         assert stroke.stands is not None
         self._stand_still(piston)
-        self._notice(stroke.stands, _aspects_of(piston))
+        self._tell(piston, stroke.stands)
 
     def _stand_still(self, piston: _Piston) -> None:
         stroke = self._latest(piston)
@@ -202,7 +220,10 @@ class Cylinders:
             piston.stroke = None
             piston.moving = False
         piston.stood = stroke.stood = piston.region
-        piston.region = self._regions.get((stroke.cylinder, stroke.number), piston.region)
+        key = stroke.cylinder, stroke.number
+        region = region_of(self._trace.graph, stroke) if self._given is None else self._given.get(key)
+        if region is not None:
+            piston.region = self.regions[key] = region
 
     # Beginning one ---------------------------------------------------------------------------------------------
 
@@ -236,18 +257,17 @@ class Cylinders:
             sensor = self._machine.sensors[name]
             if sensor.low == sensor.high == piston.marks[start]:
                 self._set_sensor(name, False, event)
-        self._notice(event, _aspects_of(piston))
+        self._tell(piston, event)
 
     def _plan(self, piston: _Piston, stroke: Stroke) -> tuple[tuple[int, int], ...]:
         """The events at which the marks ahead will be reached, in the order of travel."""
         timeline, shift, region = self._timeline, stroke.shift, piston.region
         travel = Travel(piston.cylinder, piston.marks, stroke.out, shift.time)
+        plan = piston.plan(travel)
+        since = {START: shift.reached}
         if region.low == region.high:
             assert stroke.leaves is not None
-            start = shift.asked if travel.timed_from_coil else shift.reached
-            plan, since = travel.from_end(region.low), {START: start, LEAVING: stroke.leaves}
-        else:
-            plan, since = travel.from_between(region, piston.stood), {START: shift.reached}
+            since = {START: shift.asked if travel.timed_from_coil else shift.reached, LEAVING: stroke.leaves}
         marks: list[tuple[int, int]] = []
         for number, reach in enumerate(plan):
             position = str(piston.marks[reach.mark])
@@ -282,7 +302,11 @@ class Cylinders:
             value = reached_by(self._machine.sensors[name], piston.marks[index], stroke.out)
             if value is not None:
                 self._set_sensor(name, value, event)
-        self._notice(event, _aspects_of(piston))
+        self._tell(piston, event)
+
+    def _tell(self, piston: _Piston, event: int) -> None:
+        if piston.cylinder.name in self._looked_at:
+            self._notice(event, _aspects_of(piston))
 
     def _set_sensor(self, name: str, value: bool, event: int) -> None:
         if self._sensor_on[name] != value:

@@ -128,7 +128,7 @@ class Exits:
         causes += [event for event in (wait.dwell_seen, wait.steady_seen) if event is not None]
         if answers is None or (steady and wait.steady_seen is None):
             return None
-        if any(event not in happened for event in causes):
+        if not happened.issuperset(causes):
             return None
         wait.answers = tuple(answers)
         return causes + [answer.seen for answer in answers]
@@ -157,7 +157,7 @@ class Exits:
 
     def answer(self, wait: Wait, literal: Literal) -> Answer | None:
         """What makes the literal as wanted; None where it is not (as the controller knows)."""
-        if literal in wait.signals:
+        if wait.signals and literal in wait.signals:
             held, seen = wait.signals[literal]
             signal = self._machine.signals[literal.term.subject]
             unlimited = isinstance(signal, OutsideSignal) and signal.after is None

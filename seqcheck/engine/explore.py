@@ -22,8 +22,8 @@ from seqcheck.engine.guide import Passage, Path, Prefer, Scout, Signature, Way, 
 from seqcheck.engine.order import Order, OrderKey
 from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
+from seqcheck.engine.program import Program, programs_of
 from seqcheck.engine.regions import regions_of
-from seqcheck.engine.strokes import Region
 from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.engine.witness import Witness, witness
@@ -94,6 +94,7 @@ class StateGraph:
 class _Explorer:
     machine: Machine
     orders: Orders
+    programs: Mapping[str, Program]
     states: dict[Signature, int] = field(default_factory=dict)
     found: list[Settlement] = field(default_factory=list)
     waiting: deque[Recipe] = field(default_factory=deque)
@@ -106,7 +107,7 @@ class _Explorer:
         work = most_work(self.machine)
         while self.waiting and work > 0:
             recipe = self.waiting.popleft()
-            settlement = play(self.machine, recipe, self.orders, self.states)
+            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs)
             work -= settlement.trace.graph.work
             if settlement.path.astray:
                 self.complete = False
@@ -133,7 +134,7 @@ class _Explorer:
             passage = path.passages[number]
             for outcome in passage.outcomes:
                 if outcome is not passage.outcome:
-                    self.waiting.append(Recipe(Way((*_outcomes(path, number), outcome), number), recipe.delays))
+                    self.waiting.append(Recipe(Way((*outcomes_before(path, number), outcome), number), recipe.delays))
         times = settlement.trace.times
         at = [(times[passage.at], passage.at) for passage in path.passages]
         for number, order in path.orders:
@@ -159,7 +160,7 @@ class _Explorer:
             return
         self.turns[where] += 1
         self.planned.add((where, both))
-        way = Way(_outcomes(path, number + 1), number)
+        way = Way(outcomes_before(path, number + 1), number)
         self.waiting.append(Recipe(way, {**recipe.delays, **run.delays}, both))
 
 
@@ -170,7 +171,7 @@ def _turned_run(trace: Trace, order: Order) -> Witness | None:
         return witness(trace, order.first, order.second) if turns else None
 
 
-def _outcomes(path: Path, number: int) -> tuple[Outcome, ...]:
+def outcomes_before(path: Path, number: int) -> tuple[Outcome, ...]:
     """How the choices at the first so many passages came out."""
     return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
 
@@ -183,7 +184,7 @@ def most_work(machine: Machine) -> int:
 
 
 def explore(machine: Machine) -> StateGraph:
-    return _Explorer(machine, Orders(machine)).explore()
+    return _Explorer(machine, Orders(machine), programs_of(machine)).explore()
 
 
 def play(
@@ -192,19 +193,20 @@ def play(
     orders: Orders,
     known: Mapping[Signature, int],
     prefer: Prefer = first_of,
+    programs: Mapping[str, Program] | None = None,
 ) -> Settlement:
-    """One way, pistons anywhere that its own bounds leave them."""
-    regions: dict[tuple[str, int], Region] = {}
-    for _ in range(_MOST_ROUNDS):
+    """One way, pistons anywhere that its own bounds leave them. What is known as a piston stops mostly says it all."""
+    regions: Regions | None = None
+    for _ in range(_MOST_ROUNDS + 1):
         scout = Scout(machine, recipe.way, known, orders, prefer)
-        player = scout.player = Player(machine, scout, given(recipe.delays), regions)
+        player = scout.player = Player(machine, scout, given(recipe.delays), regions, programs=programs)
         trace = player.play()
         scout.finish()
         found = dict(regions_of(trace))
-        if trace.too_long or found == regions:
+        if trace.too_long or found == player.cylinders.regions:
             break
-        regions = found
-    return _settlement(machine, recipe, trace, regions, scout.path)
+        regions = {} if regions is None else found
+    return _settlement(machine, recipe, trace, player.cylinders.regions, scout.path)
 
 
 def _settlement(machine: Machine, recipe: Recipe, trace: Trace, regions: Regions, path: Path) -> Settlement:
@@ -220,14 +222,24 @@ def _settlement(machine: Machine, recipe: Recipe, trace: Trace, regions: Regions
 def replay(machine: Machine, settlement: Settlement, run: Witness) -> Settlement:
     """The machine played with the delays of the witness, until a little after its last event."""
     delays = {**settlement.delays, **run.delays}
-    outcomes = _outcomes(settlement.path, len(settlement.path.passages))
+    outcomes = outcomes_before(settlement.path, len(settlement.path.passages))
     last = max(run.times.values())
     limit = last + last // 10 + 1_000_000
     follower = _Follower(outcomes, len(settlement.path.passages) + 1)
-    player = follower.player = Player(machine, follower, given(delays), until_us=limit)
+    player = follower.player = Player(machine, follower, given(delays), {}, until_us=limit)
     trace = player.play()
     recipe = Recipe(Way(outcomes), delays)
     return Settlement(trace, recipe, {}, Path(), False, 0, len(trace.cycles) - 1)
+
+
+def follow(machine: Machine, outcomes: Sequence[Outcome], passages: int) -> Settlement:
+    """The machine at typical times, its first choices come out so, through so many states."""
+    follower = _Follower(outcomes, passages)
+    player = follower.player = Player(machine, follower)
+    trace = player.play()
+    found = Orders(machine).open(trace, 0, 0, max(trace.times) + 1)
+    trace.graph.assumed += [(order.first, order.second) for order in found]
+    return Settlement(trace, Recipe(Way(tuple(outcomes)), {}), {}, Path(), False, 0, len(trace.cycles) - 1)
 
 
 class _Follower:

@@ -11,7 +11,7 @@ with max-causality and bounded delays, as in McMillan & Dill, *Algorithms for in
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterable, Iterator
+from collections.abc import Collection, Container, Iterable, Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
@@ -24,6 +24,9 @@ if TYPE_CHECKING:
 #: Stands for a delay that nothing limits. Some 35 years: far over every real span, and thousands of them in a row
 #: still fit in 64 bits, so that sums need no special case. At the edges it becomes None.
 OPEN = 1 << 50
+
+#: So many single steps are taken towards a common dominator before jumps are.
+_NEAR_BY = 8
 
 #: What a delay is called, so that the same one can be drawn again in a replay: what takes the time, whose time it
 #: is, and how often that had occurred before.
@@ -60,7 +63,8 @@ class EventGraph:
         self.work = 0
         self.earliest: list[int] = [0]
         self.latest: list[int] = [0]
-        self._dominator: list[int] = [0]
+        #: For each event the last one that dominates it.
+        self.dominator: list[int] = [0]
         self._depth: list[int] = [0]
         self._jump: list[int] = [0]
 
@@ -69,11 +73,15 @@ class EventGraph:
         number = len(self.events)
         self.events.append(event)
         self.arcs.append(arcs)
-        self.earliest.append(max(self.earliest[arc.cause] + arc.span.least for arc in arcs))
-        self.latest.append(max(self.latest[arc.cause] + arc.span.greatest for arc in arcs))
-        dominator = arcs[0].cause
+        dominator, span = arcs[0].cause, arcs[0].span
+        earliest, latest = self.earliest[dominator] + span.least, self.latest[dominator] + span.greatest
         for arc in arcs[1:]:
-            dominator = self.common_dominator(dominator, arc.cause)
+            cause, span = arc.cause, arc.span
+            earliest = max(earliest, self.earliest[cause] + span.least)
+            latest = max(latest, self.latest[cause] + span.greatest)
+            dominator = self.common_dominator(dominator, cause)
+        self.earliest.append(earliest)
+        self.latest.append(latest)
         self._hang_below(dominator)
         return number
 
@@ -83,13 +91,21 @@ class EventGraph:
         stack*, Inf. Proc. Letters 17, 1983)."""
         jump = self._jump[dominator]
         same_length = self._depth[dominator] - self._depth[jump] == self._depth[jump] - self._depth[self._jump[jump]]
-        self._dominator.append(dominator)
+        self.dominator.append(dominator)
         self._depth.append(self._depth[dominator] + 1)
         self._jump.append(self._jump[jump] if same_length else dominator)
 
     def common_dominator(self, one: int, other: int) -> int:
         """The last event through which every chain of causes of both runs (an event dominates itself)."""
-        depth, dominator, jump = self._depth, self._dominator, self._jump
+        depth, dominator, jump = self._depth, self.dominator, self._jump
+        # Mostly it is near by: what comes later in the graph dominates nothing that came before.
+        for _ in range(_NEAR_BY):
+            if one == other:
+                return one
+            if one > other:
+                one = dominator[one]
+            else:
+                other = dominator[other]
         if depth[one] < depth[other]:
             one, other = other, one
         one = self._ancestor_at(one, depth[other])
@@ -101,9 +117,10 @@ class EventGraph:
         return one
 
     def _ancestor_at(self, event: int, depth: int) -> int:
-        while self._depth[event] > depth:
-            jump = self._jump[event]
-            event = jump if self._depth[jump] >= depth else self._dominator[event]
+        depths, jumps, dominator = self._depth, self._jump, self.dominator
+        while depths[event] > depth:
+            jump = jumps[event]
+            event = jump if depths[jump] >= depth else dominator[event]
         return event
 
     def below(self, dominator: int, event: int) -> int:
@@ -111,6 +128,15 @@ class EventGraph:
         if event == dominator:
             return event
         return self._ancestor_at(event, self._depth[dominator] + 1)
+
+    def first_among(self, dominating: Container[int], top: int, event: int) -> int:
+        """The event, or else the last one that dominates it, that is among these: ``top``, which dominates the event,
+        and whatever lies between it and others of them."""
+        dominator, jumps = self.dominator, self._jump
+        while event not in dominating:
+            jump = jumps[event]
+            event = dominator[event] if jump <= top or jump in dominating else jump
+        return event
 
     def dominates(self, dominator: int, event: int) -> bool:
         """Whether every chain of causes of the event runs through another one, its dominator."""
@@ -126,6 +152,9 @@ class EventGraph:
         """Causes of equal standing less those that can never be the last: the events of two threads that wait for
         the same thing come out as one event, and old causes do not tie new events to the distant past."""
         kept: list[int] = []
+        causes = tuple(causes)
+        if len(causes) == 1:
+            return causes
         for cause in sorted(set(causes), reverse=True):
             if not any(self.never_later(cause, other) for other in kept):
                 kept = [other for other in kept if not self.never_later(other, cause)]
@@ -151,6 +180,15 @@ class EventGraph:
             yield
         finally:
             self.assumed = assumed
+
+    @contextmanager
+    def not_counting(self) -> Iterator[None]:
+        """Meanwhile what is worked out does not count as work."""
+        work = self.work
+        try:
+            yield
+        finally:
+            self.work = work
 
     def as_networkx(self) -> networkx.DiGraph[int]:
         """The graph for other programs: nodes with ``what``, ``subject``, ``detail``, arcs with ``least`` and

@@ -67,6 +67,11 @@ class Plant:
     def looks_at(self, aspect: Aspect) -> bool:
         return aspect in self._values
 
+    @property
+    def looked_at(self) -> set[str]:
+        """The names of all of which somebody looks at an aspect."""
+        return {subject for _, subject, _ in self._values}
+
     def go_live(self) -> None:
         self._live = True
 

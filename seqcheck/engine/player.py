@@ -6,11 +6,14 @@ they hand on: controller to valves to cylinders to inputs and back to the contro
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from seqcheck.engine.controller import Controller, Guide
 from seqcheck.engine.cylinders import Cylinders, Regions
 from seqcheck.engine.inputs import Inputs
 from seqcheck.engine.knowledge import Knowledge
 from seqcheck.engine.plant import Plant
+from seqcheck.engine.program import Program
 from seqcheck.engine.switches import Switches
 from seqcheck.engine.timeline import Draw, Timeline, typical
 from seqcheck.engine.trace import CoilChange, Trace
@@ -23,7 +26,9 @@ MOST_EVENTS = 1_000_000
 
 
 class Player:
-    """``guide`` decides what is free, and may ``stop`` the play at any read."""
+    """``guide`` decides what is free, and may ``stop`` the play at any read. ``regions`` where stopped pistons may
+    stand; None to find that on the way, by what has come so far. ``programs`` of the sequences, where they are
+    compiled already."""
 
     def __init__(
         self,
@@ -32,6 +37,7 @@ class Player:
         draw: Draw = typical,
         regions: Regions | None = None,
         until_us: int | None = None,
+        programs: Mapping[str, Program] | None = None,
     ) -> None:
         self._guide = guide
         self._until_us = until_us
@@ -42,13 +48,14 @@ class Player:
         self._plant = Plant(machine, self.timeline, self.trace, self._follow)
         self.switches = Switches(machine, self.timeline, self.trace, self._plant, self._energize)
         self.controller = Controller(
-            machine, self.timeline, self.trace, self._knowledge, self._plant, self.switches.switch, guide
+            machine, self.timeline, self.trace, self._knowledge, self._plant, self.switches.switch, guide, programs
         )
         self.inputs = Inputs(machine, self.timeline, self.trace, self._knowledge, self.controller.see)
+        looked_at = self._plant.looked_at
         self.cylinders = Cylinders(
-            machine, self.timeline, self.trace, regions or {}, self.inputs.change, self._plant.notice
+            machine, self.timeline, self.trace, regions, self.inputs.change, self._plant.notice, looked_at
         )
-        self.valves = Valves(machine, self.timeline, self.trace, self.cylinders.follow, self._plant.notice)
+        self.valves = Valves(machine, self.timeline, self.trace, self.cylinders.follow, self._plant.notice, looked_at)
         for sensor, value in self.cylinders.sensors_on.items():
             self._knowledge.initially((TermKind.SENSOR, sensor, None), value)
             self._plant.initially({(TermKind.SENSOR, sensor, None): value})

@@ -6,11 +6,11 @@ a thread stands is a number and its loop counts.
 
 from __future__ import annotations
 
-from collections.abc import Collection
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 
 from seqcheck.engine.conditions import Alternatives, alternatives_of
-from seqcheck.machine.model import items_of
+from seqcheck.machine.model import Machine, items_of
 from seqcheck.machine.places import Place
 from seqcheck.machine.steps import Choose, Item, Jump, Repeat, Sequence, Step, Together
 
@@ -146,6 +146,11 @@ class Program:
         begin = self.code[loop]
         assert isinstance(begin, Count)
         return begin.times
+
+
+def programs_of(machine: Machine) -> Mapping[str, Program]:
+    """The program of each sequence by its name."""
+    return {sequence.name: compile_sequence(sequence) for sequence in machine.sequences}
 
 
 def compile_sequence(sequence: Sequence) -> Program:

@@ -27,6 +27,17 @@ def regions_of(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
             yield (stroke.cylinder, stroke.number), region
 
 
+def region_of(graph: EventGraph, stroke: Stroke) -> Region | None:
+    """The same for one stroke, by what has come so far."""
+    with graph.not_counting():
+        stands = _may_stand_at(graph, stroke)
+        if all(graph.never_later(stroke.end, at) for at in stands):
+            return None
+        pairs = ((at, event) for event in _passings(stroke) for at in stands)
+        region = _region(stroke, stands, greatest_separations(graph, both_ways(pairs)))
+    return None if region == stroke.stood else region
+
+
 def _may_stand_at(graph: EventGraph, stroke: Stroke) -> list[int]:
     """The event at which the stroke ends as played; and as it ends where the other coil may take over the valve's
     return to centre although it did not, or may not although it did."""

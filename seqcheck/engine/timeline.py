@@ -67,9 +67,9 @@ class Timeline:
         return arc, self.times[cause] + self._draw(what, name, number, span)
 
     def event(self, event: Event, *arcs: tuple[Arc, int]) -> int:
-        number = self.graph.add(event, tuple(arc for arc, _ in arcs))
-        self.times.append(max(time for _, time in arcs))
-        return number
+        made = tuple([arc for arc, _ in arcs])
+        self.times.append(max([time for _, time in arcs]))
+        return self.graph.add(event, made)
 
     def loose(self, cause: int, span: Span = NO_TIME) -> tuple[Arc, int]:
         """An arc whose delay nothing draws: it takes no time, a fixed one, or the typical one of its span."""
@@ -87,11 +87,14 @@ class Timeline:
 
     def at(self, number: int, order: Order, action: Callable[[], None]) -> None:
         """Do this when the event comes, unless it is called off before. An event that has come already is due now."""
-        waiting = self._actions.setdefault(number, [])
-        first = all(order < other for other, _ in waiting)
-        waiting.append((order, action))
-        if not first:
-            return
+        waiting = self._actions.get(number)
+        if waiting is None:
+            self._actions[number] = [(order, action)]
+        else:
+            first = all(order < other for other, _ in waiting)
+            waiting.append((order, action))
+            if not first:
+                return
         self._scheduled += 1
         heapq.heappush(self._due, (self.times[number], order, self._scheduled, number))
 
@@ -117,7 +120,9 @@ class Timeline:
             actions = self._actions.pop(number, None)
             if actions is not None:
                 self.happened.add(number)
-                for _, action in sorted(actions, key=lambda entry: entry[0]):
+                if len(actions) > 1:
+                    actions.sort(key=lambda entry: entry[0])
+                for _, action in actions:
                     action()
                 return number
         return None

@@ -8,7 +8,7 @@ before the position is reached calls the shift off; a motor valve then stands be
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Container, Mapping
 from dataclasses import dataclass, field
 
 from seqcheck.engine.conditions import Aspect
@@ -39,12 +39,21 @@ class _State:
 
 
 class Valves:
-    def __init__(self, machine: Machine, timeline: Timeline, trace: Trace, reached: Reached, notice: Notice) -> None:
+    def __init__(
+        self,
+        machine: Machine,
+        timeline: Timeline,
+        trace: Trace,
+        reached: Reached,
+        notice: Notice,
+        looked_at: Container[str],
+    ) -> None:
         self._machine = machine
         self._timeline = timeline
         self._trace = trace
         self._reached = reached
         self._notice = notice
+        self._looked_at = looked_at
         self._states = {name: _State(valve.starts) for name, valve in machine.valves.items()}
         self._changes: dict[tuple[str, bool], CoilChange] = {}
         self._count: Counter[tuple[str, bool]] = Counter()
@@ -91,7 +100,7 @@ class Valves:
             self._call_off(valve, state, change)
         if asked is not None and (asked != state.reached or state.between):
             event = self._begin(valve, state, asked, change)
-        self._notice(event, _aspects(valve, state))
+        self._tell(event, valve, state)
 
     def _asked(self, valve: Valve, state: _State) -> Position | None:
         """None where the valve is to stand still wherever it is."""
@@ -143,8 +152,12 @@ class Valves:
     def _arrive(self, valve: Valve, shift: Shift) -> None:
         state = self._states[shift.valve]
         state.reached, state.between, state.shift = shift.to, False, None
-        self._notice(shift.reached, _aspects(valve, state))
+        self._tell(shift.reached, valve, state)
         self._reached(shift.valve, shift)
+
+    def _tell(self, event: int, valve: Valve, state: _State) -> None:
+        if valve.name in self._looked_at:
+            self._notice(event, _aspects(valve, state))
 
 
 def _aspects(valve: Valve, state: _State) -> Mapping[Aspect, bool]:

@@ -11,7 +11,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
-from seqcheck.engine.bounds import causes_since, greatest_of, separation_table
+from seqcheck.engine.bounds import causes_since, greatest_of
+from seqcheck.engine.columns import separation_column
 from seqcheck.engine.graph import Arc, DelayName, EventGraph
 from seqcheck.engine.trace import Trace
 
@@ -34,9 +35,9 @@ def witness(trace: Trace, first: int, second: int) -> Witness:
     graph = trace.graph
     common = graph.common_dominator(first, second)
     members = causes_since(graph, common, {first, second})
-    column = separation_table(graph, members, [second], open_us=_LONG_US)[:, 0].tolist()
-    start = trace.times[common] - column[0]
-    times = {number: start + offset for number, offset in zip(members, column, strict=True)}
+    column = separation_column(graph, members, second, _LONG_US)
+    start = trace.times[common] - column[common]
+    times = {number: start + column[number] for number in members}
     delays = {}
     for number in members[1:]:
         for arc in graph.arcs[number]:

@@ -28,7 +28,7 @@ from seqcheck.language.registry import KINDS, Registry
 from seqcheck.language.rules import resolve_rule
 from seqcheck.language.sequences import Sequences, name_steps
 from seqcheck.language.sheets import SheetEntry, read_sheet
-from seqcheck.language.source import Source, read_source
+from seqcheck.language.source import STANDARD, Source, read_source
 from seqcheck.language.syntax import (
     CoilText,
     ControllerText,
@@ -90,7 +90,7 @@ def _sheet_names(parsed: Parsed, sheets: Sequence[str]) -> Iterator[str]:
 
 def _sheet_files(source: Source, parsed: Parsed, sheets: Sequence[str]) -> list[tuple[str, Place | None]]:
     """The files to read, with the place that asks for each. Those of the text lie beside it."""
-    folder = Path() if source.name == "-" else Path(source.name).parent
+    folder = Path() if source.name == STANDARD else Path(source.name).parent
     named = [text for text in parsed.statements if isinstance(text, TimingText)]
     return [
         *((str(folder / text.file), text.place) for text in named),
@@ -115,6 +115,12 @@ def _lay_text(statements: tuple[StatementText, ...], times: Times) -> None:
 
 
 def _lay_sheet(registry: Registry, file: str, asked_at: Place | None) -> None:
+    if file == STANDARD:
+        # It holds the sequence text, or is what somebody types: no sheet may take it away.
+        registry.times_complete = False
+        place = asked_at or Place(file, 1, 1, 1, 1)
+        registry.problems.report(place, "a timing sheet is not read from standard input", "give it a file of its own")
+        return
     read = read_source(file)
     if isinstance(read, Problem):
         registry.times_complete = False
@@ -204,7 +210,7 @@ def _machine_name(source: Source, registry: Registry, parsed: Parsed) -> str:
     machine = _single(registry, parsed, MachineText, "machine")
     if machine is not None:
         return machine.name
-    return "machine" if source.name == "-" else Path(source.name).stem
+    return "machine" if source.name == STANDARD else Path(source.name).stem
 
 
 def _single(registry: Registry, parsed: Parsed, kind: type[_Single], word: str) -> _Single | None:

@@ -13,6 +13,8 @@ from pathlib import Path
 from seqcheck.machine.findings import Problem
 from seqcheck.machine.places import Place
 
+#: The name of standard input.
+STANDARD = "-"
 GREATEST_SIZE = 16 * 1024 * 1024
 _MARK = "\ufeff".encode()
 
@@ -65,7 +67,7 @@ def decode(name: str, data: bytes, most: int = GREATEST_SIZE) -> Source | Proble
 
 
 def _read_bytes(name: str, most: int) -> bytes:
-    if name == "-":
+    if name == STANDARD:
         return sys.stdin.buffer.read(most + 1)
     with Path(name).open("rb") as file:
         return file.read(most + 1)

@@ -21,6 +21,9 @@ class TermKind(Enum):
     CYLINDER = "cylinder"
     VALVE = "valve"
 
+    # Each is there once, and asked for in tables all the time; by name it takes a call for every look.
+    __hash__ = object.__hash__
+
 
 @dataclass(frozen=True, slots=True)
 class Term:

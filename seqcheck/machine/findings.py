@@ -6,15 +6,9 @@ These are plain values. Whoever makes them (checks, language) and whoever shows 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from enum import Enum
 
 from seqcheck.machine.places import Place
-
-
-class Severity(Enum):
-    ERROR = "error"
-    WARNING = "warning"
-    NOTE = "note"
+from seqcheck.machine.severity import Severity as Severity
 
 
 @dataclass(frozen=True, slots=True)

@@ -87,6 +87,7 @@ def _file_lines(file: FileComparison, encoding: str) -> tuple[Line, ...]:
     lines += _section("Worse", worse, Tone.ERROR)
     lines += _section("Findings", [_spelled_finding(one) for one in file.findings if not one.worse])
     lines += _durations("Cycle times", [one for one in file.cycles if not one.worse])
+    lines += _durations("Cycle times by choice", file.choices)
     lines += _section("Margins", _margin_rows([one for one in file.margins if not one.worse]))
     lines += _durations("Step times", file.steps)
     for title, part in _SECTIONS:
@@ -103,7 +104,7 @@ def _opening(file: FileComparison) -> tuple[Line, ...]:
     title = paragraph(f"{name}{machine}: {_verdict(file)}", hanging=4, tone=tones.get(file.verdict, Tone.TITLE))
     if file.old is None or file.new is None:
         return title
-    stored = "the stored report of " if file.left_out else ""
+    stored = "the stored report of " if file.stored else ""
     return (*title, *paragraph(f"Against {stored}{file.old}", indent=2, hanging=2))
 
 
@@ -117,7 +118,7 @@ def _verdict(file: FileComparison) -> str:
         return f"worse: {_counts(file)}"
     if file.verdict == "changed":
         return "changed, nothing worse"
-    return "no difference" + (" in findings, margins and times" if file.left_out else "")
+    return "no difference" + (" in findings, margins and times" if file.stored else "")
 
 
 def _counts(file: FileComparison) -> str:

@@ -40,6 +40,7 @@ def _file(file: FileComparison) -> Json:
         "findings": [_finding(one) for one in file.findings],
         "margins": [_margin(one) for one in file.margins],
         "cycles": {one.name: {**_durations(one), "worse": one.worse} for one in file.cycles},
+        "choices": {one.name: _branch(one) for one in file.choices},
         "steps": {one.name: _durations(one) for one in file.steps},
         "changes": [_change(one) for one in file.changes],
         "left_out": list(file.left_out),
@@ -92,6 +93,12 @@ def _margin(change: MarginChange) -> Json:
 def _durations(change: DurationChange) -> Json:
     both = (("old", change.old), ("new", change.new))
     return {word: _duration(duration) for word, duration in both if duration is not None}
+
+
+def _branch(change: DurationChange) -> Json:
+    """Which way is typical nobody says."""
+    both = (("old", change.old), ("new", change.new))
+    return {word: {"min_us": one.least, "max_us": one.greatest} for word, one in both if one is not None}
 
 
 def _duration(duration: Duration) -> Json:

@@ -13,8 +13,6 @@ import sys
 from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING
 
-from seqcheck.report.files import write_file
-from seqcheck.report.plain import plain
 from seqcheck.report.terminal import encoding_of, write_lines, write_text
 
 if TYPE_CHECKING:
@@ -40,6 +38,8 @@ def send(text: str) -> str | None:
 
 def save(text: str, name: str) -> str | None:
     """A text in the file ``name``."""
+    from seqcheck.report.files import write_file
+
     try:
         write_file(name, text)
     except (OSError, ValueError) as fault:
@@ -49,6 +49,8 @@ def save(text: str, name: str) -> str | None:
 
 def complain(message: str) -> None:
     """One line on standard error, if that takes any."""
+    from seqcheck.report.plain import plain
+
     with contextlib.suppress(OSError):
         print(f"seqcheck: error: {plain(message, encoding_of(sys.stderr))}", file=sys.stderr, flush=True)
 

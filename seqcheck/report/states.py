@@ -22,7 +22,9 @@ def state_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
     if shown.problems:
         return report_lines(shown, encoding)
     heading = f"{title(shown)}: {counted(len(shown.states), 'state')}, {counted(len(shown.runs), 'run')}"
-    times = [one.duration for one in (*shown.runs, *shown.choices)] + [time for _, time in shown.cycles]
+    times = [run.duration for run in shown.runs]
+    times += [one.duration for one in shown.choices]
+    times += [time for _, time in shown.cycles]
     return (
         *paragraph(heading if is_whole(shown) else f"{heading}, and not all that there are", 0, 4, Tone.TITLE),
         BLANK,

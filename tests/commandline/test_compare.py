@@ -283,3 +283,58 @@ def test_two_runs_give_the_same_bytes(here: Path, capsys: Output) -> None:
         pages.append(capsys.readouterr().out)
     assert pages[:2] == pages[2:]
     assert str(here) not in "".join(pages)
+
+
+# Choices
+
+#: By hand: a step with a dwell of D takes D to D + 12 ms (the wait for a read), so does a cycle of one of them.
+SORTER = """machine "Sorter"
+controller { scan 8..12 ms }
+signal good from outside
+sequence main {
+    step look { dwell 100 ms }
+    choose {
+        when good { step keep { dwell 200 ms } }
+        otherwise { step drop { dwell 400 ms } }
+    }
+}
+"""
+LONGER = f"# Reviewed.\n{SORTER.replace('dwell 200 ms', 'dwell 300 ms')}"
+
+
+def test_a_cycle_by_choice_that_changed_is_told_and_is_not_worse(here: Path, capsys: Output) -> None:
+    """The greatest cycle is the other branch's, which stays."""
+    for name, text in (("old.steps", SORTER), ("new.steps", LONGER)):
+        Path(name).write_text(text, encoding="utf-8")
+    assert main(["compare", "old.steps", "new.steps"]) == 0
+    out = " ".join(capsys.readouterr().out.split())
+    assert "Cycle times by choice main, when in line 8 100 ms slower at most, 100 ms slower at least" in out
+    assert ": 400..424 ms, was 300..324 ms" in out
+    (found,) = compared(capsys, "old.steps", "new.steps")
+    told = {
+        "main, when in line 8": {
+            "old": {"min_us": 300_000, "max_us": 324_000},
+            "new": {"min_us": 400_000, "max_us": 424_000},
+        }
+    }
+    assert (found["choices"], found["verdict"]) == (told, "changed")
+    stored(here, "old.steps")
+    assert compared(capsys, "base.json", "new.steps")[0]["choices"] == told
+    older = json.loads(Path("base.json").read_text(encoding="utf-8"))
+    del older["reports"][0]["choices"]
+    Path("base.json").write_text(json.dumps(older), encoding="utf-8")
+    assert compared(capsys, "base.json", "new.steps")[0]["choices"] == {}
+
+
+def test_a_choice_with_another_branch_is_left_out_and_said_so(here: Path, capsys: Output) -> None:
+    more = SORTER.replace("otherwise", "when start { step stop { dwell 1 s } }\n        otherwise")
+    for name, text in (("old.steps", SORTER), ("new.steps", f"signal start from outside\n{more}")):
+        Path(name).write_text(text, encoding="utf-8")
+    (found,) = compared(capsys, "old.steps", "new.steps")
+    assert found["choices"] == {}
+    assert found["left_out"] == [
+        "the choices of main have more branches or fewer, so its cycle times by choice are not compared"
+    ]
+    main(["compare", "old.steps", "new.steps"])
+    out = capsys.readouterr().out
+    assert "Against old.steps" in out and "the stored report" not in out

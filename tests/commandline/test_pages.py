@@ -39,6 +39,7 @@ def test_version(capsys: Output) -> None:
         ["check", "--help"],
         ["times", "--help"],
         ["margins", "--help"],
+        ["graph", "--help"],
         ["compare", "--help"],
         ["explain", "--help"],
         ["new", "--help"],

@@ -9,13 +9,15 @@ import pytest
 from seqcheck.compare.differences import Difference, MarginChange, growth, loss
 from seqcheck.compare.results import (
     Bar,
+    choice_changes,
     cycle_changes,
     finding_changes,
     margin_changes,
     step_changes,
     under_new_names,
+    with_other_choices,
 )
-from seqcheck.machine.findings import Duration, Finding, Margin, Report, Severity
+from seqcheck.machine.findings import ChoiceTime, Duration, Finding, Margin, Report, Severity
 from tests.report.samples import healthy, no_watchdog, place, short_pulse
 
 
@@ -144,3 +146,31 @@ def test_a_renamed_step_keeps_its_results() -> None:
     new = under_new_names(old, {"main.tap": "main.hit"})
     assert (new.findings[0].subject, new.findings[0].step) == ("main.hit", "main.hit")
     assert (new.margins[0].subject, new.margins[0].step, new.steps[0][0]) == ("main.hit", "main.hit", "main.hit")
+
+
+def by_choice(*greatest: int | None, line: int = 20, sequence: str = "main") -> Report:
+    choices = [
+        ChoiceTime(sequence, place(line + number), f"when in line {line + number}", Duration(1_000, 1_000, one))
+        for number, one in enumerate(greatest)
+    ]
+    return Report("a.steps", "A", choices=tuple(choices))
+
+
+def test_branches_are_told_apart_by_their_order_wherever_they_stand() -> None:
+    assert choice_changes(by_choice(2_000, None), by_choice(2_000, None, line=31)) == ()
+    (change,) = choice_changes(by_choice(2_000, None), by_choice(2_000, 9_000, line=31))
+    assert (change.name, change.worse) == ("main, when in line 32", False)
+    assert (change.old, change.new) == (Duration(1_000, 1_000, None), Duration(1_000, 1_000, 9_000))
+
+
+def test_a_typical_time_by_choice_that_nobody_gives_is_no_difference() -> None:
+    new = by_choice(2_000)
+    usual = replace(new, choices=(replace(new.choices[0], duration=Duration(1_000, 1_500, 2_000)),))
+    assert choice_changes(new, usual) == ()
+
+
+def test_choices_with_other_branches_are_not_held_against_each_other() -> None:
+    old, new = by_choice(2_000, 3_000), by_choice(9_000)
+    assert choice_changes(old, new) == ()
+    assert with_other_choices(old, new) == ("main",)
+    assert with_other_choices(old, by_choice(9_000, 9_000)) == with_other_choices(by_choice(), new) == ()

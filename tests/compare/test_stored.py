@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from typing import Any
 
 import pytest
@@ -12,10 +13,10 @@ from hypothesis import strategies as st
 from seqcheck.compare.names import matched
 from seqcheck.compare.stored import FORMAT, is_stored, stored_reports
 from seqcheck.language.source import Source
-from seqcheck.machine.findings import Problem, Report
+from seqcheck.machine.findings import ChoiceTime, Duration, Problem, Report
 from seqcheck.report import json as written
 from seqcheck.report.json import render_json
-from tests.report.samples import healthy, no_watchdog, short_pulse, unreadable
+from tests.report.samples import healthy, no_watchdog, place, short_pulse, unreadable
 
 
 def stored(text: str) -> tuple[Report, ...] | Problem:
@@ -46,6 +47,27 @@ def test_what_is_written_is_read_back() -> None:
     ]
     assert broken.verdict == "unreadable"
     assert broken.problems[0].message == "there is no valve V9; did you mean V1?"
+
+
+def with_choices() -> Report:
+    durations = (Duration(1_905_000, 1_905_000, 2_374_000), Duration(2_000_000, 2_000_000, None))
+    choices = [ChoiceTime("main", place(27 + n, 9), f"when in line {27 + n}", one) for n, one in enumerate(durations)]
+    return replace(healthy(), choices=tuple(choices))
+
+
+def test_cycles_by_choice_are_read_back_and_may_be_missing() -> None:
+    """Reports that were stored before there were any have no such key."""
+    text = render_json([with_choices()])
+    back = stored(text)
+    assert not isinstance(back, Problem)
+    assert [(one.sequence, one.place.line, one.way, one.duration) for one in back[0].choices] == [
+        (one.sequence, one.place.line, one.way, one.duration) for one in with_choices().choices
+    ]
+    older = json.loads(text)
+    del older["reports"][0]["choices"]
+    before = stored(json.dumps(older))
+    assert not isinstance(before, Problem)
+    assert before[0].choices == () and before[0].cycles == with_choices().cycles
 
 
 def test_the_version_that_is_written_can_be_read() -> None:
@@ -90,11 +112,11 @@ def damaged(value: Any) -> list[Any]:
 
 
 def test_damage_anywhere_is_refused_or_in_what_a_comparison_does_not_ask() -> None:
-    whole = json.loads(render_json([healthy(short_pulse())]))
+    whole = json.loads(render_json([replace(with_choices(), findings=(short_pulse(),))]))
     texts = [json.dumps(one) for one in damaged(whole)]
     found = [stored(text) for text in texts]
     assert len([one for one in found if isinstance(one, Problem)]) > 50
-    # The rest: verdict, proved_under, handovers, runs, and names of steps and cycles that are gone altogether.
+    # The rest: verdict, proved_under, handovers, runs, all choices, and steps and cycles that are gone altogether.
     kept = [one for one in found if not isinstance(one, Problem)]
     assert all(report[0].file == "stapler.steps" for report in kept)
 
@@ -103,7 +125,9 @@ ANYTHING = st.recursive(
     st.none() | st.booleans() | st.integers() | st.floats() | st.text(max_size=5),
     lambda inner: (
         st.lists(inner, max_size=3)
-        | st.dictionaries(st.sampled_from(["file", "machine", "findings", "errors", "cycles", "steps", "x"]), inner)
+        | st.dictionaries(
+            st.sampled_from(["file", "machine", "findings", "errors", "cycles", "steps", "choices", "x"]), inner
+        )
     ),
     max_leaves=10,
 )

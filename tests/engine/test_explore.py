@@ -39,14 +39,13 @@ def test_a_machine_without_choices_is_played_once() -> None:
 
 
 @pytest.mark.parametrize("count", [10, 20, 40])
-def test_choices_in_a_row_cost_two_plays_and_four_runs_each(count: int) -> None:
-    """A thousand ways for ten choices: the plays are as many as the choices have outcomes. (Two more for the very first
-    choice, which the machine comes to at rest only once.)"""
+def test_choices_in_a_row_cost_a_play_and_two_runs_each(count: int) -> None:
+    """A thousand ways for ten choices, and twenty runs from state to state."""
     graph = explored(choices_in_a_row(count))
     assert graph.complete
-    assert len(graph.settlements) == 2 * count + 2
+    assert len(graph.settlements) == count + 1
     timed = timed_states(graph)
-    assert (len(timed.states), len(timed.runs)) == (2 * count + 4, 4 * count + 5)
+    assert (len(timed.states), len(timed.runs)) == (count + 1, 2 * count + 1)
 
 
 def test_both_outcomes_join_where_the_machine_is_the_same_again() -> None:

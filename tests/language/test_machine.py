@@ -6,6 +6,9 @@ from pathlib import Path
 
 import pytest
 
+from seqcheck.language.layout import laid_out
+from seqcheck.language.problems import Problems
+from seqcheck.language.source import Source
 from seqcheck.machine.conditions import AllOf, AnyOf, Not, Term, TermKind
 from seqcheck.machine.devices import ControllerKind, OnConditions, OnValve, Position, Stroke, ValveReturn
 from seqcheck.machine.model import steps_of
@@ -251,6 +254,22 @@ def test_what_rules_see() -> None:
     ]
     assert (rule.tolerated, rule.why) == (5_000, None)
     assert rule.text == "never A.between and V2.center and W.closed for 5 ms"
+
+
+def test_the_text_of_a_rule_is_the_rule_as_it_would_be_laid_out() -> None:
+    rules = (
+        "never  ( A . extended\n and not\tV2.a ) or main . A+2   for  0.5\n ms",
+        "limit    from main . A+\n  to not( V2 .a)   0.1\n ..\n 1.2   s",
+        "limit\n cycle   main 20s",
+        "limit from Y1 to a1 900 ms .. 1.2 s",
+    )
+    text = "\n".join((*rules, DEVICES, "sequence main { A+ A- A+ A- }"))
+    laid = laid_out(Source("press.steps", text), Problems())
+    assert laid is not None
+    assert [rule.text for rule in machine(text).rules] == laid.splitlines()[: len(rules)]
+    assert machine(f'{rules[0]} # why\n "they  meet" {DEVICES} sequence main {{ A+ A- A+ A- }}').rules[0].text == (
+        "never (A.extended and not V2.a) or main.A+2 for 0.5 ms"
+    )
 
 
 def test_limits() -> None:

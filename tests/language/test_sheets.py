@@ -108,6 +108,23 @@ def test_a_sheet_of_standard_input_lies_in_the_current_folder(tmp_path: Path, mo
     assert machine(text, name="-").coils["Y"].on == Span.exactly(2_000)
 
 
+@pytest.mark.parametrize("written", ["-", "./-"])
+def test_a_sheet_is_not_read_from_standard_input(written: str, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Standard input may hold the text itself, or nothing at all: reading it would wait for ever."""
+    monkeypatch.setattr("sys.stdin", None)
+    text = f'machine "x"\n  timing "{written}" valve V 5/2 spring {{ coil Y }} sequence m {{ step x {{ }} }}'
+    advice = "a timing sheet is not read from standard input | give it a file of its own"
+    assert told(problems(text)) == [f"2:10 {advice}"]
+    (problem,) = problems(text.replace(f'timing "{written}"', ""), "-")
+    assert (problem.place.file, *told([problem])) == ("-", f"1:1 {advice}")
+
+
+def test_a_sheet_may_be_called_as_standard_input_is(tmp_path: Path) -> None:
+    (tmp_path / "-").write_text("valves:\n  V: {on: 1 ms, off: 1 ms}\n", encoding="utf-8")
+    text = 'timing "-" valve V 5/2 spring { coil Y } sequence m { step x { on Y dwell 1 s } }'
+    assert machine(text, name=str(tmp_path / "a.steps")).coils["Y"].on.least == 1_000
+
+
 def test_a_missing_sheet_is_told_where_it_is_named(tmp_path: Path) -> None:
     name = str(tmp_path / "x.steps")
     found = problems(

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from tests.outside.controllers import Read
-from tests.outside.plant import ms
+from tests.outside.plant import Derived, Lasted, Valve, Waits, ms
 from tests.outside.station import Course, Station
 from tests.outside.stations import BACK, END, Scanned
 
@@ -155,3 +155,79 @@ class CorkFeeder(OutAndBack):
     def cycle(self, read: Read) -> Course:
         read = yield from self.step(read, also=self.set("Y"), until="out")
         return (yield from self.step(read, also=self.reset("Y"), dwell=450))
+
+
+class CrateScale(Scanned):
+    def build(self) -> None:
+        pan = self.spring("YP1", ms(18, 28), ms(25, 40))
+        self.coil("KR")
+        self.cylinder(pan, (*ms(380, 450), 440_000), ms(300, 360), {"BP1": BACK, "BP2": END})
+
+    def cycle(self, read: Read) -> Course:
+        read = yield from self.step(read, also=self.set("YP1"))
+        read = yield from self.step(read, dwell=460)
+        if self.plc.sees("BP2"):
+            read = yield from self.step(read, dwell=300)
+        else:
+            read = yield from self.step(read, on="KR", dwell=500)
+        return (yield from self.step(read, also=self.reset("YP1"), until="BP1"))
+
+
+class FreshRinser(Scanned):
+    """``lasted``: how long fill and drain valve were open together, each time."""
+
+    def build(self) -> None:
+        fill = Valve(self.env, self.draw, self.coil("MF1"), self.coil("MF2"), None, ms(900, 1200))
+        drain = self.spring("YD1", ms(20, 40), ms(30, 60))
+        shut, closed = fill.reached["b"], drain.reached["b"]
+        self.lasted = Lasted(self.env, Derived(lambda: not shut.on and not closed.on, shut, closed)).times
+
+    def cycle(self, read: Read) -> Course:
+        read = yield from self.step(read, on="MF1", dwell=6000)
+        self._hold("YD1", 1, read)
+        read = yield from self.step(read, on="MF2", dwell=8000)
+        self._hold("YD1", -1, read)
+        return (yield from self.step(read, dwell=1000))
+
+
+class LidGluer(Scanned):
+    """``lasted``: from the glue gun on to the lid seen on, each time."""
+
+    def build(self) -> None:
+        lid = self.spring("YL1", ms(18, 28), ms(25, 40))
+        gun = self.coil("KG")
+        self.cylinder(lid, ms(900, 1300), ms(700, 900), {"BL1": BACK, "BL2": END})
+        self.lasted: list[int] = []
+        self._since = 0
+        gun.tell.append(self._glue)
+
+    def _glue(self, on: bool) -> None:
+        if on:
+            self._since = round(self.env.now)
+
+    def cycle(self, read: Read) -> Course:
+        read = yield from self.step(read, on="KG", dwell=200)
+        read = yield from self.step(read, also=self.set("YL1"), until="BL2")
+        self.lasted.append(read.time - self._since)
+        read = yield from self.step(read, dwell=2000)
+        return (yield from self.step(read, also=self.reset("YL1"), until="BL1"))
+
+
+class BottleSorter(Scanned):
+    """The lamp blinks beside, and nobody waits for it."""
+
+    def build(self) -> None:
+        flap = self.spring("Y1", ms(18, 28), ms(25, 40))
+        self.coil("H1")
+        self.cylinder(flap, ms(180, 220), ms(160, 200), {"B1": BACK, "B2": END})
+        self.env.process(self._lamp())
+
+    def cycle(self, read: Read) -> Course:
+        read = yield from self.step(read, also=self.set("Y1"), until="B2")
+        return (yield from self.step(read, also=self.reset("Y1"), until="B1"))
+
+    def _lamp(self) -> Waits:
+        read = yield from self.plc.start()
+        while True:
+            read = yield from self.step(read, on="H1", dwell=500)
+            read = yield from self.step(read, dwell=500)

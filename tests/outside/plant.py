@@ -48,6 +48,21 @@ class Derived(Line):
             line.tell.append(lambda _: self.put(holds()))
 
 
+class Lasted:
+    """How long a line was on, each time that it has gone off again."""
+
+    def __init__(self, env: simpy.Environment, line: Line) -> None:
+        self.times: list[int] = []
+        self._env, self._since = env, 0
+        line.tell.append(self._note)
+
+    def _note(self, on: bool) -> None:
+        if on:
+            self._since = round(self._env.now)
+        else:
+            self.times.append(round(self._env.now) - self._since)
+
+
 class Delayed(Line):
     """Follows another line; a change that is taken back before its delay is over never shows."""
 

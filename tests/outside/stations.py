@@ -94,7 +94,7 @@ class BinShaker(Station):
 
 class RinseSkid(Station):
     """The stirrer's sequence runs beside. The water is cloudy now and then: never where all times are least, typical or
-    greatest."""
+    greatest. ``rounds``: how often each cycle fills and drains the vessel."""
 
     PATIENCE = 900_000_000
     TASK, RUN, INPUT, OUTPUT = ms(20), ms(2, 6), ms(2, 4), ms(0.5, 1)
@@ -110,12 +110,15 @@ class RinseSkid(Station):
         self.follows("dosed", Derived(lambda: not shut.on, shut), ms(8_000, 11_000), ms(100, 300))
         running_out = Derived(lambda: not closed.on and not no_vent.on, closed, no_vent)
         self.follows("low", running_out, ms(5_000, 8_000), ms(200, 500))
+        self.rounds: list[int] = []
         self.env.process(self._stirrer())
 
     def cycle(self, read: Read) -> Course:
         read = yield from self.outside(read)
+        self.rounds.append(0)
         cloudy = True
         while cloudy:
+            self.rounds[-1] += 1
             read = yield from self.step(read, on="M1", until="dosed")
             read = yield from self.step(read, on="M2", dwell=1500)
             self.plc.remember("stir", True, read)

@@ -55,6 +55,9 @@ def worse() -> FileComparison:
             watchdog(70_000, None, GONE),
         ),
         cycles=(DurationChange("main", Duration(1_000, 2_000, 3_000), Duration(1_000, 2_000, 15_000), True),),
+        choices=(
+            DurationChange("main, when in line 9", Duration(1_000, 1_000, 3_000), Duration(1_000, 1_000, None), False),
+        ),
         steps=(
             DurationChange(
                 "main.clamp+", Duration(408_500, 457_750, 495_000), Duration(408_500, 457_750, 507_000), False
@@ -75,7 +78,7 @@ SAME = FileComparison("old/a.steps", "new/a.steps", "A")
 UNREADABLE = FileComparison("old/b.steps", "new/b.steps", None, (unknown_valve(),), compared=False)
 ADDED = FileComparison(None, "new/c.steps", "C", findings=(FindingChange(NEW, short_pulse(), None, True),))
 REMOVED = FileComparison("old/d.steps", None, "D")
-STORED = FileComparison("a.steps", "a.steps", "A", left_out=("the old side is a stored report",))
+STORED = FileComparison("a.steps", "a.steps", "A", left_out=("the old side is a stored report",), stored=True)
 
 
 @pytest.mark.parametrize(

@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from seqcheck.machine.findings import Problem
+from seqcheck.machine.findings import ChoiceTime, Duration, Problem
 from seqcheck.report.json import render_json
 from tests.report.samples import ASSUMPTIONS, SHEETS, healthy, place, short_pulse, unknown_valve, unreadable
 
@@ -83,6 +83,7 @@ def test_the_whole_object_key_by_key() -> None:
                         "margin_us": None,
                     },
                 ],
+                "choices": [],
             }
         ],
     }
@@ -90,10 +91,25 @@ def test_the_whole_object_key_by_key() -> None:
 
 def test_keys_stand_in_the_order_of_the_description() -> None:
     report = json.loads(render_json([healthy(short_pulse())]))["reports"][0]
-    assert " ".join(report) == ("file machine verdict findings errors proved_under cycles steps handovers margins")
+    assert " ".join(report) == (
+        "file machine verdict findings errors proved_under cycles steps handovers margins choices"
+    )
     assert " ".join(report["findings"][0]) == (
         "kind severity certain subject step line column message margin_us replayed witness"
     )
+
+
+def test_a_cycle_by_choice_has_its_branch_and_no_typical_time() -> None:
+    choices = (
+        ChoiceTime("main", place(27, 9), "when in line 27", Duration(1_905_000, 1_905_000, 2_374_000)),
+        ChoiceTime("main", place(28, 9), "otherwise in line 28", Duration(2_000_000, 2_000_000, None)),
+    )
+    report = json.loads(render_json([replace(healthy(), choices=choices)]))["reports"][0]
+    assert list(report)[-1] == "choices"
+    assert report["choices"] == [
+        {"sequence": "main", "line": 27, "way": "when in line 27", "min_us": 1905000, "max_us": 2374000},
+        {"sequence": "main", "line": 28, "way": "otherwise in line 28", "min_us": 2000000, "max_us": None},
+    ]
 
 
 def test_an_unreadable_text_has_its_errors_and_no_machine() -> None:
@@ -101,7 +117,7 @@ def test_an_unreadable_text_has_its_errors_and_no_machine() -> None:
     assert report["machine"] is None
     assert report["verdict"] == "unreadable"
     assert report["errors"] == [{"line": 3, "column": 18, "message": "there is no valve V9; did you mean V1?"}]
-    assert report["findings"] == report["margins"] == report["handovers"] == []
+    assert report["findings"] == report["margins"] == report["handovers"] == report["choices"] == []
     assert report["cycles"] == report["steps"] == {}
     assert report["proved_under"] == {"times": [], "assumptions": []}
 

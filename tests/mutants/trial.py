@@ -1,0 +1,119 @@
+"""One mutant, tried: the changed file in a copy of the checkout, and the tests that might see it.
+
+Takes a copy, a mutant, tests; gives how it ended. A trial is a forked process, so that the libraries are loaded once; it
+may take twenty seconds and ten times what its tests take without the change, and four gigabytes. Over that it counts as
+seen: a change that hangs does not pass unnoticed. Refuses systems that cannot fork.
+"""
+
+from __future__ import annotations
+
+import contextlib
+import multiprocessing
+import os
+import resource
+import signal
+import sys
+from collections.abc import Sequence
+from enum import Enum
+from pathlib import Path
+
+import pytest
+
+from tests.mutants.draw import Mutant
+from tests.mutants.reach import Reach
+
+_MEMORY = 4 << 30
+
+#: The tests ran to an end, or the changed module could not even be loaded.
+_RAN = (pytest.ExitCode.OK, pytest.ExitCode.TESTS_FAILED, pytest.ExitCode.INTERRUPTED)
+_KILLED_BY_SYSTEM = (-signal.SIGSEGV, -signal.SIGKILL, -signal.SIGABRT)
+
+#: The tests that take longer, run for what the quick ones let pass.
+SLOW = (
+    "tests/test_explanations.py",
+    "tests/test_reserve.py",
+    "tests/test_accepting.py",
+    "tests/outside",
+    "tests/relations",
+    "tests/oracle",
+)
+SLOW_SECONDS = 900.0
+
+
+class Outcome(Enum):
+    QUICK = "killed by the quick tests"
+    SLOW = "killed by the slow tests"
+    TIMEOUT = "killed: out of time"
+    SURVIVED = "survived"
+
+
+class _Chosen:
+    """A pytest plugin: only these tests, in this order."""
+
+    def __init__(self, tests: Sequence[str], leave: Sequence[str]) -> None:
+        self._order = {test: index for index, test in enumerate(tests)}
+        self._leave = frozenset(leave)
+
+    @pytest.hookimpl(trylast=True)
+    def pytest_collection_modifyitems(self, items: list[pytest.Item]) -> None:
+        items[:] = [item for item in items if item.nodeid not in self._leave]
+        if self._order:
+            items[:] = [item for item in items if item.nodeid in self._order]
+            items.sort(key=lambda item: self._order[item.nodeid])
+
+
+def _run(copy: Path, paths: Sequence[str], tests: Sequence[str], leave: Sequence[str]) -> None:
+    os.chdir(copy)
+    os.setpgid(0, 0)
+    resource.setrlimit(resource.RLIMIT_AS, (_MEMORY, _MEMORY))
+    sys.dont_write_bytecode = True
+    for module in [name for name in sys.modules if name.split(".")[0] in ("seqcheck", "tests")]:
+        del sys.modules[module]
+    sys.path[:] = [str(copy), *(one for one in sys.path if one)]
+    loaded_before = "ignore::pytest.PytestAssertRewriteWarning"
+    with open(os.devnull, "w", encoding="utf-8") as nothing, contextlib.redirect_stdout(nothing):
+        status = pytest.main(
+            ["-x", "-q", "-p", "no:cacheprovider", "--tb=no", "-W", loaded_before, *paths],
+            plugins=[_Chosen(tests, leave)],
+        )
+    os._exit(int(status))
+
+
+def passes(copy: Path, paths: Sequence[str], tests: Sequence[str], leave: Sequence[str], seconds: float) -> bool | None:
+    """Whether the tests pass in the copy as it stands; None when the time is up.
+
+    Raises RuntimeError when they were not run at all, which says nothing about the copy.
+    """
+    child = multiprocessing.get_context("fork").Process(target=_run, args=(copy, paths, tests, leave))
+    child.start()
+    child.join(seconds)
+    if child.is_alive():
+        child.kill()
+        child.join()
+        return None
+    if child.exitcode not in (*_RAN, *_KILLED_BY_SYSTEM):
+        raise RuntimeError(f"the tests were not run: status {child.exitcode}")
+    return child.exitcode == 0
+
+
+def tried(copy: Path, mutant: Mutant, reach: Reach, leave: Sequence[str], *, slow: bool) -> Outcome:
+    """The mutant put into the copy, the tests run, the copy put right again."""
+    file = copy / mutant.file
+    sound = file.read_text(encoding="utf-8")
+    changed = mutant.text(copy)
+    assert changed is not None
+    file.write_text(changed, encoding="utf-8")
+    try:
+        tests = reach.of(mutant)
+        if tests:
+            seconds = 20 + 10 * sum(reach.seconds[test] for test in tests)
+            passed = passes(copy, sorted({test.partition("::")[0] for test in tests}), tests, leave, seconds)
+            if not passed:
+                return Outcome.TIMEOUT if passed is None else Outcome.QUICK
+        if slow:
+            passed = passes(copy, SLOW, (), leave, SLOW_SECONDS)
+            if not passed:
+                return Outcome.TIMEOUT if passed is None else Outcome.SLOW
+        return Outcome.SURVIVED
+    finally:
+        file.write_text(sound, encoding="utf-8")
