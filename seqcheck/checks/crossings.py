@@ -106,12 +106,15 @@ class Crossings:
             if part.within is not None and through is None
         ]
         best: dict[tuple[int, bool], Longest | None] = {}
+        opening: dict[int, list[tuple[Edge, Duration]]] = {}
+        for edge, part in self.parts.items():
+            if part.opens is not None:
+                opening.setdefault(edge[1], []).append((edge, part.opens))
         for state in self._in_order():
             if state is None:
                 return None
-            for edge, part in self.parts.items():
-                if edge[1] == state and part.opens is not None:
-                    _lengthen(best, (state, through is None), _longer(None, part.opens.greatest, edge))
+            for edge, span in opening.get(state, ()):
+                _lengthen(best, (state, through is None), _longer(None, span.greatest, edge))
             for passed in (False, True):
                 if (state, passed) not in best:
                     continue

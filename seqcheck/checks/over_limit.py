@@ -106,7 +106,10 @@ def longest_ways(studies: Sequence[Study]) -> list[Study]:
     found: dict[tuple[object, ...], Study] = {}
     for _, longest in _longest(studies):
         begin = longest.edges[0][0]
-        owner = next(one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
+        owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
+        owner = next(owners, None)
+        if owner is None:
+            continue  # Only a play that turns an order comes there, and what it draws cannot be drawn in another.
         before = owner.states.index(begin)
         chosen = [edge[2] for edge in longest.edges if edge[2] is not None]
         if len(longest.edges) > 1 and chosen:

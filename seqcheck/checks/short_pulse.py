@@ -45,12 +45,8 @@ def _change_after(study: Study, shift: Shift) -> tuple[Origin, int] | None:
 
 def _other_coil_comes_first(study: Study, shift: Shift, following: Spell) -> bool:
     released, again = study.time(shift.by.event), study.time(following.on)
-    return any(
-        released <= study.time(spell.on) <= again
-        for coil in study.machine.valves[shift.valve].coils
-        if coil != shift.by.coil
-        for spell in study.trace.spells.get(coil, ())
-    )
+    coils = study.machine.valves[shift.valve].coils
+    return any(study.energized_within(coil, released, again) for coil in coils if coil != shift.by.coil)
 
 
 def _switching_in_order(study: Study) -> Iterator[Obligation]:

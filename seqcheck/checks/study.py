@@ -124,6 +124,15 @@ class Study:
         return self._spell_by_event[switching]
 
     @cached_property
+    def _times_energized(self) -> dict[str, list[int]]:
+        return {coil: sorted(self.time(spell.on) for spell in spells) for coil, spells in self.trace.spells.items()}
+
+    def energized_within(self, coil: str, begin: int, end: int) -> bool:
+        """Whether a coil or output switches on from one typical time to another, both included."""
+        times = self._times_energized.get(coil, ())
+        return bisect_left(times, begin) < bisect_right(times, end)
+
+    @cached_property
     def _strokes_by_shift(self) -> dict[Shift, list[Stroke]]:
         found: dict[Shift, list[Stroke]] = {}
         for stroke in self.trace.strokes:

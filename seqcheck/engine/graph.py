@@ -181,15 +181,6 @@ class EventGraph:
         finally:
             self.assumed = assumed
 
-    @contextmanager
-    def not_counting(self) -> Iterator[None]:
-        """Meanwhile what is worked out does not count as work."""
-        work = self.work
-        try:
-            yield
-        finally:
-            self.work = work
-
     def as_networkx(self) -> networkx.DiGraph[int]:
         """The graph for other programs: nodes with ``what``, ``subject``, ``detail``, arcs with ``least`` and
         ``greatest`` in microseconds. Two delays between the same two events keep the arc of the greater one each."""
@@ -199,7 +190,9 @@ class EventGraph:
         for number, event in enumerate(self.events):
             graph.add_node(number, what=event.what, subject=event.subject, detail=event.detail)
             for arc in self.arcs[number]:
-                graph.add_edge(arc.cause, number, least=arc.span.least, greatest=arc.span.greatest)
+                known = graph.get_edge_data(arc.cause, number, {"least": arc.span.least, "greatest": arc.span.greatest})
+                least, greatest = max(known["least"], arc.span.least), max(known["greatest"], arc.span.greatest)
+                graph.add_edge(arc.cause, number, least=least, greatest=greatest)
         return graph
 
 

@@ -17,7 +17,7 @@ from dataclasses import dataclass, field
 from seqcheck.engine.bounds import both_ways, greatest_separations
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.order import Order
-from seqcheck.engine.orders import Orders
+from seqcheck.engine.orders import Orders, Waits
 from seqcheck.engine.player import Player
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.machine.model import Machine, items_of
@@ -105,6 +105,7 @@ class Scout:
         self._period = 0
         self._pool: list[int] = []
         self._seen_events = 0
+        self._waits = Waits()
 
     def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
         outcome = self._prefer(choice, outcomes)
@@ -177,7 +178,7 @@ class Scout:
         """What was open since the last state is taken to be as it was played."""
         trace = player.trace
         since, begin = self._looked_at(trace)
-        found = self._orders.open(trace, since, begin, trace.times[passage.at])
+        found = self._orders.open(trace, since, begin, trace.times[passage.at], self._waits)
         trace.graph.assumed += [(order.first, order.second) for order in found]
         self.path.orders += [(index - 1, order) for order in found]
 
@@ -186,7 +187,7 @@ class Scout:
         assert self.player is not None
         trace, passages = self.player.trace, self.path.passages
         since, begin = self._looked_at(trace)
-        found = self._orders.open(trace, since, begin, max(trace.times) + 1)
+        found = self._orders.open(trace, since, begin, max(trace.times) + 1, self._waits)
         trace.graph.assumed += [(order.first, order.second) for order in found]
         self.path.orders += [(len(passages) - 1, order) for order in found]
 

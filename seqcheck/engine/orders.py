@@ -16,10 +16,29 @@ from seqcheck.engine.branches import Branches
 from seqcheck.engine.choice_orders import choice_orders
 from seqcheck.engine.condition_orders import condition_orders, driven, followed, reached_positions
 from seqcheck.engine.order import Order
-from seqcheck.engine.trace import Effect, Touch, Trace, Wait
+from seqcheck.engine.trace import Choice, Effect, Touch, Trace, Visit, Wait
 from seqcheck.engine.wait_orders import alarm_orders, visit_orders
 from seqcheck.machine.model import Machine
 from seqcheck.machine.steps import CommandKind
+
+
+class Waits:
+    """The waits of a play that may still have orders that are open: what was over before some time has had them
+    found."""
+
+    def __init__(self) -> None:
+        self.visits: list[Visit] = []
+        self.choices: list[Choice] = []
+        self._begun = [0, 0]
+
+    def follow(self, trace: Trace, since: int) -> None:
+        """Take in what has begun, and let go what was over before ``since``, which never goes back."""
+        visits, choices = self._begun
+        self.visits += trace.visits[visits:]
+        self.choices += trace.choices[choices:]
+        self._begun = [len(trace.visits), len(trace.choices)]
+        self.visits = [visit for visit in self.visits if _is_of_late(trace, visit, since)]
+        self.choices = [choice for choice in self.choices if _is_of_late(trace, choice, since)]
 
 
 class Orders:
@@ -29,12 +48,14 @@ class Orders:
         self._followed = list(followed(machine))
         self._driven = list(driven(machine))
 
-    def open(self, trace: Trace, since: int, begin: int, end: int) -> list[Order]:
+    def open(self, trace: Trace, since: int, begin: int, end: int, waits: Waits | None = None) -> list[Order]:
         """Those whose second event came from ``begin`` to before ``end`` and that can be the other way round. What was
-        over before ``since`` has had its orders found."""
+        over before ``since`` has had its orders found; ``waits``: of the same play, as they were left last time."""
+        waits = Waits() if waits is None else waits
+        waits.follow(trace, since)
         found = [
             one
-            for one in self._all(trace, since, begin)
+            for one in self._all(trace, waits, begin)
             if one.first != one.second
             and trace.times[one.first] <= trace.times[one.second]
             and begin <= trace.times[one.second] < end
@@ -42,16 +63,15 @@ class Orders:
         rows = greatest_separations(trace.graph, ((one.second, one.first) for one in found))
         return [one for one in found if rows[one.second, one.first] >= (0 if one.strict else 1)]
 
-    def _all(self, trace: Trace, since: int, begin: int) -> Iterator[Order]:
+    def _all(self, trace: Trace, waits: Waits, begin: int) -> Iterator[Order]:
         yield from self._of_commands(trace, begin)
-        for visit in trace.visits:
-            if _is_of_late(trace, visit, since) and (len(visit.alternatives) > 1 or visit.alarm is not None):
+        for visit in waits.visits:
+            if len(visit.alternatives) > 1 or visit.alarm is not None:
                 yield from visit_orders(trace, visit)
-        for choice in trace.choices:
-            if _is_of_late(trace, choice, since):
-                yield from choice_orders(self._machine, trace, choice)
-                if choice.left is not None and choice.alarm is not None:
-                    yield from alarm_orders(trace, choice, ("choose", choice.choose.place))
+        for choice in waits.choices:
+            yield from choice_orders(self._machine, trace, choice)
+            if choice.left is not None and choice.alarm is not None:
+                yield from alarm_orders(trace, choice, ("choose", choice.choose.place))
         for name, condition in self._followed:
             yield from condition_orders(trace, trace.changes, name, condition, begin)
         if self._driven:

@@ -28,13 +28,14 @@ def regions_of(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
 
 
 def region_of(graph: EventGraph, stroke: Stroke) -> Region | None:
-    """The same for one stroke, by what has come so far."""
-    with graph.not_counting():
-        stands = _may_stand_at(graph, stroke)
-        if all(graph.never_later(stroke.end, at) for at in stands):
-            return None
+    """The same for one stroke, by what has come so far. No work that counts: in the end all are looked at again."""
+    work = graph.work
+    stands = _may_stand_at(graph, stroke)
+    region = None
+    if not all(graph.never_later(stroke.end, at) for at in stands):
         pairs = ((at, event) for event in _passings(stroke) for at in stands)
         region = _region(stroke, stands, greatest_separations(graph, both_ways(pairs)))
+    graph.work = work
     return None if region == stroke.stood else region
 
 

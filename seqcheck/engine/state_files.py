@@ -22,13 +22,13 @@ def as_networkx(states: Sequence[State], runs: Sequence[StateRun]) -> networkx.M
     graph: networkx.MultiDiGraph[int] = networkx.MultiDiGraph()
     for state in states:
         graph.add_node(state.number, name=state.name)
-    for run in runs:
+    for number, run in enumerate(runs):
         facts: dict[str, str | int] = {"least_us": run.duration.least, "typical_us": run.duration.typical}
         if run.duration.greatest is not None:
             facts["greatest_us"] = run.duration.greatest
         if run.way is not None:
             facts["way"] = run.way
-        graph.add_edge(run.begin, run.end, **facts)
+        graph.add_edge(run.begin, run.end, key=number, **facts)
     return graph
 
 

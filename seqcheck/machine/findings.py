@@ -85,7 +85,7 @@ class Handover:
 
 @dataclass(frozen=True, slots=True)
 class Duration:
-    """``greatest`` is None where an outside signal leaves it open."""
+    """``greatest`` is None where an outside signal, or a way that can go back again and again, leaves it open."""
 
     least: int
     typical: int

@@ -1,6 +1,6 @@
 """Times, margins and counts in words and in aligned columns.
 
-Takes whole microseconds, None where an outside signal leaves a time open; gives exact figures, nothing rounded.
+Takes whole microseconds, None where a time is open; gives exact figures, nothing rounded.
 """
 
 from __future__ import annotations
@@ -11,6 +11,7 @@ from seqcheck.language.durations import format_duration
 from seqcheck.machine.findings import Duration
 
 OPEN = "open"
+HANGS_ON = "hangs on signals from outside, or on how often a way goes back"
 
 
 def milliseconds(values: Sequence[int | None], decimals: int | None = None) -> tuple[str, ...]:
@@ -30,7 +31,7 @@ def spelled_range(duration: Duration) -> str:
     """``1.905 s to 2.374 s, typically 2.1395 s``."""
     least, typical = format_duration(duration.least), format_duration(duration.typical)
     if duration.greatest is None:
-        return f"at least {least}, typically {typical}, at most {OPEN} (hangs on signals from outside)"
+        return f"at least {least}, typically {typical}, at most {OPEN} ({HANGS_ON})"
     if duration.least == duration.greatest:
         return f"always {least}"
     return f"{least} to {format_duration(duration.greatest)}, typically {typical}"

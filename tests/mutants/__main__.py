@@ -88,11 +88,15 @@ def main() -> int:
         for test in reach.failing:
             print(f"left out, fails without a change: {test}", flush=True)
         _compile(first)
-        if not passes(first, sorted({test.partition('::')[0] for test in reach.seconds}), sorted(reach.seconds), reach.failing, CONTROL_SECONDS):
+        if not passes(
+            first,
+            sorted({test.partition("::")[0] for test in reach.seconds}),
+            sorted(reach.seconds),
+            reach.failing,
+            CONTROL_SECONDS,
+        ):
             raise RuntimeError("the quick tests do not pass without a change")
-        copies = [first] + [
-            shutil.copytree(first, Path(folder) / str(number)) for number in range(1, asked.processes)
-        ]
+        copies = [first] + [shutil.copytree(first, Path(folder) / str(number)) for number in range(1, asked.processes)]
         outcomes = _try_all(copies, drawn, reach, asked.slow)
     killed = len(drawn) - outcomes[Outcome.SURVIVED]
     for outcome in Outcome:

@@ -27,13 +27,15 @@ _SAME = ("ReplaceComparisonOperator_Is_Eq", "ReplaceComparisonOperator_IsNot_Not
 
 @dataclass(frozen=True, slots=True, order=True)
 class Mutant:
-    """One change: the ``occurrence``-th place in the file where the operator can act."""
+    """One change: the ``occurrence``-th place in the file where the operator can act. ``statement``: the first and the
+    last line of the statement around it."""
 
     file: str
     line: int
     column: int
     operator: str
     occurrence: int
+    statement: tuple[int, int]
 
     def text(self, checkout: Path) -> str | None:
         """The file with the change; None where it is no Python any more."""
@@ -59,6 +61,9 @@ def _mutants_of_file(checkout: Path, file: Path) -> list[Mutant]:
     name = file.relative_to(checkout).as_posix()
     lines = source.splitlines()
     unused = _annotations(source)
+    statements = [
+        (node.lineno, node.end_lineno or 0) for node in ast.walk(ast.parse(source)) if isinstance(node, ast.stmt)
+    ]
     nodes = list(ast_nodes(get_ast(source)))
     found = []
     for operator in operator_names():
@@ -69,8 +74,13 @@ def _mutants_of_file(checkout: Path, file: Path) -> list[Mutant]:
         for occurrence, (line, column) in enumerate(places):
             same = operator.endswith(_SAME) and _ONE_OF_A_KIND.match(lines[line - 1], column)
             if not same and not any(begin <= (line, column) < end for begin, end in unused):
-                found.append(Mutant(name, line, column, operator, occurrence))
+                found.append(Mutant(name, line, column, operator, occurrence, _around(statements, line)))
     return sorted(found)
+
+
+def _around(statements: list[tuple[int, int]], line: int) -> tuple[int, int]:
+    around = [one for one in statements if one[0] <= line <= one[1]]
+    return min(around, key=lambda one: one[1] - one[0], default=(line, line))
 
 
 def _annotations(source: str) -> list[tuple[tuple[int, int], tuple[int, int]]]:

@@ -1,7 +1,7 @@
 """Which test comes by which line, and how long it takes: learned from one run of the quick tests without a change.
 
-Takes a copy of the checkout; gives for every test its duration and the lines of the two folders that it runs. Lines that
-run while a module is imported belong to every test. A test that fails without a change is left out and named.
+Takes a copy of the checkout; gives for every test its duration and the lines of the two folders that it runs. Lines
+that run while a module is imported belong to every test. A test that fails without a change is left out and named.
 """
 
 from __future__ import annotations
@@ -19,7 +19,18 @@ import pytest
 
 from tests.mutants.draw import FOLDERS, Mutant
 
-QUICK = ("tests/cases", "tests/engine", "tests/checks", "tests/examples", "tests/report")
+QUICK = (
+    "tests/cases",
+    "tests/engine",
+    "tests/checks",
+    "tests/examples",
+    "tests/report",
+    "tests/commandline/test_assume.py",
+    "tests/commandline/test_graph.py",
+    "tests/test_explanations.py",
+    "tests/test_reserve.py",
+    "tests/test_accepting.py",
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,9 +41,14 @@ class Reach:
 
     def of(self, mutant: Mutant) -> list[str]:
         """The tests that come by the changed line, quickest first; all of them for a line run on import."""
-        at = self.lines.get((mutant.file, mutant.line), frozenset())
+        at = self.lines.get((mutant.file, mutant.line)) or self._of_statement(mutant)
         reaching = at - {""} if at != {""} else frozenset(self.seconds)
         return sorted(reaching & self.seconds.keys(), key=lambda test: (self.seconds[test], test))
+
+    def _of_statement(self, mutant: Mutant) -> frozenset[str]:
+        """For a line that no tracer stops at: whoever comes by another line of the statement that it belongs to."""
+        begin, end = mutant.statement
+        return frozenset().union(*(self.lines.get((mutant.file, line), ()) for line in range(begin, end + 1)))
 
 
 class _Listener:
@@ -70,7 +86,7 @@ def _measure(result: Path) -> None:
     measure = coverage.Coverage(data_file=None, include=[f"{here}/{folder}/*" for folder in FOLDERS])
     listener = _Listener(measure)
     measure.start()
-    folders = [folder for folder in QUICK if (here / folder).is_dir()]
+    folders = [folder for folder in QUICK if (here / folder).exists()]
     pytest.main(["-q", "-p", "no:cacheprovider", "--tb=no", *folders], plugins=[listener])
     measure.stop()
     lines: dict[tuple[str, int], set[str]] = defaultdict(set)

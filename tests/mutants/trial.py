@@ -1,8 +1,8 @@
 """One mutant, tried: the changed file in a copy of the checkout, and the tests that might see it.
 
-Takes a copy, a mutant, tests; gives how it ended. A trial is a forked process, so that the libraries are loaded once; it
-may take twenty seconds and ten times what its tests take without the change, and four gigabytes. Over that it counts as
-seen: a change that hangs does not pass unnoticed. Refuses systems that cannot fork.
+Takes a copy, a mutant, tests; gives how it ended. A trial is a forked process, so that the libraries are loaded once;
+it may take twenty seconds and ten times what its tests take without the change, and four gigabytes. Over that it counts
+as seen: a change that hangs does not pass unnoticed. Refuses systems that cannot fork.
 """
 
 from __future__ import annotations
@@ -29,14 +29,7 @@ _RAN = (pytest.ExitCode.OK, pytest.ExitCode.TESTS_FAILED, pytest.ExitCode.INTERR
 _KILLED_BY_SYSTEM = (-signal.SIGSEGV, -signal.SIGKILL, -signal.SIGABRT)
 
 #: The tests that take longer, run for what the quick ones let pass.
-SLOW = (
-    "tests/test_explanations.py",
-    "tests/test_reserve.py",
-    "tests/test_accepting.py",
-    "tests/outside",
-    "tests/relations",
-    "tests/oracle",
-)
+SLOW = ("tests/outside", "tests/relations", "tests/oracle")
 SLOW_SECONDS = 900.0
 
 

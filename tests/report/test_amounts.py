@@ -29,7 +29,8 @@ def test_ranges_in_words() -> None:
     assert spelled_range(Duration(1_905_000, 2_139_500, 2_374_000)) == "1.905 s to 2.374 s, typically 2.1395 s"
     assert spelled_range(Duration(5_000, 5_000, 5_000)) == "always 5 ms"
     open_range = spelled_range(Duration(5_000, 6_000, None))
-    assert open_range == "at least 5 ms, typically 6 ms, at most open (hangs on signals from outside)"
+    hangs = "hangs on signals from outside, or on how often a way goes back"
+    assert open_range == f"at least 5 ms, typically 6 ms, at most open ({hangs})"
 
 
 def test_counts() -> None:

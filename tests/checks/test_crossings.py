@@ -1,0 +1,116 @@
+"""Spells that go from run to run, on small graphs of states whose sums are done by hand."""
+
+from __future__ import annotations
+
+from seqcheck.checks.crossings import Crossings, Edge
+from seqcheck.machine.findings import Duration
+
+BEGINS: Edge = (0, 1, None, None)
+SHORT: Edge = (1, 2, None, 0)
+LONG: Edge = (1, 2, None, 1)
+ENDS: Edge = (2, 3, None, None)
+
+
+def forked() -> Crossings:
+    """Begins 10..20 before state 1, goes to state 2 in 5..8 or in 50..60, ends 3..4 behind it."""
+    found = Crossings()
+    found.part(BEGINS).opens = Duration(10, 15, 20)
+    found.part(SHORT).passes = Duration(5, 6, 8)
+    found.part(LONG).passes = Duration(50, 55, 60)
+    found.part(ENDS).closes = Duration(3, 3, 4)
+    return found
+
+
+def test_the_least_goes_the_short_way_and_the_greatest_the_long_one() -> None:
+    """10 + 5 + 3 and 20 + 60 + 4."""
+    assert forked().duration(30) == Duration(18, 30, 84)
+
+
+def test_through_one_way_only() -> None:
+    """10 + 50 + 3 and 20 + 60 + 4; 10 + 5 + 3 and 20 + 8 + 4."""
+    assert forked().duration(70, lambda edge: edge == LONG) == Duration(63, 70, 84)
+    assert forked().duration(30, lambda edge: edge == SHORT) == Duration(18, 30, 32)
+
+
+def test_the_way_on_which_it_ends_counts_and_that_on_which_it_begins_does_not() -> None:
+    """It begins behind the choice that leads there."""
+    assert forked().duration(30, lambda edge: edge == ENDS) == Duration(18, 30, 84)
+    assert forked().duration(30, lambda edge: edge == BEGINS) is None
+    assert forked().greatest(lambda edge: edge == BEGINS) is None
+
+
+def test_one_that_lies_within_a_run_counts_without_a_way() -> None:
+    found = forked()
+    found.part(SHORT).within = Duration(7, 8, 90)
+    assert found.duration(30) == Duration(7, 30, 90)
+    assert found.duration(30, lambda edge: edge == SHORT) == Duration(18, 30, 32)
+
+
+def test_several_beginnings_and_ends() -> None:
+    """Also from 2 to 2 + 3..4, and begun 1..100 before state 2: 1 + 3 at least, 100 + 4 at most."""
+    found = forked()
+    found.part((4, 2, None, None)).opens = Duration(1, 50, 100)
+    found.part((2, 5, None, None)).closes = Duration(6, 6, 6)
+    assert found.duration(30) == Duration(4, 30, 106)
+
+
+def test_in_a_row_of_states_all_are_added_up() -> None:
+    """1 + 2 + 4 + 8 + 16, and 10 times as much."""
+    found = Crossings()
+    found.part((5, 4, None, None)).opens = Duration(1, 1, 10)
+    found.part((4, 3, None, None)).passes = Duration(2, 2, 20)
+    found.part((3, 2, None, None)).passes = Duration(4, 4, 40)
+    found.part((2, 1, None, None)).passes = Duration(8, 8, 80)
+    found.part((1, 0, None, None)).closes = Duration(16, 16, 160)
+    assert found.duration(31) == Duration(31, 31, 310)
+
+
+def test_round_and_round_leaves_the_greatest_open() -> None:
+    found = forked()
+    found.part((2, 1, None, 0)).passes = Duration(7, 8, 9)
+    assert found.duration(30) == Duration(18, 30, None)
+
+
+def test_a_part_that_is_open_leaves_the_greatest_open() -> None:
+    for edge in (BEGINS, LONG, ENDS):
+        found = forked()
+        part = found.part(edge)
+        if part.opens is not None:
+            part.opens = Duration(10, 15, None)
+        elif part.passes is not None:
+            part.passes = Duration(50, 55, None)
+        else:
+            part.closes = Duration(3, 3, None)
+        assert found.duration(30) == Duration(18, 30, None)
+
+
+def test_the_short_way_stays_closed_when_the_long_one_is_open() -> None:
+    found = forked()
+    found.part(LONG).passes = Duration(50, 55, None)
+    assert found.duration(30, lambda edge: edge == SHORT) == Duration(18, 30, 32)
+
+
+def test_no_time_at_all_is_a_time() -> None:
+    """Begins at state 1 itself and ends at it."""
+    found = Crossings()
+    found.part(BEGINS).opens = Duration(0, 0, 0)
+    found.part((1, 2, None, None)).closes = Duration(0, 0, 0)
+    assert found.duration(0) == Duration(0, 0, 0)
+
+
+def test_what_never_ends_or_never_begins_is_no_spell() -> None:
+    assert Crossings().duration(0) is None
+    assert Crossings().greatest() is None
+    found = Crossings()
+    found.part(BEGINS).opens = Duration(1, 1, 1)
+    found.part(SHORT).passes = Duration(1, 1, 1)
+    assert found.duration(0) is None
+    found = Crossings()
+    found.part(ENDS).closes = Duration(1, 1, 1)
+    assert found.duration(0) is None
+
+
+def test_the_longest_names_its_way() -> None:
+    longest = forked().longest()
+    assert longest is not None
+    assert (longest.time, longest.edges) == (84, (BEGINS, LONG, ENDS))
