@@ -53,6 +53,9 @@ class Rounds:
         if self.player is not None and len(self.player.trace.cycles) > self._cycles:
             self.player.stop()
 
+    def step_comes_again(self, read: Read, step: str) -> None:
+        """Of no account here."""
+
 
 _FAULTY = Path(__file__).parents[2] / "examples" / "faulty"
 

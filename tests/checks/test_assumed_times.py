@@ -53,7 +53,8 @@ def test_steps_that_wait_for_a_cylinder_whose_valve_is_assumed_rest_on_it() -> N
     text = (
         "valve V1 5/2 spring { coil Y1  off 25..40 ms }\n"
         "cylinder clamp on V1 { extend 400 ms  retract 300 ms  sensor B1 at retracted  sensor B2 at extended }\n"
-        "output K1\nsequence main { every step within 9 s  step go { set Y1 } step lamp { on K1 } step there { until B2 }"
+        "output K1\nsequence main { every step within 9 s  step go { set Y1 } step lamp { on K1 }"
+        " step there { until B2 }"
         " step back { reset Y1  until B1 } }"
     )
     assert note_on(text).endswith("the figures of main.go, main.there, main.back")
