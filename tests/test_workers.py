@@ -64,12 +64,26 @@ def test_standard_input_is_read_where_it_is() -> None:
 
 
 @pytest.mark.parametrize("where", [0, 7, len(NAMES)])
-def test_a_text_whose_process_ends_is_told_and_all_others_are_examined(where: int) -> None:
-    reports, _ = examined([*NAMES[:where], "dies.steps", *NAMES[where:]])
-    unreadable = [report for report in reports if report.problems]
-    assert [report.file for report in unreadable] == ["dies.steps"]
-    assert "ended without a result" in unreadable[0].problems[0].message
-    assert unreadable[0].verdict == "unreadable"
+def test_a_text_whose_process_ends_is_told_and_all_others_are_examined(where: int, checkout: Path) -> None:
+    """In a process of its own: what runs the tests may take the end of a process for its own."""
+    names = [*NAMES[:where], "dies.steps", *NAMES[where:]]
+    program = (
+        "from tests.test_workers import examined\n"
+        "if __name__ == '__main__':\n"
+        f"    reports, _ = examined({names!r})\n"
+        "    for report in reports:\n"
+        "        print(report.file, report.verdict, *(problem.message for problem in report.problems))\n"
+    )
+    told = subprocess.run(
+        [sys.executable, "-c", program],
+        env={**os.environ, "PYTHONPATH": str(checkout)},
+        capture_output=True,
+        text=True,
+        check=True,
+    ).stdout.splitlines()
+    assert [line.split()[0] for line in told] == names
+    (unreadable,) = (line for line in told if line.split()[1] == "unreadable")
+    assert unreadable.startswith("dies.steps") and "ended without a result" in unreadable
 
 
 def test_a_fault_of_the_program_is_raised_as_it_is() -> None:

@@ -111,7 +111,7 @@ def enlarged(pdf: bytes) -> float:
     with pypdfium2.PdfDocument(pdf) as document:
         text = document[0].get_textpage()
         told = text.get_text_range()
-        sizes = [text.get_charbox(told.index(words), loose=True) for words in (SAFETY[:8], "page 1 of")]
+        sizes = [text.get_charbox(told.index(words), loose=True) for words in (SAFETY[:13], "page 1 of")]
         body, number = (top - bottom for _, bottom, _, top in sizes)
         return body / number
 

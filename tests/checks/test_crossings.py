@@ -114,3 +114,12 @@ def test_the_longest_names_its_way() -> None:
     longest = forked().longest()
     assert longest is not None
     assert (longest.time, longest.edges) == (84, (BEGINS, LONG, ENDS))
+
+
+def test_round_and_round_in_no_time_comes_to_an_end() -> None:
+    found = Crossings()
+    found.part(BEGINS).opens = Duration(5, 5, 5)
+    found.part(SHORT).passes = Duration(0, 0, 0)
+    found.part((2, 1, None, 0)).passes = Duration(0, 0, 0)
+    found.part(ENDS).closes = Duration(2, 2, 2)
+    assert found.duration(7) == Duration(7, 7, None)
