@@ -60,6 +60,7 @@ def test_each_literal_once_in_order() -> None:
         ("C", True),
     ]
     assert literals_of(alternatives_of(None)) == ()
+    assert literals_of(()) == ()
 
 
 def test_what_can_never_be_has_no_alternative() -> None:

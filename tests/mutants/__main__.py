@@ -1,8 +1,8 @@
 """``python -m tests.mutants``: which small changes of the engine and the checks do the tests notice?
 
 Takes how many mutants, from which seed, in how many processes; prints every one with its outcome and the share that
-was killed. ``--slow`` runs the tests that take long for those that the quick ones let pass. Works in copies of the
-checkout, never in the checkout. Needs cosmic-ray and coverage, and a system that can fork.
+was killed. Works in copies of the checkout, never in the checkout. Needs cosmic-ray and coverage, and a system that can
+fork.
 """
 
 from __future__ import annotations
@@ -30,7 +30,7 @@ import yaml  # noqa: F401
 
 from tests.mutants.draw import Mutant, mutants_of, sample
 from tests.mutants.reach import Reach, reach_of
-from tests.mutants.trial import SLOW, Outcome, passes, tried
+from tests.mutants.trial import Outcome, passes, tried
 
 CHECKOUT = Path(__file__).resolve().parents[2]
 CONTROL_SECONDS = 600.0
@@ -56,10 +56,10 @@ def _compile(copy: Path) -> None:
     )
 
 
-def _try_share(copy: Path, mutants: Sequence[Mutant], reach: Reach, slow: bool, results: multiprocessing.Queue) -> None:  # type: ignore[type-arg]
+def _try_share(copy: Path, mutants: Sequence[Mutant], reach: Reach, results: multiprocessing.Queue) -> None:  # type: ignore[type-arg]
     for mutant in mutants:
         begun = time.monotonic()
-        outcome = tried(copy, mutant, reach, reach.failing, slow=slow)
+        outcome = tried(copy, mutant, reach)
         results.put((mutant, outcome, time.monotonic() - begun))
 
 
@@ -68,7 +68,6 @@ def _arguments() -> argparse.Namespace:
     parser.add_argument("--number", type=int, default=300, help="how many mutants to draw (300)")
     parser.add_argument("--seed", type=int, default=7, help="the draw (7)")
     parser.add_argument("--processes", type=int, default=2, help="trials at a time (2)")
-    parser.add_argument("--slow", action="store_true", help=f"also run {', '.join(SLOW)} for the survivors")
     parser.add_argument("--only", nargs="*", default=(), metavar="FILE:LINE", help="of those drawn, only these")
     return parser.parse_args()
 
@@ -76,7 +75,6 @@ def _arguments() -> argparse.Namespace:
 def main() -> int:
     asked = _arguments()
     os.environ["CI"] = "1"  # properties draw the same in every trial
-    os.environ.setdefault("ORACLE_EXAMPLES", "30")
     everything = mutants_of(CHECKOUT)
     drawn = sample(everything, asked.number, asked.seed, CHECKOUT)
     if asked.only:
@@ -97,7 +95,7 @@ def main() -> int:
         ):
             raise RuntimeError("the quick tests do not pass without a change")
         copies = [first] + [shutil.copytree(first, Path(folder) / str(number)) for number in range(1, asked.processes)]
-        outcomes = _try_all(copies, drawn, reach, asked.slow)
+        outcomes = _try_all(copies, drawn, reach)
     killed = len(drawn) - outcomes[Outcome.SURVIVED]
     for outcome in Outcome:
         print(f"{outcomes[outcome]:5} {outcome.value}")
@@ -105,12 +103,12 @@ def main() -> int:
     return 0
 
 
-def _try_all(copies: Sequence[Path], drawn: Sequence[Mutant], reach: Reach, slow: bool) -> Counter[Outcome]:
+def _try_all(copies: Sequence[Path], drawn: Sequence[Mutant], reach: Reach) -> Counter[Outcome]:
     context = multiprocessing.get_context("fork")
     results = context.Queue()
     shares = [drawn[number :: len(copies)] for number in range(len(copies))]
     workers = [
-        context.Process(target=_try_share, args=(copy, share, reach, slow, results))
+        context.Process(target=_try_share, args=(copy, share, reach, results))
         for copy, share in zip(copies, shares, strict=True)
     ]
     for worker in workers:
@@ -121,7 +119,7 @@ def _try_all(copies: Sequence[Path], drawn: Sequence[Mutant], reach: Reach, slow
         outcomes[outcome] += 1
         operator = mutant.operator.partition("/")[2]
         print(
-            f"{outcome.value:26} {mutant.file}:{mutant.line}:{mutant.column} {operator} "
+            f"{outcome.value:19} {mutant.file}:{mutant.line}:{mutant.column} {operator} "
             f"#{mutant.occurrence}  {seconds:.1f} s",
             flush=True,
         )

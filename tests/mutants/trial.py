@@ -28,14 +28,9 @@ _MEMORY = 4 << 30
 _RAN = (pytest.ExitCode.OK, pytest.ExitCode.TESTS_FAILED, pytest.ExitCode.INTERRUPTED)
 _KILLED_BY_SYSTEM = (-signal.SIGSEGV, -signal.SIGKILL, -signal.SIGABRT)
 
-#: The tests that take longer, run for what the quick ones let pass.
-SLOW = ("tests/outside", "tests/relations", "tests/oracle")
-SLOW_SECONDS = 900.0
-
 
 class Outcome(Enum):
-    QUICK = "killed by the quick tests"
-    SLOW = "killed by the slow tests"
+    KILLED = "killed"
     TIMEOUT = "killed: out of time"
     SURVIVED = "survived"
 
@@ -89,24 +84,21 @@ def passes(copy: Path, paths: Sequence[str], tests: Sequence[str], leave: Sequen
     return child.exitcode == 0
 
 
-def tried(copy: Path, mutant: Mutant, reach: Reach, leave: Sequence[str], *, slow: bool) -> Outcome:
+def tried(copy: Path, mutant: Mutant, reach: Reach) -> Outcome:
     """The mutant put into the copy, the tests run, the copy put right again."""
     file = copy / mutant.file
     sound = file.read_text(encoding="utf-8")
     changed = mutant.text(copy)
     assert changed is not None
+    tests = reach.of(mutant)
+    if not tests:
+        return Outcome.SURVIVED
     file.write_text(changed, encoding="utf-8")
     try:
-        tests = reach.of(mutant)
-        if tests:
-            seconds = 20 + 10 * sum(reach.seconds[test] for test in tests)
-            passed = passes(copy, sorted({test.partition("::")[0] for test in tests}), tests, leave, seconds)
-            if not passed:
-                return Outcome.TIMEOUT if passed is None else Outcome.QUICK
-        if slow:
-            passed = passes(copy, SLOW, (), leave, SLOW_SECONDS)
-            if not passed:
-                return Outcome.TIMEOUT if passed is None else Outcome.SLOW
-        return Outcome.SURVIVED
+        seconds = 20 + 10 * sum(reach.seconds[test] for test in tests)
+        passed = passes(copy, sorted({test.partition("::")[0] for test in tests}), tests, reach.failing, seconds)
     finally:
         file.write_text(sound, encoding="utf-8")
+    if passed is None:
+        return Outcome.TIMEOUT
+    return Outcome.SURVIVED if passed else Outcome.KILLED
