@@ -62,8 +62,7 @@ def _widened(known: Duration | None, other: Duration | None) -> Duration | None:
     """The typical time is that of the first, which was played at typical times."""
     if known is None or other is None:
         return known or other
-    longest = None if known.greatest is None or other.greatest is None else max(known.greatest, other.greatest)
-    return Duration(min(known.least, other.least), known.typical, longest)
+    return known.widened(other)
 
 
 def _timed(study: Study) -> Iterator[tuple[Move, Duration | None]]:

@@ -14,8 +14,8 @@ from dataclasses import dataclass, replace
 from seqcheck.chart.asked import Unplaceable, Wish
 from seqcheck.checks.study import Study
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.explore import Recipe, Settlement, play
-from seqcheck.engine.guide import Path, Way
+from seqcheck.engine.explore import Recipe, Settlement, outcomes_before, play
+from seqcheck.engine.guide import Way
 from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
 from seqcheck.engine.strokes import Region
@@ -85,8 +85,9 @@ def _shown(machine: Machine, studies: Sequence[Study], settlement: Settlement, p
     if settlement is not typical.settlement:
         study = Study(machine, settlement, given(settlement.delays), typical.entered, typical.left)
     loop = None
-    if _loops(settlement) and path.first is not None and path.last is not None:
-        loop = (path.passages[path.first].at, path.passages[path.last].at)
+    if _loops(settlement) and path.round is not None:
+        begin, end = path.round
+        loop = (path.passages[begin].at, path.passages[end].at)
     return Shown(study, prefer, first, loop)
 
 
@@ -117,13 +118,7 @@ def _as_wished(
 
 def _loops(settlement: Settlement) -> bool:
     """Whether the play goes round without ever beginning its first sequence anew."""
-    path = settlement.path
-    return (
-        settlement.first == settlement.last
-        and path.first is not None
-        and path.last is not None
-        and path.first < path.last < len(path.passages)
-    )
+    return settlement.first == settlement.last and settlement.path.round is not None
 
 
 def _that_comes_round(
@@ -164,14 +159,10 @@ def _one_after_another(
             taken = branches.pop(0)
             outcome = next((one for one in passage.outcomes if one.taken == taken), passage.outcome)
             assert outcome is not None
-            way = Way((*_outcomes(settlement.path, number), outcome), number)
+            way = Way((*outcomes_before(settlement.path, number), outcome), number)
             settlement = play(machine, Recipe(way, settlement.delays), orders, {}, prefer)
         number += 1
     return settlement
-
-
-def _outcomes(path: Path, number: int) -> tuple[Outcome, ...]:
-    return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
 
 
 def choices_from(settlement: Settlement, first: int, choose: Choose) -> list[Choice]:
@@ -245,11 +236,10 @@ def long_enough(machine: Machine, shown: Shown, cycles: int) -> Shown:
     if len(trace.cycles) > needed or shown.loop is not None or trace.finished or trace.endless:
         return shown
     regions = {**dict(_further_regions(settlement, cycles)), **settlement.regions}
-    guide = _Onward(_outcomes(settlement.path, len(settlement.path.passages)), shown.prefer, needed)
+    guide = _Onward(outcomes_before(settlement.path, len(settlement.path.passages)), shown.prefer, needed)
     player = guide.player = Player(machine, guide, given(settlement.delays), regions)
     played = player.play()
-    found = Orders(machine).open(played, 0, 0, max(played.times) + 1)
-    played.graph.assumed += [(order.first, order.second) for order in found]
+    Orders(machine).assume(played, 0, 0, max(played.times) + 1)
     longer = replace(settlement, trace=played, regions=regions)
     return replace(shown, study=Study(machine, longer, given(settlement.delays), study.entered, study.left))
 

@@ -94,6 +94,10 @@ def no_sights(study: Study) -> Iterable[Sight]:
     return ()
 
 
+def no_plays(studies: Sequence[Study]) -> Iterable[Study]:
+    return ()
+
+
 def no_omissions(studies: Sequence[Study]) -> Iterable[Sight]:
     return ()
 
@@ -101,7 +105,8 @@ def no_omissions(studies: Sequence[Study]) -> Iterable[Sight]:
 @dataclass(frozen=True, slots=True)
 class Check:
     """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
-    together: what none of them comes to. Any function may be left out."""
+    together: what none of them comes to. ``plays``: more of them, where what is asked shows in none. Any function may
+    be left out."""
 
     kind: str
     severity: Severity
@@ -109,6 +114,7 @@ class Check:
     obligations: Callable[[Study], Iterable[Obligation]] = no_obligations
     sights: Callable[[Study], Iterable[Sight]] = no_sights
     omissions: Callable[[Sequence[Study]], Iterable[Sight]] = no_omissions
+    plays: Callable[[Sequence[Study]], Iterable[Study]] = no_plays
 
     def finding(self, sight: Sight) -> Finding:
         return Finding(

@@ -168,6 +168,8 @@ def crossings(
     plays: Sequence[tuple[Settlement, Mapping[str, Sequence[Spell]]]], settled: bool = True
 ) -> Mapping[str, Crossings]:
     """For each name; ``settled``: only over what a machine goes through again and again, if there is such."""
+    if not any(spells for _, spells in plays):
+        return {}
     settlements = [settlement for settlement, _ in plays]
     parts = _where_ways_part(settlements)
     lasting = _past_the_start(settlements) if settled else lambda begin: True
@@ -177,7 +179,7 @@ def crossings(
             if lasting(edge[0]):
                 part = found.setdefault(name, Crossings()).part(edge)
                 known = getattr(part, kind)
-                setattr(part, kind, span if known is None else _both(known, span))
+                setattr(part, kind, span if known is None else known.widened(span))
     return found
 
 
@@ -189,18 +191,14 @@ def _where_ways_part(settlements: Sequence[Settlement]) -> set[int]:
         for passage in range(max(fresh, 0), len(one.states)):
             turned = one.recipe.turned if passage == fresh else frozenset()
             leaving.setdefault(one.states[passage], set()).add((one.path.passages[passage].outcome, turned))
-    ends = {one.states[-1] for one in settlements if one.round is None}
+    ends = {one.states[-1] for one in settlements if one.path.round is None}
     return ends | {state for state, ways in leaving.items() if len(ways) > 1}
-
-
-def _both(one: Duration, other: Duration) -> Duration:
-    greatest = None if one.greatest is None or other.greatest is None else max(one.greatest, other.greatest)
-    return Duration(min(one.least, other.least), one.typical, greatest)
 
 
 @dataclass(frozen=True, slots=True)
 class _Stretch:
-    """What lies between two passages at which ways part, or the ends of a play; ``keys`` are their times in order."""
+    """What lies from event ``begin`` to event ``end``, from passage ``first`` to passage ``last``: two at which ways
+    part, or the ends of a play; ``end`` is None where it goes on to the end of a play that has ended."""
 
     edge: Edge
     begin: int

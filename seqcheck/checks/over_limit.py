@@ -61,7 +61,7 @@ def _from_one_to_the_other(study: Study, rule: PathLimit) -> list[Spell]:
 
 def _never_comes(study: Study) -> Iterator[Sight]:
     """The one condition comes to hold and the other never does again: the play has ended, or goes round without."""
-    trace, around = study.trace, study.settlement.round
+    trace, around = study.trace, study.settlement.path.round
     if trace.finished:
         last = max(trace.happened, key=study.time)
         until = study.time(last)
@@ -101,7 +101,7 @@ def _longest(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit,
             yield rule, longest
 
 
-def longest_ways(studies: Sequence[Study]) -> list[Study]:
+def _longest_ways(studies: Sequence[Study]) -> list[Study]:
     """For what a rule limits the way that takes longest, played in one, where no play has shown it."""
     found: dict[tuple[object, ...], Study] = {}
     for _, longest in _longest(studies):
@@ -127,4 +127,5 @@ CHECK = Check(
     _obligations,
     _never_comes,
     omissions=_over_several_runs,
+    plays=_longest_ways,
 )

@@ -14,7 +14,6 @@ from functools import partial
 from seqcheck.checks.certainty import Segment, Ways
 from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
-from seqcheck.checks.over_limit import longest_ways
 from seqcheck.checks.stale_accept import stale_accepts, with_reasons
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import in_time
@@ -68,7 +67,7 @@ class _Seen:
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
     """Prove every play of the machine, and put the results together. A margin that holds, but leaves less than
     ``reserve_us``, is a finding too."""
-    played = [*studies, *longest_ways(studies)]
+    played = [*studies, *(more for check in checks for more in check.plays(studies))]
     ways = Ways([study.settlement for study in played])
     by_key: dict[_Key, list[_Seen]] = {}
     margins: dict[_Key, Margin] = {}

@@ -24,8 +24,8 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
     if trace.finished:
         stuck, last = _waiting_since(trace, None), max(trace.happened, key=study.time)
         more = "nothing more happens"
-    elif study.settlement.round is not None:
-        begin, last = (study.settlement.path.passages[number].at for number in study.settlement.round)
+    elif study.settlement.path.round is not None:
+        begin, last = (study.settlement.path.passages[number].at for number in study.settlement.path.round)
         stuck = [
             wait
             for wait in _waiting_since(trace, study.time(begin))

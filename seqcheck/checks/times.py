@@ -74,8 +74,7 @@ def _choices(machine: Machine, timed: TimedStates, cycles: Mapping[str, Crossing
                 continue
             at = {state.number for state in timed.states if state.choose is item}
             for number, choice in enumerate(item.choices):
-                through = partial(_takes, at, number)
-                duration = cycles[sequence.name].duration(0, through)
+                duration = cycles[sequence.name].duration(0, partial(_takes, at, number))
                 if duration is not None:
                     duration = replace(duration, typical=duration.least)
                     yield ChoiceTime(sequence.name, choice.place, branch_name(item, number), duration)

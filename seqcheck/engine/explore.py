@@ -32,7 +32,8 @@ from seqcheck.machine.steps import Choose
 
 #: More ways than this in which orders may turn out between two states are not played; the report then says so.
 MOST_ORDERS = 16
-_MOST_ROUNDS = 8
+#: So often a way is played again with pistons where the play before has left them.
+_MOST_PLACINGS = 8
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,12 +70,6 @@ class Settlement:
         """The typical time from which on the play shows what no other play has shown before."""
         fresh = self.recipe.way.fresh
         return self.trace.times[self.path.passages[fresh].at] if fresh >= 0 else 0
-
-    @property
-    def round(self) -> tuple[int, int] | None:
-        """The passages between which the play goes round, if it does."""
-        first, last = self.path.first, self.path.last
-        return None if first is None or last is None or last >= len(self.path.passages) else (first, last)
 
     def segments(self) -> Iterator[tuple[int, Passage, Passage]]:
         """Each run from one state to the next, by the number of its first passage."""
@@ -197,7 +192,7 @@ def play(
 ) -> Settlement:
     """One way, pistons anywhere that its own bounds leave them. What is known as a piston stops mostly says it all."""
     regions: Regions | None = None
-    for _ in range(_MOST_ROUNDS + 1):
+    for _ in range(_MOST_PLACINGS + 1):
         scout = Scout(machine, recipe.way, known, orders, prefer)
         player = scout.player = Player(machine, scout, given(recipe.delays), regions, programs=programs)
         trace = player.play()
@@ -211,10 +206,10 @@ def play(
 
 def _settlement(machine: Machine, recipe: Recipe, trace: Trace, regions: Regions, path: Path) -> Settlement:
     done = len(trace.cycles) - 1
-    if path.first is None or path.last is None or path.last >= len(path.passages):
+    if path.round is None:
         settled = path.joined is not None or trace.finished or trace.endless
         return Settlement(trace, recipe, regions, path, settled, max(0, done - 1), done)
-    begin, end = (trace.times[path.passages[number].at] for number in (path.first, path.last))
+    begin, end = (trace.times[path.passages[number].at] for number in path.round)
     within = [number for number, read in enumerate(trace.cycles) if begin <= trace.times[read.event] <= end]
     return Settlement(trace, recipe, regions, path, True, min(within, default=done), max(within, default=done))
 
@@ -237,8 +232,7 @@ def follow(machine: Machine, outcomes: Sequence[Outcome], passages: int) -> Sett
     follower = _Follower(outcomes, passages)
     player = follower.player = Player(machine, follower)
     trace = player.play()
-    found = Orders(machine).open(trace, 0, 0, max(trace.times) + 1)
-    trace.graph.assumed += [(order.first, order.second) for order in found]
+    Orders(machine).assume(trace, 0, 0, max(trace.times) + 1)
     return Settlement(trace, Recipe(Way(tuple(outcomes)), {}), {}, Path(), False, 0, len(trace.cycles) - 1)
 
 

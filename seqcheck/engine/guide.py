@@ -85,6 +85,13 @@ class Path:
     #: The way cannot be gone: a choice had no such outcome.
     astray: bool = False
 
+    @property
+    def round(self) -> tuple[int, int] | None:
+        """``first`` and ``last``, if the play has come so far."""
+        if self.first is None or self.last is None or self.last >= len(self.passages):
+            return None
+        return self.first, self.last
+
 
 class Scout:
     """``known``: signatures that other plays have come through."""
@@ -128,7 +135,7 @@ class Scout:
         path, player = self.path, self.player
         assert player is not None
         index = len(path.passages)
-        self._assume_orders(player, passage, index)
+        self._assume_orders(player.trace, player.trace.times[passage.at])
         passage.signature = (where, player.state, self._under_way(player, passage.at))
         path.passages.append(passage)
         if path.last is not None:
@@ -174,22 +181,16 @@ class Scout:
             path.last = index
             self.player.stop()
 
-    def _assume_orders(self, player: Player, passage: Passage, index: int) -> None:
+    def _assume_orders(self, trace: Trace, end: int) -> None:
         """What was open since the last state is taken to be as it was played."""
-        trace = player.trace
         since, begin = self._looked_at(trace)
-        found = self._orders.open(trace, since, begin, trace.times[passage.at], self._waits)
-        trace.graph.assumed += [(order.first, order.second) for order in found]
-        self.path.orders += [(index - 1, order) for order in found]
+        found = self._orders.assume(trace, since, begin, end, self._waits)
+        self.path.orders += [(len(self.path.passages) - 1, order) for order in found]
 
     def finish(self) -> None:
         """What was open behind the last state."""
         assert self.player is not None
-        trace, passages = self.player.trace, self.path.passages
-        since, begin = self._looked_at(trace)
-        found = self._orders.open(trace, since, begin, max(trace.times) + 1, self._waits)
-        trace.graph.assumed += [(order.first, order.second) for order in found]
-        self.path.orders += [(len(passages) - 1, order) for order in found]
+        self._assume_orders(self.player.trace, max(self.player.trace.times) + 1)
 
     def _looked_at(self, trace: Trace) -> tuple[int, int]:
         """Since when something may still have orders that are open, and up to when they have been looked at."""

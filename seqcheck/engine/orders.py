@@ -63,6 +63,12 @@ class Orders:
         rows = greatest_separations(trace.graph, ((one.second, one.first) for one in found))
         return [one for one in found if rows[one.second, one.first] >= (0 if one.strict else 1)]
 
+    def assume(self, trace: Trace, since: int, begin: int, end: int, waits: Waits | None = None) -> list[Order]:
+        """The same, from now on taken in the bounds to be as they were played."""
+        found = self.open(trace, since, begin, end, waits)
+        trace.graph.assumed += [(order.first, order.second) for order in found]
+        return found
+
     def _all(self, trace: Trace, waits: Waits, begin: int) -> Iterator[Order]:
         yield from self._of_commands(trace, begin)
         for visit in waits.visits:

@@ -35,16 +35,12 @@ class State:
 
 @dataclass(frozen=True, slots=True)
 class Run:
-    """``outcome``: how the choice at its first state came out, None where there was none. ``play`` and ``passage``:
-    where it was first come through. ``shared``: something is under way across its end that does not wait for it."""
+    """``outcome``: how the choice at its first state came out, None where there was none."""
 
     begin: int
     end: int
     outcome: Outcome | None
     duration: Duration
-    play: int
-    passage: int
-    shared: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,12 +52,12 @@ class TimedStates:
 def timed_states(graph: StateGraph) -> TimedStates:
     states: dict[int, State] = {}
     runs: dict[tuple[object, ...], Run] = {}
-    for play, settlement in enumerate(graph.settlements):
+    for settlement in graph.settlements:
         for number, passage in zip(settlement.states, settlement.path.passages, strict=True):
             states.setdefault(number, _state(number, passage))
-        for run in _runs(play, settlement):
-            key = (run.begin, run.outcome, run.end)
-            runs[key] = _merged(runs[key], run) if key in runs else run
+        for run in _runs(settlement):
+            known = runs.setdefault((run.begin, run.outcome, run.end), run)
+            runs[run.begin, run.outcome, run.end] = replace(known, duration=known.duration.widened(run.duration))
     return TimedStates(tuple(states[number] for number in sorted(states)), tuple(runs.values()))
 
 
@@ -79,20 +75,11 @@ def _state(number: int, passage: Passage) -> State:
     return State(number, None, choice.choose, choice.after)
 
 
-def _runs(play: int, settlement: Settlement) -> Iterator[Run]:
+def _runs(settlement: Settlement) -> Iterator[Run]:
     trace, states = settlement.trace, settlement.states
     new = [one for one in settlement.segments() if one[0] >= settlement.recipe.way.fresh]
     rows = greatest_separations(trace.graph, both_ways((begin.at, end.at) for _, begin, end in new))
     for number, begin, end in new:
         typical = trace.times[end.at] - trace.times[begin.at]
         duration = Duration(-rows[end.at, begin.at], typical, closed(rows[begin.at, end.at]))
-        following = settlement.path.passages[number + 2 : number + 3]
-        shared = any(not trace.graph.dominates(end.at, later.at) and later.at != end.at for later in following)
-        yield Run(states[number], states[number + 1], begin.outcome, duration, play, number, shared)
-
-
-def _merged(one: Run, other: Run) -> Run:
-    longest = (one.duration.greatest, other.duration.greatest)
-    greatest = None if None in longest else max(time for time in longest if time is not None)
-    least = min(one.duration.least, other.duration.least)
-    return replace(one, duration=Duration(least, one.duration.typical, greatest), shared=one.shared or other.shared)
+        yield Run(states[number], states[number + 1], begin.outcome, duration)

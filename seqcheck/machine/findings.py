@@ -91,6 +91,11 @@ class Duration:
     typical: int
     greatest: int | None
 
+    def widened(self, other: Duration) -> Duration:
+        """From the least of both to the greatest of both; typical as this one."""
+        greatest = None if self.greatest is None or other.greatest is None else max(self.greatest, other.greatest)
+        return Duration(min(self.least, other.least), self.typical, greatest)
+
 
 @dataclass(frozen=True, slots=True)
 class ChoiceTime:

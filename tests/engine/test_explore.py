@@ -35,7 +35,7 @@ def test_a_machine_without_choices_is_played_once() -> None:
     graph = explored(CLAMP + "sequence main { every step within 2 s  clamp+ clamp- }")
     (only,) = graph.settlements
     assert graph.complete and only.settled
-    assert only.round is not None
+    assert only.path.round is not None
 
 
 @pytest.mark.parametrize("count", [10, 20, 40])
