@@ -11,11 +11,11 @@ from seqcheck.checks.wording import round_up
 from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.conditions import Literal
 from seqcheck.engine.graph import Event
+from seqcheck.engine.inputs import input_path
 from seqcheck.engine.strokes import reached_by
 from seqcheck.engine.trace import Answer, Edge, Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Severity
-from seqcheck.machine.time import Span
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
@@ -54,12 +54,9 @@ def _goes(study: Study, visit: Visit, answer: Answer) -> tuple[int, int] | None:
     if answer.edge is not None and answer.literal.term.kind is TermKind.SENSOR:
         ahead = _ahead_in_stroke(study, visit, answer.edge)
         if ahead is not None and (following is None or following.at != ahead):
-            delay, controller = study.machine.sensors[sensor].delay, study.machine.controller
-            filtered = controller.input_off if answer.literal.wanted else controller.input_on
-            span = Span(
-                delay.least + filtered.least, delay.typical + filtered.typical, delay.greatest + filtered.greatest
-            )
-            return ahead, study.later(Event("input", sensor, "off" if answer.literal.wanted else "on"), ahead, span)
+            path = input_path(study.machine, sensor, not answer.literal.wanted)
+            event = Event("input", sensor, "off" if answer.literal.wanted else "on")
+            return ahead, study.later(event, ahead, path.whole)
     if following is None:
         return None
     seen = following.seen is not None and following.lost_to is None
