@@ -16,7 +16,7 @@ from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
 from seqcheck.checks.stale_accept import stale_accepts, with_reasons
 from seqcheck.checks.study import Study
-from seqcheck.checks.wording import in_time
+from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.bounds import (
     Rows,
     both_ways,
@@ -99,19 +99,24 @@ def _key(finding: Finding) -> _Key:
 
 
 def _at_least_as_bad(one: Broken, finding: Finding) -> Broken:
-    """What a run shows, with what it comes to at worst where that is more."""
+    """What a run shows, with what it comes to at worst where that is more, or nothing limits it."""
     shown = one.finding.margin_us
-    if shown is None or finding.margin_us is None or shown <= finding.margin_us:
+    if shown is None or (finding.margin_us is not None and shown <= finding.margin_us):
         return one
     return replace(one, finding=replace(one.finding, message=finding.message, margin_us=finding.margin_us))
 
 
 def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
-    """The finding whose run was replayed, and that by most; certain only where every way shows it for certain. What
-    is thin in one way may be broken in another."""
+    """The finding whose run was replayed, and that by most, nothing limiting it before all else; certain only where
+    every way shows it for certain. What is thin in one way may be broken in another."""
     best = min(
         (seen.broken for seen in found),
-        key=lambda one: (_is_thin(one), one.finding.replayed is False, one.finding.margin_us or 0),
+        key=lambda one: (
+            _is_thin(one),
+            one.finding.replayed is False,
+            one.finding.margin_us is not None,
+            one.finding.margin_us or 0,
+        ),
     )
     shown = frozenset(segment for seen in found for segment in seen.shown)
     certain = bool(shown) and ways.all_show(shown)
@@ -223,7 +228,7 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
     with study.trace.graph.not_assuming(one.assumed):
         run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
-    by = "an unlimited time" if shown is None else in_time(-shown)
+    by = UNLIMITED if shown is None else in_time(-shown)
     mend = one.wording.mend
     finding = Finding(
         kind=check.kind,

@@ -88,16 +88,24 @@ def _cycle_spells(study: Study, once: bool) -> dict[str, list[Spell]]:
     """Of the sequences that go round, or of those that run ``once``."""
     names = [sequence.name for sequence in study.machine.sequences if sequence.once == once]
     if once:
-        return {name: [Spell(begin, end) for begin, end in cycles_in(study, name)] for name in names}
+        return {
+            name: [Spell(begin, end, _passages_of(study, name).get(begin)) for begin, end in cycles_in(study, name)]
+            for name in names
+        }
     return {name: cycle_spells(study, name, settled=True) for name in names}
+
+
+def _passages_of(study: Study, sequence: str) -> dict[int, int]:
+    """The passages at which a sequence begins anew, by the events of their reads."""
+    passages = enumerate(study.settlement.path.passages)
+    return {passage.at: number for number, passage in passages if passage.sequence == sequence}
 
 
 def cycle_spells(study: Study, name: str, settled: bool = False) -> list[Spell]:
     """The cycles of a sequence that goes round, the last one, which the play has not come through, included; only those
     that go on for ever, if ``settled``."""
     since = _settled_since(study) if settled else 0
-    passages = enumerate(study.settlement.path.passages)
-    at = {passage.at: number for number, passage in passages if name == passage.sequence}
+    at = _passages_of(study, name)
     spells = []
     rounds = study.trace.rounds[name]
     for read, following in zip(rounds, (*rounds[1:], None), strict=True):

@@ -5,6 +5,10 @@ from __future__ import annotations
 from seqcheck.language.durations import format_duration
 
 
+#: Where nothing limits it.
+UNLIMITED = "an unlimited time"
+
+
 def in_time(time_us: int) -> str:
     return format_duration(time_us)
 

@@ -9,7 +9,7 @@ states.
 
 from __future__ import annotations
 
-from bisect import bisect_right
+from bisect import bisect_left
 from collections import Counter, deque
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
@@ -133,8 +133,8 @@ class _Explorer:
         times = settlement.trace.times
         at = [(times[passage.at], passage.at) for passage in path.passages]
         for number, order in path.orders:
-            # The other way round, the play parts from this one where the first of the two is due.
-            parts = max(0, min(number, bisect_right(at, (times[order.first], order.first)) - 1))
+            # The other way round, the play parts from this one where the first of the two is due, before what it brings.
+            parts = max(0, min(number, bisect_left(at, (times[order.first], order.first)) - 1))
             if recipe.way.fresh <= parts < joined:
                 self._turn(settlement, parts, order)
 

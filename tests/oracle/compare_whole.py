@@ -85,17 +85,18 @@ def disagreements(examined: Examined, runs: dict[str, Run]) -> Iterator[Disagree
     diverted = runs[names[0]].first_diversion is not None
     for name in names[:1] if diverted else names:
         yield from unforeseen(examined, name, runs[name])
-        if runs[name].first_diversion is None and not _stale_followers(examined):
+        if runs[name].first_diversion is None and not _goes_on_with_the_old(examined):
             yield from beyond_bounds(examined, name, runs[name])
             yield from worse_than_told(examined, name, runs[name])
     if not diverted:
         yield from untold_races(examined, runs)
 
 
-def _stale_followers(examined: Examined) -> bool:
-    """A step may go on with a following signal as it was before: no incident to the player, but it diverts."""
-    signals = examined.machine.signals
-    return any(one.kind == "stale-signal" and one.subject in signals for one in examined.report.findings)
+def _goes_on_with_the_old(examined: Examined) -> bool:
+    """A step may go on with a following signal, or a step of another sequence, as it was before: no incident to the
+    player, but it diverts, and the report says that its figures do not hold there."""
+    sensors = examined.machine.sensors
+    return any(one.kind == "stale-signal" and one.subject not in sensors for one in examined.report.findings)
 
 
 # --- bounds ---
