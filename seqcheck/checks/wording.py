@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from seqcheck.language.durations import format_duration
 
-
 #: Where nothing limits it.
 UNLIMITED = "an unlimited time"
 

@@ -133,7 +133,7 @@ class _Explorer:
         times = settlement.trace.times
         at = [(times[passage.at], passage.at) for passage in path.passages]
         for number, order in path.orders:
-            # The other way round, the play parts from this one where the first of the two is due, before what it brings.
+            # The other way round, the play parts from this one before what the first of the two brings.
             parts = max(0, min(number, bisect_left(at, (times[order.first], order.first)) - 1))
             if recipe.way.fresh <= parts < joined:
                 self._turn(settlement, parts, order)
