@@ -9,12 +9,14 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
+from seqcheck.checks.comings import holds_at_rest, passages_before
 from seqcheck.checks.crossings import Spell, crossings
 from seqcheck.checks.narrate import narrate_typical
-from seqcheck.checks.spells_of import Holds, spells_of, together, whole_spells, without_breaks
+from seqcheck.checks.spells_of import spells_of, together, without_breaks
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
+from seqcheck.engine.held import Holds, spells_of_condition
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import Never
@@ -29,7 +31,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
         if len(alternatives) > 1 and rule.tolerated:
-            for spell in without_breaks(study, whole_spells(study, alternatives)):
+            for spell in without_breaks(study, spells_of_condition(study.trace, alternatives)):
                 yield from _obligation(rule, (spell,))
 
 
@@ -68,7 +70,7 @@ def _for_good(study: Study) -> Iterator[Sight]:
         return
     for rule in study.machine.rules:
         if isinstance(rule, Never):
-            for spell in whole_spells(study, alternatives_of(rule.condition)):
+            for spell in spells_of_condition(study.trace, alternatives_of(rule.condition)):
                 if spell.end is None and study.time(spell.begin) <= study.time(at):
                     run = narrate_typical(study, spell.begin, last)
                     # A stroke that is turned before its end may come to it at other times.
@@ -102,11 +104,15 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
 
 def _spells(study: Study, rule: Never) -> Iterator[Spell]:
     alternatives = alternatives_of(rule.condition)
-    held = whole_spells(study, alternatives)
-    if len(alternatives) == len(alternatives[0]) == 1:
+    held = spells_of_condition(study.trace, alternatives)
+    if [len(one) for one in alternatives] == [1]:
         held = spells_of(study, alternatives[0][0])
     for one in held:
-        yield Spell(one.begin, one.end)
+        last = None if one.end is None else passages_before(study, alternatives, one.end)
+        at_rest = one.begin == 0 and holds_at_rest(study, alternatives)
+        # What is so as the machine stands was so before its first state, at which all ways begin.
+        first = 0 if at_rest else passages_before(study, alternatives, one.begin) - 1
+        yield Spell(one.begin, one.end, first, last)
 
 
 CHECK = Check(

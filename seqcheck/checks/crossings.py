@@ -26,12 +26,14 @@ Through = Callable[[Edge], bool]
 @dataclass(frozen=True, slots=True)
 class Spell:
     """From one event to another; None where the play ended before it came. ``first`` and ``last``: the passages at
-    which it begins and ends, where these are states; several states may lie at one read."""
+    which it begins and ends, where these are states; several states may lie at one read. ``under_way``: it stands for
+    those that have begun in other plays."""
 
     begin: int
     end: int | None
     first: int | None = None
     last: int | None = None
+    under_way: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,6 +65,11 @@ class Crossings:
             part = self.parts[edge] = _Part()
             self._at.setdefault(edge[0], []).append((edge, part))
         return self.parts[edge]
+
+    @property
+    def begins(self) -> bool:
+        """Whether there is such a spell."""
+        return any(part.within is not None or part.opens is not None for part in self.parts.values())
 
     def duration(self, typical: int, through: Through | None = None) -> Duration | None:
         """None where there is no such spell."""
@@ -255,7 +262,7 @@ def _cut(
     if spell.end is not None:
         last = bisect_left(at, (times[spell.end], spell.end)) if spell.last is None else spell.last
     goes_on = stretch.end is None
-    begins = stretch.first <= first and (first < stretch.last or goes_on)
+    begins = not spell.under_way and stretch.first <= first and (first < stretch.last or goes_on)
     ends = spell.end is not None and stretch.first < last and (last <= stretch.last or goes_on)
     if begins and ends and spell.end is not None:
         return "within", spell.begin, spell.end

@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from bisect import bisect_left
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
-from seqcheck.checks.crossings import Longest, Spell, crossings
+from seqcheck.checks.comings import Coming, comings
+from seqcheck.checks.crossings import Crossings, Spell, crossings
 from seqcheck.checks.narrate import narrate_typical
-from seqcheck.checks.spells_of import whole_spells
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
-from seqcheck.checks.wording import in_time
+from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
 from seqcheck.engine.explore import follow, outcomes_before
 from seqcheck.machine.findings import Severity
@@ -26,7 +27,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             over = Wording(_over(rule))
             yield Obligation(rule.text, None, rule.place, spell.end, spell.begin, over, -rule.greatest, diverts=False)
             if isinstance(rule, PathLimit) and rule.least is not None:
-                under = Wording(f"`{rule.text}` can be undercut by {{by}}")
+                under = Wording(_under(rule))
                 yield Obligation(rule.text, None, rule.place, spell.begin, spell.end, under, rule.least, diverts=False)
 
 
@@ -34,6 +35,14 @@ def _over(rule: CycleLimit | PathLimit) -> str:
     if isinstance(rule, CycleLimit):
         return f"a cycle of {rule.sequence} can take {{by}} longer than {in_time(rule.greatest)}"
     return f"`{rule.text}` can be exceeded by {{by}}"
+
+
+def _under(rule: CycleLimit | PathLimit) -> str:
+    return f"`{rule.text}` can be undercut by {{by}}"
+
+
+def _least(rule: CycleLimit | PathLimit) -> int | None:
+    return rule.least if isinstance(rule, PathLimit) else None
 
 
 def _spells(study: Study, rule: Rule) -> list[Spell]:
@@ -49,14 +58,29 @@ def _spells(study: Study, rule: Rule) -> list[Spell]:
 
 def _from_one_to_the_other(study: Study, rule: PathLimit) -> list[Spell]:
     """From each time that the one condition comes to hold to the next time that the other does."""
-    starts = [spell.begin for spell in whole_spells(study, alternatives_of(rule.start))]
-    ends = [spell.begin for spell in whole_spells(study, alternatives_of(rule.end))]
-    times = [study.time(event) for event in ends]
+    ends = list(comings(study, alternatives_of(rule.end)))
+    times = [study.time(end.event) for end in ends]
     spells = []
-    for start in starts:
-        at = bisect_left(times, study.time(start))
-        spells.append(Spell(start, ends[at] if at < len(ends) else None))
+    for start in comings(study, alternatives_of(rule.start)):
+        at = bisect_left(times, study.time(start.event))
+        end = ends[at] if at < len(ends) else None
+        spells.append(_spell(start, end))
     return spells
+
+
+def _under_way(study: Study, rule: CycleLimit | PathLimit) -> Iterator[Spell]:
+    """What has begun in other plays, as it may when this one shows it nowhere: it goes on from each time that the other
+    condition comes to hold to the next."""
+    if isinstance(rule, PathLimit):
+        ends = [Coming(0, 0), *comings(study, alternatives_of(rule.end))]
+        for end, following in zip(ends, (*ends[1:], None), strict=True):
+            yield replace(_spell(end, following), under_way=True)
+
+
+def _spell(start: Coming, end: Coming | None) -> Spell:
+    if end is None:
+        return Spell(start.event, None, start.passages - 1)
+    return Spell(start.event, end.event, start.passages - 1, end.passages)
 
 
 def _never_comes(study: Study) -> Iterator[Sight]:
@@ -84,27 +108,43 @@ def _never_comes(study: Study) -> Iterator[Sight]:
 
 def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
     """Where no play shows all of it in one: added up along the ways through the state graph."""
-    for rule, longest in _longest(studies):
-        if longest.time > rule.greatest:
-            message = _over(rule).replace("{by}", in_time(longest.time - rule.greatest))
+    for rule, found in _crossings(studies):
+        if not found.begins:
+            continue
+        longest, shortest = found.longest(), found.least()
+        if longest is None and studies[0].whole:
+            message = f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
+            if isinstance(rule, CycleLimit):
+                message = _over(rule).replace("{by}", UNLIMITED)
+            yield Sight(rule.text, None, rule.place, message, certain=False)
+        elif longest is not None and longest.time > rule.greatest:
             margin = rule.greatest - longest.time
+            message = _over(rule).replace("{by}", in_time(-margin))
             yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
+        elif (least := _least(rule)) is not None and shortest is not None and shortest < least:
+            message = _under(rule).replace("{by}", in_time(least - shortest))
+            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=shortest - least)
 
 
-def _longest(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Longest]]:
+def _crossings(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Crossings]]:
     rules = [rule for rule in studies[0].machine.rules if isinstance(rule, CycleLimit | PathLimit)]
-    plays = [(study.settlement, {rule.text: _spells(study, rule) for rule in rules}) for study in studies]
-    found = crossings(plays, settled=False)
+    plays = [
+        (study.settlement, {rule.text: [*_spells(study, rule), *_under_way(study, rule)] for rule in rules})
+        for study in studies
+    ]
+    found = crossings(plays, settled=False) if rules else {}
     for rule in rules:
-        longest = found[rule.text].longest() if rule.text in found else None
-        if longest is not None:
-            yield rule, longest
+        if rule.text in found:
+            yield rule, found[rule.text]
 
 
 def _longest_ways(studies: Sequence[Study]) -> list[Study]:
     """For what a rule limits the way that takes longest, played in one, where no play has shown it."""
     found: dict[tuple[object, ...], Study] = {}
-    for _, longest in _longest(studies):
+    for _, crossed in _crossings(studies):
+        longest = crossed.longest()
+        if longest is None:
+            continue
         begin = longest.edges[0][0]
         owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
         owner = next(owners, None)

@@ -1,29 +1,21 @@
 """When a condition of the machine itself held in a play.
 
-Takes a study and a condition of a rule; gives the spells of each of its literals, and those of the whole, by the events
-that begin and end them.
+Takes a study and a condition of a rule; gives the spells of each of its literals, and those of several that hold
+together, by the events that begin and end them.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from itertools import pairwise, product
 
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import greatest_separation
-from seqcheck.engine.conditions import Alternative, Alternatives, Aspect, Literal, holding
+from seqcheck.engine.conditions import Alternative, Literal
 from seqcheck.engine.graph import OPEN, Event
+from seqcheck.engine.held import Holds
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.time import Span
-
-
-@dataclass(frozen=True, slots=True)
-class Holds:
-    """Since the event ``begin``, to ``end``; None where the play ended before."""
-
-    begin: int
-    end: int | None
 
 
 def spells_of(study: Study, literal: Literal) -> list[Holds]:
@@ -85,43 +77,6 @@ def _near(study: Study, spells: Sequence[Holds], one: Holds) -> Sequence[Holds]:
     """The last spell that had begun as this one begins, and the next."""
     begun = [other for other in spells if study.time(other.begin) <= study.time(one.begin)]
     return spells[max(0, len(begun) - 1) : len(begun) + 1]
-
-
-def whole_spells(study: Study, alternatives: Alternatives) -> list[Holds]:
-    """When the whole condition held in the play, by the change that made it so and the one that ended it."""
-    aspects = {literal.aspect for one in alternatives for literal in one}
-    changes = sorted(
-        (
-            (study.time(change.event), change.event, aspect, change.value)
-            for aspect in aspects
-            for change in study.trace.changes.get(aspect, ())
-        ),
-        key=lambda entry: entry[:2],
-    )
-    values: dict[Aspect, bool] = dict.fromkeys(aspects, False)
-    found: list[Holds] = []
-    begin: int | None = 0 if _holds(alternatives, values) else None
-    number = 0
-    while number < len(changes):
-        event = changes[number][1]
-        while number < len(changes) and changes[number][1] == event:
-            _, _, aspect, value = changes[number]
-            values[aspect] = value
-            number += 1
-        holds = _holds(alternatives, values)
-        if holds and begin is None:
-            begin = event
-        elif not holds and begin is not None:
-            if event != begin:
-                found.append(Holds(begin, event))
-            begin = None
-    if begin is not None:
-        found.append(Holds(begin, None))
-    return found
-
-
-def _holds(alternatives: Alternatives, values: dict[Aspect, bool]) -> bool:
-    return holding(alternatives, lambda literal: values[literal.aspect] == literal.wanted) is not None
 
 
 def without_breaks(study: Study, spells: Sequence[Holds]) -> list[Holds]:
