@@ -15,9 +15,8 @@ from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.spells_of import spells_of, together, without_breaks
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import UNLIMITED, in_time
-from seqcheck.engine.conditions import alternatives_of
+from seqcheck.engine.conditions import Alternatives, alternatives_of, literals_of
 from seqcheck.engine.held import Holds, spells_of_condition
-from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import Never
 
@@ -69,18 +68,24 @@ def _for_good(study: Study) -> Iterator[Sight]:
     else:
         return
     for rule in study.machine.rules:
-        if isinstance(rule, Never):
-            for spell in spells_of_condition(study.trace, alternatives_of(rule.condition)):
-                if spell.end is None and study.time(spell.begin) <= study.time(at):
-                    run = narrate_typical(study, spell.begin, last)
-                    # A stroke that is turned before its end may come to it at other times.
-                    certain = trace.finished or not _asks_of_cylinders(rule)
-                    message = f"`{rule.text}` is broken for good" if certain else _wording(rule).broken(UNLIMITED)
-                    yield Sight(rule.text, None, rule.place, message, run, certain=certain, at=at)
+        if not isinstance(rule, Never):
+            continue
+        alternatives = alternatives_of(rule.condition)
+        for spell in spells_of_condition(study.trace, alternatives):
+            if spell.end is None and study.time(spell.begin) <= study.time(at):
+                certain = not _changes_since(study, alternatives, at)
+                message = f"`{rule.text}` is broken for good" if certain else _wording(rule).broken(UNLIMITED)
+                run = narrate_typical(study, spell.begin, last)
+                yield Sight(rule.text, None, rule.place, message, run, certain=certain, at=at)
 
 
-def _asks_of_cylinders(rule: Never) -> bool:
-    return any(term.kind is TermKind.CYLINDER for term in terms_of(rule.condition))
+def _changes_since(study: Study, alternatives: Alternatives, event: int) -> bool:
+    """Whether what the rule looks at changes all the same: at other times it may be otherwise in between."""
+    return any(
+        study.time(change.event) > study.time(event)
+        for literal in literals_of(alternatives)
+        for change in study.trace.changes.get(literal.aspect, ())
+    )
 
 
 def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:

@@ -12,10 +12,7 @@ from itertools import pairwise, product
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.conditions import Alternative, Literal
-from seqcheck.engine.graph import OPEN, Event
 from seqcheck.engine.held import Holds
-from seqcheck.machine.conditions import TermKind
-from seqcheck.machine.time import Span
 
 
 def spells_of(study: Study, literal: Literal) -> list[Holds]:
@@ -31,32 +28,7 @@ def spells_of(study: Study, literal: Literal) -> list[Holds]:
             begin = None
     if begin is not None:
         found.append(Holds(begin, None))
-    return [*found, *_run_together(study, literal, found)]
-
-
-def _run_together(study: Study, literal: Literal, spells: Sequence[Holds]) -> Iterator[Holds]:
-    """What a cylinder does is one long spell where it can be turned before the end of a stroke between two; one without
-    end, where that can go on all round."""
-    if literal.term.kind is not TermKind.CYLINDER:
-        return
-    begin = None
-    for one, following in pairwise(spells):
-        begin = one.begin if begin is None else begin
-        if one.end is not None and study.can_be_turned_before(literal.term.subject, one.end):
-            yield Holds(begin, _or_any_time_later(study, begin, following.end))
-        else:
-            begin = None
-
-
-def _or_any_time_later(study: Study, begin: int, end: int | None) -> int | None:
-    """The end of a spell; one that may come any time later, where the spell lasts all of a round that comes again."""
-    settlement = study.settlement
-    if settlement.path.round is None:
-        return end
-    first, last = (settlement.path.passages[number].at for number in settlement.path.round)
-    if study.time(begin) > study.time(first) or (end is not None and study.time(end) < study.time(last)):
-        return end
-    return study.later(Event("round again", ""), last, Span(0, 0, OPEN))
+    return found
 
 
 def together(study: Study, alternative: Alternative) -> Iterator[tuple[Holds, ...]]:

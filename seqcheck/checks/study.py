@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
-from seqcheck.engine.bounds import causes_since, greatest_separation
+from seqcheck.engine.bounds import causes_since
 from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
 from seqcheck.engine.timeline import Draw, typical
@@ -190,14 +190,6 @@ class Study:
     def strokes_through(self, event: int) -> list[Stroke]:
         """The stroke, if any, in which the piston comes to this mark or leaves this end."""
         return self._strokes_by_event.get(event, [])
-
-    def can_be_turned_before(self, cylinder: str, end: int) -> bool:
-        """Whether some runs turn a stroke right round before it ends as the played one does at this event."""
-        for stroke in self.strokes_through(end):
-            following = self.trace.strokes_of[cylinder][stroke.number + 1 : stroke.number + 2]
-            if stroke.end == end and stroke.away is not None and following and following[0].shift is stroke.away:
-                return greatest_separation(self.trace.graph, stroke.away.reached, end) > 0
-        return False
 
     @cached_property
     def _seen_edges(self) -> dict[str, list[Edge]]:

@@ -14,8 +14,9 @@ from seqcheck.engine.conditions import Alternatives, Aspect, alternatives_of, as
 from seqcheck.engine.cylinders import drives_of, stands
 from seqcheck.engine.held import changes_in_order, holds_by, spells_of_condition
 from seqcheck.engine.order import Order
+from seqcheck.engine.plant import looked_at
 from seqcheck.engine.trace import Change, Trace
-from seqcheck.machine.conditions import terms_of
+from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import FollowingSignal, OnValve
 from seqcheck.machine.model import Machine
 from seqcheck.machine.rules import PathLimit
@@ -84,6 +85,22 @@ def condition_orders(
             swapped = holds_by(condition, {**before, other: following.value})
             if not first == swapped == holds_by(condition, before):
                 yield Order((name, aspect, change.value, other, following.value), event, later)
+
+
+def watched(machine: Machine) -> list[str]:
+    """The cylinders at which rules and signals look."""
+    terms = {term for condition in looked_at(machine) for term in terms_of(condition)}
+    return sorted({term.subject for term in terms if term.kind is TermKind.CYLINDER})
+
+
+def stroke_orders(trace: Trace, cylinder: str) -> Iterator[Order]:
+    """Whether a piston leaves its end, and comes to the other one, before it is stopped or turned."""
+    for stroke in trace.strokes_of.get(cylinder, ()):
+        if stroke.stands is not None:
+            for which, passes in (("leaves", stroke.leaves), ("ends", stroke.end)):
+                if passes is not None:
+                    first, second = sorted((passes, stroke.stands), key=lambda event: (trace.times[event], event))
+                    yield Order((cylinder, stroke.out, which), first, second)
 
 
 def limit_orders(trace: Trace, text: str, start: Alternatives, end: Alternatives, begin: int) -> Iterator[Order]:

@@ -22,6 +22,8 @@ from seqcheck.engine.condition_orders import (
     limit_orders,
     limited,
     reached_positions,
+    stroke_orders,
+    watched,
 )
 from seqcheck.engine.order import Order
 from seqcheck.engine.trace import Choice, Effect, Touch, Trace, Visit, Wait
@@ -56,6 +58,7 @@ class Orders:
         self._followed = list(followed(machine))
         self._driven = list(driven(machine))
         self._limited = list(limited(machine))
+        self._watched = watched(machine)
 
     def open(self, trace: Trace, since: int, begin: int, end: int, waits: Waits | None = None) -> list[Order]:
         """Those whose second event came from ``begin`` to before ``end`` and that can be the other way round. What was
@@ -89,6 +92,8 @@ class Orders:
                 yield from alarm_orders(trace, choice, ("choose", choice.choose.place))
         for name, condition in self._followed:
             yield from condition_orders(trace, trace.changes, name, condition, begin)
+        for cylinder in self._watched:
+            yield from stroke_orders(trace, cylinder)
         for text, start, goal in self._limited:
             yield from limit_orders(trace, text, start, goal, begin)
         if self._driven:
