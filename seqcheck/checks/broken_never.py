@@ -11,8 +11,8 @@ from collections.abc import Iterator, Sequence
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.comings import holds_at_rest, passages_before
 from seqcheck.checks.crossings import Spell, crossings
+from seqcheck.checks.held_together import together, without_breaks
 from seqcheck.checks.narrate import narrate_typical
-from seqcheck.checks.spells_of import spells_of, together, without_breaks
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.conditions import Alternatives, alternatives_of, literals_of
@@ -96,12 +96,12 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
         settled=False,
     )
     for rule in rules:
-        if rule.text not in found:
+        if rule.text not in found or not found[rule.text].begins:
             continue
         longest = found[rule.text].greatest()
-        if longest is None:
+        if longest is None and studies[0].whole:
             yield Sight(rule.text, None, rule.place, _wording(rule).broken(UNLIMITED), certain=False)
-        elif longest > max(0, rule.tolerated):
+        elif longest is not None and longest > max(0, rule.tolerated):
             margin = rule.tolerated - longest
             message = _wording(rule).broken(in_time(-margin))
             yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
@@ -109,14 +109,11 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
 
 def _spells(study: Study, rule: Never) -> Iterator[Spell]:
     alternatives = alternatives_of(rule.condition)
-    held = spells_of_condition(study.trace, alternatives)
-    if [len(one) for one in alternatives] == [1]:
-        held = spells_of(study, alternatives[0][0])
-    for one in held:
-        last = None if one.end is None else passages_before(study, alternatives, one.end)
+    for one in spells_of_condition(study.trace, alternatives):
+        last = None if one.end is None else passages_before(study, one.end, one.ended_by_read)
         at_rest = one.begin == 0 and holds_at_rest(study, alternatives)
         # What is so as the machine stands was so before its first state, at which all ways begin.
-        first = 0 if at_rest else passages_before(study, alternatives, one.begin) - 1
+        first = 0 if at_rest else passages_before(study, one.begin, one.begun_by_read) - 1
         yield Spell(one.begin, one.end, first, last)
 
 

@@ -19,24 +19,29 @@ from seqcheck.machine.conditions import TermKind
 
 @dataclass(frozen=True, slots=True)
 class Coming:
-    """A condition comes to hold by ``event``, behind so many ``passages`` of the play."""
+    """A condition comes to hold by ``event``, behind so many ``passages`` of the play. ``rank``: its place among all
+    that happens."""
 
     event: int
     passages: int
+    rank: tuple[int, int, bool]
 
 
 def comings(study: Study, condition: Alternatives) -> Iterator[Coming]:
     """Each time; what holds as the machine stands has not come."""
-    for spell in spells_of_condition(study.trace, condition):
+    for spell in spells_of_condition(study.trace, condition, instants=True):
         if spell.begin or not holds_at_rest(study, condition):
-            yield Coming(_all_so_by(study, condition, spell.begin), passages_before(study, condition, spell.begin))
+            yield Coming(
+                _all_so_by(study, condition, spell.begin),
+                passages_before(study, spell.begin, spell.begun_by_read),
+                (study.time(spell.begin), spell.begin, spell.begun_by_read),
+            )
 
 
-def passages_before(study: Study, condition: Alternatives, event: int) -> int:
-    """How many states the play has come through when the condition changes by this event."""
+def passages_before(study: Study, event: int, by_read: bool) -> int:
+    """How many states the play has come through when something changes by this event."""
     at = [(study.time(passage.at), passage.at) for passage in study.settlement.path.passages]
-    seen = all(literal.aspect[0] in (TermKind.SENSOR, TermKind.SIGNAL) for literal in literals_of(condition))
-    return (bisect_left if seen else bisect_right)(at, (study.time(event), event))
+    return (bisect_right if by_read else bisect_left)(at, (study.time(event), event))
 
 
 def holds_at_rest(study: Study, condition: Alternatives) -> bool:

@@ -59,10 +59,10 @@ def _spells(study: Study, rule: Rule) -> list[Spell]:
 def _from_one_to_the_other(study: Study, rule: PathLimit) -> list[Spell]:
     """From each time that the one condition comes to hold to the next time that the other does."""
     ends = list(comings(study, alternatives_of(rule.end)))
-    times = [study.time(end.event) for end in ends]
+    ranks = [end.rank for end in ends]
     spells = []
     for start in comings(study, alternatives_of(rule.start)):
-        at = bisect_left(times, study.time(start.event))
+        at = bisect_left(ranks, start.rank)
         end = ends[at] if at < len(ends) else None
         spells.append(_spell(start, end))
     return spells
@@ -72,7 +72,7 @@ def _under_way(study: Study, rule: CycleLimit | PathLimit) -> Iterator[Spell]:
     """What has begun in other plays, as it may when this one shows it nowhere: it goes on from each time that the other
     condition comes to hold to the next."""
     if isinstance(rule, PathLimit):
-        ends = [Coming(0, 0), *comings(study, alternatives_of(rule.end))]
+        ends = [Coming(0, 0, (0, 0, False)), *comings(study, alternatives_of(rule.end))]
         for end, following in zip(ends, (*ends[1:], None), strict=True):
             yield replace(_spell(end, following), under_way=True)
 

@@ -108,7 +108,7 @@ def limit_orders(trace: Trace, text: str, start: Alternatives, end: Alternatives
     rises = sorted(
         (trace.times[one.begin], one.begin, which)
         for which, condition in (("from", start), ("to", end))
-        for one in spells_of_condition(trace, condition)
+        for one in spells_of_condition(trace, condition, instants=True)
     )
     for (_, first, which), (time, second, other) in pairwise(rises):
         if which != other and time >= begin:

@@ -1,8 +1,4 @@
-"""When a condition of the machine itself held in a play.
-
-Takes a study and a condition of a rule; gives the spells of each of its literals, and those of several that hold
-together, by the events that begin and end them.
-"""
+"""When the parts of a condition held together in a play, or would if one of them came a little earlier or later."""
 
 from __future__ import annotations
 
@@ -11,30 +7,14 @@ from itertools import pairwise, product
 
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import greatest_separation
-from seqcheck.engine.conditions import Alternative, Literal
-from seqcheck.engine.held import Holds
-
-
-def spells_of(study: Study, literal: Literal) -> list[Holds]:
-    """The spells in which one literal was as wanted, in the order of the play."""
-    found: list[Holds] = []
-    begin: int | None = None if literal.wanted else 0
-    for change in study.trace.changes.get(literal.aspect, ()):
-        if change.value == literal.wanted:
-            begin = change.event
-        elif begin is not None:
-            if begin != change.event:
-                found.append(Holds(begin, change.event))
-            begin = None
-    if begin is not None:
-        found.append(Holds(begin, None))
-    return found
+from seqcheck.engine.conditions import Alternative
+from seqcheck.engine.held import Holds, spells_of_condition
 
 
 def together(study: Study, alternative: Alternative) -> Iterator[tuple[Holds, ...]]:
     """Spells of every literal that hold together, or would if one of them came a little earlier or later: each spell
     with those of the others that hold as it begins, and their neighbours."""
-    spells = [spells_of(study, literal) for literal in alternative]
+    spells = [spells_of_condition(study.trace, ((literal,),)) for literal in alternative]
     given = set()
     for number, own in enumerate(spells):
         for one in own:
