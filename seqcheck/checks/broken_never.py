@@ -16,7 +16,7 @@ from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.conditions import Alternatives, alternatives_of, literals_of
-from seqcheck.engine.held import Holds, spells_of_condition
+from seqcheck.engine.held import Holds
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import Never
 
@@ -29,9 +29,8 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for one in alternatives:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
-        if len(alternatives) > 1 and rule.tolerated:
-            for spell in without_breaks(study, spells_of_condition(study.trace, alternatives)):
-                yield from _obligation(rule, (spell,))
+        for spell in without_breaks(study, alternatives):
+            yield from _obligation(rule, (spell,))
 
 
 def _obligation(rule: Never, spells: tuple[Holds, ...]) -> Iterator[Obligation]:
@@ -71,12 +70,19 @@ def _for_good(study: Study) -> Iterator[Sight]:
         if not isinstance(rule, Never):
             continue
         alternatives = alternatives_of(rule.condition)
-        for spell in spells_of_condition(study.trace, alternatives):
-            if spell.end is None and study.time(spell.begin) <= study.time(at):
+        for spell in without_breaks(study, alternatives):
+            if _lasts(study, spell, at, last):
                 certain = not _changes_since(study, alternatives, at)
                 message = f"`{rule.text}` is broken for good" if certain else _wording(rule).broken(UNLIMITED)
                 run = narrate_typical(study, spell.begin, last)
                 yield Sight(rule.text, None, rule.place, message, run, certain=certain, at=at)
+
+
+def _lasts(study: Study, spell: Holds, begin: int, end: int) -> bool:
+    """All the time between two events, the first one included."""
+    if spell.end is None:
+        return study.time(spell.begin) <= study.time(begin)
+    return study.time(spell.begin) < study.time(begin) < study.time(end) <= study.time(spell.end)
 
 
 def _changes_since(study: Study, alternatives: Alternatives, event: int) -> bool:
@@ -109,7 +115,7 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
 
 def _spells(study: Study, rule: Never) -> Iterator[Spell]:
     alternatives = alternatives_of(rule.condition)
-    for one in spells_of_condition(study.trace, alternatives):
+    for one in without_breaks(study, alternatives):
         last = None if one.end is None else passages_before(study, one.end, one.ended_by_read)
         at_rest = one.begin == 0 and holds_at_rest(study, alternatives)
         # What is so as the machine stands was so before its first state, at which all ways begin.

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 from itertools import pairwise, product
 
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import greatest_separation
-from seqcheck.engine.conditions import Alternative
+from seqcheck.engine.conditions import Alternative, Alternatives
 from seqcheck.engine.held import Holds, spells_of_condition
 
 
@@ -31,15 +32,16 @@ def _near(study: Study, spells: Sequence[Holds], one: Holds) -> Sequence[Holds]:
     return spells[max(0, len(begun) - 1) : len(begun) + 1]
 
 
-def without_breaks(study: Study, spells: Sequence[Holds]) -> list[Holds]:
-    """The spells, and those that come of it where a break between two can be none: what begins the next one comes
-    before what ends the one."""
+def without_breaks(study: Study, alternatives: Alternatives) -> list[Holds]:
+    """The spells of a whole condition, and those that come of it where a break between two may be none, or be for an
+    instant of no length: what begins the next one comes no later than what ends the one."""
+    spells = spells_of_condition(study.trace, alternatives)
     found = list(spells)
-    begin = None
+    since = None
     for one, following in pairwise(spells):
-        begin = one.begin if begin is None else begin
-        if one.end is not None and greatest_separation(study.trace.graph, following.begin, one.end) > 0:
-            found.append(Holds(begin, following.end))
+        since = one if since is None else since
+        if one.end is not None and greatest_separation(study.trace.graph, following.begin, one.end) >= 0:
+            found.append(replace(since, end=following.end, ended_by_read=following.ended_by_read))
         else:
-            begin = None
+            since = None
     return found
