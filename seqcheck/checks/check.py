@@ -71,8 +71,9 @@ class Obligation:
 
 @dataclass(frozen=True, slots=True)
 class Sight:
-    """What a check sees without holding times against each other. ``run``: what happens at typical times, where that
-    shows it; ``at``: the event by which it has come about, None where it is there from the start."""
+    """What a check sees without holding times against each other. ``run``: what happens, where that shows it, and
+    ``replayed``: whether it came to that when it was played (as typical times always are); ``at``: the event by which
+    it has come about, None where it is there from the start."""
 
     subject: str
     step: str | None
@@ -84,6 +85,7 @@ class Sight:
     at: int | None = None
     severity: Severity | None = None
     margin_us: int | None = None
+    replayed: bool = True
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:
@@ -126,7 +128,7 @@ class Check:
             place=sight.place,
             message=sight.message,
             margin_us=sight.margin_us,
-            replayed=True if sight.run else None,
+            replayed=sight.replayed if sight.run else None,
             run=sight.run,
             mend=sight.mend,
         )

@@ -282,12 +282,12 @@ def _past_the_start(settlements: Sequence[Settlement]) -> Callable[[int], bool]:
     for one in settlements:
         for number, _, _ in one.segments():
             following.setdefault(one.states[number], set()).add(one.states[number + 1])
-    again = {state for state, ends in following.items() if state in _reached(following, ends)}
-    lasting = _reached(following, again)
+    again = {state for state, ends in following.items() if state in reached(following, ends)}
+    lasting = reached(following, again)
     return lambda begin: not again or begin in lasting
 
 
-def _reached(following: Mapping[int, set[int]], begin: set[int]) -> set[int]:
+def reached(following: Mapping[int, set[int]], begin: set[int]) -> set[int]:
     found = set(begin)
     waiting = list(found)
     while waiting:

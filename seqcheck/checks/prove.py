@@ -113,7 +113,7 @@ def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
         (seen.broken for seen in found),
         key=lambda one: (
             _is_thin(one),
-            one.finding.replayed is False,
+            one.finding.replayed is not True,
             one.finding.margin_us is not None,
             one.finding.margin_us or 0,
         ),

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
+from seqcheck.checks.chases import Chase, chases_of
 from seqcheck.engine.bounds import causes_since
 from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
@@ -41,14 +42,16 @@ class Study:
         entered: frozenset[str] = frozenset(),
         left: frozenset[str] = frozenset(),
         whole: bool = True,
+        chases: Sequence[Chase] = (),
     ) -> None:
         """``draw``: how the delays of the events that the study adds are drawn. ``entered``: the steps that any play
-        has entered; ``left``: those that any play has left; ``whole``: all
-        ways were played, and come round."""
+        has entered; ``left``: those that any play has left; ``whole``: all ways were played, and come round;
+        ``chases``: where any play can go round without time passing."""
         self.machine = machine
         self.entered = entered
         self.left = left
         self.whole = whole
+        self.chases = chases
         self._draw = draw
         self.settlement = settlement
         self.trace = settlement.trace
@@ -56,7 +59,7 @@ class Study:
 
     def alike(self, settlement: Settlement) -> Study:
         """A study of another play of the same machine."""
-        return Study(self.machine, settlement, self._draw, self.entered, self.left, self.whole)
+        return Study(self.machine, settlement, self._draw, self.entered, self.left, self.whole, self.chases)
 
     def time(self, event: int) -> int:
         """The typical time of an event, in microseconds from the start."""
@@ -299,4 +302,5 @@ def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
     entered = frozenset(visit.step.name for visit in visits)
     left = frozenset(visit.step.name for visit in visits if visit.left is not None)
     whole = graph.complete and all(one.settled for one in graph.settlements)
-    return [Study(machine, settlement, typical, entered, left, whole) for settlement in graph.settlements]
+    chases = chases_of(machine, graph.settlements)
+    return [Study(machine, settlement, typical, entered, left, whole, chases) for settlement in graph.settlements]
