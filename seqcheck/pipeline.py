@@ -114,7 +114,7 @@ def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof) -> Repor
     typical, machine = studies[0], studies[0].machine
     findings = tuple(one.finding for one in proof.broken)
     times = times_of(studies, timed)
-    accepted = any(one.accepted is not None and one.happens and not one.certain for one in findings)
+    accepted = any(one.accepted is not None and one.diverts and not one.certain for one in findings)
     return Report(
         file=machine.file,
         machine=machine.name,

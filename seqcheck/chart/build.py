@@ -44,7 +44,7 @@ def _notes(studied: Studied, report: Report, window: Window) -> tuple[str, ...]:
     notes = list(way_shown(window, others=True))
     if any(study.settlement.recipe.turned for study in studied.studies):
         notes.append("More than one order of events is possible here; the chart shows one.")
-    if any(one.happens and not one.certain for one in report.findings):
+    if any(one.diverts and not one.certain for one in report.findings):
         notes.append("The times hold for runs in which each finding comes about, or does not, as at typical times.")
     return tuple(notes)
 

@@ -160,6 +160,6 @@ def _proved_under(report: Report) -> str:
     """Where the times came from, what was assumed, and what the figures leave out."""
     told = [f"times from {', '.join(report.sheets)}" if report.sheets else "times from the text alone"]
     told += report.assumptions
-    if happening := sum(finding.happens for finding in report.findings):
-        told.append(f"all figures hold only for runs without {counted(happening, 'finding')} below")
+    if diverting := [finding for finding in report.findings if finding.diverts]:
+        told.append(f"all figures hold only for runs without {counted(len(diverting), 'finding')} below")
     return "; ".join(told)

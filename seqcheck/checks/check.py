@@ -46,8 +46,9 @@ class Instead:
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
     brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.
-    ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than others do,
-    in a way that nobody plays. ``assumed``: orders that this play takes for granted, but that are in question here."""
+    ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than one that
+    keeps it, and only the one or the other is played; ``stops``: it goes on no further, and is played on all the
+    same. ``assumed``: orders that this play takes for granted, but that are in question here."""
 
     subject: str
     step: str | None
@@ -61,6 +62,7 @@ class Obligation:
     others: tuple[tuple[int, int], ...] = ()
     severity: Severity | None = None
     diverts: bool = True
+    stops: bool = False
     instead: Instead | None = None
     assumed: tuple[tuple[int, int], ...] = ()
 
@@ -73,7 +75,7 @@ class Obligation:
 class Sight:
     """What a check sees without holding times against each other. ``run``: what happens, where that shows it, and
     ``replayed``: whether it came to that when it was played (as typical times always are); ``at``: the event by which
-    it has come about, None where it is there from the start."""
+    it has come about, None where it is there from the start; ``stops``: the run then goes on no further."""
 
     subject: str
     step: str | None
@@ -86,6 +88,7 @@ class Sight:
     severity: Severity | None = None
     margin_us: int | None = None
     replayed: bool = True
+    stops: bool = False
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:
@@ -131,4 +134,5 @@ class Check:
             replayed=sight.replayed if sight.run else None,
             run=sight.run,
             mend=sight.mend,
+            diverts=sight.stops,
         )

@@ -23,7 +23,10 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for cylinder, out, end in (*_strokes(study, visit), *_called_off(study, visit)):
             wording = _wording(step, cylinder, out)
             left = visit.left.event
-            yield Obligation(step.name, step.name, step.place, end, left, wording, lever=visit.dwell_over)
+            # What goes on otherwise where the move is not done yet is for the stroke, the shift, the sensor to say.
+            yield Obligation(
+                step.name, step.name, step.place, end, left, wording, lever=visit.dwell_over, diverts=False
+            )
 
 
 def _strokes(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:

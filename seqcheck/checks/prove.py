@@ -120,7 +120,8 @@ def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
     )
     shown = frozenset(segment for seen in found for segment in seen.shown)
     certain = bool(shown) and ways.all_show(shown)
-    return replace(best, finding=replace(best.finding, certain=certain))
+    diverts = any(seen.broken.finding.diverts for seen in found)
+    return replace(best, finding=replace(best.finding, certain=certain, diverts=diverts))
 
 
 def _is_thin(one: Broken) -> bool:
@@ -150,6 +151,7 @@ def _prove_one(
     rows = _rows(study, [one for _, one in stated])
     turn = _turning_point(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
+    diverting: set[_Key] = set()
     shown: dict[_Key, set[Segment]] = {}
     for check, obligation in stated:
         one = _best_pair(obligation, rows)
@@ -157,10 +159,14 @@ def _prove_one(
         key = (check.kind, one.subject, one.step, one.place)
         if key not in tightest or margin < tightest[key][2]:
             tightest[key] = (check, one, margin)
+        if margin < 0 and (one.stops or (one.diverts and not _always_broken(one, rows))):
+            diverting.add(key)
         if _always_broken(one, rows) and (turn is None or study.time(one.first) <= turn):
             shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
     seen = [
-        _Seen(_broken(study, *found), frozenset(shown.get(key, ()))) for key, found in tightest.items() if found[2] < 0
+        _Seen(_broken(study, *found, key in diverting), frozenset(shown.get(key, ())))
+        for key, found in tightest.items()
+        if found[2] < 0
     ]
     seen += [
         _Seen(Broken(_thin(study, *found, reserve_us), None))
@@ -224,7 +230,7 @@ def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) 
     )
 
 
-def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
+def _broken(study: Study, check: Check, one: Obligation, margin: int, diverts: bool) -> Broken:
     with study.trace.graph.not_assuming(one.assumed):
         run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
@@ -242,6 +248,7 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
         replayed=_shows(study, check, one, run),
         run=narrate(study, run, one.instead),
         mend=None if mend is None or shown is None else mend(_needed(study, one, -shown)),
+        diverts=diverts,
     )
     return Broken(finding, run, study.settlement)
 

@@ -48,7 +48,7 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
         waits = ", ".join(_missing(study, wait)) or "its exit"
         message = f"{name} is never left: it waits for {waits}, and {more}{never}"
         run = narrate_typical(study, wait.entered.event, last)
-        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last)
+        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last, stops=True)
 
 
 def _who(wait: Wait) -> tuple[str, Place]:
@@ -126,13 +126,13 @@ def _without_end(study: Study) -> Sight:
     for sequence in study.machine.sequences:
         if trace.rounds[sequence.name][-1] is last and sequence.name not in entered:
             message = f"sequence {sequence.name} goes round and round at one read and enters no step"
-            return Sight(sequence.name, None, sequence.place, message, mend=_MEND, at=last.event)
+            return Sight(sequence.name, None, sequence.place, message, mend=_MEND, at=last.event, stops=True)
     return _steps_chase(trace.visits[-1].step, True, last.event)
 
 
 def _steps_chase(step: Step, certain: bool, at: int, run: tuple[Moment, ...] = (), replayed: bool = True) -> Sight:
     message = f"steps follow one another without time passing, {step.name} among them"
-    return Sight(step.name, step.name, step.place, message, run, _MEND, certain, at, replayed=replayed)
+    return Sight(step.name, step.name, step.place, message, run, _MEND, certain, at, replayed=replayed, stops=True)
 
 
 DEAD_END = Check("dead-end", Severity.ERROR, "nothing can happen any more", sights=_dead_ends)

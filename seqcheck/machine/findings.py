@@ -35,7 +35,9 @@ class Finding:
     """``margin_us`` is negative where something breaks by so much, None where no time is involved or where an
     outside wait leaves it open. ``replayed`` is None where there is no run to play. ``certain``: every timing
     shows it. ``mend`` says what would put it right. ``accepted``: the reason that the text gives for living with it;
-    then it is shown, but does not count. ``source`` is the line of text at ``place``, None where nobody has it."""
+    then it is shown, but does not count. ``source`` is the line of text at ``place``, None where nobody has it.
+    ``diverts``: runs that show it go on otherwise than what was played, or no further, so that other figures of the
+    report hold only for runs without it."""
 
     kind: str
     severity: Severity
@@ -50,12 +52,11 @@ class Finding:
     mend: str | None
     accepted: str | None = None
     source: str | None = None
+    diverts: bool = False
 
     @property
     def happens(self) -> bool:
-        """Whether it comes about in a run; what is left out, or merely thin, does not. Where it is only possible, the
-        other figures of a report hold for the runs in which it comes about, or does not, as it does at typical times.
-        """
+        """Whether it comes about in a run; what is left out, or merely thin, does not."""
         return self.severity is Severity.ERROR or bool(self.run)
 
 

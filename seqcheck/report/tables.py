@@ -58,12 +58,12 @@ def _section(title: str, lines: tuple[Line, ...]) -> tuple[Line, ...]:
 
 
 def closing(report: Report, has_open: bool) -> tuple[Line, ...]:
-    """What the figures rest on. They hold for runs in which nothing that was found comes about, and, where the machine
-    comes to ever new states, only as far as it was played."""
+    """What the figures rest on. They hold for runs that go on as one that was played does, and, where the machine comes
+    to ever new states, only as far as it was played."""
     rows = [(OPEN, "nothing limits it but signals from outside, or how often a way goes back")] if has_open else []
     if not is_whole(report):
         rows.append(("But", "not every run was played: what was not may take other times; see seqcheck check"))
-    if found := [finding for finding in report.findings if finding.happens]:
+    if found := [finding for finding in report.findings if finding.diverts]:
         accepted = sum(finding.accepted is not None for finding in found)
         how = f" ({accepted} accepted)" if accepted else ""
         count = counted(len(found), "finding")
