@@ -86,16 +86,19 @@ class Handover:
 
 @dataclass(frozen=True, slots=True)
 class Duration:
-    """``greatest`` is None where an outside signal, or a way that can go back again and again, leaves it open."""
+    """``greatest`` is None where an outside signal, or a way that can go back again and again, leaves it open. Not
+    ``exact``: added up from pieces of which one hangs on the other, so that no run is shorter or longer, but maybe
+    none is as short or as long, either."""
 
     least: int
     typical: int
     greatest: int | None
+    exact: bool = True
 
     def widened(self, other: Duration) -> Duration:
         """From the least of both to the greatest of both; typical as this one."""
         greatest = None if self.greatest is None or other.greatest is None else max(self.greatest, other.greatest)
-        return Duration(min(self.least, other.least), self.typical, greatest)
+        return Duration(min(self.least, other.least), self.typical, greatest, self.exact and other.exact)
 
 
 @dataclass(frozen=True, slots=True)
