@@ -99,19 +99,26 @@ def no_sights(study: Study) -> Iterable[Sight]:
     return ()
 
 
-def no_plays(studies: Sequence[Study]) -> Iterable[Study]:
-    return ()
-
-
 def no_omissions(studies: Sequence[Study]) -> Iterable[Sight]:
     return ()
 
 
 @dataclass(frozen=True, slots=True)
+class Together:
+    """What no play shows alone: ``plays`` that do, and ``sights`` of what it comes to over several of them."""
+
+    plays: tuple[Study, ...] = ()
+    sights: tuple[Sight, ...] = ()
+
+
+def nothing_together(studies: Sequence[Study]) -> Together:
+    return Together()
+
+
+@dataclass(frozen=True, slots=True)
 class Check:
-    """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
-    together: what none of them comes to. ``plays``: more of them, where what is asked shows in none. Any function may
-    be left out."""
+    """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays:
+    what none of them comes to; ``together``: what only several of them come to. Any function may be left out."""
 
     kind: str
     severity: Severity
@@ -119,7 +126,7 @@ class Check:
     obligations: Callable[[Study], Iterable[Obligation]] = no_obligations
     sights: Callable[[Study], Iterable[Sight]] = no_sights
     omissions: Callable[[Sequence[Study]], Iterable[Sight]] = no_omissions
-    plays: Callable[[Sequence[Study]], Iterable[Study]] = no_plays
+    together: Callable[[Sequence[Study]], Together] = nothing_together
 
     def finding(self, sight: Sight) -> Finding:
         return Finding(

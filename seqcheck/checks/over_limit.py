@@ -4,19 +4,22 @@ from __future__ import annotations
 
 from bisect import bisect_left
 from collections.abc import Iterator, Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
-from seqcheck.checks.check import Check, Obligation, Sight, Wording
+from seqcheck.checks.check import Check, Obligation, Sight, Together, Wording
 from seqcheck.checks.comings import Coming, comings
-from seqcheck.checks.crossings import Crossings, Spell, crossings
+from seqcheck.checks.crossings import Crossings, Spell, Sum, crossings
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
+from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import follow, outcomes_before
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
+
+_ADDED_UP = "added up over states with something under way"
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
@@ -37,12 +40,14 @@ def _over(rule: CycleLimit | PathLimit) -> str:
     return f"`{rule.text}` can be exceeded by {{by}}"
 
 
-def _under(rule: CycleLimit | PathLimit) -> str:
+def _unlimited(rule: CycleLimit | PathLimit) -> str:
+    if isinstance(rule, CycleLimit):
+        return _over(rule).replace("{by}", UNLIMITED)
+    return f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
+
+
+def _under(rule: PathLimit) -> str:
     return f"`{rule.text}` can be undercut by {{by}}"
-
-
-def _least(rule: CycleLimit | PathLimit) -> int | None:
-    return rule.least if isinstance(rule, PathLimit) else None
 
 
 def _spells(study: Study, rule: Rule) -> list[Spell]:
@@ -101,29 +106,47 @@ def _never_comes(study: Study) -> Iterator[Sight]:
             for spell in _spells(study, rule):
                 if spell.end is None and study.time(spell.begin) <= until:
                     run = narrate_typical(study, spell.begin, last)
-                    message = f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
-                    yield Sight(rule.text, None, rule.place, message, run, at=last)
+                    yield Sight(rule.text, None, rule.place, _unlimited(rule), run, at=last)
                     break
 
 
-def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
-    """Where no play shows all of it in one: added up along the ways through the state graph."""
-    for rule, found in _crossings(studies):
-        if not found.begins:
-            continue
-        longest, shortest = found.longest(), found.least()
-        if longest is None and studies[0].whole:
-            message = f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
-            if isinstance(rule, CycleLimit):
-                message = _over(rule).replace("{by}", UNLIMITED)
-            yield Sight(rule.text, None, rule.place, message, certain=False)
-        elif longest is not None and longest.time > rule.greatest:
-            margin = rule.greatest - longest.time
-            message = _over(rule).replace("{by}", in_time(-margin))
-            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
-        elif (least := _least(rule)) is not None and shortest is not None and shortest < least:
-            message = _under(rule).replace("{by}", in_time(least - shortest))
-            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=shortest - least)
+@dataclass(frozen=True, slots=True)
+class _Extreme:
+    """The way through the state graph that takes longest, or shortest, of all that a rule limits; ``margin_us``: how
+    much is left of the limit, and what to ``say`` where nothing is."""
+
+    rule: CycleLimit | PathLimit
+    way: Sum
+    margin_us: int
+    say: str
+
+    @property
+    def message(self) -> str:
+        told = self.say.replace("{by}", in_time(-self.margin_us))
+        return told if self.way.exact else f"{told}, or less or not at all: it is {_ADDED_UP}"
+
+
+def _over_several_runs(studies: Sequence[Study]) -> Together:
+    """Where no play shows all of it in one: added up along the ways through the state graph, and played."""
+    found = list(_crossings(studies))
+    extremes = [extreme for rule, crossed in found for extreme in _extremes(rule, crossed)]
+    plays = {outcomes: passages for one in extremes for outcomes, passages in _to_play(studies, one.way)}
+    machine = studies[0].machine
+    return Together(
+        tuple(studies[0].alike(follow(machine, outcomes, passages)) for outcomes, passages in plays.items()),
+        (
+            *(
+                Sight(one.rule.text, None, one.rule.place, one.message, certain=False, margin_us=one.margin_us)
+                for one in extremes
+                if one.margin_us < 0
+            ),
+            *(
+                Sight(rule.text, None, rule.place, _unlimited(rule), certain=False)
+                for rule, crossed in found
+                if crossed.begins and crossed.longest() is None and studies[0].whole
+            ),
+        ),
+    )
 
 
 def _crossings(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Crossings]]:
@@ -138,26 +161,25 @@ def _crossings(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimi
             yield rule, found[rule.text]
 
 
-def _longest_ways(studies: Sequence[Study]) -> list[Study]:
-    """For what a rule limits the way that takes longest, played in one, where no play has shown it."""
-    found: dict[tuple[object, ...], Study] = {}
-    for _, crossed in _crossings(studies):
-        longest = crossed.longest()
-        if longest is None:
-            continue
-        begin = longest.edges[0][0]
-        owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
-        owner = next(owners, None)
-        if owner is None:
-            continue  # Only a play that turns an order comes there, and what it draws cannot be drawn in another.
+def _extremes(rule: CycleLimit | PathLimit, crossed: Crossings) -> Iterator[_Extreme]:
+    longest, shortest = crossed.longest(), crossed.shortest()
+    if longest is not None:
+        yield _Extreme(rule, longest, rule.greatest - longest.time, _over(rule))
+    if shortest is not None and isinstance(rule, PathLimit) and rule.least is not None:
+        yield _Extreme(rule, shortest, shortest.time - rule.least, _under(rule))
+
+
+def _to_play(studies: Sequence[Study], way: Sum) -> Iterator[tuple[tuple[Outcome, ...], int]]:
+    """How the choices come out on this way, and through how many states it goes, where no play has shown it in one."""
+    edges = way.edges
+    begin = edges[0][0]
+    owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
+    owner = next(owners, None)
+    chosen = [edge[2] for edge in edges if edge[2] is not None]
+    # Where only a play that turns an order comes there, what it draws cannot be drawn in another.
+    if owner is not None and len(edges) > 1 and chosen:
         before = owner.states.index(begin)
-        chosen = [edge[2] for edge in longest.edges if edge[2] is not None]
-        if len(longest.edges) > 1 and chosen:
-            outcomes = (*outcomes_before(owner.path, before), *chosen)
-            passages = before + 4 * len(longest.edges) + 4
-            if outcomes not in found:
-                found[outcomes] = studies[0].alike(follow(studies[0].machine, outcomes, passages))
-    return list(found.values())
+        yield (*outcomes_before(owner.path, before), *chosen), before + 4 * len(edges) + 4
 
 
 CHECK = Check(
@@ -166,6 +188,5 @@ CHECK = Check(
     "a cycle or a way takes longer, or shorter, than it may",
     _obligations,
     _never_comes,
-    omissions=_over_several_runs,
-    plays=_longest_ways,
+    together=_over_several_runs,
 )

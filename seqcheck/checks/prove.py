@@ -67,7 +67,8 @@ class _Seen:
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
     """Prove every play of the machine, and put the results together. A margin that holds, but leaves less than
     ``reserve_us``, is a finding too."""
-    played = [*studies, *(more for check in checks for more in check.plays(studies))]
+    together = [(check, check.together(studies)) for check in checks]
+    played = [*studies, *(more for _, one in together for more in one.plays)]
     ways = Ways([study.settlement for study in played])
     by_key: dict[_Key, list[_Seen]] = {}
     margins: dict[_Key, Margin] = {}
@@ -82,14 +83,14 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
             margins[key] = min(margins.get(key, margin), margin, key=_by_margin)
     broken = [_one_of(found, ways) for found in by_key.values()]
     found = {_key(one.finding): number for number, one in enumerate(broken)}
-    for check in checks:
-        for sight in check.omissions(studies):
-            finding = check.finding(sight)
-            if _key(finding) in found:
-                number = found[_key(finding)]
-                broken[number] = _at_least_as_bad(broken[number], finding)
-            else:
-                broken.append(Broken(finding, None))
+    whole = [check.finding(sight) for check, one in together for sight in one.sights]
+    whole += [check.finding(sight) for check in checks for sight in check.omissions(studies)]
+    for finding in whole:
+        if _key(finding) in found:
+            number = found[_key(finding)]
+            broken[number] = _at_least_as_bad(broken[number], finding)
+        else:
+            broken.append(Broken(finding, None))
     broken = _accepted(broken, studies[0].machine)
     return Proof(_sorted(broken), tuple(sorted(margins.values(), key=_by_margin)), strays)
 
