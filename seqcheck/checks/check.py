@@ -48,7 +48,8 @@ class Obligation:
     brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.
     ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than one that
     keeps it, and only the one or the other is played; ``stops``: it goes on no further, and is played on all the
-    same. ``assumed``: orders that this play takes for granted, but that are in question here."""
+    same. ``as_if``: an event that the play has called off, and that is taken to have come all the same: runs in which
+    it does break it just so. ``assumed``: orders that this play takes for granted, but that are in question here."""
 
     subject: str
     step: str | None
@@ -63,6 +64,7 @@ class Obligation:
     severity: Severity | None = None
     diverts: bool = True
     stops: bool = False
+    as_if: int | None = None
     instead: Instead | None = None
     assumed: tuple[tuple[int, int], ...] = ()
 

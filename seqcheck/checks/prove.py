@@ -150,7 +150,7 @@ def _prove_one(
     since = study.settlement.fresh_since
     stated = [(check, one) for check in checks for one in check.obligations(study) if _is_fresh(study, one, since)]
     rows = _rows(study, [one for _, one in stated])
-    turn = _turning_point(study, (one for _, one in stated), rows)
+    turns = _turns(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
     diverting: set[_Key] = set()
     shown: dict[_Key, set[Segment]] = {}
@@ -162,7 +162,7 @@ def _prove_one(
             tightest[key] = (check, one, margin)
         if margin < 0 and (one.stops or (one.diverts and not _always_broken(one, rows))):
             diverting.add(key)
-        if _always_broken(one, rows) and (turn is None or study.time(one.first) <= turn):
+        if _always_broken(one, rows) and _comes_before(study, one, turns):
             shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
     seen = [
         _Seen(_broken(study, *found, key in diverting), frozenset(shown.get(key, ())))
@@ -176,13 +176,13 @@ def _prove_one(
     ]
     for check in checks:
         for sight in check.sights(study):
-            shows = sight.certain and turn is None
+            shows = sight.certain and not turns
             at = segment_of(sight.at) if sight.at is not None else (segment_of(0)[0], -1)
             seen.append(_Seen(Broken(check.finding(sight), None), frozenset({at} if shows else ())))
     margins = (
         Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
     )
-    return _ProofOfOne(tuple(seen), tuple(margins), turn is not None)
+    return _ProofOfOne(tuple(seen), tuple(margins), bool(turns))
 
 
 def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
@@ -216,19 +216,22 @@ def _always_broken(one: Obligation, rows: Rows) -> bool:
     return rows[one.first, one.second] < one.least
 
 
-def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) -> int | None:
-    """The typical time at which the played run first breaks what other runs keep: nothing that it comes to afterwards
-    is certain. None where it never does."""
-    return min(
-        (
-            study.time(one.second)
-            for one in obligations
-            if one.diverts
-            and study.time(one.first) + one.least > study.time(one.second)
-            and rows[one.first, one.second] >= one.least
-        ),
-        default=None,
-    )
+def _turns(study: Study, obligations: Iterable[Obligation], rows: Rows) -> list[Obligation]:
+    """What the played run breaks and other runs keep: from there on they go otherwise, and nothing is certain."""
+    return [
+        one
+        for one in obligations
+        if one.diverts
+        and study.time(one.first) + one.least > study.time(one.second)
+        and rows[one.first, one.second] >= one.least
+    ]
+
+
+def _comes_before(study: Study, one: Obligation, turns: Sequence[Obligation]) -> bool:
+    """Whether it shows that this is broken, as it does once the second event comes, before any run goes otherwise than
+    the played one: such a run keeps what that breaks, and comes to its first event."""
+    pairs = [(turn.first, one.second) for turn in turns if turn.first != one.as_if]
+    return all(separation <= 0 for separation in greatest_separations(study.trace.graph, pairs).values())
 
 
 def _broken(study: Study, check: Check, one: Obligation, margin: int, diverts: bool) -> Broken:

@@ -68,8 +68,9 @@ class Study:
     # Events that only obligations need -------------------------------------------------------------------------
 
     def comes(self, event: int) -> bool:
-        """Whether an event really came in the play; those that the study adds do."""
-        return event >= self._played or event in self.trace.happened
+        """Whether an event really came in the play; those that the study adds do. (A read of several causes comes with
+        the last of them.)"""
+        return event >= self._played or event in self.trace.happened or event in self.reads_by_event
 
     def later(self, event: Event, cause: int, span: Span, delay: DelayName | None = None) -> int:
         """The moment this long after another one; ``delay`` is its name where the machine draws it."""
