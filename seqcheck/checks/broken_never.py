@@ -14,7 +14,7 @@ from seqcheck.checks.crossings import Spell, crossings
 from seqcheck.checks.held_together import together, without_breaks
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
-from seqcheck.checks.wording import UNLIMITED, in_time
+from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
 from seqcheck.engine.conditions import Alternatives, alternatives_of, literals_of
 from seqcheck.engine.held import Holds
 from seqcheck.machine.findings import Severity
@@ -104,12 +104,13 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
     for rule in rules:
         if rule.text not in found or not found[rule.text].begins:
             continue
-        longest = found[rule.text].greatest()
+        longest = found[rule.text].longest()
         if longest is None and studies[0].whole:
             yield Sight(rule.text, None, rule.place, _wording(rule).broken(UNLIMITED), certain=False)
-        elif longest is not None and longest > max(0, rule.tolerated):
-            margin = rule.tolerated - longest
+        elif longest is not None and longest.time > max(0, rule.tolerated):
+            margin = rule.tolerated - longest.time
             message = _wording(rule).broken(in_time(-margin))
+            message = message if longest.exact else f"{message}, {OR_LESS}"
             yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
 
 

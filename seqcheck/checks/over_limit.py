@@ -12,14 +12,12 @@ from seqcheck.checks.crossings import Crossings, Spell, Sum, crossings
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
-from seqcheck.checks.wording import UNLIMITED, in_time
+from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import follow, outcomes_before
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
-
-_ADDED_UP = "added up over states with something under way"
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
@@ -123,7 +121,7 @@ class _Extreme:
     @property
     def message(self) -> str:
         told = self.say.replace("{by}", in_time(-self.margin_us))
-        return told if self.way.exact else f"{told}, or less or not at all: it is {_ADDED_UP}"
+        return told if self.way.exact else f"{told}, {OR_LESS}"
 
 
 def _over_several_runs(studies: Sequence[Study]) -> Together:
