@@ -10,9 +10,12 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from seqcheck.checks.check import Check, Instead, Obligation, Wording
+from seqcheck.checks.narrate import describe
 from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
-from seqcheck.engine.choice_orders import ChoiceOrder, asked_in_time
+from seqcheck.engine.choice_orders import asked_in_time
+from seqcheck.engine.order import Order
+from seqcheck.engine.partings import is_up_to_someone, parted_at
 from seqcheck.engine.trace import Choice
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.model import items_of
@@ -20,31 +23,60 @@ from seqcheck.machine.steps import Step
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
+    yield from _of_what_is_asked(study)
+    yield from _of_turned_orders(study)
+
+
+def _of_what_is_asked(study: Study) -> Iterator[Obligation]:
     turned = {key[1] for key in study.settlement.recipe.turned if key[0] == "choose"}
     for choice in study.trace.choices:
         # Where this play turned the choice, how far it is from turning back says nothing.
-        if choice.taken is None or choice.choose.place in turned:
+        if choice.taken is None or choice.choose.place in turned or is_up_to_someone(choice):
             continue
-        for one in asked_in_time(study.machine, study.trace, choice):
-            if one.other is not None and one.other != choice.taken and not one.outside:
-                yield _obligation(choice, one)
+        for one in asked_in_time(study.trace, choice):
+            if one.other is not None and one.other != choice.taken:
+                yield _obligation(choice, one.other, one.order, one.how, one.asked)
 
 
-def _obligation(choice: Choice, one: ChoiceOrder) -> Obligation:
-    assert one.other is not None
+def _of_turned_orders(study: Study) -> Iterator[Obligation]:
+    """Orders by which the choice is another one in the play that has them the other way round: of what it asks, where
+    it then waits first, or of what came long before."""
+    for turned in study.turned:
+        parted = parted_at(study.trace, turned.trace, turned.unturned)
+        if parted is not None:
+            choice, other = parted
+            yield _obligation(choice, other, turned.order, *_told(study, choice, turned.order))
+
+
+def _told(study: Study, choice: Choice, order: Order) -> tuple[str, str]:
+    """How it comes the other way round, and what is asked."""
+    for one in asked_in_time(study.trace, choice):
+        if one.order.key == order.key:
+            return one.how, one.asked
+    asked = sorted({literal.term.subject for literal in choice.literals})
+    first, second = (_event(study, number) for number in (order.first, order.second))
+    return f"{second} {{by}} before {first}", " and ".join(asked)
+
+
+def _event(study: Study, number: int) -> str:
+    event = study.trace.graph.events[number]
+    return describe(study, event) or f"the read of {event.subject}"
+
+
+def _obligation(choice: Choice, other: int, order: Order, how: str, asked: str) -> Obligation:
     where = f"behind {choice.after}" if choice.after else f"in line {choice.choose.place.line}"
-    message = f"the choice {where} can take `{branch_name(choice.choose, one.other)}` instead, {one.how}"
+    message = f"the choice {where} can take `{branch_name(choice.choose, other)}` instead, {how}"
     return Obligation(
         choice_name(choice),
         None,
         choice.choose.place,
-        one.order.first,
-        one.order.second,
-        Wording(message, lambda by: f"let the step before wait until {one.asked} is sure to be as it will stay"),
-        least=1 if one.order.strict else 0,
+        order.first,
+        order.second,
+        Wording(message, lambda by: f"let the step before wait until {asked} is sure to be as it will stay"),
+        least=1 if order.strict else 0,
         diverts=False,
-        instead=_instead(choice, one.other),
-        assumed=((one.order.first, one.order.second),),
+        instead=_instead(choice, other),
+        assumed=((order.first, order.second),),
     )
 
 

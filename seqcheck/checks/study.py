@@ -16,8 +16,9 @@ from seqcheck.checks.chases import Chase, chases_of
 from seqcheck.engine.bounds import causes_since
 from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
+from seqcheck.engine.order import Order
 from seqcheck.engine.timeline import Draw, typical
-from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Visit
+from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Trace, Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
 from seqcheck.machine.time import Span
@@ -31,6 +32,16 @@ class _Wait:
     left: int
     latest_left: int
     visit: Visit
+
+
+@dataclass(frozen=True, slots=True)
+class Turned:
+    """An order of a play, with the ``trace`` of one that has it the other way round and else is the same, and the one
+    behind both, ``unturned``, that has turned no order from there on."""
+
+    order: Order
+    trace: Trace
+    unturned: Trace
 
 
 class Study:
@@ -56,6 +67,8 @@ class Study:
         self.settlement = settlement
         self.trace = settlement.trace
         self._played = len(self.trace.times)
+
+        self.turned: list[Turned] = []
 
     def alike(self, settlement: Settlement) -> Study:
         """A study of another play of the same machine."""
@@ -298,10 +311,17 @@ class Study:
 
 
 def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
-    """A study of each play; all know which steps any of them has entered and left."""
+    """A study of each play; all know which steps any of them has entered and left, and what becomes of their orders the
+    other way round."""
     visits = [visit for one in graph.settlements for visit in one.trace.visits]
     entered = frozenset(visit.step.name for visit in visits)
     left = frozenset(visit.step.name for visit in visits if visit.left is not None)
     whole = graph.complete and all(one.settled for one in graph.settlements)
     chases = chases_of(machine, graph.settlements)
-    return [Study(machine, settlement, typical, entered, left, whole, chases) for settlement in graph.settlements]
+    studies = [Study(machine, one, typical, entered, left, whole, chases) for one in graph.settlements]
+    for settlement in graph.settlements:
+        turn = settlement.recipe.turn
+        if turn is not None:
+            unturned = graph.unturned(settlement)
+            studies[turn.play].turned.append(Turned(turn.order, settlement.trace, unturned.trace))
+    return studies

@@ -54,7 +54,7 @@ class _Below:
     def __init__(self, graph: EventGraph, common: int) -> None:
         self._graph = graph
         self._common = common
-        self._assumed = [pair for pair in graph.assumed if all(graph.dominates(common, number) for number in pair)]
+        self._assumed = graph.assumed_below(common)
         self._ordered = sorted({number for pair in self._assumed for number in pair})
         self._causes: dict[int, tuple[int, set[int]]] = {}
 

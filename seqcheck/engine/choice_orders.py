@@ -1,7 +1,8 @@
 """What decides which branch of a choice is taken.
 
-Takes a trace and a choice; gives what it asks against the read at which it was taken, in the order in which it came out
-so, and which branch would be taken the other way round.
+Takes a trace and a choice; gives the pairs of moments by which it is taken as it is: the read that comes to it, the
+floor from which it may be taken later, and whatever it asks becoming known. In the other order it would take another
+branch, or wait.
 """
 
 from __future__ import annotations
@@ -9,123 +10,243 @@ from __future__ import annotations
 from bisect import bisect_right
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from itertools import combinations
 
 from seqcheck.engine.conditions import Aspect, Literal, holding
 from seqcheck.engine.order import Order
-from seqcheck.engine.trace import Choice, Known, Trace
-from seqcheck.engine.wait_orders import completed, latest, named, passing
-from seqcheck.machine.conditions import TermKind
-from seqcheck.machine.devices import OutsideSignal
-from seqcheck.machine.model import Machine
+from seqcheck.engine.trace import Choice, Edge, Known, Trace
+from seqcheck.engine.wait_orders import passing
 
 
 @dataclass(frozen=True, slots=True)
 class ChoiceOrder:
-    """``other``: the branch that would be taken were it the other way round, None for waiting first. ``outside``: a
-    signal from outside is the reason, so that it is nobody's fault. ``asked``: what is asked; ``how`` it would come
-    the other way round, ``{by}`` so much."""
+    """``other``: the branch that would be taken were it the other way round, None for waiting first. ``asked``: what is
+    asked; ``how`` it would come the other way round, ``{by}`` so much."""
 
     order: Order
     asked: str
     how: str
     other: int | None
-    outside: bool
 
 
-def choice_orders(machine: Machine, trace: Trace, choice: Choice) -> Iterator[Order]:
-    for one in asked_in_time(machine, trace, choice):
+def choice_orders(trace: Trace, choice: Choice) -> Iterator[Order]:
+    for one in asked_in_time(trace, choice):
         yield one.order
 
 
-def asked_in_time(machine: Machine, trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
+def asked_in_time(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
     """Every order by which a choice is taken as it is."""
-    yield from _at_the_first_read(trace, choice)
+    look = _Look(trace, choice)
+    yield from look.orders()
     if choice.left is not None and choice.left is not choice.entered and choice.taken is not None:
-        yield from _while_it_stands(machine, trace, choice)
-        yield from _in_passing(trace, choice)
+        yield from look.orders_in_passing()
 
 
-def _at_the_first_read(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
-    """What came before the read or comes after it, and would have the choice come out otherwise."""
-    read, behind = choice.entered.event, choice.told
-    logs = {aspect: trace.known.get(aspect, []) for aspect in behind}
-    values = {aspect: _value_before(logs[aspect], at) for aspect, at in behind.items()}
-    now = _outcome(choice, values)
-    for aspect, at in behind.items():
-        log, turned = logs[aspect], {**values, aspect: not values[aspect]}
-        other = _outcome(choice, turned)
-        if other == now:
-            continue
-        place = ("choose", choice.choose.place, aspect[1])
-        if at:
-            yield ChoiceOrder(
-                Order((*place, "seen"), log[at - 1].seen, read),
-                aspect[1],
-                f"{aspect[1]} changing {{by}} after the read that asks it",
-                other,
-                False,
-            )
-        if at < len(log):
-            yield ChoiceOrder(
-                Order((*place, "not seen"), read, log[at].seen),
-                aspect[1],
-                f"{aspect[1]} changing {{by}} before the read that asks it",
-                other,
-                False,
-            )
+#: What becomes known: of a term, or that a signal from outside is as a literal wants it.
+_Fact = Aspect | Literal
 
 
-def _value_before(log: Sequence[Known], at: int) -> bool:
-    if at:
-        return log[at - 1].value
-    return not log[0].value if log else False
+@dataclass(frozen=True, slots=True)
+class _Moment:
+    """``facts`` are known from then on. ``comes``: the read that comes to the choice; ``ready``: its floor, from which
+    on the choice is taken as soon as a condition holds."""
+
+    event: int
+    facts: Mapping[_Fact, bool]
+    comes: bool = False
+    ready: bool = False
+
+    def with_facts_of(self, other: _Moment) -> _Moment:
+        facts = {**self.facts, **other.facts}
+        return _Moment(self.event, facts, self.comes or other.comes, self.ready or other.ready)
+
+    def without(self, fact: _Fact) -> _Moment:
+        facts = {one: value for one, value in self.facts.items() if one != fact}
+        return _Moment(self.event, facts, self.comes, self.ready)
+
+    def changes(self, other: _Moment) -> bool:
+        """Whether the two are changes of one term."""
+        return not self.facts.keys().isdisjoint(other.facts.keys())
+
+    def is_bound_to(self, other: _Moment) -> bool:
+        """Whether nothing can bring the two into the other order."""
+        return (self.read is not None and other.read is not None) or (self.event == other.event and other.ready)
+
+    @property
+    def read(self) -> str | None:
+        """What the choice does then, whatever is known."""
+        if self.comes:
+            return "the read that asks it"
+        return "the read from which on it can be taken" if self.ready else None
+
+    @property
+    def name(self) -> object:
+        return self.read or frozenset((_subject(fact), value) for fact, value in self.facts.items())
+
+    @property
+    def subjects(self) -> str:
+        return " and ".join(dict.fromkeys(_subject(fact) for fact in self.facts))
+
+    @property
+    def coming(self) -> str:
+        return f"{self.subjects} {'coming' if self._comes_on else 'going'}"
+
+    @property
+    def comes_or_goes(self) -> str:
+        return self.subjects if self._comes_on else f"{self.subjects} goes"
+
+    @property
+    def _comes_on(self) -> bool:
+        return any(fact.wanted if isinstance(fact, Literal) else value for fact, value in self.facts.items())
 
 
-def _outcome(choice: Choice, values: Mapping[Aspect, bool]) -> int | None:
+class _Look:
+    """A choice as it is looked at: at the read that comes to it, then as the step behind a step is."""
+
+    def __init__(self, trace: Trace, choice: Choice) -> None:
+        self._trace = trace
+        self._choice = choice
+        logs = {aspect: trace.known[aspect] for aspect in choice.told}
+        self._start: dict[_Fact, bool] = {
+            aspect: logs[aspect][max(0, at - 3)].value for aspect, at in choice.told.items()
+        }
+        self._moments = self._all_moments(logs)
+
+    def orders(self) -> Iterator[ChoiceOrder]:
+        moments = self._moments
+        taken = self._taken(moments)
+        read = next(number for number, moment in enumerate(moments) if moment.comes)
+        for one, two in combinations(range(len(moments)), 2):
+            if two < read or moments[one].is_bound_to(moments[two]) or (one < read and moments[two].ready):
+                continue
+            others = [other for other in self._swapped(one, two) if other != taken]
+            if others:
+                strict = moments[one].read is moments[two].read and self._at_once(one, two) != taken
+                yield self._order(moments[one], moments[two], others, strict)
+                yield from self._companions(one, two)
+
+    def _swapped(self, one: int, two: int) -> Iterator[int | None]:
+        """What is taken with the one moved behind the other, and with the other before the one; past no change of its
+        own term."""
+        moments = self._moments
+        before, between, behind = moments[:one], moments[one + 1 : two], moments[two + 1 :]
+        if not any(moments[one].changes(moment) for moment in (*between, moments[two])):
+            yield self._taken([*before, *between, moments[two], moments[one], *behind])
+        if not any(moments[two].changes(moment) for moment in (moments[one], *between)):
+            yield self._taken([*before, moments[two], moments[one], *between, *behind])
+
+    def _at_once(self, one: int, two: int) -> int | None:
+        moments = self._moments
+        both = moments[one].with_facts_of(moments[two])
+        return self._taken([*moments[:one], *moments[one + 1 : two], both, *moments[two + 1 :]])
+
+    def _companions(self, one: int, two: int) -> Iterator[ChoiceOrder]:
+        """What stays as it is while the two change places: what the one takes back is known before the other, and what
+        takes the other back is known after the one."""
+        moments = self._moments
+        earlier = next((each for each in reversed(moments[:one]) if each.changes(moments[one])), None)
+        later = next((each for each in moments[two + 1 :] if each.changes(moments[two])), None)
+        if earlier is not None:
+            yield self._order(earlier, moments[two], (), strict=False)
+        if later is not None:
+            yield self._order(moments[one], later, (), strict=False)
+
+    def orders_in_passing(self) -> Iterator[ChoiceOrder]:
+        """What is asked comes and goes, and no read falls between the two, or one does."""
+        for aspect in self._choice.told:
+            for order, edge in passing(self._trace, self._choice, aspect[1]):
+                if edge.lost_to is None:
+                    how, taken = "passing unseen", self._taken(self._without(aspect, edge))
+                else:
+                    how, taken = "seen", self._taken(self._with(aspect, edge))
+                yield ChoiceOrder(order, aspect[1], f"{aspect[1]} {how} by {{by}}", taken)
+
+    def _without(self, aspect: Aspect, edge: Edge) -> list[_Moment]:
+        """As if it had come and gone unseen."""
+        changes = [one for one in self._moments if aspect in one.facts]
+        both = changes[next(n for n, one in enumerate(changes) if one.event == edge.seen) :][:2]
+        return [one.without(aspect) if one in both else one for one in self._moments]
+
+    def _with(self, aspect: Aspect, edge: Edge) -> list[_Moment]:
+        """As if it had been seen, until the very next read."""
+        times = self._trace.times
+        comes = edge.arrived if edge.seen is None else edge.seen
+        at = next((n for n, one in enumerate(self._moments) if times[one.event] > times[comes]), len(self._moments))
+        both = [_Moment(comes, {aspect: value}) for value in (edge.value, not edge.value)]
+        return [*self._moments[:at], *both, *self._moments[at:]]
+
+    def _order(self, one: _Moment, two: _Moment, others: Sequence[int | None], strict: bool) -> ChoiceOrder:
+        key = ("choose", self._choice.choose.place, one.name, two.name)
+        other = next((other for other in others if other is not None), None)
+        asked = one.subjects if two.read is not None else two.subjects
+        if two.read is not None:
+            how = f"{asked} changing {{by}} after {two.read}"
+        elif one.read is not None:
+            how = f"{asked} changing {{by}} before {one.read}"
+        else:
+            how = f"{two.coming} {{by}} before {one.comes_or_goes}"
+        return ChoiceOrder(Order(key, one.event, two.event, strict), asked, how, other)
+
+    def _all_moments(self, logs: Mapping[Aspect, Sequence[Known]]) -> list[_Moment]:
+        """In the order in which they came: the last two changes of each term before the read, the read, what came while
+        the choice stood, and the two that each term came to next."""
+        choice, times = self._choice, self._trace.times
+        early: dict[int, _Moment] = {}
+        late: dict[int, _Moment] = {}
+        for aspect, at in choice.told.items():
+            log = logs[aspect]
+            for known in log[max(1, at - 2) : at]:
+                _add(early, _Moment(known.seen, {aspect: known.value}))
+            for known in log[at : self._last_that_counts(log, at)]:
+                _add(late, _Moment(known.seen, {aspect: known.value}))
+        for literal, (_, seen) in choice.signals.items():
+            _add(late, _Moment(seen, {literal: True}))
+        read, ready = _Moment(choice.entered.event, {}, comes=True), _Moment(choice.entered.floor, {}, ready=True)
+
+        def in_time(one: _Moment) -> tuple[int, int, bool]:
+            return times[one.event], one.event, one.ready
+
+        return [*sorted(early.values(), key=in_time), read, *sorted((*late.values(), ready), key=in_time)]
+
+    def _last_that_counts(self, log: Sequence[Known], at: int) -> int:
+        left, times = self._choice.left, self._trace.times
+        if left is None:
+            return len(log)
+        end = max(at, bisect_right(log, times[left.event], key=lambda known: times[known.seen]))
+        expired = self._choice.alarm is not None and self._choice.alarm.expired
+        return end if expired else end + 2
+
+    def _taken(self, moments: Sequence[_Moment]) -> int | None:
+        """The branch that is taken where things come in this order; None where none ever is."""
+        known, came, ready = dict(self._start), False, False
+        for moment in moments:
+            known.update(moment.facts)
+            came, ready = came or moment.comes, ready or moment.ready
+            if moment.comes or (came and ready):
+                taken = _outcome(self._choice, known, moment.comes)
+                if taken is not None:
+                    return taken
+        return None
+
+
+def _add(moments: dict[int, _Moment], one: _Moment) -> None:
+    known = moments.get(one.event)
+    moments[one.event] = one if known is None else known.with_facts_of(one)
+
+
+def _subject(fact: _Fact) -> str:
+    return fact.term.subject if isinstance(fact, Literal) else fact[1]
+
+
+def _outcome(choice: Choice, known: Mapping[_Fact, bool], at_first: bool = False) -> int | None:
+    """The first branch whose condition holds; ``at_first``: at the read that comes to the choice, where whoever is
+    outside has an answer."""
+
     def is_so(literal: Literal) -> bool:
-        if literal.term.subject in choice.asked:
+        if literal.term.subject not in choice.asked:
+            return known[literal.aspect] == literal.wanted
+        if at_first:
             return choice.asked[literal.term.subject] == literal.wanted
-        return values[literal.aspect] == literal.wanted
+        return known.get(literal, False)
 
     return next((n for n, one in enumerate(choice.conditions) if holding(one, is_so) is not None), None)
-
-
-def _while_it_stands(machine: Machine, trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
-    """What made the branch be taken, against what would have another one taken before."""
-    came = latest(trace, [answer.seen for answer in choice.answers])
-    if came is None or choice.taken is None:
-        return
-    for number, condition in enumerate(choice.conditions):
-        for other in condition:
-            comes = completed(trace, choice, other)
-            if number == choice.taken or comes is None:
-                continue
-            own = [answer.literal for answer in choice.answers]
-            outside = any(_from_outside(machine, literal) for literal in (*other, *own))
-            key = ("choose", choice.choose.place, choice.taken, number, named(other))
-            asked = " and ".join(one.term.subject for one in other)
-            how = f"{asked} coming {{by}} before {' and '.join(one.term.subject for one in own)}"
-            yield ChoiceOrder(Order(key, came, comes, strict=number < choice.taken), asked, how, number, outside)
-
-
-def _in_passing(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
-    """What would have another branch taken comes and goes, and no read falls between the two, or one does."""
-    aspects = {literal.aspect for literal in choice.literals if literal not in choice.signals}
-    for aspect in aspects:
-        for order, edge in passing(trace, choice, aspect[1]):
-            values = {other: _known_at(trace, other, edge.arrived) for other in aspects}
-            other = _outcome(choice, {**values, aspect: edge.value})
-            if order.key[-1] != "unseen":
-                other = next((n for n in range(len(choice.conditions)) if n != choice.taken), None)
-            how = f"{aspect[1]} {'seen' if edge.lost_to is not None else 'passing unseen'} by {{by}}"
-            yield ChoiceOrder(order, aspect[1], how, other, False)
-
-
-def _known_at(trace: Trace, aspect: Aspect, event: int) -> bool:
-    log = trace.known.get(aspect, [])
-    return _value_before(log, bisect_right(log, trace.times[event], key=lambda known: trace.times[known.seen]))
-
-
-def _from_outside(machine: Machine, literal: Literal) -> bool:
-    term = literal.term
-    return term.kind is TermKind.SIGNAL and isinstance(machine.signals[term.subject], OutsideSignal)

@@ -233,7 +233,7 @@ class Controller:
             after=select.behind,
             conditions=select.conditions,
             told={
-                literal.aspect: len(self._trace.known.get(literal.aspect, ()))
+                literal.aspect: len(self._trace.known[literal.aspect])
                 for condition in select.conditions
                 for literal in literals_of(condition)
                 if not self._knowledge.from_outside(literal.term)

@@ -37,13 +37,22 @@ _MOST_PLACINGS = 8
 
 
 @dataclass(frozen=True, slots=True)
+class Turn:
+    """``order`` of the ``play``, by its number, of which another play is the other way round and else the same."""
+
+    play: int
+    order: Order
+
+
+@dataclass(frozen=True, slots=True)
 class Recipe:
     """How to play one way: the outcomes of its choices, delays that are not typical, and which orders between the
-    states at passage ``fresh`` and the next one they turn."""
+    states at passage ``fresh`` and the next one they turn, the last of them by ``turn``."""
 
     way: Way
     delays: Mapping[DelayName, int]
     turned: frozenset[OrderKey] = frozenset()
+    turn: Turn | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,6 +92,13 @@ class StateGraph:
 
     settlements: tuple[Settlement, ...]
     complete: bool
+
+    def unturned(self, settlement: Settlement) -> Settlement:
+        """The play from which this one has come, one order after the other turned behind the same state."""
+        for _ in settlement.recipe.turned:
+            assert settlement.recipe.turn is not None
+            settlement = self.settlements[settlement.recipe.turn.play]
+        return settlement
 
 
 @dataclass(slots=True)
@@ -156,7 +172,8 @@ class _Explorer:
         self.turns[where] += 1
         self.planned.add((where, both))
         way = Way(outcomes_before(path, number + 1), number)
-        self.waiting.append(Recipe(way, {**recipe.delays, **run.delays}, both))
+        turn = Turn(len(self.found) - 1, order)
+        self.waiting.append(Recipe(way, {**recipe.delays, **run.delays}, both, turn))
 
 
 def _turned_run(trace: Trace, order: Order) -> Witness | None:

@@ -163,13 +163,14 @@ class EventGraph:
 
     def assumes_below(self, dominator: int) -> bool:
         """Whether an order is taken for granted of two events that this one dominates."""
-        return any(
-            number > dominator
-            and other > dominator
-            and self.dominates(dominator, number)
-            and self.dominates(dominator, other)
-            for number, other in self.assumed
-        )
+        return any(self._is_below(dominator, pair) for pair in self.assumed)
+
+    def assumed_below(self, dominator: int) -> list[tuple[int, int]]:
+        """The orders that are taken for granted of two events that this one dominates."""
+        return [pair for pair in self.assumed if self._is_below(dominator, pair)]
+
+    def _is_below(self, dominator: int, pair: tuple[int, int]) -> bool:
+        return min(pair) > dominator and all(self.dominates(dominator, number) for number in pair)
 
     @contextmanager
     def not_assuming(self, pairs: Collection[tuple[int, int]]) -> Iterator[None]:

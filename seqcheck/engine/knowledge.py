@@ -28,16 +28,20 @@ class Knowledge:
         self.asked: set[Aspect] = {
             aspect_of(term) for condition in asked_conditions(machine) for term in terms_of(condition)
         }
-        self._known: dict[Aspect, Known] = {aspect: Known(False, 0, 0) for aspect in self.asked if aspect[0] in _OWN}
-        self.held: dict[Aspect, bool] = dict.fromkeys(self._known, False)
+        self._known: dict[Aspect, Known] = {}
+        self.held: dict[Aspect, bool] = {}
+        for aspect in self.asked:
+            if aspect[0] in _OWN:
+                self.initially(aspect, False)
 
     def initially(self, aspect: Aspect, value: bool) -> None:
-        self._known[aspect] = Known(value, 0, 0)
+        known = self._known[aspect] = Known(value, 0, 0)
+        self._trace.known[aspect] = [known]
         self.held[aspect] = value
 
     def see(self, aspect: Aspect, known: Known) -> None:
         self._known[aspect] = known
-        self._trace.known.setdefault(aspect, []).append(known)
+        self._trace.known[aspect].append(known)
 
     def of(self, aspect: Aspect) -> Known:
         return self._known[aspect]

@@ -251,7 +251,7 @@ class Trace:
     strokes: list[Stroke] = field(default_factory=list)
     strokes_of: dict[str, list[Stroke]] = field(default_factory=dict)
     edges: dict[str, list[Edge]] = field(default_factory=dict)
-    #: What the controller knew of each term that anybody asks, in the order in which it came to know it.
+    #: What the controller knew of each term that anybody asks, from the start on and as it came to know it.
     known: dict[Aspect, list[Known]] = field(default_factory=dict)
     #: How the machine itself changed, for each of its aspects that a rule, a signal or a drive looks at.
     changes: dict[Aspect, list[Change]] = field(default_factory=dict)

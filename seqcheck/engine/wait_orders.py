@@ -115,9 +115,9 @@ def latest(trace: Trace, events: Sequence[int]) -> int | None:
 
 def _next_known(trace: Trace, aspect: Aspect, since: int, wanted: bool) -> Known | None:
     """What the controller knew at an event, or came to know first after it, of this value."""
-    log = trace.known.get(aspect, ())
+    log = trace.known[aspect]
     at = bisect_right(log, trace.times[since], key=lambda known: trace.times[known.seen])
-    if at and log[at - 1].value == wanted:
+    if log[at - 1].value == wanted:
         return log[at - 1]
     return next((known for known in log[at:] if known.value == wanted), None)
 

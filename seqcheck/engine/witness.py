@@ -22,8 +22,9 @@ _LONG_US = 60_000_000
 
 @dataclass(frozen=True, slots=True)
 class Witness:
-    """``times`` of the pair's events and of all their causes since the event that dominates both; ``delays`` by name,
-    all others typical. ``chain``: the events on the way to the pair whose delays make its times, in order."""
+    """``times`` of the pair's events, of those that are taken to come before or behind them, and of all their causes
+    since the event that dominates the pair; ``delays`` by name, all others typical. ``chain``: the events on the way to
+    the pair whose delays make its times, in order."""
 
     times: Mapping[int, int]
     delays: Mapping[DelayName, int]
@@ -34,7 +35,7 @@ def witness(trace: Trace, first: int, second: int) -> Witness:
     """The run in which ``first`` comes as long after ``second`` as it can."""
     graph = trace.graph
     common = graph.common_dominator(first, second)
-    members = causes_since(graph, common, {first, second})
+    members = _members(graph, common, {first, second})
     column = separation_column(graph, members, second, _LONG_US)
     start = trace.times[common] - column[common]
     times = {number: start + column[number] for number in members}
@@ -45,6 +46,18 @@ def witness(trace: Trace, first: int, second: int) -> Witness:
                 delays[arc.delay] = min(times[number] - times[arc.cause], greatest_of(arc.span, _LONG_US))
     chain = _binding(graph, times, common, first) | _binding(graph, times, common, second)
     return Witness(times, delays, tuple(sorted(chain, key=lambda number: (times[number], number))))
+
+
+def _members(graph: EventGraph, common: int, pair: set[int]) -> list[int]:
+    """The causes of the pair, and those of whatever is taken to come before one of these, or behind it."""
+    assumed = graph.assumed_below(common)
+    members = causes_since(graph, common, pair)
+    while True:
+        within = set(members)
+        beside = {number for one in assumed if not within.isdisjoint(one) for number in one}
+        if beside <= within:
+            return members
+        members = causes_since(graph, common, pair | beside)
 
 
 def _binding(graph: EventGraph, times: Mapping[int, int], common: int, event: int) -> set[int]:

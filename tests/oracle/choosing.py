@@ -48,7 +48,7 @@ class Choosing:
         self.standing.remove(choice)
         choice.index = None if choice.gone else choice.first()
 
-    def take(self, choice: ActiveChoice) -> None:
+    def take(self, choice: ActiveChoice, stood: bool = False) -> None:
         """Note what has come of it, and go into the branch."""
         index, place = choice.index, choice.choose.place
         self._clock.log(f"{choice.name} takes {'its watchdog' if index is None else f'branch {index + 1}'}")
@@ -62,6 +62,7 @@ class Choosing:
                 index,
                 choice.entered,
                 self._clock.now,
+                stood,
                 asked,
             )
         )

@@ -203,19 +203,19 @@ def untold_races(examined: Examined, runs: dict[str, Run]) -> Iterator[Disagreem
     """Choices that come out in two ways in runs in which everybody outside answers alike. Only the first thing that two
     runs decide differently counts: what comes later may follow from it."""
     raced = {finding.place.line for finding in examined.report.findings if finding.kind == "choice-race"}
-    within = {taken.line: taken for run in runs.values() for taken in run.choices}
     for (one, first), (two, second) in combinations(runs.items(), 2):
         if one.partition(",")[0] != two.partition(",")[0]:
             continue
-        taken = first_race(first, second)
-        if taken is None or taken.line not in within or _hangs_on_someone(examined.machine, taken):
+        race = first_race(first, second)
+        if race is None or _hangs_on_someone(examined.machine, *race):
             continue
+        taken = race[0]
         if not raced & lines_of(examined.machine, taken):
             yield Disagreement("race", f"{one} and {two}", f"{taken.name} comes out both ways, number {taken.occasion}")
 
 
-def first_race(first: Run, second: Run) -> Taken | None:
-    """The choice that the two runs make differently before they do anything else differently."""
+def first_race(first: Run, second: Run) -> tuple[Taken, Taken] | None:
+    """The choice that the two runs make differently before they do anything else differently, as each has made it."""
     ways = [_decisions(run) for run in (first, second)]
     apart = [key for key in ways[0] if key in ways[1] and ways[0][key][1] != ways[1][key][1]]
     if not apart:
@@ -225,7 +225,7 @@ def first_race(first: Run, second: Run) -> Taken | None:
     other = ways[1][key][2]
     if not isinstance(made, Taken) or not isinstance(other, Taken):
         return None
-    return made if other.index is not None and made.index is not None else None
+    return (made, other) if other.index is not None and made.index is not None else None
 
 
 def _decisions(run: Run) -> dict[Decision, tuple[int, int | bool | None, Taken | Visit]]:
@@ -242,14 +242,14 @@ def _decisions(run: Run) -> dict[Decision, tuple[int, int | bool | None, Taken |
     return made
 
 
-def _hangs_on_someone(machine: Machine, taken: Taken) -> bool:
+def _hangs_on_someone(machine: Machine, one: Taken, other: Taken) -> bool:
     """A choice that stood and waits for someone outside: which comes first is no matter of the machine's times."""
-    choose = _choose_of(machine, taken)
+    choose = _choose_of(machine, one)
     terms = [term for choice in choose.choices for term in terms_of(choice.condition)]
     outside = any(
         term.kind is TermKind.SIGNAL and isinstance(machine.signals[term.subject], OutsideSignal) for term in terms
     )
-    return outside and taken.time > taken.arrived
+    return outside and (one.stood or other.stood)
 
 
 def lines_of(machine: Machine, taken: Taken) -> frozenset[int]:

@@ -200,7 +200,7 @@ class ControllerPlay:
     def _go_on_from(self, wait: Wait, read: Read, entered: list[ActiveVisit]) -> None:
         if isinstance(wait, ActiveChoice):
             self.choosing.leave(wait)
-            self.choosing.take(wait)
+            self.choosing.take(wait, stood=True)
         if wait.gone:
             assert wait.watchdog is not None and wait.watchdog.target is not None
             self._jump(wait.thread, wait.watchdog.target, read)

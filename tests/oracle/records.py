@@ -23,8 +23,9 @@ class Visit:
 @dataclass(frozen=True, slots=True)
 class Taken:
     """What came of a ``choose`` in the text at ``line`` and ``column``, the ``occasion``-th time it was come to (from
-    0), at ``arrived``. ``index`` counts its branches from 0, and is None where its watchdog has run out. ``asked``
-    are the signals from outside as they were at the arrival."""
+    0), at ``arrived``. ``index`` counts its branches from 0, and is None where its watchdog has run out. ``stood``: it
+    was not taken at the read that came to it, though perhaps at the same instant. ``asked`` are the signals from
+    outside as they were at the arrival."""
 
     sequence: str
     line: int
@@ -33,6 +34,7 @@ class Taken:
     index: int | None
     arrived: int
     time: int
+    stood: bool
     asked: tuple[tuple[str, bool], ...] = ()
 
     @property
