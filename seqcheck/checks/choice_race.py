@@ -35,7 +35,7 @@ def _of_what_is_asked(study: Study) -> Iterator[Obligation]:
             continue
         for one in asked_in_time(study.trace, choice):
             if one.other is not None and one.other != choice.taken:
-                yield _obligation(choice, one.other, one.order, one.how, one.asked)
+                yield _obligation(study, choice, one.other, one.order, one.how, one.asked)
 
 
 def _of_turned_orders(study: Study) -> Iterator[Obligation]:
@@ -45,7 +45,7 @@ def _of_turned_orders(study: Study) -> Iterator[Obligation]:
         parted = parted_at(study.trace, turned.trace, turned.unturned)
         if parted is not None:
             choice, other = parted
-            yield _obligation(choice, other, turned.order, *_told(study, choice, turned.order))
+            yield _obligation(study, choice, other, turned.order, *_told(study, choice, turned.order))
 
 
 def _told(study: Study, choice: Choice, order: Order) -> tuple[str, str]:
@@ -63,7 +63,7 @@ def _event(study: Study, number: int) -> str:
     return describe(study, event) or f"the read of {event.subject}"
 
 
-def _obligation(choice: Choice, other: int, order: Order, how: str, asked: str) -> Obligation:
+def _obligation(study: Study, choice: Choice, other: int, order: Order, how: str, asked: str) -> Obligation:
     where = f"behind {choice.after}" if choice.after else f"in line {choice.choose.place.line}"
     message = f"the choice {where} can take `{branch_name(choice.choose, other)}` instead, {how}"
     return Obligation(
@@ -75,19 +75,21 @@ def _obligation(choice: Choice, other: int, order: Order, how: str, asked: str) 
         Wording(message, lambda by: f"let the step before wait until {asked} is sure to be as it will stay"),
         least=1 if order.strict else 0,
         diverts=False,
-        instead=_instead(choice, other),
+        instead=_instead(study, choice, other),
         assumed=((order.first, order.second),),
     )
 
 
-def _instead(choice: Choice, other: int) -> Instead:
+def _instead(study: Study, choice: Choice, other: int) -> Instead:
     read = choice.entered if choice.left is None else choice.left
     way = branch_name(choice.choose, other)
+    made = [one for one in study.trace.choices if one.choose is choice.choose]
+    taken = [one.taken for one in made[: made.index(choice) + 1]]
 
     def shown(played: Study) -> bool:
-        return any(
-            one.choose is choice.choose and one.taken not in (None, choice.taken) for one in played.trace.choices
-        )
+        """At this choice or, which parts the run before, at an earlier one in the same place."""
+        there = [one.taken for one in played.trace.choices if one.choose is choice.choose]
+        return any(one is not None and one != usual for one, usual in zip(there, taken, strict=False))
 
     return Instead(read.event, f"the choice takes `{way}`", shown)
 

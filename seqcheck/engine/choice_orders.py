@@ -68,10 +68,6 @@ class _Moment:
         """Whether the two are changes of one term."""
         return not self.facts.keys().isdisjoint(other.facts.keys())
 
-    def is_bound_to(self, other: _Moment) -> bool:
-        """Whether nothing can bring the two into the other order."""
-        return (self.read is not None and other.read is not None) or (self.event == other.event and other.ready)
-
     @property
     def read(self) -> str | None:
         """What the choice does then, whatever is known."""
@@ -117,7 +113,7 @@ class _Look:
         taken = self._taken(moments)
         read = next(number for number, moment in enumerate(moments) if moment.comes)
         for one, two in combinations(range(len(moments)), 2):
-            if two < read or moments[one].is_bound_to(moments[two]) or (one < read and moments[two].ready):
+            if two < read or (one < read and moments[two].ready) or self._is_bound(one, two):
                 continue
             others = [other for other in self._swapped(one, two) if other != taken]
             if others:
@@ -125,15 +121,36 @@ class _Look:
                 yield self._order(moments[one], moments[two], others, strict)
                 yield from self._companions(one, two)
 
+    def _is_bound(self, one: int, two: int) -> bool:
+        """Whether nothing can bring the two into the other order, be it for what has to come between them."""
+        first, second = self._moments[one], self._moments[two]
+        if first.changes(second) or (first.read is not None and second.read is not None):
+            return True
+        if first.event == second.event:
+            return not second.comes
+        return any(
+            self._stays_before(one, number) and self._stays_before(number, two)
+            for number, moment in enumerate(self._moments)
+            if number not in (one, two) and (moment.changes(first) or moment.changes(second))
+        )
+
+    def _stays_before(self, one: int, two: int) -> bool:
+        """Whether it never comes later: two changes of one term, or by its causes."""
+        first, second = self._moments[one], self._moments[two]
+        return (one < two and first.changes(second)) or self._trace.graph.never_later(first.event, second.event)
+
     def _swapped(self, one: int, two: int) -> Iterator[int | None]:
-        """What is taken with the one moved behind the other, and with the other before the one; past no change of its
-        own term."""
+        """What is taken with the one moved behind the other, and with the other before the one, each together with what
+        stays behind or before it."""
         moments = self._moments
-        before, between, behind = moments[:one], moments[one + 1 : two], moments[two + 1 :]
-        if not any(moments[one].changes(moment) for moment in (*between, moments[two])):
-            yield self._taken([*before, *between, moments[two], moments[one], *behind])
-        if not any(moments[two].changes(moment) for moment in (moments[one], *between)):
-            yield self._taken([*before, moments[two], moments[one], *between, *behind])
+        before, behind, pair = moments[:one], moments[two + 1 :], (moments[two], moments[one])
+        for stays in (
+            [number for number in range(one + 1, two) if not self._stays_before(one, number)],
+            [number for number in range(one + 1, two) if self._stays_before(number, two)],
+        ):
+            early = [moments[number] for number in stays]
+            late = [moments[number] for number in range(one + 1, two) if number not in stays]
+            yield self._taken([*before, *early, *pair, *late, *behind])
 
     def _at_once(self, one: int, two: int) -> int | None:
         moments = self._moments
