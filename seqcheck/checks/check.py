@@ -49,7 +49,8 @@ class Obligation:
     ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than one that
     keeps it, and only the one or the other is played; ``stops``: it goes on no further, and is played on all the
     same. ``as_if``: an event that the play has called off, and that is taken to have come all the same: runs in which
-    it does break it just so. ``assumed``: orders that this play takes for granted, but that are in question here."""
+    it does break it just so. ``assumed``: orders that this play takes for granted, but that are in question here;
+    ``kept``: those without which it says nothing."""
 
     subject: str
     step: str | None
@@ -67,6 +68,7 @@ class Obligation:
     as_if: int | None = None
     instead: Instead | None = None
     assumed: tuple[tuple[int, int], ...] = ()
+    kept: tuple[tuple[int, int], ...] = ()
 
     @property
     def pairs(self) -> tuple[tuple[int, int], ...]:

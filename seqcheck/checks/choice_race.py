@@ -12,10 +12,10 @@ from collections.abc import Iterator
 from seqcheck.checks.check import Check, Instead, Obligation, Wording
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.shown_states import branch_name
-from seqcheck.checks.study import Study
+from seqcheck.checks.study import Study, Turned
 from seqcheck.engine.choice_orders import asked_in_time
 from seqcheck.engine.order import Order
-from seqcheck.engine.partings import is_up_to_someone, parted_at
+from seqcheck.engine.partings import is_up_to_someone, parted_at, taken_in
 from seqcheck.engine.trace import Choice
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.model import items_of
@@ -33,19 +33,27 @@ def _of_what_is_asked(study: Study) -> Iterator[Obligation]:
         # Where this play turned the choice, how far it is from turning back says nothing.
         if choice.taken is None or choice.choose.place in turned or is_up_to_someone(choice):
             continue
+        # Nor does how far one is from it that was turned long before.
+        usual = taken_in(study.unturned.trace, study.trace, choice)
         for one in asked_in_time(study.trace, choice):
-            if one.other is not None and one.other != choice.taken:
+            if one.other not in (None, choice.taken, usual) and not one.outside:
                 yield _obligation(study, choice, one.other, one.order, one.how, one.asked)
 
 
 def _of_turned_orders(study: Study) -> Iterator[Obligation]:
     """Orders by which the choice is another one in the play that has them the other way round: of what it asks, where
     it then waits first, or of what came long before."""
+    told = {(choice.choose.place, other) for _, choice, other in _parted(study.unturned)}
+    for turned, choice, other in _parted(study):
+        if study.unturned is study or (choice.choose.place, other) not in told:
+            yield _obligation(study, choice, other, turned.order, *_told(study, choice, turned.order))
+
+
+def _parted(study: Study) -> Iterator[tuple[Turned, Choice, int]]:
     for turned in study.turned:
         parted = parted_at(study.trace, turned.trace, turned.unturned)
         if parted is not None:
-            choice, other = parted
-            yield _obligation(study, choice, other, turned.order, *_told(study, choice, turned.order))
+            yield turned, *parted
 
 
 def _told(study: Study, choice: Choice, order: Order) -> tuple[str, str]:
@@ -77,6 +85,7 @@ def _obligation(study: Study, choice: Choice, other: int, order: Order, how: str
         diverts=False,
         instead=_instead(study, choice, other),
         assumed=((order.first, order.second),),
+        kept=order.keeping,
     )
 
 

@@ -194,13 +194,13 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
 def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:
     """The separations of all pairs, each under the orders that its obligation takes for granted."""
     graph = study.trace.graph
-    by_assumed: dict[tuple[tuple[int, int], ...], list[tuple[int, int]]] = {}
+    by_assumed: dict[tuple[tuple[tuple[int, int], ...], ...], list[tuple[int, int]]] = {}
     for one in stated:
-        by_assumed.setdefault(one.assumed, []).extend(one.pairs)
+        by_assumed.setdefault((one.assumed, one.kept), []).extend(one.pairs)
     rows: Rows = {}
-    for assumed in sorted(by_assumed):
-        with graph.not_assuming(assumed):
-            rows |= greatest_separations(graph, both_ways(by_assumed[assumed]))
+    for assumed, kept in sorted(by_assumed):
+        with graph.not_assuming(assumed, kept):
+            rows |= greatest_separations(graph, both_ways(by_assumed[assumed, kept]))
     return rows
 
 
@@ -235,7 +235,7 @@ def _comes_before(study: Study, one: Obligation, turns: Sequence[Obligation]) ->
 
 
 def _broken(study: Study, check: Check, one: Obligation, margin: int, diverts: bool) -> Broken:
-    with study.trace.graph.not_assuming(one.assumed):
+    with study.trace.graph.not_assuming(one.assumed, one.kept):
         run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
     by = UNLIMITED if shown is None else in_time(-shown)

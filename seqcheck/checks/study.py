@@ -69,6 +69,8 @@ class Study:
         self._played = len(self.trace.times)
 
         self.turned: list[Turned] = []
+        #: Of the play from which this one has come by orders turned.
+        self.unturned: Study = self
 
     def alike(self, settlement: Settlement) -> Study:
         """A study of another play of the same machine."""
@@ -319,9 +321,9 @@ def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
     whole = graph.complete and all(one.settled for one in graph.settlements)
     chases = chases_of(machine, graph.settlements)
     studies = [Study(machine, one, typical, entered, left, whole, chases) for one in graph.settlements]
-    for settlement in graph.settlements:
-        turn = settlement.recipe.turn
+    for one in studies:
+        turn = one.settlement.recipe.turn
         if turn is not None:
-            unturned = graph.unturned(settlement)
-            studies[turn.play].turned.append(Turned(turn.order, settlement.trace, unturned.trace))
+            one.unturned = studies[graph.unturned(one.settlement.recipe)]
+            studies[turn.play].turned.append(Turned(turn.order, one.trace, one.unturned.trace))
     return studies

@@ -20,13 +20,15 @@ from seqcheck.engine.wait_orders import passing
 
 @dataclass(frozen=True, slots=True)
 class ChoiceOrder:
-    """``other``: the branch that would be taken were it the other way round, None for waiting first. ``asked``: what is
-    asked; ``how`` it would come the other way round, ``{by}`` so much."""
+    """``other``: the branch that would be taken were it the other way round, None for waiting first. ``outside``: one
+    of the two is a signal from outside, so that it is nobody's fault. ``asked``: what is asked; ``how`` it would come
+    the other way round, ``{by}`` so much."""
 
     order: Order
     asked: str
     how: str
     other: int | None
+    outside: bool = False
 
 
 def choice_orders(trace: Trace, choice: Choice) -> Iterator[Order]:
@@ -80,6 +82,10 @@ class _Moment:
         return self.read or frozenset((_subject(fact), value) for fact, value in self.facts.items())
 
     @property
+    def is_outside(self) -> bool:
+        return any(isinstance(fact, Literal) for fact in self.facts)
+
+    @property
     def subjects(self) -> str:
         return " and ".join(dict.fromkeys(_subject(fact) for fact in self.facts))
 
@@ -115,11 +121,14 @@ class _Look:
         for one, two in combinations(range(len(moments)), 2):
             if two < read or (one < read and moments[two].ready) or self._is_bound(one, two):
                 continue
-            others = [other for other in self._swapped(one, two) if other != taken]
+            moved_back, moved_forward = self._swapped(one, two)
+            others = [other for other in (moved_back, moved_forward) if other != taken]
             if others:
                 strict = moments[one].read is moments[two].read and self._at_once(one, two) != taken
-                yield self._order(moments[one], moments[two], others, strict)
-                yield from self._companions(one, two)
+                keeping = self._keeping(one, two)
+                if len(others) == 1:
+                    keeping += self._between(one, two, moved_back != taken)
+                yield self._order(moments[one], moments[two], others, strict, keeping)
 
     def _is_bound(self, one: int, two: int) -> bool:
         """Whether nothing can bring the two into the other order, be it for what has to come between them."""
@@ -139,34 +148,47 @@ class _Look:
         first, second = self._moments[one], self._moments[two]
         return (one < two and first.changes(second)) or self._trace.graph.never_later(first.event, second.event)
 
-    def _swapped(self, one: int, two: int) -> Iterator[int | None]:
+    def _swapped(self, one: int, two: int) -> tuple[int | None, int | None]:
         """What is taken with the one moved behind the other, and with the other before the one, each together with what
         stays behind or before it."""
         moments = self._moments
         before, behind, pair = moments[:one], moments[two + 1 :], (moments[two], moments[one])
-        for stays in (
-            [number for number in range(one + 1, two) if not self._stays_before(one, number)],
-            [number for number in range(one + 1, two) if self._stays_before(number, two)],
-        ):
+
+        def taken(stays: Sequence[int]) -> int | None:
             early = [moments[number] for number in stays]
             late = [moments[number] for number in range(one + 1, two) if number not in stays]
-            yield self._taken([*before, *early, *pair, *late, *behind])
+            return self._taken([*before, *early, *pair, *late, *behind])
+
+        return (
+            taken([number for number in range(one + 1, two) if not self._stays_before(one, number)]),
+            taken([number for number in range(one + 1, two) if self._stays_before(number, two)]),
+        )
 
     def _at_once(self, one: int, two: int) -> int | None:
         moments = self._moments
         both = moments[one].with_facts_of(moments[two])
         return self._taken([*moments[:one], *moments[one + 1 : two], both, *moments[two + 1 :]])
 
-    def _companions(self, one: int, two: int) -> Iterator[ChoiceOrder]:
+    def _keeping(self, one: int, two: int) -> tuple[tuple[int, int], ...]:
         """What stays as it is while the two change places: what the one takes back is known before the other, and what
         takes the other back is known after the one."""
         moments = self._moments
-        earlier = next((each for each in reversed(moments[:one]) if each.changes(moments[one])), None)
-        later = next((each for each in moments[two + 1 :] if each.changes(moments[two])), None)
-        if earlier is not None:
-            yield self._order(earlier, moments[two], (), strict=False)
-        if later is not None:
-            yield self._order(moments[one], later, (), strict=False)
+        first, second = moments[one], moments[two]
+        earlier = next((each for each in reversed(moments[:one]) if each.changes(first)), None)
+        later = next((each for each in moments[two + 1 :] if each.changes(second)), None)
+        kept = ((earlier.event, second.event),) if earlier is not None else ()
+        return (*kept, (first.event, later.event)) if later is not None else kept
+
+    def _between(self, one: int, two: int, moved_back: bool) -> tuple[tuple[int, int], ...]:
+        """Where it takes what becomes known between them, too: all of that stays before the second, or behind the
+        first."""
+        kept = []
+        for number in range(one + 1, two):
+            if self._moments[number].read is None:
+                pair = (number, two) if moved_back else (one, number)
+                bound = self._stays_before(one, number) if moved_back else self._stays_before(number, two)
+                kept += [pair] if not bound else []
+        return tuple((self._moments[first].event, self._moments[second].event) for first, second in kept)
 
     def orders_in_passing(self) -> Iterator[ChoiceOrder]:
         """What is asked comes and goes, and no read falls between the two, or one does."""
@@ -192,7 +214,14 @@ class _Look:
         both = [_Moment(comes, {aspect: value}) for value in (edge.value, not edge.value)]
         return [*self._moments[:at], *both, *self._moments[at:]]
 
-    def _order(self, one: _Moment, two: _Moment, others: Sequence[int | None], strict: bool) -> ChoiceOrder:
+    def _order(
+        self,
+        one: _Moment,
+        two: _Moment,
+        others: Sequence[int | None],
+        strict: bool,
+        keeping: tuple[tuple[int, int], ...],
+    ) -> ChoiceOrder:
         key = ("choose", self._choice.choose.place, one.name, two.name)
         other = next((other for other in others if other is not None), None)
         asked = one.subjects if two.read is not None else two.subjects
@@ -202,7 +231,8 @@ class _Look:
             how = f"{asked} changing {{by}} before {one.read}"
         else:
             how = f"{two.coming} {{by}} before {one.comes_or_goes}"
-        return ChoiceOrder(Order(key, one.event, two.event, strict), asked, how, other)
+        outside = one.is_outside or two.is_outside
+        return ChoiceOrder(Order(key, one.event, two.event, strict, keeping), asked, how, other, outside)
 
     def _all_moments(self, logs: Mapping[Aspect, Sequence[Known]]) -> list[_Moment]:
         """In the order in which they came: the last two changes of each term before the read, the read, what came while

@@ -93,12 +93,14 @@ class StateGraph:
     settlements: tuple[Settlement, ...]
     complete: bool
 
-    def unturned(self, settlement: Settlement) -> Settlement:
-        """The play from which this one has come, one order after the other turned behind the same state."""
-        for _ in settlement.recipe.turned:
-            assert settlement.recipe.turn is not None
-            settlement = self.settlements[settlement.recipe.turn.play]
-        return settlement
+    def unturned(self, recipe: Recipe) -> int:
+        """The play from which another one has come, one order after the other turned behind the same state."""
+        turn = recipe.turn
+        assert turn is not None
+        for _ in range(len(recipe.turned) - 1):
+            turn = self.settlements[turn.play].recipe.turn
+            assert turn is not None
+        return turn.play
 
 
 @dataclass(slots=True)
@@ -178,7 +180,7 @@ class _Explorer:
 
 def _turned_run(trace: Trace, order: Order) -> Witness | None:
     """A run that has the order the other way round and all others as they were played; None where there is none."""
-    with trace.graph.not_assuming([(order.first, order.second)]):
+    with trace.graph.not_assuming([(order.first, order.second)], order.keeping):
         turns = greatest_separation(trace.graph, order.second, order.first) > 0
         return witness(trace, order.first, order.second) if turns else None
 

@@ -173,10 +173,10 @@ class EventGraph:
         return min(pair) > dominator and all(self.dominates(dominator, number) for number in pair)
 
     @contextmanager
-    def not_assuming(self, pairs: Collection[tuple[int, int]]) -> Iterator[None]:
-        """Meanwhile these orders are not taken for granted."""
+    def not_assuming(self, pairs: Collection[tuple[int, int]], but: Collection[tuple[int, int]] = ()) -> Iterator[None]:
+        """Meanwhile these orders are not taken for granted, but others are."""
         assumed = self.assumed
-        self.assumed = [pair for pair in assumed if pair not in pairs]
+        self.assumed = [*(pair for pair in assumed if pair not in pairs), *but]
         try:
             yield
         finally:

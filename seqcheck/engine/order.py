@@ -10,9 +10,11 @@ OrderKey = tuple[object, ...]
 
 @dataclass(frozen=True, slots=True)
 class Order:
-    """``strict``: at the same instant it is the other way round already."""
+    """``strict``: at the same instant it is the other way round already. ``keeping``: pairs of events that have to stay
+    in their order for it to matter."""
 
     key: OrderKey
     first: int
     second: int
     strict: bool = False
+    keeping: tuple[tuple[int, int], ...] = ()

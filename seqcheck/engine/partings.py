@@ -31,6 +31,13 @@ def parted_at(trace: Trace, other: Trace, unturned: Trace) -> tuple[Choice, int]
     return one, instead.taken
 
 
+def taken_in(unturned: Trace, trace: Trace, choice: Choice) -> int | None:
+    """What the choice of ``trace`` takes in the other play, as often as it had come up before."""
+    number = [one for one in trace.choices if one.choose is choice.choose].index(choice)
+    there = [one.taken for one in unturned.choices if one.choose is choice.choose]
+    return there[number] if number < len(there) else None
+
+
 def _decisions(trace: Trace) -> Iterator[tuple[Hashable, Wait]]:
     """Choices that were made, and steps that a watchdog may end, each known by how often it had come up before."""
     counts: Counter[Hashable] = Counter()
