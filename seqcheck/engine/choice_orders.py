@@ -113,22 +113,30 @@ class _Look:
             aspect: logs[aspect][max(0, at - 3)].value for aspect, at in choice.told.items()
         }
         self._moments = self._all_moments(logs)
+        self._own = self._taken(self._moments)
 
     def orders(self) -> Iterator[ChoiceOrder]:
+        """Of two that the read that comes to the choice lies between, only where neither decides it with that alone."""
         moments = self._moments
-        taken = self._taken(moments)
         read = next(number for number, moment in enumerate(moments) if moment.comes)
+        with_read = [(min(number, read), max(number, read)) for number in range(len(moments)) if number != read]
+        decisive = {number for pair in with_read if self._others(*pair) for number in pair}
         for one, two in combinations(range(len(moments)), 2):
-            if two < read or (one < read and moments[two].ready) or self._is_bound(one, two):
+            across = one < read < two
+            if two < read or (across and (moments[two].ready or not decisive.isdisjoint((one, two)))):
                 continue
-            moved_back, moved_forward = self._swapped(one, two)
-            others = [other for other in (moved_back, moved_forward) if other != taken]
+            others = self._others(one, two)
             if others:
-                strict = moments[one].read is moments[two].read and self._at_once(one, two) != taken
-                keeping = self._keeping(one, two)
-                if len(others) == 1:
-                    keeping += self._between(one, two, moved_back != taken)
-                yield self._order(moments[one], moments[two], others, strict, keeping)
+                yield self._order(one, two, others)
+
+    def _others(self, one: int, two: int) -> tuple[tuple[bool, int | None], ...]:
+        """What else would be taken were it the other way round: with the one moved back (True), the other forward."""
+        if self._is_bound(one, two):
+            return ()
+        moved_back, moved_forward = self._swapped(one, two)
+        return tuple(
+            (back, taken) for back, taken in ((True, moved_back), (False, moved_forward)) if taken != self._own
+        )
 
     def _is_bound(self, one: int, two: int) -> bool:
         """Whether nothing can bring the two into the other order, be it for what has to come between them."""
@@ -214,16 +222,14 @@ class _Look:
         both = [_Moment(comes, {aspect: value}) for value in (edge.value, not edge.value)]
         return [*self._moments[:at], *both, *self._moments[at:]]
 
-    def _order(
-        self,
-        one: _Moment,
-        two: _Moment,
-        others: Sequence[int | None],
-        strict: bool,
-        keeping: tuple[tuple[int, int], ...],
-    ) -> ChoiceOrder:
+    def _order(self, first: int, second: int, others: Sequence[tuple[bool, int | None]]) -> ChoiceOrder:
+        one, two = self._moments[first], self._moments[second]
         key = ("choose", self._choice.choose.place, one.name, two.name)
-        other = next((other for other in others if other is not None), None)
+        strict = one.read is two.read and self._at_once(first, second) != self._own
+        keeping = self._keeping(first, second)
+        if len(others) == 1:
+            keeping += self._between(first, second, moved_back=others[0][0])
+        other = next((taken for _, taken in others if taken is not None), None)
         asked = one.subjects if two.read is not None else two.subjects
         if two.read is not None:
             how = f"{asked} changing {{by}} after {two.read}"
