@@ -76,6 +76,13 @@ def test_what_someone_outside_decides_is_no_race() -> None:
     assert rules_apart(f"signal other from outside after 5..80 ms\n{text}".replace(choose, stands)) == set()
 
 
+def test_a_choice_that_stood_may_be_taken_at_the_very_instant() -> None:
+    """Whoever is outside may bring the part at once: typical times have it so."""
+    choose = "choose { when part { step good { dwell 50 ms } } when other { step late { dwell 70 ms } } }"
+    signals = "signal part from outside\nsignal other from outside after 5..80 ms\n"
+    assert rules_apart(f"{signals}sequence main {{ step one {{ dwell 9 ms }}\n{choose} }}") == set()
+
+
 def test_watchdog_of_a_choice_is_known_by_its_line() -> None:
     choose = "choose { when B2 { step good { } } } within 450 ms else back"
     text = CLAMP + f"sequence main {{ step out {{ set Y1 }}\n  {choose}\n  {BACK} }}"
