@@ -152,6 +152,29 @@ class Crossings:
         known = [one for one in found if one is not None]
         return max(known, key=_longer) if known and len(known) == len(found) else None
 
+    def endless(self) -> tuple[Edge, ...]:
+        """A way that goes round before its end: from the edge in which it begins to the one that comes back to a state
+        on the way. None of them where there is no such way."""
+        done: set[int] = set()
+        for edge, part in self.parts.items():
+            if part.opens is None:
+                continue
+            way, following = [edge], [self._passed(edge[1])]
+            while way:
+                after = next(following[-1], None)
+                if after is None:
+                    done.add(way.pop()[1])
+                    following.pop()
+                elif any(after[1] == one[1] for one in way):
+                    return (*way, after)
+                elif after[1] not in done:
+                    way.append(after)
+                    following.append(self._passed(after[1]))
+        return ()
+
+    def _passed(self, state: int) -> Iterator[Edge]:
+        return (edge for edge, part in self._from(state) if part.passes is not None)
+
     def _from(self, state: int) -> Iterator[tuple[Edge, _Part]]:
         return iter(self._at.get(state, ()))
 

@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 
 from seqcheck.checks.check import Check, Obligation, Sight, Together, Wording
 from seqcheck.checks.comings import Coming, comings
-from seqcheck.checks.crossings import Crossings, Spell, Sum, crossings
+from seqcheck.checks.crossings import Crossings, Edge, Spell, Sum, crossings
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
@@ -16,8 +16,13 @@ from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import follow, outcomes_before
-from seqcheck.machine.findings import Severity
+from seqcheck.machine.findings import Moment, Severity
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
+
+#: A way that goes round is shown for no more rounds than this.
+_MOST_ROUNDS = 20
+#: How choices come out, one after the other.
+Way = tuple[Outcome, ...]
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
@@ -128,23 +133,35 @@ def _over_several_runs(studies: Sequence[Study]) -> Together:
     """Where no play shows all of it in one: added up along the ways through the state graph, and played."""
     found = list(_crossings(studies))
     extremes = [extreme for rule, crossed in found for extreme in _extremes(rule, crossed)]
-    plays = {outcomes: passages for one in extremes for outcomes, passages in _to_play(studies, one.way)}
-    machine = studies[0].machine
-    return Together(
-        tuple(studies[0].alike(follow(machine, outcomes, passages)) for outcomes, passages in plays.items()),
-        (
-            *(
-                Sight(one.rule.text, None, one.rule.place, one.message, certain=False, margin_us=one.margin_us)
-                for one in extremes
-                if one.margin_us < 0
-            ),
-            *(
-                Sight(rule.text, None, rule.place, _unlimited(rule), certain=False)
-                for rule, crossed in found
-                if crossed.begins and crossed.longest() is None and studies[0].whole
-            ),
-        ),
-    )
+    plays: dict[Way, Study] = {}
+    for one in extremes:
+        _play(studies, one.way.edges, plays)
+    over = [
+        Sight(one.rule.text, None, one.rule.place, one.message, certain=False, margin_us=one.margin_us)
+        for one in extremes
+        if one.margin_us < 0
+    ]
+    endless = [
+        Sight(rule.text, None, rule.place, _unlimited(rule), _goes_round(studies, rule, crossed), certain=False)
+        for rule, crossed in found
+        if crossed.begins and crossed.longest() is None and studies[0].whole
+    ]
+    return Together(tuple(plays.values()), (*over, *endless))
+
+
+def _goes_round(studies: Sequence[Study], rule: CycleLimit | PathLimit, crossed: Crossings) -> tuple[Moment, ...]:
+    """A run that comes back to a state without the end, so often that the limit is over, if that is not too often."""
+    way = crossed.endless()
+    at = next((number for number, edge in enumerate(way, 1) if edge[1] == way[-1][1]), 0)
+    once = sum(part.typical for edge in way[at:] if (part := crossed.parts[edge].passes) is not None)
+    often = min(_MOST_ROUNDS, rule.greatest // max(1, once) + 1)
+    study = _play(studies, way[:at] + way[at:] * often, {})
+    if study is None:
+        return ()
+    last = study.settlement.path.passages[-1].at
+    spells = [(one.begin, last if one.end is None else one.end) for one in _spells(study, rule)]
+    begin, end = max(spells, key=lambda one: study.time(one[1]) - study.time(one[0]))
+    return narrate_typical(study, begin, end)
 
 
 def _crossings(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Crossings]]:
@@ -167,17 +184,22 @@ def _extremes(rule: CycleLimit | PathLimit, crossed: Crossings) -> Iterator[_Ext
         yield _Extreme(rule, shortest, shortest.time - rule.least, _under(rule))
 
 
-def _to_play(studies: Sequence[Study], way: Sum) -> Iterator[tuple[tuple[Outcome, ...], int]]:
-    """How the choices come out on this way, and through how many states it goes, where no play has shown it in one."""
-    edges = way.edges
+def _play(studies: Sequence[Study], edges: Sequence[Edge], plays: dict[Way, Study]) -> Study | None:
+    """This way through the state graph, played in one if it is not among ``plays``; None where some play shows it as it
+    is, or only a play that turns an order comes there: what that draws cannot be drawn in another."""
+    chosen = [edge[2] for edge in edges if edge[2] is not None]
+    if len(edges) < 2 or not chosen:
+        return None
     begin = edges[0][0]
     owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
     owner = next(owners, None)
-    chosen = [edge[2] for edge in edges if edge[2] is not None]
-    # Where only a play that turns an order comes there, what it draws cannot be drawn in another.
-    if owner is not None and len(edges) > 1 and chosen:
-        before = owner.states.index(begin)
-        yield (*outcomes_before(owner.path, before), *chosen), before + 4 * len(edges) + 4
+    if owner is None:
+        return None
+    before = owner.states.index(begin)
+    way = (*outcomes_before(owner.path, before), *chosen)
+    if way not in plays:
+        plays[way] = studies[0].alike(follow(studies[0].machine, way, before + 4 * len(edges) + 4))
+    return plays[way]
 
 
 CHECK = Check(
