@@ -7,7 +7,6 @@ pulse and wins over ``set`` in the same read.
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import replace
 
 from seqcheck.engine.trace import Effect, Origin, Read, Touch, Visit
 from seqcheck.machine.steps import Command, CommandKind
@@ -45,7 +44,7 @@ class Commands:
                 origin = self._on[command.target].pop(visit, None)
                 if origin is not None:
                     self._touched[command.target] = origin
-                    self._note(command.target, replace(origin, read=read), Effect.ENDS)
+                    self._note(command.target, origin.at(read), Effect.ENDS)
 
     def runs(self, coil: str, pulse: Origin) -> bool:
         """Whether this very pulse still runs: nothing has reset it."""
@@ -57,7 +56,7 @@ class Commands:
     def end_pulse(self, coil: str, origin: Origin, read: Read) -> None:
         del self._pulses[coil][origin]
         self._touched[coil] = origin
-        self._note(coil, replace(origin, read=read), Effect.ENDS)
+        self._note(coil, origin.at(read), Effect.ENDS)
 
     def enter(self, visit: Visit) -> Iterator[tuple[Origin, str]]:
         """Apply the commands of a step; gives the pulses that it asks for (``begin_pulse`` begins them)."""
@@ -90,10 +89,10 @@ class Commands:
             by = self._holding(target)
             if by is not None and target not in self._commanded:
                 self._commanded.add(target)
-                yield target, replace(by, read=read)
+                yield target, by.at(read)
             elif by is None and target in self._commanded:
                 self._commanded.remove(target)
-                yield target, replace(ending, read=read)
+                yield target, ending.at(read)
 
     def _note(self, target: str, origin: Origin, effect: Effect, event: int | None = None) -> None:
         touch = Touch(origin.read.event if event is None else event, origin, effect)

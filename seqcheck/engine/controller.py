@@ -111,8 +111,8 @@ class Controller:
     def _wake(self) -> None:
         """Let every thread whose wait is over go on; those that what happens now lets go on share a read."""
         ready: dict[tuple[int, ...], list[Thread]] = {}
-        for thread in self._threads.in_order(lambda thread: thread.wait is not None):
-            causes = self._exits.causes(thread.wait) if thread.wait else None
+        for thread, wait in self._threads.waiting:
+            causes = self._exits.causes(wait)
             if causes is not None:
                 ready.setdefault(self._timeline.graph.without_idle(causes), []).append(thread)
         for last, threads in ready.items():

@@ -14,7 +14,7 @@ from functools import partial
 
 from seqcheck.engine.conditions import Alternatives, Aspect, Literal, alternatives_of, holding
 from seqcheck.engine.graph import Event
-from seqcheck.engine.regions import region_of
+from seqcheck.engine.regions import Placing, place
 from seqcheck.engine.strokes import Region, marks_of, reached_by
 from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Shift, Stroke, Trace
@@ -86,6 +86,8 @@ class Cylinders:
         self._given = regions
         #: Those that strokes were started from, or would be.
         self.regions: dict[tuple[str, int], Region] = {}
+        #: As they were found on the way.
+        self.placings: dict[Stroke, Placing] = {}
         self._sense = sense
         self._notice = notice
         self._looked_at = looked_at
@@ -221,9 +223,13 @@ class Cylinders:
             piston.moving = False
         piston.stood = stroke.stood = piston.region
         key = stroke.cylinder, stroke.number
-        region = region_of(self._trace.graph, stroke) if self._given is None else self._given.get(key)
+        region = self._found(stroke) if self._given is None else self._given.get(key)
         if region is not None:
             piston.region = self.regions[key] = region
+
+    def _found(self, stroke: Stroke) -> Region | None:
+        placing = self.placings[stroke] = place(self._trace.graph, stroke)
+        return None if placing.region == stroke.stood else placing.region
 
     # Beginning one ---------------------------------------------------------------------------------------------
 

@@ -119,8 +119,7 @@ class Exits:
         if wait.alarm is not None and wait.alarm.expired:
             causes = [wait.entered.floor, wait.alarm.noticed]
             return causes if all(event in happened for event in causes) else None
-        held = self._holding(wait)
-        answers = None if held is None else [answer for one in held if (answer := self.answer(wait, one)) is not None]
+        answers = self._holding(wait)
         steady = isinstance(wait, Visit) and wait.step.steady is not None
         if isinstance(wait, Visit) and steady:
             self._keep_steady(wait, None if answers is None else [answer.seen for answer in answers])
@@ -133,8 +132,8 @@ class Exits:
         wait.answers = tuple(answers)
         return causes + [answer.seen for answer in answers]
 
-    def _holding(self, wait: Wait) -> Alternative | None:
-        """What holds and came first; of a choice, for the first branch whose condition holds."""
+    def _holding(self, wait: Wait) -> list[Answer] | None:
+        """What makes true what holds and came first; of a choice, for the first branch whose condition holds."""
         if not isinstance(wait, Choice):
             return self._first_to_hold(wait, wait.alternatives)
         for number, condition in enumerate(wait.conditions):
@@ -144,16 +143,26 @@ class Exits:
                 return held
         return None
 
-    def _first_to_hold(self, wait: Wait, alternatives: Alternatives) -> Alternative | None:
+    def _first_to_hold(self, wait: Wait, alternatives: Alternatives) -> list[Answer] | None:
         times = self._timeline.times
-        found: tuple[int, Alternative] | None = None
+        found: tuple[int, list[Answer]] | None = None
         for one in alternatives:
-            answers = [self.answer(wait, literal) for literal in one]
-            if all(answer is not None for answer in answers):
-                since = max((times[answer.seen] for answer in answers if answer), default=0)
+            answers = self._answers(wait, one)
+            if answers is not None:
+                since = max([times[answer.seen] for answer in answers], default=0)
                 if found is None or since < found[0]:
-                    found = since, one
+                    found = since, answers
         return None if found is None else found[1]
+
+    def _answers(self, wait: Wait, alternative: Alternative) -> list[Answer] | None:
+        """What makes true every literal of an alternative; None where one of them is not."""
+        answers = []
+        for literal in alternative:
+            answer = self.answer(wait, literal)
+            if answer is None:
+                return None
+            answers.append(answer)
+        return answers
 
     def answer(self, wait: Wait, literal: Literal) -> Answer | None:
         """What makes the literal as wanted; None where it is not (as the controller knows)."""
@@ -162,10 +171,10 @@ class Exits:
             signal = self._machine.signals[literal.term.subject]
             unlimited = isinstance(signal, OutsideSignal) and signal.after is None
             return Answer(literal, seen, held, outside=unlimited) if seen in self._timeline.happened else None
-        if self._knowledge.from_outside(literal.term):
+        known = self._knowledge.if_known(literal.aspect)
+        if known is None or known.value != literal.wanted:
             return None
-        known = self._knowledge.of(literal.aspect)
-        return Answer(literal, known.seen, known.held, known.edge) if known.value == literal.wanted else None
+        return Answer(literal, known.seen, known.held, known.edge)
 
     def _keep_steady(self, visit: Visit, seen: list[int] | None) -> None:
         """Begin to count once the whole condition is seen, stop when it no longer is."""

@@ -216,7 +216,7 @@ def play(
         player = scout.player = Player(machine, scout, given(recipe.delays), regions, programs=programs)
         trace = player.play()
         scout.finish()
-        found = dict(regions_of(trace))
+        found = dict(regions_of(trace, player.cylinders.placings))
         if trace.too_long or found == player.cylinders.regions:
             break
         regions = {} if regions is None else found

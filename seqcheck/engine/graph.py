@@ -33,7 +33,7 @@ _NEAR_BY = 8
 DelayName = tuple[str, str, int]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
 class Arc:
     """From a cause to its event. ``delay`` is None where the span has no width to draw from."""
 
@@ -42,7 +42,7 @@ class Arc:
     delay: DelayName | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
 class Event:
     """``what`` happens to ``subject``; ``detail`` tells occasions apart that differ in kind (a position, on or off)."""
 

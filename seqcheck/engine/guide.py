@@ -11,12 +11,13 @@ yet come after the state in other runs belongs to it, too, and so does a coil re
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
 from seqcheck.engine.bounds import both_ways, greatest_separations, is_open
 from seqcheck.engine.controller import Outcome
+from seqcheck.engine.graph import Event
 from seqcheck.engine.order import Order
 from seqcheck.engine.orders import Orders, Waits
 from seqcheck.engine.player import Player
@@ -140,6 +141,11 @@ class Scout:
         self._pool: list[int] = []
         self._seen_events = 0
         self._waits = Waits()
+        #: How long after a coil is released the gap of its valve lasts.
+        self._gaps = {
+            coil.name: (machine.valves[coil.valve].gap or 0) + coil.decay.greatest for coil in machine.coils.values()
+        }
+        self._most_gap = max(self._gaps.values(), default=0)
 
     def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
         outcome = self._prefer(choice, outcomes)
@@ -227,21 +233,17 @@ class Scout:
 
     def _under_way(self, player: Player, at: int) -> tuple[UnderWay, ...]:
         """What is still to come, and what may yet come later than the state, by when that is."""
-        graph, times = player.trace.graph, player.timeline.times
+        graph, happened = player.trace.graph, player.timeline.happened
         pending = player.timeline.pending
-        came = [
-            number
-            for number in (*self._pool, *range(self._seen_events, len(times)))
-            if number in player.timeline.happened and self._may_matter(player, number, at)
-        ]
+        came = [one for one in self._that_may_matter(player, at) if one in happened]
         bounds = greatest_separations(graph, both_ways((at, one) for one in (*pending, *came)))
-        late = [one for one in came if bounds[at, one] > -self._gap_after(player, one)]
+        late = [one for one in came if bounds[at, one] > -self._gap_after(graph.events[one])]
         self._pool = [*late, *pending]
-        self._seen_events = len(times)
+        self._seen_events = len(graph.events)
         return tuple(
             sorted(
                 UnderWay(
-                    number in player.timeline.happened,
+                    number in happened,
                     graph.events[number].what,
                     graph.events[number].subject,
                     graph.events[number].detail,
@@ -252,16 +254,27 @@ class Scout:
             )
         )
 
-    def _may_matter(self, player: Player, number: int, at: int) -> bool:
-        """Whether plain intervals leave it open that the event comes after the state, or too shortly before it."""
+    def _that_may_matter(self, player: Player, at: int) -> Iterator[int]:
+        """The events of which plain intervals leave it open that they come after the state, or too shortly before it;
+        of what was over at the last state no other than was kept then."""
         graph = player.trace.graph
-        common = graph.common_dominator(number, at)
-        latest = graph.latest[number] - graph.latest[common]
-        return latest + self._gap_after(player, number) > graph.earliest[at] - graph.earliest[common]
+        earliest, latest, dominator = graph.earliest, graph.latest, graph.dominator
+        before = self.path.passages[-1].at if self.path.passages else 0
+        dominating = {at}
+        top = at
+        while top > before:
+            top = dominator[top]
+            dominating.add(top)
+        for number in (*self._pool, *range(self._seen_events, len(graph.events))):
+            common = number
+            while common not in dominating and common > top:
+                common = dominator[common]
+            if common not in dominating:
+                common = graph.common_dominator(common, top)
+            left = earliest[at] - earliest[common] - (latest[number] - latest[common])
+            if left < 0 or (left < self._most_gap and left < self._gap_after(graph.events[number])):
+                yield number
 
-    def _gap_after(self, player: Player, number: int) -> int:
-        event = player.trace.graph.events[number]
-        coil = self._machine.coils.get(event.subject) if (event.what, event.detail) == ("coil", "off") else None
-        if coil is None:
-            return 0
-        return (self._machine.valves[coil.valve].gap or 0) + coil.decay.greatest
+    def _gap_after(self, event: Event) -> int:
+        """How long after this event the gap of a valve lasts."""
+        return self._gaps.get(event.subject, 0) if (event.what, event.detail) == ("coil", "off") else 0

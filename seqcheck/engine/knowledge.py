@@ -46,6 +46,10 @@ class Knowledge:
     def of(self, aspect: Aspect) -> Known:
         return self._known[aspect]
 
+    def if_known(self, aspect: Aspect) -> Known | None:
+        """The same; None for a signal from outside."""
+        return self._known.get(aspect)
+
     def from_outside(self, term: Term) -> bool:
         return term.kind is TermKind.SIGNAL and isinstance(self._machine.signals[term.subject], OutsideSignal)
 

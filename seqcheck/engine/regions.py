@@ -7,7 +7,8 @@ piston anywhere in that stretch.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
 
 from seqcheck.engine.bounds import Rows, both_ways, greatest_separation, greatest_separations
 from seqcheck.engine.graph import EventGraph
@@ -16,30 +17,40 @@ from seqcheck.engine.trace import Shift, Stroke, Trace
 from seqcheck.machine.devices import Position
 
 
-def regions_of(trace: Trace) -> Iterator[tuple[tuple[str, int], Region]]:
-    """Where each piston that the valve drove otherwise may stand, if that is more than one stretch between marks."""
-    parted = [(stroke, _may_stand_at(trace.graph, stroke)) for stroke in trace.strokes if stroke.stands is not None]
-    pairs = ((at, event) for stroke, stands in parted for event in _passings(stroke) for at in stands)
-    rows = greatest_separations(trace.graph, both_ways(pairs))
-    for stroke, stands in parted:
-        region = _region(stroke, stands, rows)
-        if region is not None and region != stroke.stood:
-            yield (stroke.cylinder, stroke.number), region
+@dataclass(frozen=True, slots=True)
+class Placing:
+    """Where a piston may stand, as found with so many orders taken for granted, for the events ``stands``."""
+
+    region: Region | None
+    stands: tuple[int, ...]
+    assumed: int
 
 
-def region_of(graph: EventGraph, stroke: Stroke) -> Region | None:
-    """The same for one stroke, by what has come so far. No work that counts: in the end all are looked at again."""
-    work = graph.work
-    stands = _may_stand_at(graph, stroke)
+def regions_of(trace: Trace, placings: Mapping[Stroke, Placing]) -> Iterator[tuple[tuple[str, int], Region]]:
+    """Where each piston that the valve drove otherwise may stand, if that is more than one stretch between marks.
+    ``placings``: what was found on the way."""
+    graph = trace.graph
+    for stroke in trace.strokes:
+        if stroke.stands is not None:
+            stands, placing = _may_stand_at(graph, stroke), placings.get(stroke)
+            if placing is None or (placing.stands, placing.assumed) != (stands, len(graph.assumed)):
+                placing = place(graph, stroke, stands)
+            region = placing.region
+            if region is not None and region != stroke.stood:
+                yield (stroke.cylinder, stroke.number), region
+
+
+def place(graph: EventGraph, stroke: Stroke, stands: tuple[int, ...] | None = None) -> Placing:
+    """The same for one stroke, by what has come so far."""
+    stands = _may_stand_at(graph, stroke) if stands is None else stands
     region = None
     if not all(graph.never_later(stroke.end, at) for at in stands):
         pairs = ((at, event) for event in _passings(stroke) for at in stands)
         region = _region(stroke, stands, greatest_separations(graph, both_ways(pairs)))
-    graph.work = work
-    return None if region == stroke.stood else region
+    return Placing(region, stands, len(graph.assumed))
 
 
-def _may_stand_at(graph: EventGraph, stroke: Stroke) -> list[int]:
+def _may_stand_at(graph: EventGraph, stroke: Stroke) -> tuple[int, ...]:
     """The event at which the stroke ends as played; and as it ends where the other coil may take over the valve's
     return to centre although it did not, or may not although it did."""
     shift = stroke.away
@@ -51,7 +62,7 @@ def _may_stand_at(graph: EventGraph, stroke: Stroke) -> list[int]:
             stands.append(after.reached)
     elif may_have_centred(graph, shift) and before is not None:
         stands.append(before.reached)
-    return stands
+    return tuple(stands)
 
 
 def may_have_centred(graph: EventGraph, shift: Shift) -> bool:

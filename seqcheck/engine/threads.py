@@ -6,7 +6,6 @@ of a ``together`` are threads of their own; a choice that cannot be taken yet ke
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Protocol
 
@@ -94,9 +93,12 @@ class Threads:
             for thread in self.active
         )
 
-    def in_order(self, ready: Callable[[Thread], bool]) -> list[Thread]:
-        """Those of the active threads that are ready, by sequence."""
-        return sorted((thread for thread in self.active if ready(thread)), key=lambda thread: thread.course.number)
+    @property
+    def waiting(self) -> list[tuple[Thread, Wait]]:
+        """Those of the active threads that wait for something, by sequence."""
+        found = [(thread, thread.wait) for thread in self.active if thread.wait is not None]
+        found.sort(key=lambda one: one[0].course.number)
+        return found
 
     def rest(self, thread: Thread, wait: Wait | None = None) -> None:
         thread.wait = wait

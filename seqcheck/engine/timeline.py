@@ -67,9 +67,12 @@ class Timeline:
         return arc, self.times[cause] + self._draw(what, name, number, span)
 
     def event(self, event: Event, *arcs: tuple[Arc, int]) -> int:
-        made = tuple([arc for arc, _ in arcs])
+        if len(arcs) == 1:
+            arc, time = arcs[0]
+            self.times.append(time)
+            return self.graph.add(event, (arc,))
         self.times.append(max([time for _, time in arcs]))
-        return self.graph.add(event, made)
+        return self.graph.add(event, tuple([arc for arc, _ in arcs]))
 
     def loose(self, cause: int, span: Span = NO_TIME) -> tuple[Arc, int]:
         """An arc whose delay nothing draws: it takes no time, a fixed one, or the typical one of its span."""

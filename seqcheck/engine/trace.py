@@ -36,7 +36,7 @@ class Read:
     updates: dict[str, int] = field(default_factory=dict)
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(slots=True, eq=False)
 class Origin:
     """The command that brings a change about: the step, the place in the text, the read."""
 
@@ -45,6 +45,10 @@ class Origin:
     kind: CommandKind
     duration: int | None
     read: Read
+
+    def at(self, read: Read) -> Origin:
+        """The same command, as it comes to bear at another read."""
+        return Origin(self.step, self.place, self.kind, self.duration, read)
 
 
 class Effect(Enum):
@@ -55,7 +59,7 @@ class Effect(Enum):
     RESETS = "resets"
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(slots=True, eq=False)
 class Touch:
     """``event``: the read at which it happens; for a pulse that a reset has ended, when it would have ended."""
 
@@ -82,7 +86,7 @@ class Edge:
     lost_to: int | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True, eq=False)
 class Answer:
     """What made one part of an exit true: known to the controller since ``seen``, true at the input since ``held``.
     ``edge`` for a sensor that has changed since the start; ``outside`` for a signal that may take any time."""
@@ -160,7 +164,7 @@ class Spell:
     off: int | None = None
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(slots=True, eq=False)
 class CoilChange:
     coil: str
     energized: bool
@@ -168,7 +172,7 @@ class CoilChange:
     origin: Origin
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(slots=True, eq=False)
 class Known:
     """What the controller knows of a term: its value, since which event, and since when it holds at the input."""
 
@@ -178,7 +182,7 @@ class Known:
     edge: Edge | None = None
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(slots=True, eq=False)
 class Change:
     """What an aspect of the machine has become, and the event that brought it."""
 
