@@ -7,6 +7,7 @@ they are needed.
 
 from __future__ import annotations
 
+import gc
 import sys
 from collections.abc import Sequence
 
@@ -15,10 +16,16 @@ from seqcheck.commands.statuses import UNREADABLE, ended
 
 INTERRUPTED = 130
 
+#: So many more objects than before are there before a process looks for some that it could give back.
+_MANY_OBJECTS = 2_000_000
+
 
 def main(arguments: Sequence[str] | None = None) -> int:
-    """Run the command with these arguments (those of the process if None) and give its exit status."""
+    """Run the command with these arguments (those of the process if None: it then is for this command alone) and give
+    its exit status."""
     _provide_streams()
+    if arguments is None:
+        gc.set_threshold(_MANY_OBJECTS)
     try:
         return _run(arguments)
     except KeyboardInterrupt:
@@ -27,6 +34,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
         if sys.flags.dev_mode:
             raise
         return ended(UNREADABLE, f"this is a fault of seqcheck, not of your text: {_about(fault)}")
+    finally:
+        if arguments is None:
+            # What there is goes with the process, all at once.
+            gc.freeze()
 
 
 def _run(arguments: Sequence[str] | None) -> int:

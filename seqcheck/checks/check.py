@@ -14,7 +14,7 @@ from seqcheck.machine.findings import Finding, Moment, Severity
 from seqcheck.machine.places import Place
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True, eq=False)
 class Wording:
     """What to say when an obligation does not hold: the message with ``{by}``, the time by which it fails, and what
     would mend it, given that time. ``timeless`` is the message without the time, where taking out `` {by}`` does not
@@ -42,7 +42,7 @@ class Instead:
     shown: Callable[[Study], bool]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True, eq=False)
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
     brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.

@@ -19,7 +19,6 @@ from seqcheck.checks.study import Study
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.bounds import (
     Rows,
-    both_ways,
     closed,
     greatest_separation,
     greatest_separations,
@@ -192,15 +191,21 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
 
 
 def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:
-    """The separations of all pairs, each under the orders that its obligation takes for granted."""
+    """How much sooner than the first the second of each pair can be, each under the orders that its obligation takes
+    for granted; where that is too soon also how much later."""
     graph = study.trace.graph
     by_assumed: dict[tuple[tuple[tuple[int, int], ...], ...], list[tuple[int, int]]] = {}
+    least: dict[tuple[int, int], int] = {}
     for one in stated:
         by_assumed.setdefault((one.assumed, one.kept), []).extend(one.pairs)
+        for pair in one.pairs:
+            least[pair] = max(one.least, least.get(pair, one.least))
     rows: Rows = {}
     for assumed, kept in sorted(by_assumed):
         with graph.not_assuming(assumed, kept):
-            rows |= greatest_separations(graph, both_ways(by_assumed[assumed, kept]))
+            pairs = by_assumed[assumed, kept]
+            rows |= greatest_separations(graph, ((second, first) for first, second in pairs))
+            rows |= greatest_separations(graph, (pair for pair in pairs if -rows[pair[1], pair[0]] < least[pair]))
     return rows
 
 
@@ -213,7 +218,7 @@ def _best_pair(one: Obligation, rows: Rows) -> Obligation:
 
 
 def _always_broken(one: Obligation, rows: Rows) -> bool:
-    return rows[one.first, one.second] < one.least
+    return -rows[one.second, one.first] < one.least and rows[one.first, one.second] < one.least
 
 
 def _turns(study: Study, obligations: Iterable[Obligation], rows: Rows) -> list[Obligation]:
@@ -223,6 +228,7 @@ def _turns(study: Study, obligations: Iterable[Obligation], rows: Rows) -> list[
         for one in obligations
         if one.diverts
         and study.time(one.first) + one.least > study.time(one.second)
+        and -rows[one.second, one.first] < one.least
         and rows[one.first, one.second] >= one.least
     ]
 

@@ -14,7 +14,8 @@ Only a part of the graph can matter to a pair. Let ``x`` be the last event that 
 moves both alike. From an event one may go up its chain of dominators towards ``x``, to ``y``, as long as the other
 event of the pair has no cause that ``y`` dominates: the delays behind ``y`` then belong to this event alone, are drawn
 independently of all else, and simply add their greatest (forward) or least (backward) sum. What is left is the
-separation of the two events so found, within their causes since ``x``.
+separation of the two events so found, within their causes since ``x``. Two that have no other causes than ``x`` in
+common are independent of each other, so that the sums are all there is to it.
 """
 
 from __future__ import annotations
@@ -33,10 +34,12 @@ def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) ->
     """``S[i, j]`` for every pair ``(i, j)``: how much later than ``i`` can ``j`` be? Microseconds."""
     rows: Rows = {}
     left: dict[int, list[tuple[int, int]]] = {}
+    dominators: dict[tuple[int, int], int] = {}
     latest, earliest = graph.latest, graph.earliest
     for pair in set(pairs):
         source, event = pair
-        common = graph.common_dominator(source, event)
+        known = dominators.get((event, source))
+        common = dominators[pair] = graph.common_dominator(source, event) if known is None else known
         if source != common != event or (graph.assumed and graph.assumes_below(common)):
             left.setdefault(common, []).append(pair)
         elif source == common:
@@ -56,24 +59,38 @@ class _Below:
         self._common = common
         self._assumed = graph.assumed_below(common)
         self._ordered = sorted({number for pair in self._assumed for number in pair})
-        self._causes: dict[int, tuple[int, set[int]]] = {}
+        self._causes: dict[int, set[int]] = {}
+        self._dominating: dict[int, set[int]] = {}
 
     def separations(self, pairs: Sequence[tuple[int, int]]) -> Rows:
-        latest, earliest = self._graph.latest, self._graph.earliest
-        reduced = [self._reduce(source, event) for source, event in pairs]
-        near = self._table(set(reduced))
-        return {
-            (source, event): latest[event]
-            - latest[near_event]
-            + near[near_source, near_event]
-            - (earliest[source] - earliest[near_source])
-            for (source, event), (near_source, near_event) in zip(pairs, reduced, strict=True)
-        }
-
-    def _reduce(self, source: int, event: int) -> tuple[int, int]:
-        """The dominators of the two from which on each has its delays to itself."""
         graph, common = self._graph, self._common
-        near_source, near_event = graph.below(common, source), graph.below(common, event)
+        latest, earliest = graph.latest, graph.earliest
+        rows: Rows = {}
+        reduced: dict[tuple[int, int], tuple[int, int]] = {}
+        for source, event in pairs:
+            near_source, near_event = graph.below(common, source), graph.below(common, event)
+            if not self._assumed and self._are_independent(near_source, near_event):
+                rows[source, event] = latest[event] - latest[common] - (earliest[source] - earliest[common])
+            else:
+                reduced[source, event] = self._reduce(source, event, near_source, near_event)
+        near = self._table(set(reduced.values())) if reduced else {}
+        for (source, event), (near_source, near_event) in reduced.items():
+            rows[source, event] = (
+                latest[event]
+                - latest[near_event]
+                + near[near_source, near_event]
+                - (earliest[source] - earliest[near_source])
+            )
+        return rows
+
+    def _are_independent(self, near_source: int, near_event: int) -> bool:
+        """Whether the two, right under the common dominator, have no other cause in common."""
+        source_causes, event_causes = self._causes_of(near_source), self._causes_of(near_event)
+        self._graph.work += len(source_causes) + len(event_causes)
+        return source_causes & event_causes == {self._common}
+
+    def _reduce(self, source: int, event: int, near_source: int, near_event: int) -> tuple[int, int]:
+        """The dominators of the two from which on each has its delays to itself; ``near`` ones to begin with."""
         while True:
             lower_event = self._own_from(near_event, event, near_source)
             lower_source = self._own_from(near_source, source, lower_event)
@@ -81,14 +98,19 @@ class _Below:
                 return near_source, near_event
             near_source, near_event = lower_source, lower_event
 
-    def _causes_of(self, number: int) -> tuple[int, set[int]]:
-        """How many causes an event has since the common one, itself included; and those that dominate others of
-        them."""
+    def _causes_of(self, number: int) -> set[int]:
+        """The causes of an event since the common one, both included."""
         found = self._causes.get(number)
         if found is None:
-            causes = causes_since(self._graph, self._common, (number,))
-            dominator = self._graph.dominator
-            found = self._causes[number] = len(causes), {dominator[one] for one in causes[1:]}
+            found = self._causes[number] = _causes(self._graph, self._common, (number,))
+        return found
+
+    def _dominating_causes_of(self, number: int) -> set[int]:
+        """Those that dominate others of them."""
+        found = self._dominating.get(number)
+        if found is None:
+            dominator, common = self._graph.dominator, self._common
+            found = self._dominating[number] = {dominator[one] for one in self._causes_of(number) if one != common}
         return found
 
     def _own_from(self, near: int, event: int, other: int) -> int:
@@ -96,8 +118,8 @@ class _Below:
         nor any event of an assumed order. What dominates a cause is a cause itself, so that the way up from ``event``
         meets them where it comes to the first that dominates one of them."""
         graph = self._graph
-        count, dominating = self._causes_of(other)
-        graph.work += count
+        dominating = self._dominating_causes_of(other)
+        graph.work += len(self._causes_of(other))
         if dominating:
             met = graph.first_among(dominating, self._common, event)
             if met >= near:
@@ -154,6 +176,10 @@ def greatest_of(span: Span, open_us: int) -> int:
 
 def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
     """The events and all their causes back to ``common``, which dominates them, in the order of the graph."""
+    return sorted(_causes(graph, common, events))
+
+
+def _causes(graph: EventGraph, common: int, events: Iterable[int]) -> set[int]:
     found = {common}
     waiting = list(events)
     all_arcs = graph.arcs
@@ -164,4 +190,4 @@ def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[
             for arc in all_arcs[number]:
                 if arc.cause not in found:
                     waiting.append(arc.cause)
-    return sorted(found)
+    return found

@@ -9,8 +9,9 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from functools import cache
 
-from seqcheck.engine.bounds import Rows, both_ways, greatest_separation, greatest_separations
+from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.graph import EventGraph
 from seqcheck.engine.strokes import Region
 from seqcheck.engine.trace import Shift, Stroke, Trace
@@ -45,8 +46,7 @@ def place(graph: EventGraph, stroke: Stroke, stands: tuple[int, ...] | None = No
     stands = _may_stand_at(graph, stroke) if stands is None else stands
     region = None
     if not all(graph.never_later(stroke.end, at) for at in stands):
-        pairs = ((at, event) for event in _passings(stroke) for at in stands)
-        region = _region(stroke, stands, greatest_separations(graph, both_ways(pairs)))
+        region = _region(graph, stroke, stands)
     return Placing(region, stands, len(graph.assumed))
 
 
@@ -71,18 +71,18 @@ def may_have_centred(graph: EventGraph, shift: Shift) -> bool:
     return before is not None and before.taken_over and greatest_separation(graph, before.reached, shift.asked) > 0
 
 
-def _passings(stroke: Stroke) -> list[int]:
-    return [event for _, event in stroke.marks] + ([stroke.leaves] if stroke.leaves is not None else [])
-
-
-def _region(stroke: Stroke, stands: Sequence[int], rows: Rows) -> Region | None:
+def _region(graph: EventGraph, stroke: Stroke, stands: Sequence[int]) -> Region | None:
     """From the last mark that is passed in every run to the first that is reached in none."""
 
+    @cache
+    def never_later(one: int, other: int) -> bool:
+        return graph.never_later(one, other) or greatest_separation(graph, other, one) <= 0
+
     def always_passed(event: int) -> bool:
-        return all(rows[at, event] <= 0 for at in stands)
+        return all(never_later(event, at) for at in stands)
 
     def never_reached(event: int) -> bool:
-        return all(rows[event, at] <= 0 for at in stands)
+        return all(never_later(at, event) for at in stands)
 
     behind = stroke.started.low if stroke.out else stroke.started.high
     rests = set()

@@ -8,9 +8,10 @@ characters the encoding lacks in plain ASCII. Refuses nothing.
 from __future__ import annotations
 
 import dataclasses
+import operator
 import re
 import unicodedata
-from functools import lru_cache
+from functools import cache, lru_cache
 from typing import Any
 
 from seqcheck.machine.findings import Problem, Report
@@ -75,7 +76,8 @@ _SPELLED_IN_ASCII = {
 
 def plain(text: str, encoding: str = "utf-8") -> str:
     """Prose: as ``plain_characters``, and words longer than ``LONGEST_WORD`` characters cut in their middle."""
-    return _LONG_WORD.sub(_shortened, plain_characters(text, encoding))
+    shown = plain_characters(text, encoding)
+    return shown if len(shown) <= LONGEST_WORD else _LONG_WORD.sub(_shortened, shown)
 
 
 def plain_characters(text: str, encoding: str = "utf-8") -> str:
@@ -107,19 +109,30 @@ def plain_report(report: Report, encoding: str = "utf-8") -> Report:
 
 
 def plain_record(value: Any, encoding: str) -> Any:
-    """The same for any record that is made of records, tuples and strings."""
+    """The same for any record that is made of records, tuples and strings; itself where nothing in it changes, as
+    with most of thousands."""
+    if value is None or isinstance(value, int):
+        return value
     if isinstance(value, str):
         return plain(value, encoding)
     if isinstance(value, tuple):
-        return tuple(plain_record(part, encoding) for part in value)
+        parts = tuple([plain_record(part, encoding) for part in value])
+        return value if all(map(operator.is_, parts, value)) else parts
     if not dataclasses.is_dataclass(value) or isinstance(value, type):
         return value
-    changed = {
-        field.name: plain_record(getattr(value, field.name), encoding)
-        for field in dataclasses.fields(value)
-        if not (isinstance(value, Problem) and field.name == "source")
-    }
-    return dataclasses.replace(value, **changed)
+    changed = {}
+    for name in _shown_fields(type(value)):
+        before = getattr(value, name)
+        after = plain_record(before, encoding)
+        if after is not before:
+            changed[name] = after
+    return dataclasses.replace(value, **changed) if changed else value
+
+
+@cache
+def _shown_fields(record: type[Any]) -> tuple[str, ...]:
+    names = tuple(field.name for field in dataclasses.fields(record))
+    return tuple(name for name in names if name != "source") if record is Problem else names
 
 
 def _shortened(word: re.Match[str]) -> str:

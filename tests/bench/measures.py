@@ -5,6 +5,7 @@ Takes work to do here or a program for a process of its own; gives the least of 
 
 from __future__ import annotations
 
+import json
 import os
 import subprocess
 import sys
@@ -14,6 +15,15 @@ from dataclasses import dataclass
 from pathlib import Path
 
 CHECKOUT = Path(__file__).resolve().parents[2]
+#: A process begins with the peak of the one that starts it, which here may have loaded solvers: a small one comes
+#: between, and says what status, seconds and peak the interpreter with these arguments has ended with.
+_WATCHED = """
+import json, os, sys
+nothing = [(os.POSIX_SPAWN_OPEN, 1, os.devnull, os.O_WRONLY, 0)]
+process = os.posix_spawn(sys.executable, [sys.executable, *sys.argv[1:]], os.environ, file_actions=nothing)
+_, status, usage = os.wait4(process, 0)
+print(json.dumps([os.waitstatus_to_exitcode(status), usage.ru_utime + usage.ru_stime, usage.ru_maxrss]))
+"""
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,14 +50,10 @@ def process_cost(*arguments: str, tries: int = 3, statuses: tuple[int, ...] = (0
 
 def _once(arguments: tuple[str, ...], statuses: tuple[int, ...]) -> Cost:
     environment = {**os.environ, "PYTHONPATH": str(CHECKOUT), "PYTHONDONTWRITEBYTECODE": ""}
-    process = subprocess.Popen(
-        [sys.executable, *arguments], cwd=CHECKOUT, env=environment, stdout=subprocess.DEVNULL, stderr=subprocess.PIPE
+    done = subprocess.run(
+        [sys.executable, "-c", _WATCHED, *arguments], cwd=CHECKOUT, env=environment, capture_output=True, text=True
     )
-    assert process.stderr is not None
-    told = process.stderr.read()
-    _, status, usage = os.wait4(process.pid, 0)
-    process.stderr.close()
-    process.returncode = os.waitstatus_to_exitcode(status)
-    assert process.returncode in statuses, told.decode("utf-8", "replace")
-    unit = 1024**2 if sys.platform == "darwin" else 1024
-    return Cost(usage.ru_utime + usage.ru_stime, usage.ru_maxrss / unit)
+    assert done.returncode == 0, done.stderr
+    status, seconds, peak = json.loads(done.stdout)
+    assert status in statuses, done.stderr
+    return Cost(seconds, peak / (1024**2 if sys.platform == "darwin" else 1024))

@@ -131,7 +131,7 @@ def growth() -> Iterator[Row]:
 def _whole_process(text: str, folder: Path, tries: int) -> Cost:
     file = folder / "bench.steps"
     file.write_text(text, encoding="utf-8")
-    return process_cost("-c", _CHECK, str(file), tries=tries)
+    return process_cost("-m", "seqcheck", "check", str(file), tries=tries)
 
 
 def branches() -> Iterator[Row]:
@@ -165,7 +165,7 @@ def start_up() -> Iterator[Row]:
     small = str(CHECKOUT / "examples" / "change" / "before.steps")
     needed = f"import {', '.join(_loaded_by_a_check(small))}"
     loading = process_cost("-c", needed, tries=7).seconds
-    checking = process_cost("-c", _CHECK, small, tries=7).seconds
+    checking = process_cost("-m", "seqcheck", "check", small, tries=7).seconds
     yield Row("check of a small file : importing all that it loads", checking / loading, 1.2)
 
 
