@@ -79,7 +79,8 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
             by_key.setdefault(_key(seen.broken.finding), []).append(seen)
         for margin in one.margins:
             key = (margin.kind, margin.subject, margin.step, margin.place)
-            margins[key] = min(margins.get(key, margin), margin, key=_by_margin)
+            known = margins.get(key)
+            margins[key] = margin if known is None else min(known, margin, key=_by_margin)
     broken = [_one_of(found, ways) for found in by_key.values()]
     found = {_key(one.finding): number for number, one in enumerate(broken)}
     whole = [check.finding(sight) for check, one in together for sight in one.sights]
@@ -157,7 +158,8 @@ def _prove_one(
         one = _best_pair(obligation, rows)
         margin = -rows[one.second, one.first] - one.least
         key = (check.kind, one.subject, one.step, one.place)
-        if key not in tightest or margin < tightest[key][2]:
+        known = tightest.get(key)
+        if known is None or margin < known[2]:
             tightest[key] = (check, one, margin)
         if margin < 0 and (one.stops or (one.diverts and not _always_broken(one, rows))):
             diverting.add(key)

@@ -168,6 +168,8 @@ class Cylinders:
     def _drive(self, piston: _Piston, shift: Shift, reason: tuple[Literal, ...]) -> Shift:
         """The shift that drives the piston otherwise; where it takes several valves, the last of theirs."""
         valves = {literal.term.subject for literal in reason} | {shift.valve}
+        if len(valves) == 1:
+            return shift
         shifts = [self._shifts[valve] for valve in sorted(valves) if valve in self._shifts]
         last = self._timeline.graph.without_idle(one.reached for one in shifts)
         if last == (shift.reached,):

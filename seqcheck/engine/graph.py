@@ -82,18 +82,16 @@ class EventGraph:
             dominator = self.common_dominator(dominator, cause)
         self.earliest.append(earliest)
         self.latest.append(latest)
-        self._hang_below(dominator)
-        return number
-
-    def _hang_below(self, dominator: int) -> None:
-        """Note the dominator and a jump upwards whose lengths grow in the way of a skew binary number, so that a way
-        up of any length takes a number of jumps that grows with its logarithm (Myers, *An applicative random-access
-        stack*, Inf. Proc. Letters 17, 1983)."""
-        jump = self._jump[dominator]
-        same_length = self._depth[dominator] - self._depth[jump] == self._depth[jump] - self._depth[self._jump[jump]]
+        # A jump upwards, whose lengths grow in the way of a skew binary number, so that a way up of any length takes a
+        # number of jumps that grows with its logarithm (Myers, *An applicative random-access stack*, Inf. Proc. Letters
+        # 17, 1983).
+        depths, jumps = self._depth, self._jump
+        depth, jump = depths[dominator], jumps[dominator]
+        further = jumps[jump]
         self.dominator.append(dominator)
-        self._depth.append(self._depth[dominator] + 1)
-        self._jump.append(self._jump[jump] if same_length else dominator)
+        depths.append(depth + 1)
+        jumps.append(further if depth - depths[jump] == depths[jump] - depths[further] else dominator)
+        return number
 
     def common_dominator(self, one: int, other: int) -> int:
         """The last event through which every chain of causes of both runs (an event dominates itself)."""
@@ -156,7 +154,9 @@ class EventGraph:
         if len(causes) == 1:
             return causes
         for cause in sorted(set(causes), reverse=True):
-            if not any(self.never_later(cause, other) for other in kept):
+            if not kept:
+                kept.append(cause)
+            elif not any(self.never_later(cause, other) for other in kept):
                 kept = [other for other in kept if not self.never_later(other, cause)]
                 kept.append(cause)
         return tuple(kept)

@@ -9,9 +9,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
-from functools import cache
 
-from seqcheck.engine.bounds import greatest_separation
+from seqcheck.engine.bounds import Rows, both_ways, greatest_separation, greatest_separations
 from seqcheck.engine.graph import EventGraph
 from seqcheck.engine.strokes import Region
 from seqcheck.engine.trace import Shift, Stroke, Trace
@@ -74,9 +73,14 @@ def may_have_centred(graph: EventGraph, shift: Shift) -> bool:
 def _region(graph: EventGraph, stroke: Stroke, stands: Sequence[int]) -> Region | None:
     """From the last mark that is passed in every run to the first that is reached in none."""
 
-    @cache
+    rows: Rows = {}
+
     def never_later(one: int, other: int) -> bool:
-        return graph.never_later(one, other) or greatest_separation(graph, other, one) <= 0
+        if graph.never_later(one, other):
+            return True
+        if (other, one) not in rows:
+            rows.update(greatest_separations(graph, both_ways([(one, other)])))
+        return rows[other, one] <= 0
 
     def always_passed(event: int) -> bool:
         return all(never_later(event, at) for at in stands)

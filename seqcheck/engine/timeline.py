@@ -7,7 +7,6 @@ of ``Order``, then in the order in which they were scheduled, so that a run is a
 from __future__ import annotations
 
 import heapq
-from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from enum import IntEnum
 
@@ -37,6 +36,8 @@ def typical(what: str, name: str, number: int, span: Span) -> int:
 
 def given(delays: Mapping[DelayName, int]) -> Draw:
     """Draws these delays, held within their spans, and all others at their typical times."""
+    if not delays:
+        return typical
 
     def draw(what: str, name: str, number: int, span: Span) -> int:
         return min(max(delays.get((what, name, number), span.typical), span.least), span.greatest)
@@ -52,7 +53,7 @@ class Timeline:
         self.times: list[int] = [0]
         self.happened: set[int] = {0}
         self._draw = draw
-        self._occurred: Counter[tuple[str, str]] = Counter()
+        self._occurred: dict[tuple[str, str], int] = {}
         self._due: list[tuple[int, int, int, int]] = []
         self._actions: dict[int, list[tuple[Order, Callable[[], None]]]] = {}
         self._scheduled = 0
@@ -61,8 +62,8 @@ class Timeline:
         """An arc whose delay is drawn, and the time at which it ends. ``number`` is the occasion where something
         other than a plain count tells it (the same occasion must be the same in every run)."""
         if number is None:
-            number = self._occurred[what, name]
-            self._occurred[what, name] += 1
+            number = self._occurred.get((what, name), 0)
+            self._occurred[what, name] = number + 1
         arc = Arc(cause, span, (what, name, number))
         return arc, self.times[cause] + self._draw(what, name, number, span)
 

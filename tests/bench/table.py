@@ -21,7 +21,7 @@ from seqcheck.pipeline import examine_source
 from tests.bench.measures import CHECKOUT, Cost, least_cpu, process_cost
 from tests.bench.rivals import Part, by_milp, by_z3, part_of, random_cycles, whole_of
 from tests.bench.stations import in_a_row
-from tests.bench.texts import choices, one_after_the_other, side_by_side
+from tests.bench.texts import choices, one_after_the_other, repeated, side_by_side
 from tests.outside.asked import Question, asked_about
 from tests.outside.stations import CrateStapler
 
@@ -148,6 +148,10 @@ def choosing() -> Iterator[Row]:
         yield Row(f"{count} choices : {count // 2} choices", _ratio(choices(count), choices(count // 2)))
 
 
+def repeats() -> Iterator[Row]:
+    yield Row("two moves 1,000 times : 100 times", _ratio(repeated(1_000), repeated(100)), 12)
+
+
 def _ratio(text: str, other: str) -> float | None:
     if not (_is_analysed(text) and _is_analysed(other)):
         return None
@@ -182,6 +186,7 @@ GROUPS: dict[str, Callable[[], Iterator[Row]]] = {
     "rivals": rivals,
     "branches": branches,
     "choices": choosing,
+    "repeats": repeats,
     "start-up": start_up,
     "growth": growth,
 }

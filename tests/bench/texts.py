@@ -1,4 +1,5 @@
-"""Machine texts for the growth figures: moves in branches side by side, choices in a row. All invented."""
+"""Machine texts for the growth figures: moves in branches side by side, repeated moves, choices in a row. All
+invented."""
 
 from __future__ import annotations
 
@@ -26,6 +27,11 @@ def one_after_the_other(cylinders: int, moves: int) -> str:
     body = "\n".join(f"C{number}+ C{number}-" for _ in range(moves // 2) for number in range(cylinders))
     devices = "\n".join(_cylinder(number) for number in range(cylinders))
     return f"{CONTROLLER}{devices}\nsequence main {{\nevery step within 5 s\n{body}\n}}\n"
+
+
+def repeated(times: int) -> str:
+    """Two moves of one cylinder, over and over in one round."""
+    return f"{CONTROLLER}{_cylinder(0)}\nsequence main {{\nevery step within 5 s\nrepeat {times} {{ C0+ C0- }}\n}}\n"
 
 
 def choices(count: int) -> str:
