@@ -87,7 +87,9 @@ class _Below:
         """Whether the two, right under the common dominator, have no other cause in common."""
         source_causes, event_causes = self._causes_of(near_source), self._causes_of(near_event)
         self._graph.work += len(source_causes) + len(event_causes)
-        return source_causes & event_causes == {self._common}
+        if near_source in event_causes or near_event in source_causes:
+            return False
+        return len(source_causes & event_causes) == 1
 
     def _reduce(self, source: int, event: int, near_source: int, near_event: int) -> tuple[int, int]:
         """The dominators of the two from which on each has its delays to itself; ``near`` ones to begin with."""
