@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from seqcheck.engine.bounds import greatest_separation, greatest_separations, is_open
+from seqcheck.engine.bounds import greatest_separation, greatest_separations, is_open, longest_least_chain
 from seqcheck.engine.graph import OPEN, Arc, Event, EventGraph
 from seqcheck.machine.time import Span
 from tests.engine.graphs import at_random, corners, graph_of, milp_separation, random_graph
@@ -166,3 +166,14 @@ def test_causes_that_are_never_the_last_are_idle() -> None:
     assert graph.without_idle([number["a"], number["b"]]) == (number["b"],)
     assert set(graph.without_idle([number["a"], number["c"]])) == {number["a"], number["c"]}
     assert graph.without_idle([0, number["a"], number["b"], number["a"]]) == (number["b"],)
+
+
+@settings(deadline=None, max_examples=40)
+@given(st.integers(0, 10**6))
+def test_what_one_event_makes_sure_of_is_the_longest_path_over_the_least_delays(seed: int) -> None:
+    graph = random_graph(seed, events=25, width=4)
+    exported = graph.as_networkx()
+    for cause in networkx.ancestors(exported, 24):
+        between = (networkx.descendants(exported, cause) | {cause}) & (networkx.ancestors(exported, 24) | {24})
+        longest = networkx.dag_longest_path_length(exported.subgraph(between), weight="least")
+        assert longest_least_chain(graph, cause, 24) == longest

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from seqcheck.engine.program import Program, compile_sequence
+from seqcheck.engine.program import Program, Select, compile_sequence
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
@@ -89,3 +89,16 @@ def test_rounds_left_after_a_jump(
 ) -> None:
     at, to = program.steps[f"main.{from_step}"], program.steps[f"main.{to_step}"]
     assert program.counts_after_jump(at, counts, to) == left
+
+
+def test_only_a_choice_without_an_otherwise_may_have_to_wait() -> None:
+    text = """signal s from outside
+    sequence main {
+        choose { when s { step a { dwell 1 s } } when not s { step b { dwell 1 s } } }
+        choose { when s { step c { dwell 1 s } } otherwise { step d { dwell 1 s } } }
+    }"""
+    machine = read_machine(Source("a.steps", text))
+    assert isinstance(machine, Machine), machine
+    first, second = (one for one in compile_sequence(machine.sequences[0]).code if isinstance(one, Select))
+    assert first.waited == first.conditions and len(first.waited) == 2
+    assert second.waited == () and len(second.conditions) == 2
