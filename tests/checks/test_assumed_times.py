@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from seqcheck.language.source import Source
+from seqcheck.machine.places import Place
 from seqcheck.pipeline import examine_source
 
 CONTROLLER = "controller { scan 8..12 ms  input 2..4 ms  output 0.5..1 ms }\n"
@@ -58,3 +59,14 @@ def test_steps_that_wait_for_a_cylinder_whose_valve_is_assumed_rest_on_it() -> N
         " step back { reset Y1  until B1 } }"
     )
     assert note_on(text).endswith("the figures of main.go, main.there, main.back")
+
+
+def test_where_only_the_controller_is_missing_the_note_stands_at_the_head_of_the_text() -> None:
+    """Nothing in the text is the place of what the text does not have."""
+    text = "output K1\nsequence main { step a { on K1  dwell 1 s }  step b { dwell 1 s } }"
+    report = examine_source(Source("a.steps", text), ["assume:air"])
+    (note,) = [one for one in report.findings if one.kind == "assumed-times"]
+    assert (note.subject, note.step) == ("controller", None)
+    assert note.place == Place("a.steps", 1, 1, 1, 1)
+    assert "of the controller: times ordinary for air stand in" in note.message
+    assert note.message.endswith("and every figure rests on them")

@@ -107,3 +107,14 @@ def test_a_play_goes_on_to_the_very_instant_that_is_asked_for() -> None:
         assert (spell.on in trace.happened) is comes
         assert max(trace.times[number] for number in trace.happened) <= until
         assert not trace.finished
+
+
+def test_a_stroke_that_is_turned_before_its_end_is_cut_and_one_that_is_done_is_not() -> None:
+    cut_short = "step out { set Y1  dwell 200 ms }  step back { reset Y1  until B1 }"
+    trace = played(CLAMP.replace("clamp+ clamp-", f"{cut_short} clamp+ clamp-"), 1)
+    assert [(stroke.out, stroke.cut) for stroke in trace.strokes_of["clamp"][:4]] == [
+        (True, True),
+        (False, False),
+        (True, False),
+        (False, False),
+    ]
