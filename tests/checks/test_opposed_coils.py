@@ -1,4 +1,4 @@
-"""What would mend two coils commanded at once: a shorter pulse where the valve keeps its position, if it is long enough."""
+"""What mends two coils commanded at once: a shorter pulse where the valve keeps its position, if it is long enough."""
 
 from __future__ import annotations
 
@@ -23,7 +23,7 @@ def at_once(pulse: int, exit: str) -> list[Finding]:
 
 
 def test_a_pulse_of_a_valve_that_keeps_its_position_may_be_shorter() -> None:
-    """Y5 is commanded 100 after Y4 at least, the pulse ends 150 + 12 after it at most: 62 too late. One of 88 ends in time."""
+    """Y5 is commanded 100 after Y4 at least, the pulse ends 150 + 12 after it at most: 62 too late. 88 end in time."""
     (found,) = at_once(150, "dwell 100 ms")
     assert found.margin_us == -62_000
     assert found.mend == "a pulse of Y4 of at most 88 ms ends in time"

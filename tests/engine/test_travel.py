@@ -49,7 +49,7 @@ def test_what_a_part_is_counted_from_is_never_taken_for_a_mark() -> None:
 
 
 def test_from_an_end_by_shares_of_the_whole_and_behind_the_mark_before() -> None:
-    """20, 30, 50, 80 % of the stroke, and from one to the next 20, 10, 20, 30 % of the least; nothing before the end."""
+    """20, 30, 50, 80 % of the stroke; from one to the next 20, 10, 20, 30 % of the least, and nothing before the end."""
     assert travel(out=True).from_end(0) == (
         Reach(1, (drawn(START, 200, 300, 400), behind(LEAVING, 200))),
         Reach(2, (drawn(START, 300, 450, 600), behind(0, 100))),
@@ -83,8 +83,8 @@ def test_from_between_two_marks_the_next_one_takes_up_to_its_whole_share() -> No
 
 def test_from_one_of_several_stretches() -> None:
     """Between 20 and 50 %, as played behind 30 %. To 30 %: none if it is passed, or its whole 200. To 50 % from behind
-    30 %: up to 400; from before it 200 + 400. To 80 %: from 50 % at least 300; at most 200 + 1000. To the end: from 50 %
-    at least 500; at most 200 + 1400."""
+    30 %: up to 400; from before it 200 + 400. To 80 %: from 50 % at least 300; at most 200 + 1000. To the end: from
+    50 % at least 500; at most 200 + 1400."""
     assert travel(out=True).from_between(Region(1, 3), Region(2, 3)) == (
         Reach(2, (anywhere(0, 0, 200),)),
         Reach(3, (drawn(START, 0, 200, 400),), only_if=True),
@@ -107,8 +107,8 @@ def test_back_from_one_of_several_stretches() -> None:
 
 
 def test_where_it_may_not_have_left_its_end_yet() -> None:
-    """It comes off within 700, and is at the mark at 20 % no sooner than 200 after that: 900 at most, 1000 at 30 %, 1200
-    at 50 %. Further on the stroke as a whole takes longer: 80 % and all of 2000. Typically as from the end."""
+    """It comes off within 700, and is at the mark at 20 % no sooner than 200 after that: 900 at most, 1000 at 30 %,
+    1200 at 50 %. Further on the stroke as a whole takes longer: 80 % and all of 2000. Typically as from the end."""
     assert travel(out=True, lag=Span(600, 650, 700)).from_between(Region(0, 1, frozenset({0})), Region.exactly(0)) == (
         Reach(1, (drawn(START, 0, 300, 400),), only_if=True),
         Reach(1, (behind(0, 0), anywhere(0, 300, 900))),
