@@ -49,7 +49,7 @@ def test_what_a_part_is_counted_from_is_never_taken_for_a_mark() -> None:
 
 
 def test_from_an_end_by_shares_of_the_whole_and_behind_the_mark_before() -> None:
-    """20, 30, 50, 80 % of the stroke; from one to the next 20, 10, 20, 30 % of the least, and nothing before the end."""
+    """20, 30, 50, 80 % of the stroke; from one to the next 20, 10, 20, 30 % of the least, none before the end."""
     assert travel(out=True).from_end(0) == (
         Reach(1, (drawn(START, 200, 300, 400), behind(LEAVING, 200))),
         Reach(2, (drawn(START, 300, 450, 600), behind(0, 100))),
