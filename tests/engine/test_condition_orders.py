@@ -12,7 +12,7 @@ from seqcheck.engine.graph import EventGraph
 from seqcheck.engine.trace import Change, Trace
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
-from seqcheck.machine.conditions import AllOf, AnyOf, Condition, Term, TermKind
+from seqcheck.machine.conditions import AllOf, AnyOf, Condition, Not, Term, TermKind
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
 from tests.engine.test_player import played
@@ -53,6 +53,8 @@ def orders(condition: Condition, changes: Mapping[Aspect, Sequence[Change]]) -> 
         (AllOf((X, Y), PLACE), [Change(ON, 1)], [Change(ON, 0), Change(OFF, 2)], [(1, 2)]),
         # It begins with the first of the two, and goes on without a break or not
         (AnyOf((X, Y), PLACE), [Change(ON, 2)], [Change(ON, 1), Change(OFF, 3)], [(1, 2), (2, 3)]),
+        # It ceases to hold for a while, or does not
+        (AnyOf((Not(X, PLACE), Y), PLACE), [Change(ON, 1)], [Change(ON, 2)], [(1, 2)]),
         # What one sensor does comes in its own order, and what one event brings comes at once
         (AnyOf((X, Y), PLACE), [Change(ON, 1), Change(OFF, 2)], [], []),
         (AnyOf((X, Y), PLACE), [Change(ON, 1)], [Change(ON, 1)], []),
