@@ -83,3 +83,35 @@ def test_the_same_machine_is_explored_the_same_way() -> None:
     assert [(run.begin, run.end, run.duration) for run in one.runs] == [
         (run.begin, run.end, run.duration) for run in other.runs
     ]
+
+
+LIFT = """valve V2 5/3 closed centre { coil Y2 to a  coil Y3 to b  on 20..30 ms  off 30..45 ms }
+cylinder lift on V2 { extend 600..700 ms  retract 500..620 ms  sensor B3 at retracted  sensor B4 at extended }
+"""
+
+
+@pytest.mark.parametrize(
+    ("text", "first", "rounds"),
+    [
+        ("sequence main { step a { dwell 50 ms } }", 0, 1),
+        # The first round begins at rest, all others as Y3 has just been released
+        (f"{LIFT}sequence main {{ every step within 2 s  lift+ lift- }}", 1, 1),
+        # Every other round is another one
+        (
+            "flag odd\nsequence main { choose {"
+            " when odd { step a { reset odd  dwell 50 ms } } otherwise { step b { set odd  dwell 80 ms } } } }",
+            0,
+            2,
+        ),
+    ],
+    ids=["one", "one-behind-another", "two"],
+)
+def test_a_play_goes_once_round_through_all_that_comes_again(text: str, first: int, rounds: int) -> None:
+    (only,) = explored(text).settlements
+    assert only.path.settled == first
+    assert only.path.joined == first + rounds
+    assert only.path.round is not None
+    begin, end = only.path.round
+    assert end - begin == rounds == only.last - only.first
+    assert only.states[begin] == only.states[end]
+    assert len(set(only.states[begin:end])) == rounds
