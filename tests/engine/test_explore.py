@@ -59,8 +59,8 @@ def test_both_outcomes_join_where_the_machine_is_the_same_again() -> None:
 
 
 def test_an_order_that_is_open_is_played_both_ways_and_one_that_is_not_but_once() -> None:
-    """A pulse of 300 ms against a step that ends the command of its coil 290..302 ms later, 300..312, at the same typical
-    time as the pulse, or 400..412."""
+    """A pulse of 300 ms against a step that ends the command of its coil 290..302 ms later, 300..312 (typically as the
+    pulse ends), or 400..412."""
     text = (
         "valve V1 5/2 spring {{ coil Y1  on 18..28 ms  off 25..40 ms }}\noutput K\n"
         "sequence main {{ step go {{ pulse Y1 300 ms  on K  dwell {dwell} ms }}"
