@@ -6,10 +6,11 @@ import pytest
 
 from seqcheck.engine.conditions import Literal
 from seqcheck.engine.graph import EventGraph
-from seqcheck.engine.trace import Answer, Edge, Read, Trace, Wait
-from seqcheck.engine.wait_orders import passing
+from seqcheck.engine.trace import Alarm, Answer, Edge, Read, Trace, Wait
+from seqcheck.engine.wait_orders import alarm_orders, passing
 from seqcheck.machine.conditions import Term, TermKind
 from seqcheck.machine.places import Place
+from seqcheck.machine.steps import Watchdog
 
 B9 = Literal(Term(TermKind.SENSOR, "B9", None, Place("a.steps", 1, 1, 1, 1)), True)
 
@@ -51,3 +52,13 @@ def test_what_was_seen_in_time_is_held_against_its_going() -> None:
     wait.answers = (Answer(B9, 7, 6, came),)
     assert orders(wait, came, went) == [("seen", 7, 11), ("arrived", 6, 10)]
     assert orders(wait, came) == []
+
+
+def test_what_came_too_late_for_a_watchdog_is_held_against_it_as_it_came_to_the_input() -> None:
+    """Its time is over at event 6; the signal holds at the input with event 7, and is seen with event 8."""
+    signal = Literal(Term(TermKind.SIGNAL, "part", None, B9.term.place), True)
+    alarm = Alarm(Watchdog(60, "main.lost", B9.term.place), 6, 9, expired=True)
+    wait = Wait(entered=read(5), alternatives=((signal,),), cycle=0, left=read(9), alarm=alarm)
+    wait.signals[signal] = (7, 8)
+    trace = Trace(EventGraph(), [10 * number for number in range(20)], {})
+    assert [(one.first, one.second) for one in alarm_orders(trace, wait, ("step", "main.a"))] == [(6, 7)]

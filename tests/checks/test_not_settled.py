@@ -1,0 +1,19 @@
+"""Which sequence ought to wait for which, where they never meet: one that asks nothing of the others yet."""
+
+from __future__ import annotations
+
+import pytest
+
+from seqcheck.language.source import Source
+from seqcheck.pipeline import examine_source
+
+MAIN = "controller { scan 8..12 ms }\nsequence main { step a { dwell 100 ms }  step b { dwell 50 ms } }\n"
+TIED = "sequence tied { step c { until main.a }  step d { until main.b } }\n"
+FREE = "sequence free { step e { dwell 130 ms }  step f { dwell 70 ms } }\n"
+
+
+@pytest.mark.parametrize("text", [MAIN + FREE, MAIN + TIED + FREE, MAIN + FREE + TIED])
+def test_the_free_one_is_to_wait_for_the_first(text: str) -> None:
+    report = examine_source(Source("a.steps", text))
+    (found,) = [one for one in report.findings if one.kind == "not-settled"]
+    assert found.mend == "let free wait for a step of main, say `until main.a`, once a round"
