@@ -16,4 +16,5 @@ FREE = "sequence free { step e { dwell 130 ms }  step f { dwell 70 ms } }\n"
 def test_the_free_one_is_to_wait_for_the_first(text: str) -> None:
     report = examine_source(Source("a.steps", text))
     (found,) = [one for one in report.findings if one.kind == "not-settled"]
-    assert found.mend == "let free wait for a step of main, say `until main.a`, once a round"
+    begins = "say `until not main.a` and then `until main.a`"
+    assert found.mend == f"let free wait once a round for a step of main to begin, {begins}"

@@ -31,9 +31,9 @@ def finding(message: str, margin_us: int | None) -> Finding:
         (-10, -30, "summed"),
         (-30, -10, "shown"),
         (-10, -10, "shown"),
-        # Without a time nothing is longer
+        # What nothing limits is longer than all else
         (None, -10, "shown"),
-        (-10, None, "shown"),
+        (-10, None, "summed"),
     ],
 )
 def test_the_worse_of_what_a_run_shows_and_what_several_add_up_to(

@@ -5,9 +5,9 @@ from __future__ import annotations
 import pytest
 
 from seqcheck.engine.graph import Arc, Event, EventGraph
-from seqcheck.engine.regions import may_have_centred, region_of
+from seqcheck.engine.regions import may_have_centred, place, regions_of
 from seqcheck.engine.strokes import Region
-from seqcheck.engine.trace import CoilChange, Origin, Read, Shift, Stroke
+from seqcheck.engine.trace import CoilChange, Origin, Read, Shift, Stroke, Trace
 from seqcheck.machine.devices import Position
 from seqcheck.machine.places import Place
 from seqcheck.machine.steps import CommandKind
@@ -38,7 +38,7 @@ def stopped(stop: tuple[int, int], out: bool = True) -> Region | None:
     )
     stroke.stands = added(graph, *stop)
     stroke.away = shift_to(Position.B, 0, stroke.stands)
-    return region_of(graph, stroke)
+    return place(graph, stroke).region
 
 
 @pytest.mark.parametrize(
@@ -74,8 +74,10 @@ def test_where_it_stands_anyway_is_no_region_of_its_own() -> None:
     stroke.marks = ((1, added(graph, 10, 20)), (2, added(graph, 30, 40)))
     stroke.stands = added(graph, 25, 26)
     stroke.away = shift_to(Position.B, 0, stroke.stands)
+    trace = Trace(graph, [], {}, strokes=[stroke])
+    assert dict(regions_of(trace, {})) == {("clamp", 0): Region(1, 2)}
     stroke.stood = Region(1, 2)
-    assert region_of(graph, stroke) is None
+    assert not dict(regions_of(trace, {}))
 
 
 @pytest.mark.parametrize(("other", "region"), [((9, 9), Region(1, 3)), ((10, 10), Region(1, 2))])
@@ -89,7 +91,7 @@ def test_the_other_coil_may_take_over_a_return_to_centre(other: tuple[int, int],
     stroke.stands = stroke.away.reached
     following = shift_to(Position.B, added(graph, *other), added(graph, 45, 45), "Y2", stroke.away)
     stroke.away.following = following
-    assert region_of(graph, stroke) == region
+    assert place(graph, stroke).region == region
 
 
 @pytest.mark.parametrize(("centred", "may"), [((8, 12), True), ((10, 12), False)])
