@@ -29,11 +29,11 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for one in alternatives:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
-        for spell in without_breaks(study, alternatives):
-            yield from _obligation(rule, (spell,))
+        for spell, always in without_breaks(study, alternatives):
+            yield from _obligation(rule, (spell,), always)
 
 
-def _obligation(rule: Never, spells: tuple[Holds, ...]) -> Iterator[Obligation]:
+def _obligation(rule: Never, spells: tuple[Holds, ...], always: bool = True) -> Iterator[Obligation]:
     pairs = [(one.end, other.begin) for one in spells for other in spells if one.end is not None]
     if pairs:
         (first, second), *others = pairs
@@ -47,6 +47,7 @@ def _obligation(rule: Never, spells: tuple[Holds, ...]) -> Iterator[Obligation]:
             -rule.tolerated,
             others=tuple(others),
             diverts=False,
+            always=always,
         )
 
 
@@ -70,7 +71,7 @@ def _for_good(study: Study) -> Iterator[Sight]:
         if not isinstance(rule, Never):
             continue
         alternatives = alternatives_of(rule.condition)
-        for spell in without_breaks(study, alternatives):
+        for spell, _ in without_breaks(study, alternatives):
             if _lasts(study, spell, at, last):
                 certain = not _changes_since(study, alternatives, at)
                 message = f"`{rule.text}` is broken for good" if certain else _wording(rule).broken(UNLIMITED)
@@ -116,7 +117,7 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
 
 def _spells(study: Study, rule: Never) -> Iterator[Spell]:
     alternatives = alternatives_of(rule.condition)
-    for one in without_breaks(study, alternatives):
+    for one, _ in without_breaks(study, alternatives):
         last = None if one.end is None else passages_before(study, one.end, one.ended_by_read)
         at_rest = one.begin == 0 and holds_at_rest(study, alternatives)
         # What is so as the machine stands was so before its first state, at which all ways begin.

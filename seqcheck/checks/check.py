@@ -50,7 +50,7 @@ class Obligation:
     keeps it, and only the one or the other is played; ``stops``: it goes on no further, and is played on all the
     same. ``as_if``: an event that the play has called off, and that is taken to have come all the same: runs in which
     it does break it just so. ``assumed``: orders that this play takes for granted, but that are in question here;
-    ``kept``: those without which it says nothing."""
+    ``kept``: those without which it says nothing. Not ``always``: some runs have no such pair of events."""
 
     subject: str
     step: str | None
@@ -69,6 +69,7 @@ class Obligation:
     instead: Instead | None = None
     assumed: tuple[tuple[int, int], ...] = ()
     kept: tuple[tuple[int, int], ...] = ()
+    always: bool = True
 
     @property
     def pairs(self) -> tuple[tuple[int, int], ...]:

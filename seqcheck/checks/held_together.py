@@ -32,16 +32,19 @@ def _near(study: Study, spells: Sequence[Holds], one: Holds) -> Sequence[Holds]:
     return spells[max(0, len(begun) - 1) : len(begun) + 1]
 
 
-def without_breaks(study: Study, alternatives: Alternatives) -> list[Holds]:
+def without_breaks(study: Study, alternatives: Alternatives) -> list[tuple[Holds, bool]]:
     """The spells of a whole condition, and those that come of it where a break between two may be none, or be for an
-    instant of no length: what begins the next one comes no later than what ends the one."""
+    instant of no length: what begins the next one comes no later than what ends the one. Whether that is so in every
+    run, too."""
     spells = spells_of_condition(study.trace, alternatives)
-    found = list(spells)
-    since = None
+    found = [(one, True) for one in spells]
+    since, always = None, True
     for one, following in pairwise(spells):
         since = one if since is None else since
-        if one.end is not None and greatest_separation(study.trace.graph, following.begin, one.end) >= 0:
-            found.append(replace(since, end=following.end, ended_by_read=following.ended_by_read))
+        gap = None if one.end is None else (one.end, following.begin)
+        if gap is not None and greatest_separation(study.trace.graph, gap[1], gap[0]) >= 0:
+            always = always and greatest_separation(study.trace.graph, *gap) <= 0
+            found.append((replace(since, end=following.end, ended_by_read=following.ended_by_read), always))
         else:
-            since = None
+            since, always = None, True
     return found

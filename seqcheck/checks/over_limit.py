@@ -160,8 +160,8 @@ def _goes_round(studies: Sequence[Study], rule: CycleLimit | PathLimit, crossed:
         return ()
     last = study.settlement.path.passages[-1].at
     spells = [(one.begin, last if one.end is None else one.end) for one in _spells(study, rule)]
-    begin, end = max(spells, key=lambda one: study.time(one[1]) - study.time(one[0]))
-    return narrate_typical(study, begin, end)
+    longest = max(spells, key=lambda one: study.time(one[1]) - study.time(one[0]), default=None)
+    return () if longest is None else narrate_typical(study, *longest)
 
 
 def _crossings(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Crossings]]:

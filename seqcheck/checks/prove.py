@@ -220,7 +220,7 @@ def _best_pair(one: Obligation, rows: Rows) -> Obligation:
 
 
 def _always_broken(one: Obligation, rows: Rows) -> bool:
-    return -rows[one.second, one.first] < one.least and rows[one.first, one.second] < one.least
+    return one.always and -rows[one.second, one.first] < one.least and rows[one.first, one.second] < one.least
 
 
 def _turns(study: Study, obligations: Iterable[Obligation], rows: Rows) -> list[Obligation]:
