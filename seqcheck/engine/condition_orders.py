@@ -96,11 +96,12 @@ def watched(machine: Machine) -> list[str]:
 def stroke_orders(trace: Trace, cylinder: str) -> Iterator[Order]:
     """Whether a piston leaves its end, and comes to the other one, before it is stopped or turned."""
     for stroke in trace.strokes_of.get(cylinder, ()):
-        if stroke.stands is not None:
+        if stroke.away is not None and stroke.stands is not None:
+            key = (cylinder, stroke.out, stroke.away.by.origin.place)
             for which, passes in (("leaves", stroke.leaves), ("ends", stroke.end)):
                 if passes is not None:
                     first, second = sorted((passes, stroke.stands), key=lambda event: (trace.times[event], event))
-                    yield Order((cylinder, stroke.out, which), first, second)
+                    yield Order((*key, which), first, second)
 
 
 def limit_orders(trace: Trace, text: str, start: Alternatives, end: Alternatives, begin: int) -> Iterator[Order]:
