@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from seqcheck.checks.study import Study
 from seqcheck.machine.findings import Finding, Moment, Severity
+from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
 
 
@@ -102,11 +103,15 @@ def no_omissions(studies: Sequence[Study]) -> Iterable[Sight]:
     return ()
 
 
+def nothing_to_read(machine: Machine) -> Iterable[Sight]:
+    return ()
+
+
 @dataclass(frozen=True, slots=True)
 class Check:
     """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
-    together: what none of them comes to. ``plays``: more of them, where what is asked shows in none. Any function may
-    be left out."""
+    of a part together: what none of them comes to. ``plays``: more of them, where what is asked shows in none.
+    ``reading``: what the whole machine shows as it is written, before any play. Any function may be left out."""
 
     kind: str
     severity: Severity
@@ -115,6 +120,7 @@ class Check:
     sights: Callable[[Study], Iterable[Sight]] = no_sights
     omissions: Callable[[Sequence[Study]], Iterable[Sight]] = no_omissions
     plays: Callable[[Sequence[Study]], Iterable[Study]] = no_plays
+    reading: Callable[[Machine], Iterable[Sight]] = nothing_to_read
 
     def finding(self, sight: Sight) -> Finding:
         return Finding(

@@ -41,6 +41,15 @@ class Outlook:
             },
         )
 
+    def __or__(self, other: Outlook) -> Outlook:
+        """Of two machines in one."""
+        return Outlook(
+            self.findings | other.findings,
+            self.margins | other.margins,
+            self.durations | other.durations,
+            self.handovers | other.handovers,
+        )
+
     @property
     def bounds(self) -> dict[str, tuple[int, int | None]]:
         """Least and greatest of cycles and steps."""
