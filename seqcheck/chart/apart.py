@@ -20,8 +20,8 @@ def part_shown(studied: Studied, asked: Part) -> StudiedPart:
         having = [part for part in left if name in _names(part.machine)]
         if not having and any(name in _names(part.machine) for part in studied.parts):
             raise Unplaceable(
-                f"{option}: this shares nothing with {_sequences(left[0].machine)}, which the rest asks for, so that there"
-                " is no time in common, and no chart of both"
+                f"{option}: this shares nothing with {_sequences(left[0].machine)}, which the rest asks for, so that"
+                " there is no time in common, and no chart of both"
             )
         left = having or left
     return left[0]
@@ -34,8 +34,8 @@ def left_out(studied: Studied, shown: StudiedPart) -> Iterator[str]:
         several = len(others) > 1 or "," in others[0]
         yield (
             f"Not shown: {', '.join(others)}, which {'share' if several else 'shares'} nothing with"
-            f" {_sequences(shown.machine)}, so that there is no time in common; --anchor STEP shows the sequence of that"
-            " step."
+            f" {_sequences(shown.machine)}, so that there is no time in common; --anchor STEP shows the sequence of"
+            " that step."
         )
 
 

@@ -103,7 +103,7 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
 def _spells(study: Study, rule: Never) -> Iterator[Spell]:
     alternatives = alternatives_of(rule.condition)
     held = whole_spells(study, alternatives)
-    if len(alternatives) == len(alternatives[0]) == 1:
+    if [len(one) for one in alternatives] == [1]:
         held = spells_of(study, alternatives[0][0])
     for one in held:
         yield Spell(one.begin, one.end)
