@@ -8,7 +8,8 @@ import pytest
 
 from seqcheck.chart.asked import Part, Unplaceable
 from seqcheck.chart.model import Chart
-from tests.chart.charts import CLAMP, SORTER, chart, chart_of_finding
+from seqcheck.chart.page_moves import move_times
+from tests.chart.charts import CLAMP, SORTER, chart, chart_of_finding, studied_text
 
 MS = 1000
 #: The pulse of the second sequence is too short for its valve; there is a sequence between the two of a part.
@@ -28,7 +29,7 @@ sequence lamp {
     choose { when good { step dark { dwell 60 ms } } otherwise { step pause { dwell 90 ms } } }
 }
 sequence kick {
-    step there { pulse Y2 20 ms  dwell 100 ms }
+    step there { pulse Y2 30 ms  dwell 100 ms }
     step rest { pulse Y3 50 ms  dwell 100 ms }
 }
 """
@@ -112,6 +113,17 @@ def test_only_what_concerns_the_part_is_noted(tmp_path: Path) -> None:
     uncertain = "The times hold for runs in which each finding comes about, or does not, as at typical times."
     assert uncertain not in shown(tmp_path).notes
     assert uncertain in shown(tmp_path, Part(anchor="there")).notes
+
+
+def test_the_moves_for_commissioning_are_of_all_parts(tmp_path: Path) -> None:
+    _, studied = studied_text(tmp_path, THREE)
+    moves = [move for move, _ in move_times(studied.machine, studied.studies)]
+    assert [(one.step, one.device) for one in moves] == [
+        ("main.out", "V1"),
+        ("main.back", "V1"),
+        ("kick.there", "V2"),
+        ("kick.rest", "V2"),
+    ]
 
 
 @pytest.mark.parametrize("text", [CLAMP, SORTER])
