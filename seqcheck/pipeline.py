@@ -131,7 +131,7 @@ def _report(machine: Machine, parts: Sequence[StudiedPart], proof: Proof) -> Rep
     findings = tuple(one.finding for one in proof.broken)
     times = times_of_all(machine, [times_of(part.studies, part.states) for part in parts])
     timed = side_by_side([part.states for part in parts])
-    accepted = any(one.accepted is not None and one.happens and not one.certain for one in findings)
+    accepted = any(one.accepted is not None and one.diverts and not one.certain for one in findings)
     return Report(
         file=machine.file,
         machine=machine.name,

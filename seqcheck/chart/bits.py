@@ -9,10 +9,10 @@ from collections.abc import Iterable, Iterator
 
 from seqcheck.chart.changes import Change, words
 from seqcheck.chart.model import HIGH, LOW
-from seqcheck.checks.spells_of import whole_spells
 from seqcheck.checks.study import Study
 from seqcheck.engine.conditions import alternatives_of
 from seqcheck.engine.graph import Event
+from seqcheck.engine.held import spells_of_condition
 from seqcheck.engine.trace import Effect, Read, Touch, Wait
 from seqcheck.machine.devices import FollowingSignal
 from seqcheck.machine.places import Place
@@ -24,7 +24,7 @@ def follower_starts_on(study: Study, signal: FollowingSignal) -> bool:
     edges = study.trace.edges.get(signal.name, ())
     if edges:
         return not edges[0].value
-    return any(spell.begin == 0 for spell in whole_spells(study, alternatives_of(signal.follows)))
+    return any(spell.begin == 0 for spell in spells_of_condition(study.trace, alternatives_of(signal.follows)))
 
 
 # Signals from outside -------------------------------------------------------------------------------------------

@@ -49,7 +49,7 @@ def _notes(studied: Studied, report: Report, shown: StudiedPart, window: Window)
     own = (
         one for one, behind in zip(report.findings, studied.broken, strict=True) if studied.parts[behind.part] is shown
     )
-    if any(one.happens and not one.certain for one in own):
+    if any(one.diverts and not one.certain for one in own):
         notes.append("The times hold for runs in which each finding comes about, or does not, as at typical times.")
     return tuple(notes)
 

@@ -27,10 +27,11 @@ from seqcheck.chart.page_tables import (
     steps_table,
 )
 from seqcheck.chart.wording import SAFETY
-from seqcheck.machine.findings import Duration, Report, Severity
+from seqcheck.machine.findings import Report, Severity
 from seqcheck.machine.model import Machine
-from seqcheck.report.amounts import OPEN, counted
+from seqcheck.report.amounts import ADDED_UP, OPEN, WIDE, counted
 from seqcheck.report.summary import summary_rows, verdict
+from seqcheck.report.tables import times_in
 
 JOB = (
     "What can go wrong in the timing of this sequence, how much is left before it does, and how long everything takes:"
@@ -121,14 +122,13 @@ def _sections(
         return
     yield "findings", "Findings", "", findings_section(report)
     milliseconds = "Times in milliseconds."
-    open_too = f"{milliseconds} {OPEN}: a signal from outside decides." if _has_open(report) else milliseconds
     yield "chart", "Timing chart", "", chart_sheets(charts, imprint_line(report, imprint))
     yield "commissioning", "Commissioning", MEANING, _commissioning(machine, moves)
     yield "devices", "Devices", "", columns(devices_table(machine))
     yield (
         "times",
         "Cycle and step times",
-        open_too,
+        " ".join((milliseconds, *_marks(report))),
         lines((cycles_table(report), choices_table(report), steps_table(report, machine))),
     )
     ends = "From the end of one coil, its decay included, to the start of the opposed one."
@@ -151,15 +151,19 @@ def _commissioning(machine: Machine, moves: MoveTimes) -> Markup:
     return lines((asked, element("p", *fields, class_="fields")))
 
 
-def _has_open(report: Report) -> bool:
-    times: list[Duration] = [time for _, time in (*report.cycles, *report.steps)]
-    return any(time.greatest is None for time in times)
+def _marks(report: Report) -> Iterator[str]:
+    """What stands for figures, or beside them."""
+    times = times_in(report)
+    if any(time.greatest is None for time in times):
+        yield f"{OPEN}: a signal from outside decides."
+    if not all(time.exact for time in times):
+        yield f"{WIDE}: {ADDED_UP}."
 
 
 def _proved_under(report: Report) -> str:
     """Where the times came from, what was assumed, and what the figures leave out."""
     told = [f"times from {', '.join(report.sheets)}" if report.sheets else "times from the text alone"]
     told += report.assumptions
-    if happening := sum(finding.happens for finding in report.findings):
-        told.append(f"all figures hold only for runs without {counted(happening, 'finding')} below")
+    if diverting := [finding for finding in report.findings if finding.diverts]:
+        told.append(f"all figures hold only for runs without {counted(len(diverting), 'finding')} below")
     return "; ".join(told)

@@ -8,14 +8,14 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
-from seqcheck.chart.page_markup import NOTHING, Markup, figures, name, names, table, text, words
+from seqcheck.chart.page_markup import NOTHING, Column, Markup, figures, name, names, table, text, words
 from seqcheck.compare.spelling import spelled_condition, spelled_share, spelled_watchdog
 from seqcheck.language.durations import format_duration
 from seqcheck.machine.devices import FollowingSignal, OnConditions, OnValve, Signal
 from seqcheck.machine.findings import Duration, Handover, Report
 from seqcheck.machine.model import Machine, steps_of
 from seqcheck.machine.steps import Step
-from seqcheck.report.amounts import decimals_of, milliseconds
+from seqcheck.report.amounts import BOUNDS, decimals_of, marks_of, milliseconds
 from seqcheck.report.summary import accepted_margins
 
 NEVER_LEFT = "never left"
@@ -32,37 +32,50 @@ def figures_of(times: Sequence[Duration]) -> list[list[Markup]]:
 
 
 def cycles_table(report: Report) -> Markup:
-    spans = figures_of([time for _, time in report.cycles])
-    rows = [[name(sequence), *span] for (sequence, _), span in zip(report.cycles, spans, strict=True)]
-    return table((names("sequence"), *_SPAN), rows) if rows else NOTHING
+    times = [time for _, time in report.cycles]
+    marks = marks_of(times)
+    rows = [
+        [name(sequence), *span, *map(text, mark)]
+        for (sequence, _), span, mark in zip(report.cycles, figures_of(times), marks, strict=True)
+    ]
+    return table((names("sequence"), *_SPAN, *_bounds(marks)), rows) if rows else NOTHING
 
 
 def choices_table(report: Report) -> Markup:
     """The cycles in which a choice takes one of its branches."""
     decimals = decimals_of([time for one in report.choices for time in (one.duration.least, one.duration.greatest)])
+    marks = marks_of([one.duration for one in report.choices])
     rows = [
         [
             name(one.sequence),
             text(one.way),
             *map(text, milliseconds((one.duration.least, one.duration.greatest), decimals)),
+            *map(text, mark),
         ]
-        for one in report.choices
+        for one, mark in zip(report.choices, marks, strict=True)
     ]
     columns = (names("sequence"), words("where the choice takes"), figures("least"), figures("greatest"))
-    return table(columns, rows) if rows else NOTHING
+    return table((*columns, *_bounds(marks)), rows) if rows else NOTHING
 
 
 def steps_table(report: Report, machine: Machine) -> Markup:
     """Each step from the read that enters it to the read that leaves it; one that no run leaves has no times."""
-    spans = dict(zip((step for step, _ in report.steps), figures_of([time for _, time in report.steps]), strict=True))
-    never = [text(NEVER_LEFT), NOTHING, NOTHING]
-    columns = (names("step"), words("what it does"), *_SPAN, figures("watchdog"), words("is left"))
+    steps, times = [step for step, _ in report.steps], [time for _, time in report.steps]
+    marks = marks_of(times)
+    spans = {step: [*span, *map(text, mark)] for step, span, mark in zip(steps, figures_of(times), marks, strict=True)}
+    bounds = _bounds(marks)
+    never = [text(NEVER_LEFT), NOTHING, NOTHING, *(NOTHING for _ in bounds)]
+    columns = (names("step"), words("what it does"), *_SPAN, *bounds, figures("watchdog"), words("is left"))
     rows = [
         [name(step.name), _doing(step), *spans.get(step.name, never), _watchdog(step), text(_left(step))]
         for sequence in machine.sequences
         for step in steps_of(sequence)
     ]
     return table(columns, rows) if rows else NOTHING
+
+
+def _bounds(marks: Sequence[tuple[str, ...]]) -> tuple[Column, ...]:
+    return (words(BOUNDS),) if any(marks) else ()
 
 
 def critical_path_table(report: Report) -> Markup:

@@ -9,13 +9,14 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
+from seqcheck.checks.comings import holds_at_rest, passages_before
 from seqcheck.checks.crossings import Spell, crossings
+from seqcheck.checks.held_together import together, without_breaks
 from seqcheck.checks.narrate import narrate_typical
-from seqcheck.checks.spells_of import Holds, spells_of, together, whole_spells, without_breaks
 from seqcheck.checks.study import Study
-from seqcheck.checks.wording import UNLIMITED, in_time
-from seqcheck.engine.conditions import alternatives_of
-from seqcheck.machine.conditions import TermKind, terms_of
+from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
+from seqcheck.engine.conditions import Alternatives, alternatives_of, literals_of
+from seqcheck.engine.held import Holds
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import Never
 
@@ -28,9 +29,8 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for one in alternatives:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
-        if len(alternatives) > 1 and rule.tolerated:
-            for spell in without_breaks(study, whole_spells(study, alternatives)):
-                yield from _obligation(rule, (spell,))
+        for spell in without_breaks(study, alternatives):
+            yield from _obligation(rule, (spell,))
 
 
 def _obligation(rule: Never, spells: tuple[Holds, ...]) -> Iterator[Obligation]:
@@ -67,18 +67,31 @@ def _for_good(study: Study) -> Iterator[Sight]:
     else:
         return
     for rule in study.machine.rules:
-        if isinstance(rule, Never):
-            for spell in whole_spells(study, alternatives_of(rule.condition)):
-                if spell.end is None and study.time(spell.begin) <= study.time(at):
-                    run = narrate_typical(study, spell.begin, last)
-                    # A stroke that is turned before its end may come to it at other times.
-                    certain = trace.finished or not _asks_of_cylinders(rule)
-                    message = f"`{rule.text}` is broken for good" if certain else _wording(rule).broken(UNLIMITED)
-                    yield Sight(rule.text, None, rule.place, message, run, certain=certain, at=at)
+        if not isinstance(rule, Never):
+            continue
+        alternatives = alternatives_of(rule.condition)
+        for spell in without_breaks(study, alternatives):
+            if _lasts(study, spell, at, last):
+                certain = not _changes_since(study, alternatives, at)
+                message = f"`{rule.text}` is broken for good" if certain else _wording(rule).broken(UNLIMITED)
+                run = narrate_typical(study, spell.begin, last)
+                yield Sight(rule.text, None, rule.place, message, run, certain=certain, at=at)
 
 
-def _asks_of_cylinders(rule: Never) -> bool:
-    return any(term.kind is TermKind.CYLINDER for term in terms_of(rule.condition))
+def _lasts(study: Study, spell: Holds, begin: int, end: int) -> bool:
+    """All the time between two events, the first one included."""
+    if spell.end is None:
+        return study.time(spell.begin) <= study.time(begin)
+    return study.time(spell.begin) < study.time(begin) < study.time(end) <= study.time(spell.end)
+
+
+def _changes_since(study: Study, alternatives: Alternatives, event: int) -> bool:
+    """Whether what the rule looks at changes all the same: at other times it may be otherwise in between."""
+    return any(
+        study.time(change.event) > study.time(event)
+        for literal in literals_of(alternatives)
+        for change in study.trace.changes.get(literal.aspect, ())
+    )
 
 
 def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
@@ -89,24 +102,26 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
         settled=False,
     )
     for rule in rules:
-        if rule.text not in found:
+        if rule.text not in found or not found[rule.text].begins:
             continue
-        longest = found[rule.text].greatest()
-        if longest is None:
+        longest = found[rule.text].longest()
+        if longest is None and studies[0].whole:
             yield Sight(rule.text, None, rule.place, _wording(rule).broken(UNLIMITED), certain=False)
-        elif longest > max(0, rule.tolerated):
-            margin = rule.tolerated - longest
+        elif longest is not None and longest.time > max(0, rule.tolerated):
+            margin = rule.tolerated - longest.time
             message = _wording(rule).broken(in_time(-margin))
+            message = message if longest.exact else f"{message}, {OR_LESS}"
             yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
 
 
 def _spells(study: Study, rule: Never) -> Iterator[Spell]:
     alternatives = alternatives_of(rule.condition)
-    held = whole_spells(study, alternatives)
-    if [len(one) for one in alternatives] == [1]:
-        held = spells_of(study, alternatives[0][0])
-    for one in held:
-        yield Spell(one.begin, one.end)
+    for one in without_breaks(study, alternatives):
+        last = None if one.end is None else passages_before(study, one.end, one.ended_by_read)
+        at_rest = one.begin == 0 and holds_at_rest(study, alternatives)
+        # What is so as the machine stands was so before its first state, at which all ways begin.
+        first = 0 if at_rest else passages_before(study, one.begin, one.begun_by_read) - 1
+        yield Spell(one.begin, one.end, first, last)
 
 
 CHECK = Check(

@@ -6,6 +6,7 @@ on for ever, or end, without it.
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections.abc import Collection, Sequence
 
 from seqcheck.engine.explore import Settlement
@@ -27,13 +28,12 @@ class Ways:
                 self._owner.setdefault(one.states[passage], (number, passage))
 
     def segment(self, number: int, event: int) -> Segment:
-        """The segment of a settlement in which an event lies, by typical time."""
+        """The segment of a settlement in which an event lies, by typical time; at one instant by the order in which
+        they came up."""
         one = self._settlements[number]
         times = one.trace.times
-        for passage in range(len(one.path.passages) - 1, -1, -1):
-            if times[one.path.passages[passage].at] <= times[event]:
-                return number, passage
-        return number, -1
+        at = [(times[passage.at], passage.at) for passage in one.path.passages]
+        return number, bisect_right(at, (times[event], event)) - 1
 
     def all_show(self, showing: Collection[Segment]) -> bool:
         """Whether no run avoids these segments."""

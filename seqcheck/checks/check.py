@@ -47,8 +47,10 @@ class Instead:
 class Obligation:
     """``first`` at least ``least`` microseconds before ``second``. ``step`` and ``place``: the command or exit that
     brings it about. ``lever``: the event behind which ``second`` comes and whose time the text sets, if one does.
-    ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than others do,
-    in a way that nobody plays. ``assumed``: orders that this play takes for granted, but that are in question here."""
+    ``severity``: where it is not that of the kind. ``diverts``: a run that breaks it goes on otherwise than one that
+    keeps it, and only the one or the other is played; ``stops``: it goes on no further, and is played on all the
+    same. ``as_if``: an event that the play has called off, and that is taken to have come all the same: runs in which
+    it does break it just so. ``assumed``: orders that this play takes for granted, but that are in question here."""
 
     subject: str
     step: str | None
@@ -62,6 +64,8 @@ class Obligation:
     others: tuple[tuple[int, int], ...] = ()
     severity: Severity | None = None
     diverts: bool = True
+    stops: bool = False
+    as_if: int | None = None
     instead: Instead | None = None
     assumed: tuple[tuple[int, int], ...] = ()
 
@@ -72,8 +76,9 @@ class Obligation:
 
 @dataclass(frozen=True, slots=True)
 class Sight:
-    """What a check sees without holding times against each other. ``run``: what happens at typical times, where that
-    shows it; ``at``: the event by which it has come about, None where it is there from the start."""
+    """What a check sees without holding times against each other. ``run``: what happens, where that shows it, and
+    ``replayed``: whether it came to that when it was played (as typical times always are); ``at``: the event by which
+    it has come about, None where it is there from the start; ``stops``: the run then goes on no further."""
 
     subject: str
     step: str | None
@@ -85,6 +90,8 @@ class Sight:
     at: int | None = None
     severity: Severity | None = None
     margin_us: int | None = None
+    replayed: bool = True
+    stops: bool = False
 
 
 def no_obligations(study: Study) -> Iterable[Obligation]:
@@ -92,10 +99,6 @@ def no_obligations(study: Study) -> Iterable[Obligation]:
 
 
 def no_sights(study: Study) -> Iterable[Sight]:
-    return ()
-
-
-def no_plays(studies: Sequence[Study]) -> Iterable[Study]:
     return ()
 
 
@@ -108,10 +111,22 @@ def nothing_to_read(machine: Machine) -> Iterable[Sight]:
 
 
 @dataclass(frozen=True, slots=True)
+class Together:
+    """What no play shows alone: ``plays`` that do, and ``sights`` of what it comes to over several of them."""
+
+    plays: tuple[Study, ...] = ()
+    sights: tuple[Sight, ...] = ()
+
+
+def nothing_together(studies: Sequence[Study]) -> Together:
+    return Together()
+
+
+@dataclass(frozen=True, slots=True)
 class Check:
     """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
-    of a part together: what none of them comes to. ``plays``: more of them, where what is asked shows in none.
-    ``reading``: what the whole machine shows as it is written, before any play. Any function may be left out."""
+    of a part together: what none of them comes to; ``together``: what only several of them come to. ``reading``: what
+    the whole machine shows as it is written, before any play. Any function may be left out."""
 
     kind: str
     severity: Severity
@@ -119,7 +134,7 @@ class Check:
     obligations: Callable[[Study], Iterable[Obligation]] = no_obligations
     sights: Callable[[Study], Iterable[Sight]] = no_sights
     omissions: Callable[[Sequence[Study]], Iterable[Sight]] = no_omissions
-    plays: Callable[[Sequence[Study]], Iterable[Study]] = no_plays
+    together: Callable[[Sequence[Study]], Together] = nothing_together
     reading: Callable[[Machine], Iterable[Sight]] = nothing_to_read
 
     def finding(self, sight: Sight) -> Finding:
@@ -132,7 +147,8 @@ class Check:
             place=sight.place,
             message=sight.message,
             margin_us=sight.margin_us,
-            replayed=True if sight.run else None,
+            replayed=sight.replayed if sight.run else None,
             run=sight.run,
             mend=sight.mend,
+            diverts=sight.stops,
         )

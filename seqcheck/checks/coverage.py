@@ -18,9 +18,11 @@ from seqcheck.machine.steps import Sequence as StepSequence
 
 
 def _unreachable(studies: Sequence[Study]) -> Iterator[Sight]:
-    """What only a dead end keeps from being entered is told with the dead end. Steps to which a watchdog leads are
-    there for the day on which a part fails, and no healthy machine enters them."""
-    if any(one.trace.finished and any(visit.left is None for visit in one.trace.visits) for one in studies):
+    """Nothing where runs that may enter more were not played. What only a dead end keeps from being entered is told
+    with the dead end. Steps to which a watchdog leads are there for the day on which a part fails, and no healthy
+    machine enters them."""
+    ends = (one.trace for one in studies if one.trace.finished)
+    if not studies[0].whole or any(visit.left is None for trace in ends for visit in trace.visits):
         return
     for sequence in studies[0].machine.sequences:
         known = studies[0].entered | _behind_watchdogs(sequence, studies[0].entered)

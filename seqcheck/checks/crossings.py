@@ -2,8 +2,8 @@
 
 Takes, for every play, the spells in question by the events that begin and end them (a cycle, a step, a way that a rule
 limits); gives the least and the greatest time over all ways through the graph. What lies within one run is exact; what
-is added up from run to run is safe, and exact where nothing else is under way from one to the other. Where a way leads
-round and round before the end, the greatest is open.
+is added up from run to run is safe, and exact where nothing is under way from one to the other whose time hangs on what
+came before. Where a way leads round and round before the end, the greatest is open.
 """
 
 from __future__ import annotations
@@ -26,26 +26,41 @@ Through = Callable[[Edge], bool]
 @dataclass(frozen=True, slots=True)
 class Spell:
     """From one event to another; None where the play ended before it came. ``first`` and ``last``: the passages at
-    which it begins and ends, where these are states; several states may lie at one read."""
+    which it begins and ends, where these are states; several states may lie at one read. ``under_way``: it stands for
+    those that have begun in other plays."""
 
     begin: int
     end: int | None
     first: int | None = None
     last: int | None = None
+    under_way: bool = False
 
 
 @dataclass(frozen=True, slots=True)
-class Longest:
-    """``time``, and the ``edges`` of the way that takes it, one after the other."""
+class Sum:
+    """A way that takes so much ``time``, up to the end of ``edge`` and all ``before`` it. Not ``exact``: the times of
+    its edges hang on one another. ``fixed``: none of them takes more than its least."""
 
     time: int
-    edges: tuple[Edge, ...]
+    edge: Edge
+    fixed: bool
+    before: Sum | None = None
+    exact: bool = True
+
+    @property
+    def edges(self) -> tuple[Edge, ...]:
+        """One after the other."""
+        found, one = [], self
+        while one.before is not None:
+            found.append(one.edge)
+            one = one.before
+        return (one.edge, *reversed(found))
 
 
 @dataclass(slots=True)
 class _Part:
     """What one edge adds: spells ``within`` it, from its beginning to the end of one (``closes``), from the beginning
-    of one to its end (``opens``), all of it where one ``passes``."""
+    of one to its end (``opens``), all of it where one ``passes``. Those that are not exact hang on what came before."""
 
     within: Duration | None = None
     closes: Duration | None = None
@@ -64,48 +79,57 @@ class Crossings:
             self._at.setdefault(edge[0], []).append((edge, part))
         return self.parts[edge]
 
+    @property
+    def begins(self) -> bool:
+        """Whether there is such a spell."""
+        return any(part.within is not None or part.opens is not None for part in self.parts.values())
+
     def duration(self, typical: int, through: Through | None = None) -> Duration | None:
         """None where there is no such spell."""
-        least = self.least(through)
-        return None if least is None else Duration(least, typical, self.greatest(through))
+        least, greatest = self.shortest(through), self.longest(through)
+        if least is None:
+            return None
+        if greatest is None:
+            return Duration(least.time, typical, None, least.exact)
+        return Duration(least.time, typical, greatest.time, least.exact and greatest.exact)
 
-    def least(self, through: Through | None = None) -> int | None:
+    def shortest(self, through: Through | None = None) -> Sum | None:
         """None where there is no such spell. What begins behind the choice of an edge does not go through it."""
-        found = [part.within.least for part in self.parts.values() if part.within is not None and through is None]
-        best: dict[tuple[int, bool], int] = {}
+        found = [
+            Sum(part.within.least, edge, _is_fixed(part.within))
+            for edge, part in self.parts.items()
+            if part.within is not None and through is None
+        ]
+        best: dict[tuple[int, bool], Sum] = {}
         waiting: list[tuple[int, bool]] = []
 
-        def reach(key: tuple[int, bool], time: int) -> None:
-            if time < best.get(key, time + 1):
-                best[key] = time
+        def reach(key: tuple[int, bool], one: Sum) -> None:
+            if key not in best or _shorter(one) < _shorter(best[key]):
+                best[key] = one
                 waiting.append(key)
 
         for edge, part in self.parts.items():
             if part.opens is not None:
-                reach((edge[1], through is None), part.opens.least)
+                reach((edge[1], through is None), Sum(part.opens.least, edge, _is_fixed(part.opens)))
         while waiting:
             state, passed = waiting.pop()
+            before = best[state, passed]
             for edge, part in self._from(state):
                 now = passed or (through is not None and through(edge))
                 if part.passes is not None:
-                    reach((edge[1], now), best[state, passed] + part.passes.least)
+                    reach((edge[1], now), _sum(before, part.passes.least, part.passes, edge))
                 if part.closes is not None and now:
-                    found.append(best[state, passed] + part.closes.least)
-        return min(found, default=None)
+                    found.append(_sum(before, part.closes.least, part.closes, edge))
+        return min(found, key=_shorter, default=None)
 
-    def greatest(self, through: Through | None = None) -> int | None:
-        """None where nothing limits it, or there is no such spell."""
-        longest = self.longest(through)
-        return None if longest is None else longest.time
-
-    def longest(self, through: Through | None = None) -> Longest | None:
+    def longest(self, through: Through | None = None) -> Sum | None:
         """None where nothing limits it, or there is no such spell."""
         found = [
-            _longer(None, part.within.greatest, edge)
+            _begun(part.within, edge)
             for edge, part in self.parts.items()
             if part.within is not None and through is None
         ]
-        best: dict[tuple[int, bool], Longest | None] = {}
+        best: dict[tuple[int, bool], Sum | None] = {}
         opening: dict[int, list[tuple[Edge, Duration]]] = {}
         for edge, part in self.parts.items():
             if part.opens is not None:
@@ -114,18 +138,19 @@ class Crossings:
             if state is None:
                 return None
             for edge, span in opening.get(state, ()):
-                _lengthen(best, (state, through is None), _longer(None, span.greatest, edge))
+                _lengthen(best, (state, through is None), _begun(span, edge))
             for passed in (False, True):
                 if (state, passed) not in best:
                     continue
+                before = best[state, passed]
                 for edge, part in self._from(state):
                     now = passed or (through is not None and through(edge))
                     if part.passes is not None:
-                        _lengthen(best, (edge[1], now), _longer(best[state, passed], part.passes.greatest, edge, True))
+                        _lengthen(best, (edge[1], now), _gone_on(before, part.passes, edge))
                     if part.closes is not None and now:
-                        found.append(_longer(best[state, passed], part.closes.greatest, edge, True))
+                        found.append(_gone_on(before, part.closes, edge))
         known = [one for one in found if one is not None]
-        return max(known, key=lambda one: one.time) if known and len(known) == len(found) else None
+        return max(known, key=_longer) if known and len(known) == len(found) else None
 
     def _from(self, state: int) -> Iterator[tuple[Edge, _Part]]:
         return iter(self._at.get(state, ()))
@@ -152,16 +177,39 @@ class Crossings:
                 yield state
 
 
-def _lengthen(best: dict[tuple[int, bool], Longest | None], key: tuple[int, bool], one: Longest | None) -> None:
+def _lengthen(best: dict[tuple[int, bool], Sum | None], key: tuple[int, bool], one: Sum | None) -> None:
     known = best.get(key, one)
-    best[key] = None if known is None or one is None else max(known, one, key=lambda longest: longest.time)
+    best[key] = None if known is None or one is None else max(known, one, key=_longer)
 
 
-def _longer(before: Longest | None, time: int | None, edge: Edge, behind: bool = False) -> Longest | None:
-    """A way, and one edge more; None where nothing limits the one or the other."""
-    if time is None or (behind and before is None):
-        return None
-    return Longest(time, (edge,)) if before is None else Longest(before.time + time, (*before.edges, edge))
+def _begun(span: Duration, edge: Edge) -> Sum | None:
+    return None if span.greatest is None else Sum(span.greatest, edge, _is_fixed(span))
+
+
+def _sum(before: Sum, time: int, span: Duration, edge: Edge) -> Sum:
+    """``time``, one end of ``span``, on top of what comes before: exact where the two have nothing to do with each
+    other, or one of them is always as long."""
+    fixed = _is_fixed(span)
+    exact = before.exact and (span.exact or before.fixed or fixed)
+    return Sum(before.time + time, edge, before.fixed and fixed, before, exact)
+
+
+def _gone_on(before: Sum | None, span: Duration, edge: Edge) -> Sum | None:
+    """None where nothing limits the one or the other."""
+    return None if before is None or span.greatest is None else _sum(before, span.greatest, span, edge)
+
+
+def _is_fixed(span: Duration) -> bool:
+    return span.least == span.greatest
+
+
+def _shorter(one: Sum) -> tuple[int, bool]:
+    """Of two that take as long an exact one comes first."""
+    return one.time, not one.exact
+
+
+def _longer(one: Sum) -> tuple[int, bool]:
+    return one.time, one.exact
 
 
 def crossings(
@@ -233,16 +281,19 @@ def _portions(
     at = [(trace.times[passage.at], passage.at) for passage in settlement.path.passages]
     stretches = _stretches(settlement, parts)
     asked = [
-        (name, stretch.edge, *part)
+        (name, stretch, *part)
         for name, spells in named.items()
         for spell in spells
         for stretch in stretches
         if (part := _cut(trace.times, at, stretch, spell)) is not None
     ]
     rows = greatest_separations(trace.graph, both_ways((begin, end) for _, _, _, begin, end in asked))
-    for name, edge, kind, begin, end in asked:
+    for name, stretch, kind, begin, end in asked:
         typical = trace.times[end] - trace.times[begin]
-        yield name, edge, kind, Duration(-rows[end, begin], typical, closed(rows[begin, end]))
+        goes_on = kind in ("closes", "passes") and settlement.path.passages[stretch.first].loose
+        # What all comes about behind the state has its delays to itself.
+        free = not goes_on or trace.graph.dominates(begin, end)
+        yield name, stretch.edge, kind, Duration(-rows[end, begin], typical, closed(rows[begin, end]), free)
 
 
 def _cut(
@@ -255,7 +306,7 @@ def _cut(
     if spell.end is not None:
         last = bisect_left(at, (times[spell.end], spell.end)) if spell.last is None else spell.last
     goes_on = stretch.end is None
-    begins = stretch.first <= first and (first < stretch.last or goes_on)
+    begins = not spell.under_way and stretch.first <= first and (first < stretch.last or goes_on)
     ends = spell.end is not None and stretch.first < last and (last <= stretch.last or goes_on)
     if begins and ends and spell.end is not None:
         return "within", spell.begin, spell.end
@@ -275,12 +326,12 @@ def _past_the_start(settlements: Sequence[Settlement]) -> Callable[[int], bool]:
     for one in settlements:
         for number, _, _ in one.segments():
             following.setdefault(one.states[number], set()).add(one.states[number + 1])
-    again = {state for state, ends in following.items() if state in _reached(following, ends)}
-    lasting = _reached(following, again)
+    again = {state for state, ends in following.items() if state in reached(following, ends)}
+    lasting = reached(following, again)
     return lambda begin: not again or begin in lasting
 
 
-def _reached(following: Mapping[int, set[int]], begin: set[int]) -> set[int]:
+def reached(following: Mapping[int, set[int]], begin: set[int]) -> set[int]:
     found = set(begin)
     waiting = list(found)
     while waiting:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import dataclass
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -20,18 +21,37 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         step = visit.step
         if step.dwell is None or step.until is not None or visit.left is None:
             continue
-        for cylinder, out, end in (*_strokes(study, visit), *_called_off(study, visit)):
-            wording = _wording(step, cylinder, out)
-            left = visit.left.event
-            yield Obligation(step.name, step.name, step.place, end, left, wording, lever=visit.dwell_over)
+        for move in (*_strokes(study, visit), *_called_off(study, visit)):
+            yield Obligation(
+                step.name,
+                step.name,
+                step.place,
+                move.end,
+                visit.left.event,
+                _wording(step, move),
+                lever=visit.dwell_over,
+                # What goes on otherwise where the move is not done yet is for the stroke, the shift, the sensor to say.
+                diverts=False,
+                as_if=move.reached,
+            )
 
 
-def _strokes(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
+@dataclass(frozen=True, slots=True)
+class _Move:
+    """``reached``: the valve's position that it takes for granted, where the played run has called that off."""
+
+    cylinder: str
+    out: bool
+    end: int
+    reached: int | None = None
+
+
+def _strokes(study: Study, visit: Visit) -> Iterator[_Move]:
     for stroke in study.moves_of(visit):
-        yield stroke.cylinder, stroke.out, stroke.end
+        yield _Move(stroke.cylinder, stroke.out, stroke.end)
 
 
-def _called_off(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
+def _called_off(study: Study, visit: Visit) -> Iterator[_Move]:
     """Moves that the played run has called off at the valve: when they would have been done."""
     for shift in study.shifts_of(visit):
         if shift.called_off is None:
@@ -46,12 +66,12 @@ def _called_off(study: Study, visit: Visit) -> Iterator[tuple[str, bool, int]]:
                 travel = cylinder.extend if out else cylinder.retract
                 begin = shift.asked if travel.from_coil else shift.reached
                 end = study.later(Event("mark", cylinder.name, str(WHOLE_SHARE if out else 0)), begin, travel.time)
-                yield cylinder.name, out, end
+                yield _Move(cylinder.name, out, end, shift.reached)
 
 
-def _wording(step: Step, cylinder: str, out: bool) -> Wording:
+def _wording(step: Step, move: _Move) -> Wording:
     return Wording(
-        f"{step.name} can be left {{by}} before {cylinder} is fully {'extended' if out else 'retracted'}",
+        f"{step.name} can be left {{by}} before {move.cylinder} is fully {'extended' if move.out else 'retracted'}",
         lambda by: f"a dwell of at least {round_up((step.dwell or 0) + by)} is safe",
     )
 

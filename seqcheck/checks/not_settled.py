@@ -34,13 +34,15 @@ def _not_settled(studies: Sequence[Study]) -> Iterator[Sight]:
 
 
 def _tie(machine: Machine) -> str:
-    """Which step could wait for which: the first of a sequence that asks nothing of the others."""
+    """Which step could wait for which: the first of a sequence that asks nothing of the others. To wait until it is
+    active would find it so from before; a step that is never left for another one cannot be waited for."""
     first, *others = machine.sequences
-    step = next((one.name for one in steps_of(first)), None)
+    steps = [one.name for one in steps_of(first)]
     free = [one.name for one in others if not _asks_of(machine, one.name)] or [others[0].name]
-    if step is None:
+    if len(steps) < 2:
         return "let one sequence wait for a step of the other"
-    return f"let {free[0]} wait for a step of {first.name}, say `until {step}`, once a round"
+    begins = f"say `until not {steps[0]}` and then `until {steps[0]}`"
+    return f"let {free[0]} wait once a round for a step of {first.name} to begin, {begins}"
 
 
 def _asks_of(machine: Machine, name: str) -> bool:

@@ -113,6 +113,7 @@ def _too_close(study: Study) -> Iterator[Obligation]:
                 later.on,
                 Wording(message, partial(_mend_gap, study, pair)),
                 gap,
+                diverts=False,
             )
 
 

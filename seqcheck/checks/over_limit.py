@@ -4,15 +4,17 @@ from __future__ import annotations
 
 from bisect import bisect_left
 from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
 
-from seqcheck.checks.check import Check, Obligation, Sight, Wording
-from seqcheck.checks.crossings import Longest, Spell, crossings
+from seqcheck.checks.check import Check, Obligation, Sight, Together, Wording
+from seqcheck.checks.comings import Coming, comings
+from seqcheck.checks.crossings import Crossings, Spell, Sum, crossings
 from seqcheck.checks.narrate import narrate_typical
-from seqcheck.checks.spells_of import whole_spells
 from seqcheck.checks.study import Study
 from seqcheck.checks.times import cycle_spells
-from seqcheck.checks.wording import in_time
+from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
+from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import follow, outcomes_before
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
@@ -26,7 +28,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             over = Wording(_over(rule))
             yield Obligation(rule.text, None, rule.place, spell.end, spell.begin, over, -rule.greatest, diverts=False)
             if isinstance(rule, PathLimit) and rule.least is not None:
-                under = Wording(f"`{rule.text}` can be undercut by {{by}}")
+                under = Wording(_under(rule))
                 yield Obligation(rule.text, None, rule.place, spell.begin, spell.end, under, rule.least, diverts=False)
 
 
@@ -34,6 +36,16 @@ def _over(rule: CycleLimit | PathLimit) -> str:
     if isinstance(rule, CycleLimit):
         return f"a cycle of {rule.sequence} can take {{by}} longer than {in_time(rule.greatest)}"
     return f"`{rule.text}` can be exceeded by {{by}}"
+
+
+def _unlimited(rule: CycleLimit | PathLimit) -> str:
+    if isinstance(rule, CycleLimit):
+        return _over(rule).replace("{by}", UNLIMITED)
+    return f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
+
+
+def _under(rule: PathLimit) -> str:
+    return f"`{rule.text}` can be undercut by {{by}}"
 
 
 def _spells(study: Study, rule: Rule) -> list[Spell]:
@@ -49,14 +61,29 @@ def _spells(study: Study, rule: Rule) -> list[Spell]:
 
 def _from_one_to_the_other(study: Study, rule: PathLimit) -> list[Spell]:
     """From each time that the one condition comes to hold to the next time that the other does."""
-    starts = [spell.begin for spell in whole_spells(study, alternatives_of(rule.start))]
-    ends = [spell.begin for spell in whole_spells(study, alternatives_of(rule.end))]
-    times = [study.time(event) for event in ends]
+    ends = list(comings(study, alternatives_of(rule.end)))
+    ranks = [end.rank for end in ends]
     spells = []
-    for start in starts:
-        at = bisect_left(times, study.time(start))
-        spells.append(Spell(start, ends[at] if at < len(ends) else None))
+    for start in comings(study, alternatives_of(rule.start)):
+        at = bisect_left(ranks, start.rank)
+        end = ends[at] if at < len(ends) else None
+        spells.append(_spell(start, end))
     return spells
+
+
+def _under_way(study: Study, rule: CycleLimit | PathLimit) -> Iterator[Spell]:
+    """What has begun in other plays, as it may when this one shows it nowhere: it goes on from each time that the other
+    condition comes to hold to the next."""
+    if isinstance(rule, PathLimit):
+        ends = [Coming(0, 0, (0, 0, False)), *comings(study, alternatives_of(rule.end))]
+        for end, following in zip(ends, (*ends[1:], None), strict=True):
+            yield replace(_spell(end, following), under_way=True)
+
+
+def _spell(start: Coming, end: Coming | None) -> Spell:
+    if end is None:
+        return Spell(start.event, None, start.passages - 1)
+    return Spell(start.event, end.event, start.passages - 1, end.passages)
 
 
 def _never_comes(study: Study) -> Iterator[Sight]:
@@ -77,47 +104,80 @@ def _never_comes(study: Study) -> Iterator[Sight]:
             for spell in _spells(study, rule):
                 if spell.end is None and study.time(spell.begin) <= until:
                     run = narrate_typical(study, spell.begin, last)
-                    message = f"`{rule.text}` can be exceeded: once the one has come, the other may never come"
-                    yield Sight(rule.text, None, rule.place, message, run, at=last)
+                    yield Sight(rule.text, None, rule.place, _unlimited(rule), run, at=last)
                     break
 
 
-def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
-    """Where no play shows all of it in one: added up along the ways through the state graph."""
-    for rule, longest in _longest(studies):
-        if longest.time > rule.greatest:
-            message = _over(rule).replace("{by}", in_time(longest.time - rule.greatest))
-            margin = rule.greatest - longest.time
-            yield Sight(rule.text, None, rule.place, message, certain=False, margin_us=margin)
+@dataclass(frozen=True, slots=True)
+class _Extreme:
+    """The way through the state graph that takes longest, or shortest, of all that a rule limits; ``margin_us``: how
+    much is left of the limit, and what to ``say`` where nothing is."""
+
+    rule: CycleLimit | PathLimit
+    way: Sum
+    margin_us: int
+    say: str
+
+    @property
+    def message(self) -> str:
+        told = self.say.replace("{by}", in_time(-self.margin_us))
+        return told if self.way.exact else f"{told}, {OR_LESS}"
 
 
-def _longest(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Longest]]:
+def _over_several_runs(studies: Sequence[Study]) -> Together:
+    """Where no play shows all of it in one: added up along the ways through the state graph, and played."""
+    found = list(_crossings(studies))
+    extremes = [extreme for rule, crossed in found for extreme in _extremes(rule, crossed)]
+    plays = {outcomes: passages for one in extremes for outcomes, passages in _to_play(studies, one.way)}
+    machine = studies[0].machine
+    return Together(
+        tuple(studies[0].alike(follow(machine, outcomes, passages)) for outcomes, passages in plays.items()),
+        (
+            *(
+                Sight(one.rule.text, None, one.rule.place, one.message, certain=False, margin_us=one.margin_us)
+                for one in extremes
+                if one.margin_us < 0
+            ),
+            *(
+                Sight(rule.text, None, rule.place, _unlimited(rule), certain=False)
+                for rule, crossed in found
+                if crossed.begins and crossed.longest() is None and studies[0].whole
+            ),
+        ),
+    )
+
+
+def _crossings(studies: Sequence[Study]) -> Iterator[tuple[CycleLimit | PathLimit, Crossings]]:
     rules = [rule for rule in studies[0].machine.rules if isinstance(rule, CycleLimit | PathLimit)]
-    plays = [(study.settlement, {rule.text: _spells(study, rule) for rule in rules}) for study in studies]
-    found = crossings(plays, settled=False)
+    plays = [
+        (study.settlement, {rule.text: [*_spells(study, rule), *_under_way(study, rule)] for rule in rules})
+        for study in studies
+    ]
+    found = crossings(plays, settled=False) if rules else {}
     for rule in rules:
-        longest = found[rule.text].longest() if rule.text in found else None
-        if longest is not None:
-            yield rule, longest
+        if rule.text in found:
+            yield rule, found[rule.text]
 
 
-def _longest_ways(studies: Sequence[Study]) -> list[Study]:
-    """For what a rule limits the way that takes longest, played in one, where no play has shown it."""
-    found: dict[tuple[object, ...], Study] = {}
-    for _, longest in _longest(studies):
-        begin = longest.edges[0][0]
-        owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
-        owner = next(owners, None)
-        if owner is None:
-            continue  # Only a play that turns an order comes there, and what it draws cannot be drawn in another.
+def _extremes(rule: CycleLimit | PathLimit, crossed: Crossings) -> Iterator[_Extreme]:
+    longest, shortest = crossed.longest(), crossed.shortest()
+    if longest is not None:
+        yield _Extreme(rule, longest, rule.greatest - longest.time, _over(rule))
+    if shortest is not None and isinstance(rule, PathLimit) and rule.least is not None:
+        yield _Extreme(rule, shortest, shortest.time - rule.least, _under(rule))
+
+
+def _to_play(studies: Sequence[Study], way: Sum) -> Iterator[tuple[tuple[Outcome, ...], int]]:
+    """How the choices come out on this way, and through how many states it goes, where no play has shown it in one."""
+    edges = way.edges
+    begin = edges[0][0]
+    owners = (one.settlement for one in studies if begin in one.settlement.states and not one.settlement.delays)
+    owner = next(owners, None)
+    chosen = [edge[2] for edge in edges if edge[2] is not None]
+    # Where only a play that turns an order comes there, what it draws cannot be drawn in another.
+    if owner is not None and len(edges) > 1 and chosen:
         before = owner.states.index(begin)
-        chosen = [edge[2] for edge in longest.edges if edge[2] is not None]
-        if len(longest.edges) > 1 and chosen:
-            outcomes = (*outcomes_before(owner.path, before), *chosen)
-            passages = before + 4 * len(longest.edges) + 4
-            if outcomes not in found:
-                found[outcomes] = studies[0].alike(follow(studies[0].machine, outcomes, passages))
-    return list(found.values())
+        yield (*outcomes_before(owner.path, before), *chosen), before + 4 * len(edges) + 4
 
 
 CHECK = Check(
@@ -126,6 +186,5 @@ CHECK = Check(
     "a cycle or a way takes longer, or shorter, than it may",
     _obligations,
     _never_comes,
-    omissions=_over_several_runs,
-    plays=_longest_ways,
+    together=_over_several_runs,
 )

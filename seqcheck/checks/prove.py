@@ -65,7 +65,8 @@ class _Seen:
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
     """Prove every play of a part, and put the results together. A margin that holds, but leaves less than
     ``reserve_us``, is a finding too."""
-    played = [*studies, *(more for check in checks for more in check.plays(studies))]
+    together = [(check, check.together(studies)) for check in checks]
+    played = [*studies, *(more for _, one in together for more in one.plays)]
     ways = Ways([study.settlement for study in played])
     by_key: dict[_Key, list[_Seen]] = {}
     margins: dict[_Key, Margin] = {}
@@ -80,14 +81,14 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
             margins[key] = min(margins.get(key, margin), margin, key=by_margin)
     broken = [_one_of(found, ways) for found in by_key.values()]
     found = {_key(one.finding): number for number, one in enumerate(broken)}
-    for check in checks:
-        for sight in check.omissions(studies):
-            finding = check.finding(sight)
-            if _key(finding) in found:
-                number = found[_key(finding)]
-                broken[number] = _at_least_as_bad(broken[number], finding)
-            else:
-                broken.append(Broken(finding, None))
+    whole = [check.finding(sight) for check, one in together for sight in one.sights]
+    whole += [check.finding(sight) for check in checks for sight in check.omissions(studies)]
+    for finding in whole:
+        if _key(finding) in found:
+            number = found[_key(finding)]
+            broken[number] = _at_least_as_bad(broken[number], finding)
+        else:
+            broken.append(Broken(finding, None))
     return Proof(tuple(broken), tuple(margins.values()), strays)
 
 
@@ -110,14 +111,15 @@ def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
         (seen.broken for seen in found),
         key=lambda one: (
             _is_thin(one),
-            one.finding.replayed is False,
+            one.finding.replayed is not True,
             one.finding.margin_us is not None,
             one.finding.margin_us or 0,
         ),
     )
     shown = frozenset(segment for seen in found for segment in seen.shown)
     certain = bool(shown) and ways.all_show(shown)
-    return replace(best, finding=replace(best.finding, certain=certain))
+    diverts = any(seen.broken.finding.diverts for seen in found)
+    return replace(best, finding=replace(best.finding, certain=certain, diverts=diverts))
 
 
 def _is_thin(one: Broken) -> bool:
@@ -137,8 +139,9 @@ def _prove_one(
     since = study.settlement.fresh_since
     stated = [(check, one) for check in checks for one in check.obligations(study) if _is_fresh(study, one, since)]
     rows = _rows(study, [one for _, one in stated])
-    turn = _turning_point(study, (one for _, one in stated), rows)
+    turns = _turns(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
+    diverting: set[_Key] = set()
     shown: dict[_Key, set[Segment]] = {}
     for check, obligation in stated:
         one = _best_pair(obligation, rows)
@@ -146,10 +149,14 @@ def _prove_one(
         key = (check.kind, one.subject, one.step, one.place)
         if key not in tightest or margin < tightest[key][2]:
             tightest[key] = (check, one, margin)
-        if _always_broken(one, rows) and (turn is None or study.time(one.first) <= turn):
+        if margin < 0 and (one.stops or (one.diverts and not _always_broken(one, rows))):
+            diverting.add(key)
+        if _always_broken(one, rows) and _comes_before(study, one, turns):
             shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
     seen = [
-        _Seen(_broken(study, *found), frozenset(shown.get(key, ()))) for key, found in tightest.items() if found[2] < 0
+        _Seen(_broken(study, *found, key in diverting), frozenset(shown.get(key, ())))
+        for key, found in tightest.items()
+        if found[2] < 0
     ]
     seen += [
         _Seen(Broken(_thin(study, *found, reserve_us), None))
@@ -158,13 +165,13 @@ def _prove_one(
     ]
     for check in checks:
         for sight in check.sights(study):
-            shows = sight.certain and turn is None
+            shows = sight.certain and not turns
             at = segment_of(sight.at) if sight.at is not None else (segment_of(0)[0], -1)
             seen.append(_Seen(Broken(check.finding(sight), None), frozenset({at} if shows else ())))
     margins = (
         Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
     )
-    return _ProofOfOne(tuple(seen), tuple(margins), turn is not None)
+    return _ProofOfOne(tuple(seen), tuple(margins), bool(turns))
 
 
 def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
@@ -198,22 +205,25 @@ def _always_broken(one: Obligation, rows: Rows) -> bool:
     return rows[one.first, one.second] < one.least
 
 
-def _turning_point(study: Study, obligations: Iterable[Obligation], rows: Rows) -> int | None:
-    """The typical time at which the played run first breaks what other runs keep: nothing that it comes to afterwards
-    is certain. None where it never does."""
-    return min(
-        (
-            study.time(one.second)
-            for one in obligations
-            if one.diverts
-            and study.time(one.first) + one.least > study.time(one.second)
-            and rows[one.first, one.second] >= one.least
-        ),
-        default=None,
-    )
+def _turns(study: Study, obligations: Iterable[Obligation], rows: Rows) -> list[Obligation]:
+    """What the played run breaks and other runs keep: from there on they go otherwise, and nothing is certain."""
+    return [
+        one
+        for one in obligations
+        if one.diverts
+        and study.time(one.first) + one.least > study.time(one.second)
+        and rows[one.first, one.second] >= one.least
+    ]
 
 
-def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
+def _comes_before(study: Study, one: Obligation, turns: Sequence[Obligation]) -> bool:
+    """Whether it shows that this is broken, as it does once the second event comes, before any run goes otherwise than
+    the played one: such a run keeps what that breaks, and comes to its first event."""
+    pairs = [(turn.first, one.second) for turn in turns if turn.first != one.as_if]
+    return all(separation <= 0 for separation in greatest_separations(study.trace.graph, pairs).values())
+
+
+def _broken(study: Study, check: Check, one: Obligation, margin: int, diverts: bool) -> Broken:
     with study.trace.graph.not_assuming(one.assumed):
         run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
@@ -231,6 +241,7 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
         replayed=_shows(study, check, one, run),
         run=narrate(study, run, one.instead),
         mend=None if mend is None or shown is None else mend(_needed(study, one, -shown)),
+        diverts=diverts,
     )
     return Broken(finding, run, study.settlement)
 

@@ -2,18 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
+from seqcheck.checks.chases import Chase
 from seqcheck.checks.check import Check, Sight
 from seqcheck.checks.choice_race import choice_name
-from seqcheck.checks.narrate import narrate_typical
+from seqcheck.checks.narrate import narrate, narrate_typical
 from seqcheck.checks.study import Study
-from seqcheck.engine.bounds import both_ways, greatest_separations
+from seqcheck.engine.explore import replay
 from seqcheck.engine.trace import Choice, Trace, Visit, Wait
+from seqcheck.engine.witness import witness
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.findings import Moment, Severity
 from seqcheck.machine.model import steps_of
 from seqcheck.machine.places import Place
+from seqcheck.machine.steps import Step
+
+_MEND = "let one of the steps wait for a sensor or dwell, or give the controller its scan time"
 
 
 def _dead_ends(study: Study) -> Iterator[Sight]:
@@ -43,7 +48,7 @@ def _dead_ends(study: Study) -> Iterator[Sight]:
         waits = ", ".join(_missing(study, wait)) or "its exit"
         message = f"{name} is never left: it waits for {waits}, and {more}{never}"
         run = narrate_typical(study, wait.entered.event, last)
-        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last)
+        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last, stops=True)
 
 
 def _who(wait: Wait) -> tuple[str, Place]:
@@ -80,33 +85,54 @@ def _missing(study: Study, wait: Wait) -> Iterator[str]:
 
 
 def _endless(study: Study) -> Iterator[Sight]:
-    """Steps without end at one instant, or a whole cycle that can go by in no time, waiting for nobody outside."""
-    trace, settlement = study.trace, study.settlement
-    if trace.endless:
-        yield _chase(study, trace.visits[-1] if trace.visits else None, True, ())
-        return
-    for number in range(settlement.first, settlement.last):
-        begin, end = trace.cycles[number].event, trace.cycles[number + 1].event
-        visits = [visit for visit in trace.visits if visit.cycle == number]
-        if any(visit.signals for visit in visits):
-            continue
-        rows = greatest_separations(trace.graph, both_ways([(begin, end)]))
-        if rows[end, begin] >= 0:
-            yield _chase(study, visits[0], rows[begin, end] <= 0, narrate_typical(study, begin, end))
-            return
+    """Steps without end at one instant, or a way that can come round again in no time, waiting for nobody outside."""
+    if study.trace.endless:
+        yield _without_end(study)
+    for chase in study.chases:
+        numbers = [one.number for one in chase.runs if one.settlement is study.settlement]
+        shown = _shown_round(study, chase, numbers)
+        for number in numbers:
+            run, replayed = shown if number == numbers[0] else ((), True)
+            yield _steps_chase(chase.step, chase.certain, study.settlement.path.passages[number].at, run, replayed)
 
 
-def _chase(study: Study, visit: Visit | None, certain: bool, run: tuple[Moment, ...]) -> Sight:
-    """``visit``: one of those that chase each other; None where the sequence has no step that it ever enters."""
-    sequence = study.machine.sequences[0]
-    if visit is None:
-        place, subject, step = sequence.place, sequence.name, None
-        message = f"sequence {sequence.name} has no step that it ever enters"
-    else:
-        place, subject, step = visit.step.place, visit.step.name, visit.step.name
-        message = f"steps follow one another without time passing, {subject} among them"
-    mend = "let one of the steps wait for a sensor or dwell, or give the controller its scan time"
-    return Sight(subject, step, place, message, run, mend, certain)
+def _shown_round(study: Study, chase: Chase, numbers: Sequence[int]) -> tuple[tuple[Moment, ...], bool]:
+    """A whole round in no time and whether that was really played; nothing where the play shows no such round."""
+    states, passages = study.settlement.states, study.settlement.path.passages
+    for last in (number + 1 for number in numbers):
+        first = last - 1
+        while first > 0 and states[first] != states[last] and states[first] in chase.states:
+            first -= 1
+        if states[first] == states[last]:
+            begin, end = passages[first].at, passages[last].at
+            if study.time(begin) == study.time(end):
+                return narrate_typical(study, begin, end), True
+            run = witness(study.trace, begin, end)
+            entered = [
+                again.trace.times[visit.entered.event]
+                for again in [replay(study.machine, study.settlement, run)]
+                for visit in again.trace.visits
+                if visit.step is chase.step
+            ]
+            return narrate(study, run), len(set(entered)) < len(entered)
+    return (), True
+
+
+def _without_end(study: Study) -> Sight:
+    """A sequence that began anew at the last read and came to no step, or steps at ever new reads."""
+    trace = study.trace
+    last = trace.reads[-1]
+    entered = {visit.step.name.split(".", 1)[0] for visit in last.entered}
+    for sequence in study.machine.sequences:
+        if trace.rounds[sequence.name][-1] is last and sequence.name not in entered:
+            message = f"sequence {sequence.name} goes round and round at one read and enters no step"
+            return Sight(sequence.name, None, sequence.place, message, mend=_MEND, at=last.event, stops=True)
+    return _steps_chase(trace.visits[-1].step, True, last.event)
+
+
+def _steps_chase(step: Step, certain: bool, at: int, run: tuple[Moment, ...] = (), replayed: bool = True) -> Sight:
+    message = f"steps follow one another without time passing, {step.name} among them"
+    return Sight(step.name, step.name, step.place, message, run, _MEND, certain, at, replayed=replayed, stops=True)
 
 
 DEAD_END = Check("dead-end", Severity.ERROR, "nothing can happen any more", sights=_dead_ends)

@@ -12,7 +12,8 @@ from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
-from seqcheck.engine.bounds import causes_since, greatest_separation
+from seqcheck.checks.chases import Chase, chases_of
+from seqcheck.engine.bounds import causes_since
 from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
 from seqcheck.engine.timeline import Draw, typical
@@ -41,14 +42,16 @@ class Study:
         entered: frozenset[str] = frozenset(),
         left: frozenset[str] = frozenset(),
         whole: bool = True,
+        chases: Sequence[Chase] = (),
     ) -> None:
         """``draw``: how the delays of the events that the study adds are drawn. ``entered``: the steps that any play
-        has entered; ``left``: those that any play has left; ``whole``: all
-        ways were played, and come round."""
+        has entered; ``left``: those that any play has left; ``whole``: all ways were played, and come round;
+        ``chases``: where any play can go round without time passing."""
         self.machine = machine
         self.entered = entered
         self.left = left
         self.whole = whole
+        self.chases = chases
         self._draw = draw
         self.settlement = settlement
         self.trace = settlement.trace
@@ -56,7 +59,7 @@ class Study:
 
     def alike(self, settlement: Settlement) -> Study:
         """A study of another play of the same machine."""
-        return Study(self.machine, settlement, self._draw, self.entered, self.left, self.whole)
+        return Study(self.machine, settlement, self._draw, self.entered, self.left, self.whole, self.chases)
 
     def time(self, event: int) -> int:
         """The typical time of an event, in microseconds from the start."""
@@ -65,8 +68,9 @@ class Study:
     # Events that only obligations need -------------------------------------------------------------------------
 
     def comes(self, event: int) -> bool:
-        """Whether an event really came in the play; those that the study adds do."""
-        return event >= self._played or event in self.trace.happened
+        """Whether an event really came in the play; those that the study adds do. (A read of several causes comes with
+        the last of them.)"""
+        return event >= self._played or event in self.trace.happened or event in self.reads_by_event
 
     def later(self, event: Event, cause: int, span: Span, delay: DelayName | None = None) -> int:
         """The moment this long after another one; ``delay`` is its name where the machine draws it."""
@@ -191,14 +195,6 @@ class Study:
         """The stroke, if any, in which the piston comes to this mark or leaves this end."""
         return self._strokes_by_event.get(event, [])
 
-    def can_be_turned_before(self, cylinder: str, end: int) -> bool:
-        """Whether some runs turn a stroke right round before it ends as the played one does at this event."""
-        for stroke in self.strokes_through(end):
-            following = self.trace.strokes_of[cylinder][stroke.number + 1 : stroke.number + 2]
-            if stroke.end == end and stroke.away is not None and following and following[0].shift is stroke.away:
-                return greatest_separation(self.trace.graph, stroke.away.reached, end) > 0
-        return False
-
     @cached_property
     def _seen_edges(self) -> dict[str, list[Edge]]:
         return {
@@ -307,4 +303,5 @@ def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
     entered = frozenset(visit.step.name for visit in visits)
     left = frozenset(visit.step.name for visit in visits if visit.left is not None)
     whole = graph.complete and all(one.settled for one in graph.settlements)
-    return [Study(machine, settlement, typical, entered, left, whole) for settlement in graph.settlements]
+    chases = chases_of(machine, graph.settlements)
+    return [Study(machine, settlement, typical, entered, left, whole, chases) for settlement in graph.settlements]

@@ -57,6 +57,7 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None) -> Iterator[Ob
         _wording(name, watchdog, isinstance(wait, Choice)),
         severity=Severity.WARNING if watchdog.target is not None else None,
         diverts=watchdog.target is None,
+        stops=watchdog.target is None,
         others=others,
         assumed=tuple(pair for pair in study.trace.graph.assumed if expires in pair),
     )

@@ -71,10 +71,10 @@ def _shown(
     typical: Callable[[Study, str], int | None],
 ) -> Iterator[tuple[str, Duration]]:
     for name in names:
-        if name in found and (least := found[name].least()) is not None:
+        if name in found and (duration := found[name].duration(0)) is not None:
             times = (typical(study, name) for study in studies)
-            usual = next((time for time in times if time is not None), least)
-            yield name, Duration(least, max(least, usual), found[name].greatest())
+            usual = next((time for time in times if time is not None), duration.least)
+            yield name, replace(duration, typical=max(duration.least, usual))
 
 
 def _choices(machine: Machine, timed: TimedStates, cycles: Mapping[str, Crossings]) -> Iterator[ChoiceTime]:

@@ -6,6 +6,8 @@ from seqcheck.language.durations import format_duration
 
 #: Where nothing limits it.
 UNLIMITED = "an unlimited time"
+#: Where a time is more than can be, perhaps.
+OR_LESS = "or less or not at all: it is added up over states with something under way"
 
 
 def in_time(time_us: int) -> str:

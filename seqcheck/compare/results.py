@@ -158,7 +158,8 @@ def _duration_changes(
     before, after = dict(old), dict(new)
     for name in dict.fromkeys((*after, *before)):
         was, now = before.get(name), after.get(name)
-        if was != now:
+        # Whether they are exact tells nothing of the machine; reports of before that was said do not know.
+        if was is None or now is None or replace(was, exact=now.exact) != now:
             yield DurationChange(name, was, now, False)
 
 

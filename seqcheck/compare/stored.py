@@ -108,7 +108,7 @@ def _choice(one: Any, file: str) -> ChoiceTime:
         _get(one, "sequence", str),
         Place(file, line, 1, line, 1),
         _get(one, "way", str),
-        Duration(least, least, _get(one, "max_us", int, None)),
+        Duration(least, least, _get(one, "max_us", int, None), _is_exact(one)),
     )
 
 
@@ -117,7 +117,13 @@ def _durations(named: dict[str, Any]) -> tuple[tuple[str, Duration], ...]:
 
 
 def _duration(one: Any) -> Duration:
-    return Duration(_get(one, "min_us", int), _get(one, "typical_us", int), _get(one, "max_us", int, None))
+    greatest = _get(one, "max_us", int, None)
+    return Duration(_get(one, "min_us", int), _get(one, "typical_us", int), greatest, _is_exact(one))
+
+
+def _is_exact(one: Any) -> bool:
+    """Reports of before this was said have no such key."""
+    return bool(_get(one, "exact", bool)) if "exact" in one else True
 
 
 def _place(one: Any, file: str) -> Place:

@@ -182,9 +182,13 @@ class Controller:
         self._let_signals_go(wait, read)
 
     def _let_signals_go(self, wait: Wait, read: Read) -> None:
-        """A signal from outside stays until every step that waits for it is left."""
+        """A signal from outside stays until every step that waits for it is left; it has been on, if only for the read
+        that sees it."""
         if not wait.signals:
             return
+        for literal, (_, seen) in wait.signals.items():
+            if literal.wanted and seen in self._timeline.happened:
+                self._read_signal(literal.term.subject, seen)
         for name, seen in {(literal.term.subject, seen) for literal, (_, seen) in wait.signals.items()}:
             self._awaited[seen] -= 1
             if not self._awaited[seen]:

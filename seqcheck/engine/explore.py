@@ -233,7 +233,7 @@ def follow(machine: Machine, outcomes: Sequence[Outcome], passages: int) -> Sett
     player = follower.player = Player(machine, follower)
     trace = player.play()
     Orders(machine).assume(trace, 0, 0, max(trace.times) + 1)
-    return Settlement(trace, Recipe(Way(tuple(outcomes)), {}), {}, Path(), False, 0, len(trace.cycles) - 1)
+    return Settlement(trace, Recipe(Way(tuple(outcomes)), {}), {}, follower.path, False, 0, len(trace.cycles) - 1)
 
 
 class _Follower:
@@ -241,21 +241,23 @@ class _Follower:
 
     def __init__(self, outcomes: Sequence[Outcome], passages: int) -> None:
         self.player: Player | None = None
+        self.path = Path()
         self._outcomes = list(outcomes)
         self._passages = passages
 
     def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
-        self._count()
         wanted = self._outcomes.pop(0) if self._outcomes else outcomes[0]
-        return wanted if wanted in outcomes else outcomes[0]
+        outcome = wanted if wanted in outcomes else outcomes[0]
+        self._pass(Passage(choice.entered.event, (), None, choice, tuple(outcomes), outcome))
+        return outcome
 
     def round_begins(self, read: Read, sequence: str) -> None:
-        self._count()
+        self._pass(Passage(read.event, (), sequence))
 
     def step_comes_again(self, read: Read, step: str) -> None:
-        self._count()
+        self._pass(Passage(read.event, (), step=step))
 
-    def _count(self) -> None:
-        self._passages -= 1
-        if self._passages < 0 and self.player is not None:
+    def _pass(self, passage: Passage) -> None:
+        self.path.passages.append(passage)
+        if len(self.path.passages) > self._passages and self.player is not None:
             self.player.stop()

@@ -13,8 +13,9 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
+from typing import NamedTuple
 
-from seqcheck.engine.bounds import both_ways, greatest_separations
+from seqcheck.engine.bounds import both_ways, greatest_separations, is_open
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.order import Order
 from seqcheck.engine.orders import Orders, Waits
@@ -24,6 +25,26 @@ from seqcheck.machine.model import Machine, items_of
 from seqcheck.machine.steps import Choose, Jump, Step
 
 Signature = tuple[object, ...]
+
+
+class UnderWay(NamedTuple):
+    """What is to come at a state, or ``came`` but may yet come later in other runs: how much later than the state it
+    can be at the ``latest``, and how much ``before`` it, microseconds."""
+
+    came: bool
+    what: str
+    subject: str
+    detail: str
+    latest: int
+    before: int
+
+    @property
+    def loose(self) -> bool:
+        """Whether it comes earlier or later behind the state as times have gone before it. (What may come at any time
+        may do so whatever has been before.)"""
+        free = is_open(self.latest) and self.before >= 0
+        return self.latest > 0 and self.latest != -self.before and not free
+
 
 #: Prefers one of the outcomes of a choice that nothing else decides.
 Prefer = Callable[[Choice, Sequence[Outcome]], Outcome]
@@ -60,6 +81,12 @@ class Passage:
     outcomes: tuple[Outcome, ...] = ()
     outcome: Outcome | None = None
     step: str | None = None
+    under_way: tuple[UnderWay, ...] = ()
+
+    @property
+    def loose(self) -> bool:
+        """Whether how long anything takes from here hangs on how long it took to come here."""
+        return any(one.loose for one in self.under_way)
 
 
 @dataclass(slots=True)
@@ -136,7 +163,8 @@ class Scout:
         assert player is not None
         index = len(path.passages)
         self._assume_orders(player.trace, player.trace.times[passage.at])
-        passage.signature = (where, player.state, self._under_way(player, passage.at))
+        passage.under_way = self._under_way(player, passage.at)
+        passage.signature = (where, player.state, passage.under_way)
         path.passages.append(passage)
         if path.last is not None:
             if index >= path.last:
@@ -197,7 +225,7 @@ class Scout:
         at = [trace.times[passage.at] for passage in self.path.passages[-_LATE:]]
         return (at[0] if len(at) == _LATE else 0), (at[-1] if at else 0)
 
-    def _under_way(self, player: Player, at: int) -> tuple[object, ...]:
+    def _under_way(self, player: Player, at: int) -> tuple[UnderWay, ...]:
         """What is still to come, and what may yet come later than the state, by when that is."""
         graph, times = player.trace.graph, player.timeline.times
         pending = player.timeline.pending
@@ -212,7 +240,7 @@ class Scout:
         self._seen_events = len(times)
         return tuple(
             sorted(
-                (
+                UnderWay(
                     number in player.timeline.happened,
                     graph.events[number].what,
                     graph.events[number].subject,

@@ -3,7 +3,8 @@
 Takes a trace and a window of its time; gives the pairs of events that came in one order and would lead elsewhere in the
 other: the end of a pulse against another command of its coil, the ends of two commands that hold a coil together, the
 alternatives of a condition of which the first to hold counts, a watchdog that leads to another step against what it
-waits for, and what a choice asks against the read at which it is taken.
+waits for, what a choice asks against the read at which it is taken, and what makes true the conditions between which a
+rule limits the time.
 """
 
 from __future__ import annotations
@@ -14,7 +15,16 @@ from itertools import pairwise
 from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.branches import Branches
 from seqcheck.engine.choice_orders import choice_orders
-from seqcheck.engine.condition_orders import condition_orders, driven, followed, reached_positions
+from seqcheck.engine.condition_orders import (
+    condition_orders,
+    driven,
+    followed,
+    limit_orders,
+    limited,
+    reached_positions,
+    stroke_orders,
+    watched,
+)
 from seqcheck.engine.order import Order
 from seqcheck.engine.trace import Choice, Effect, Touch, Trace, Visit, Wait
 from seqcheck.engine.wait_orders import alarm_orders, visit_orders
@@ -47,6 +57,8 @@ class Orders:
         self._branches = Branches(machine)
         self._followed = list(followed(machine))
         self._driven = list(driven(machine))
+        self._limited = list(limited(machine))
+        self._watched = watched(machine)
 
     def open(self, trace: Trace, since: int, begin: int, end: int, waits: Waits | None = None) -> list[Order]:
         """Those whose second event came from ``begin`` to before ``end`` and that can be the other way round. What was
@@ -80,6 +92,10 @@ class Orders:
                 yield from alarm_orders(trace, choice, ("choose", choice.choose.place))
         for name, condition in self._followed:
             yield from condition_orders(trace, trace.changes, name, condition, begin)
+        for cylinder in self._watched:
+            yield from stroke_orders(trace, cylinder)
+        for text, start, goal in self._limited:
+            yield from limit_orders(trace, text, start, goal, begin)
         if self._driven:
             reached = reached_positions(self._machine, trace, self._driven)
             for name, condition in self._driven:

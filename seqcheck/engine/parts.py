@@ -14,6 +14,10 @@ what a shared read has in common (its round) is drawn within the same span. What
 holds against each other lies within one part. Its greatest separation there is that of the whole machine, to the
 microsecond.
 
+All of that is so while time goes on. Steps that chase each other without time passing, which only a controller that
+takes no time lets them do, would bring all sequences to a stand; that is a finding, and the others are told as they are
+once it is mended.
+
 A controller is no tie: the wait for a read is drawn for each change that is seen, not for a clock that all changes have
 in common. An ``io`` island is none: its update is drawn for each change of an input, and for each write, which is that
 of one read, so that parts would have an update in common only where they have the read.

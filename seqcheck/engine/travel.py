@@ -106,7 +106,7 @@ class Travel:
         plan: list[Reach] = []
         for number, mark in enumerate(marks[:passed]):
             anywhere = Part(START, self._up_to(latest[number], stood, mark))
-            chain = (Part(number - 1, self._step(marks[number - 1], mark)),) if number else ()
+            chain = (Part(number - 1, NO_TIME),) if number else ()
             plan.append(Reach(mark, (*chain, anywhere)))
         whole = self._whole(marks[passed - 1] if passed else behind, ahead)
         last_stretch = Part(START, self._up_to(whole, stood, ahead), drawn=True)

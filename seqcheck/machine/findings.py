@@ -35,7 +35,9 @@ class Finding:
     """``margin_us`` is negative where something breaks by so much, None where no time is involved or where an
     outside wait leaves it open. ``replayed`` is None where there is no run to play. ``certain``: every timing
     shows it. ``mend`` says what would put it right. ``accepted``: the reason that the text gives for living with it;
-    then it is shown, but does not count. ``source`` is the line of text at ``place``, None where nobody has it."""
+    then it is shown, but does not count. ``source`` is the line of text at ``place``, None where nobody has it.
+    ``diverts``: runs that show it go on otherwise than what was played, or no further, so that other figures of the
+    report hold only for runs without it."""
 
     kind: str
     severity: Severity
@@ -50,12 +52,11 @@ class Finding:
     mend: str | None
     accepted: str | None = None
     source: str | None = None
+    diverts: bool = False
 
     @property
     def happens(self) -> bool:
-        """Whether it comes about in a run; what is left out, or merely thin, does not. Where it is only possible, the
-        other figures of a report hold for the runs in which it comes about, or does not, as it does at typical times.
-        """
+        """Whether it comes about in a run; what is left out, or merely thin, does not."""
         return self.severity is Severity.ERROR or bool(self.run)
 
 
@@ -85,16 +86,19 @@ class Handover:
 
 @dataclass(frozen=True, slots=True)
 class Duration:
-    """``greatest`` is None where an outside signal, or a way that can go back again and again, leaves it open."""
+    """``greatest`` is None where an outside signal, or a way that can go back again and again, leaves it open. Not
+    ``exact``: added up from pieces of which one hangs on the other, so that no run is shorter or longer, but maybe
+    none is as short or as long, either."""
 
     least: int
     typical: int
     greatest: int | None
+    exact: bool = True
 
     def widened(self, other: Duration) -> Duration:
         """From the least of both to the greatest of both; typical as this one."""
         greatest = None if self.greatest is None or other.greatest is None else max(self.greatest, other.greatest)
-        return Duration(min(self.least, other.least), self.typical, greatest)
+        return Duration(min(self.least, other.least), self.typical, greatest, self.exact and other.exact)
 
 
 @dataclass(frozen=True, slots=True)

@@ -11,6 +11,12 @@ from seqcheck.language.durations import format_duration
 from seqcheck.machine.findings import Duration
 
 OPEN = "open"
+#: Marks bounds that are safe and maybe not exact.
+WIDE = "wide"
+MAYBE_WIDE = " (safe, maybe wide)"
+ADDED_UP = "safe: added up over states with something under way, so that what can be may lie closer together"
+#: The head of the column of such marks.
+BOUNDS = "bounds"
 HANGS_ON = "hangs on signals from outside, or on how often a way goes back"
 
 
@@ -28,13 +34,22 @@ def decimals_of(values: Sequence[int | None]) -> int:
 
 
 def spelled_range(duration: Duration) -> str:
-    """``1.905 s to 2.374 s, typically 2.1395 s``."""
+    """``1.905 s to 2.374 s, typically 2.1395 s``; says where bounds are safe and maybe not exact."""
+    return _spelled_range(duration) + ("" if duration.exact else MAYBE_WIDE)
+
+
+def _spelled_range(duration: Duration) -> str:
     least, typical = format_duration(duration.least), format_duration(duration.typical)
     if duration.greatest is None:
         return f"at least {least}, typically {typical}, at most {OPEN} ({HANGS_ON})"
     if duration.least == duration.greatest:
         return f"always {least}"
     return f"{least} to {format_duration(duration.greatest)}, typically {typical}"
+
+
+def marks_of(times: Sequence[Duration]) -> Sequence[tuple[str, ...]]:
+    """What a column of marks says of each; nothing, not even a column, where all are exact."""
+    return [() if all(one.exact for one in times) else ("" if time.exact else WIDE,) for time in times]
 
 
 def counted(count: int, noun: str) -> str:

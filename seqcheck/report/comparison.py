@@ -23,7 +23,7 @@ from seqcheck.compare.spelling import spelled_span
 from seqcheck.language.durations import format_duration
 from seqcheck.machine.findings import Duration, Finding
 from seqcheck.machine.time import Span
-from seqcheck.report.amounts import OPEN, counted
+from seqcheck.report.amounts import MAYBE_WIDE, OPEN, counted
 from seqcheck.report.findings import headline
 from seqcheck.report.layout import BLANK, Line, Tone, labelled, page, paragraph
 from seqcheck.report.plain import plain_record
@@ -231,9 +231,10 @@ def _before_and_after(duration: DurationChange) -> str:
 def _range(duration: Duration | None) -> str:
     if duration is None:
         return ""
+    mark = "" if duration.exact else MAYBE_WIDE
     if duration.greatest is None:
-        return f"{format_duration(duration.least)} to {OPEN}"
-    return spelled_span(Span.between(duration.least, duration.greatest))
+        return f"{format_duration(duration.least)} to {OPEN}{mark}"
+    return f"{spelled_span(Span.between(duration.least, duration.greatest))}{mark}"
 
 
 def _amount(margin_us: int | None) -> str:

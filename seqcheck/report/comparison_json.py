@@ -18,7 +18,7 @@ from seqcheck.compare.differences import (
     MarginChange,
 )
 from seqcheck.machine.findings import Duration, Problem
-from seqcheck.report.json import Json, finding_facts, reason, without_lone_surrogates
+from seqcheck.report.json import Json, exactness, finding_facts, reason, without_lone_surrogates
 
 FORMAT = "seqcheck-comparison"
 VERSION = 1
@@ -102,7 +102,8 @@ def _branch(change: DurationChange) -> Json:
 
 
 def _duration(duration: Duration) -> Json:
-    return {"min_us": duration.least, "typical_us": duration.typical, "max_us": duration.greatest}
+    typical = {"typical_us": duration.typical}
+    return {"min_us": duration.least, **typical, "max_us": duration.greatest, **exactness(duration)}
 
 
 def _change(change: Change) -> Json:

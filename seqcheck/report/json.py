@@ -97,7 +97,13 @@ def _error(problem: Problem, file: str) -> Json:
 
 
 def _duration(duration: Duration) -> Json:
-    return {"min_us": duration.least, "typical_us": duration.typical, "max_us": duration.greatest}
+    typical = {"typical_us": duration.typical}
+    return {"min_us": duration.least, **typical, "max_us": duration.greatest, **exactness(duration)}
+
+
+def exactness(duration: Duration) -> Json:
+    """``exact`` is there only where it is not: the bounds are safe, and what can be may lie closer together."""
+    return {} if duration.exact else {"exact": False}
 
 
 def _choice(one: ChoiceTime) -> Json:
@@ -108,6 +114,7 @@ def _choice(one: ChoiceTime) -> Json:
         "way": one.way,
         "min_us": one.duration.least,
         "max_us": one.duration.greatest,
+        **exactness(one.duration),
     }
 
 

@@ -34,7 +34,7 @@ def state_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
         *paragraph(_runs_title(shown), hanging=2, tone=Tone.TITLE),
         *_runs(shown),
         *cycle_sections(shown),
-        *closing(shown, any(time.greatest is None for time in times)),
+        *closing(shown, times),
     )
 
 

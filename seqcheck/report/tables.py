@@ -6,8 +6,10 @@ shows its problems, as ``check`` does.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from seqcheck.machine.findings import ChoiceTime, Duration, Handover, Margin, Report
-from seqcheck.report.amounts import OPEN, counted, decimals_of, milliseconds
+from seqcheck.report.amounts import ADDED_UP, BOUNDS, OPEN, WIDE, counted, decimals_of, marks_of, milliseconds
 from seqcheck.report.layout import BLANK, Column, Line, Tone, labelled, paragraph, table
 from seqcheck.report.plain import plain_report
 from seqcheck.report.summary import accepted_margins, is_whole, proved_under_lines, title
@@ -24,7 +26,7 @@ def times_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
         *cycle_sections(shown),
         *_section("Step times (ms)", _durations("step", shown.steps)),
         *_section("Critical path: what makes the longest cycle (ms)", _critical_path(shown)),
-        *closing(shown, any(time.greatest is None for _, time in (*shown.cycles, *shown.steps))),
+        *closing(shown, times_in(shown)),
     )
 
 
@@ -37,8 +39,13 @@ def margins_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
         *_heading(shown),
         *_section("Margins, tightest first (ms; below 0: broken by so much)", _margins(shown)),
         *_section("Handovers from coil to opposed coil (ms)", _handovers(shown.handovers)),
-        *closing(shown, any(margin.margin_us is None for margin in shown.margins)),
+        *closing(shown, has_open=any(margin.margin_us is None for margin in shown.margins)),
     )
+
+
+def times_in(report: Report) -> tuple[Duration, ...]:
+    """Of cycles, with each branch of a choice as well, and of steps."""
+    return tuple(time for _, time in (*report.cycles, *report.steps)) + tuple(one.duration for one in report.choices)
 
 
 def cycle_sections(report: Report) -> tuple[Line, ...]:
@@ -57,13 +64,18 @@ def _section(title: str, lines: tuple[Line, ...]) -> tuple[Line, ...]:
     return (BLANK, Line(title, Tone.TITLE), *(lines or (Line("  none"),)))
 
 
-def closing(report: Report, has_open: bool) -> tuple[Line, ...]:
-    """What the figures rest on. They hold for runs in which nothing that was found comes about, and, where the machine
-    comes to ever new states, only as far as it was played."""
-    rows = [(OPEN, "nothing limits it but signals from outside, or how often a way goes back")] if has_open else []
+def closing(report: Report, times: Sequence[Duration] = (), has_open: bool = False) -> tuple[Line, ...]:
+    """What marks among the ``times`` mean, or that something else is open; and what the figures rest on. They hold for
+    runs that go on as one that was played does, and, where the machine comes to ever new states, only as far as it was
+    played."""
+    rows = []
+    if has_open or any(time.greatest is None for time in times):
+        rows.append((OPEN, "nothing limits it but signals from outside, or how often a way goes back"))
+    if not all(time.exact for time in times):
+        rows.append((WIDE, ADDED_UP))
     if not is_whole(report):
         rows.append(("But", "not every run was played: what was not may take other times; see seqcheck check"))
-    if found := [finding for finding in report.findings if finding.happens]:
+    if found := [finding for finding in report.findings if finding.diverts]:
         accepted = sum(finding.accepted is not None for finding in found)
         how = f" ({accepted} accepted)" if accepted else ""
         count = counted(len(found), "finding")
@@ -76,18 +88,31 @@ def _durations(name: str, durations: tuple[tuple[str, Duration], ...]) -> tuple[
         return ()
     figures = [(time.least, time.typical, time.greatest) for _, time in durations]
     decimals = decimals_of([figure for row in figures for figure in row])
-    columns = (Column(name), *(Column(head, right=True) for head in ("least", "typical", "greatest")))
-    rows = [(durations[number][0], *milliseconds(row, decimals)) for number, row in enumerate(figures)]
-    return table(columns, rows)
+    marks = marks_of([time for _, time in durations])
+    rows = [
+        (named[0], *milliseconds(row, decimals), *mark)
+        for named, row, mark in zip(durations, figures, marks, strict=True)
+    ]
+    return table((Column(name), *_figures("least", "typical", "greatest"), *_bounds(marks)), rows)
 
 
 def _choices(choices: tuple[ChoiceTime, ...]) -> tuple[Line, ...]:
-    decimals = decimals_of([time for one in choices for time in (one.duration.least, one.duration.greatest)])
-    columns = (Column("sequence"), Column("way"), Column("least", right=True), Column("greatest", right=True))
+    figures = [(one.duration.least, one.duration.greatest) for one in choices]
+    decimals = decimals_of([figure for row in figures for figure in row])
+    marks = marks_of([one.duration for one in choices])
     rows = [
-        (one.sequence, one.way, *milliseconds((one.duration.least, one.duration.greatest), decimals)) for one in choices
+        (one.sequence, one.way, *milliseconds(row, decimals), *mark)
+        for one, row, mark in zip(choices, figures, marks, strict=True)
     ]
-    return table(columns, rows)
+    return table((Column("sequence"), Column("way"), *_figures("least", "greatest"), *_bounds(marks)), rows)
+
+
+def _figures(*heads: str) -> tuple[Column, ...]:
+    return tuple(Column(head, right=True) for head in heads)
+
+
+def _bounds(marks: Sequence[tuple[str, ...]]) -> tuple[Column, ...]:
+    return (Column(BOUNDS),) if any(marks) else ()
 
 
 def _critical_path(report: Report) -> tuple[Line, ...]:

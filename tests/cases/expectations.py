@@ -10,7 +10,8 @@ Takes the text of a case; gives its expectations. Behind a statement, separated 
 The subject of a rule, which is its own text, is written ``rule``.
 
 On a line of its own: ``# cycle main 1905 ms .. 2374 ms`` and ``# step main.out 58.5 ms .. 107 ms`` (``.. open`` where
-an outside signal leaves it open). Refuses a comment behind a statement that is none of these: a slip is no expectation.
+an outside signal leaves it open; ``wide`` behind it, and behind a way, where the bounds are safe and maybe not exact).
+Refuses a comment behind a statement that is none of these: a slip is no expectation.
 """
 
 from __future__ import annotations
@@ -26,8 +27,10 @@ _FINDING = re.compile(
 )
 _KEPT = re.compile(rf"kept (?P<kind>[a-z-]+) (?P<subject>\S+) (?P<time>{_TIME})")
 _HANDOVER = re.compile(rf"handover (?P<earlier>\S+) (?P<later>\S+) (?P<gap>{_TIME}) overlap (?P<overlap>{_TIME})")
-_WAY = re.compile(rf"way (?P<name>\S+) (?P<least>{_TIME}) \.\. (?P<greatest>{_TIME}|open)")
-_DURATION = re.compile(rf"# (?P<what>cycle|step) (?P<name>\S+) (?P<least>{_TIME}) \.\. (?P<greatest>{_TIME}|open)")
+_WAY = re.compile(rf"way (?P<name>\S+) (?P<least>{_TIME}) \.\. (?P<greatest>{_TIME}|open)(?P<wide> wide)?")
+_DURATION = re.compile(
+    rf"# (?P<what>cycle|step) (?P<name>\S+) (?P<least>{_TIME}) \.\. (?P<greatest>{_TIME}|open)(?P<wide> wide)?"
+)
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -63,6 +66,7 @@ class Lasts:
     name: str
     least_us: int
     greatest_us: int | None
+    exact: bool
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -124,4 +128,4 @@ def _expectation(line: int, text: str) -> Found | Kept | Exchange | Way:
 
 def _duration(match: re.Match[str]) -> Lasts:
     greatest = None if match["greatest"] == "open" else microseconds(match["greatest"])
-    return Lasts(match["name"], microseconds(match["least"]), greatest)
+    return Lasts(match["name"], microseconds(match["least"]), greatest, match["wide"] is None)

@@ -257,7 +257,7 @@ WORDS = (
         "sequences_not_tied",
         "not-settled",
         "main and side come to ever new states: only what was played is proved, 14 rounds of main at least",
-        "let side wait for a step of main, say `until main.a`, once a round",
+        "let side wait once a round for a step of main to begin, say `until not main.a` and then `until main.a`",
     ),
     (
         "shared_valve_order_broken",

@@ -106,6 +106,16 @@ def test_the_header_says_what_was_proved_under_what(name: str) -> None:
     assert ("clean for all times in tolerance" in told) == (shown.report.verdict == "clean")
 
 
+def test_bounds_that_may_be_wide_are_marked_in_the_tables_that_have_such() -> None:
+    folder = Path(__file__).parents[1] / "cases"
+    wide = sample((folder / "choose_while_something_is_under_way.steps").read_text(encoding="utf-8")).page()
+    assert "wide: safe: added up over states with something under way" in " ".join(wide.split())
+    assert wide.count(">wide</td>") == 3
+    assert wide.count(">bounds</th>") == 2
+    exact = sample((folder / "choose_while_a_dwell_goes_on.steps").read_text(encoding="utf-8")).page()
+    assert ">wide<" not in exact and ">bounds<" not in exact
+
+
 def test_every_device_has_its_tag_address_and_label() -> None:
     table = rows(read(sample(TWO_MOVES).page()), "devices")
     assert ["Y1", "coil", "%Q0.0", "gate up", "V1, to a"] in table

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from seqcheck.checks.crossings import Crossings, Edge
 from seqcheck.machine.findings import Duration
 
@@ -36,7 +38,7 @@ def test_the_way_on_which_it_ends_counts_and_that_on_which_it_begins_does_not() 
     """It begins behind the choice that leads there."""
     assert forked().duration(30, lambda edge: edge == ENDS) == Duration(18, 30, 84)
     assert forked().duration(30, lambda edge: edge == BEGINS) is None
-    assert forked().greatest(lambda edge: edge == BEGINS) is None
+    assert forked().longest(lambda edge: edge == BEGINS) is None
 
 
 def test_one_that_lies_within_a_run_counts_without_a_way() -> None:
@@ -100,7 +102,7 @@ def test_no_time_at_all_is_a_time() -> None:
 
 def test_what_never_ends_or_never_begins_is_no_spell() -> None:
     assert Crossings().duration(0) is None
-    assert Crossings().greatest() is None
+    assert Crossings().longest() is None
     found = Crossings()
     found.part(BEGINS).opens = Duration(1, 1, 1)
     found.part(SHORT).passes = Duration(1, 1, 1)
@@ -123,3 +125,26 @@ def test_round_and_round_in_no_time_comes_to_an_end() -> None:
     found.part((2, 1, None, 0)).passes = Duration(0, 0, 0)
     found.part(ENDS).closes = Duration(2, 2, 2)
     assert found.duration(7) == Duration(7, 7, None)
+
+
+def test_a_piece_that_hangs_on_the_one_before_leaves_the_sum_safe_and_not_exact() -> None:
+    """On the longest way, on the shortest, on one that is neither; a piece that always takes as long is no matter."""
+    for edge, exact in ((LONG, False), (SHORT, False), ((1, 2, None, 2), True)):
+        found = forked()
+        found.part((1, 2, None, 2)).passes = Duration(10, 12, 14)
+        part = found.part(edge)
+        assert part.passes is not None
+        part.passes = replace(part.passes, exact=False)
+        assert found.duration(30) == Duration(18, 30, 84, exact)
+    for edge in (BEGINS, LONG):
+        found = Crossings()
+        found.part(BEGINS).opens = Duration(10, 10, 10 if edge == BEGINS else 20)
+        found.part(LONG).closes = Duration(50, 50, 50 if edge == LONG else 60, exact=False)
+        assert found.duration(60) == Duration(60, 60, 70)
+
+
+def test_of_two_that_take_as_long_the_exact_one_counts() -> None:
+    found = forked()
+    for number, exact in ((2, False), (3, True), (4, False)):
+        found.part((1, 2, None, number)).passes = Duration(4, 50, 70, exact)
+    assert found.duration(30) == Duration(17, 30, 94)

@@ -9,7 +9,7 @@ from seqcheck.machine.places import Place
 
 
 def _time(duration: Duration) -> str:
-    return f"{duration.least} .. {duration.typical} .. {duration.greatest}"
+    return f"{duration.least} .. {duration.typical} .. {duration.greatest}{'' if duration.exact else ' wide'}"
 
 
 def _place(place: Place | None) -> str:

@@ -9,18 +9,23 @@ from seqcheck.language.source import Source
 from seqcheck.machine.findings import Report, Severity
 from seqcheck.pipeline import examine_source
 
+#: How a report begins to say that it does not speak of all runs.
+_SOME_RUNS = ("played on from what goes wrong", "not every run was played")
+
 #: Kind, subject and step.
 Key = tuple[str, str, str | None]
 
 
 @dataclass(frozen=True, slots=True)
 class Outlook:
-    """``findings``: severity, whether certain, margin; all others in microseconds."""
+    """``findings``: severity, whether certain, margin; all others in microseconds. ``of_all_runs``: nothing that the
+    report says it was proved under leaves runs out."""
 
     findings: dict[Key, tuple[str, bool, int | None]]
     margins: dict[Key, int | None]
     durations: dict[str, tuple[int, int, int | None]]
     handovers: dict[tuple[str, str, str], tuple[int, int]]
+    of_all_runs: bool
 
     def mapped(self, name: Callable[[str], str], time: Callable[[int], int]) -> Outlook:
         """With other names and times."""
@@ -39,6 +44,7 @@ class Outlook:
                 (name(valve), name(end), name(start)): (time(gap), time(overlap))
                 for (valve, end, start), (gap, overlap) in self.handovers.items()
             },
+            self.of_all_runs,
         )
 
     def __or__(self, other: Outlook) -> Outlook:
@@ -83,6 +89,7 @@ def outlook(report: Report) -> Outlook:
             (one.valve, one.from_coil, one.to_coil): (one.least_gap_us, one.greatest_overlap_us)
             for one in report.handovers
         },
+        not any(one.startswith(_SOME_RUNS) for one in report.assumptions),
     )
 
 

@@ -30,7 +30,7 @@ def place(line: int, column: int = 1, file: str = FILE) -> Place:
 
 
 def short_pulse(**changes: object) -> Finding:
-    """An error that is possible, replayed, with a run."""
+    """An error that is possible, replayed, with a run that goes on otherwise than others."""
     values: dict[str, object] = {
         "kind": "short-pulse",
         "severity": Severity.ERROR,
@@ -47,6 +47,7 @@ def short_pulse(**changes: object) -> Finding:
             Moment(80000, "Y4 off while V3 is still shifting"),
         ),
         "mend": "let the pulse of Y4 last at least 63 ms",
+        "diverts": True,
     }
     return Finding(**(values | changes))  # type: ignore[arg-type]
 

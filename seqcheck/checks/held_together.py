@@ -1,0 +1,47 @@
+"""When the parts of a condition held together in a play, or would if one of them came a little earlier or later."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import replace
+from itertools import pairwise, product
+
+from seqcheck.checks.study import Study
+from seqcheck.engine.bounds import greatest_separation
+from seqcheck.engine.conditions import Alternative, Alternatives
+from seqcheck.engine.held import Holds, spells_of_condition
+
+
+def together(study: Study, alternative: Alternative) -> Iterator[tuple[Holds, ...]]:
+    """Spells of every literal that hold together, or would if one of them came a little earlier or later: each spell
+    with those of the others that hold as it begins, and their neighbours."""
+    spells = [spells_of_condition(study.trace, ((literal,),)) for literal in alternative]
+    given = set()
+    for number, own in enumerate(spells):
+        for one in own:
+            near = [[one] if other == number else _near(study, spells[other], one) for other in range(len(spells))]
+            for together in product(*near):
+                if together not in given:
+                    given.add(together)
+                    yield together
+
+
+def _near(study: Study, spells: Sequence[Holds], one: Holds) -> Sequence[Holds]:
+    """The last spell that had begun as this one begins, and the next."""
+    begun = [other for other in spells if study.time(other.begin) <= study.time(one.begin)]
+    return spells[max(0, len(begun) - 1) : len(begun) + 1]
+
+
+def without_breaks(study: Study, alternatives: Alternatives) -> list[Holds]:
+    """The spells of a whole condition, and those that come of it where a break between two may be none, or be for an
+    instant of no length: what begins the next one comes no later than what ends the one."""
+    spells = spells_of_condition(study.trace, alternatives)
+    found = list(spells)
+    since = None
+    for one, following in pairwise(spells):
+        since = one if since is None else since
+        if one.end is not None and greatest_separation(study.trace.graph, following.begin, one.end) >= 0:
+            found.append(replace(since, end=following.end, ended_by_read=following.ended_by_read))
+        else:
+            since = None
+    return found
