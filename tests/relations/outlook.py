@@ -54,6 +54,7 @@ class Outlook:
             self.margins | other.margins,
             self.durations | other.durations,
             self.handovers | other.handovers,
+            self.of_all_runs and other.of_all_runs,
         )
 
     @property
