@@ -17,11 +17,13 @@ from seqcheck.checks.opposed_coils import handovers, tightest_handovers
 from seqcheck.checks.prove import Broken, Proof, prove
 from seqcheck.checks.shown_states import shown_runs, shown_states
 from seqcheck.checks.study import Study, studies_of
-from seqcheck.checks.times import critical_path, times_of
+from seqcheck.checks.times import critical_path, times_of, times_of_all
+from seqcheck.checks.whole import whole_proof
 from seqcheck.engine.explore import explore
+from seqcheck.engine.parts import parts_of
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
-from seqcheck.engine.states import TimedStates, timed_states
+from seqcheck.engine.states import TimedStates, side_by_side, timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Problem, Report
@@ -29,13 +31,26 @@ from seqcheck.machine.model import Machine
 
 
 @dataclass(frozen=True, slots=True)
-class Studied:
-    """A machine with every play of it, the typical one first, and what is behind its report: ``broken`` in the order of
-    the report's findings."""
+class StudiedPart:
+    """Sequences that something ties together, and every play of them, the typical one first."""
 
     machine: Machine
     studies: Sequence[Study]
+    states: TimedStates
+
+
+@dataclass(frozen=True, slots=True)
+class Studied:
+    """A machine, its parts, and what is behind its report: ``broken`` in the order of the report's findings."""
+
+    machine: Machine
+    parts: Sequence[StudiedPart]
     broken: Sequence[Broken]
+
+    @property
+    def studies(self) -> Sequence[Study]:
+        """Every play of every part."""
+        return [study for part in self.parts for study in part.studies]
 
 
 def examine(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
@@ -80,16 +95,16 @@ def _studied(source: Source, sheets: Sequence[str], reserve_us: int) -> tuple[Re
     refused = outside_scope(machine)
     if refused:
         return _refused(source, machine, refused), None
-    graph = explore(machine)
-    if any(settlement.trace.too_long for settlement in graph.settlements):
-        return _refused(source, machine, (_too_long(machine),)), None
-    studies = studies_of(machine, graph)
-    timed = timed_states(graph)
-    proof = prove(studies, CHECKS, reserve_us)
-    report = _report(studies, timed, proof)
+    explored = [(part, explore(part)) for part in parts_of(machine)]
+    too_long = [_too_long(part) for part, graph in explored if any(one.trace.too_long for one in graph.settlements)]
+    if too_long:
+        return _refused(source, machine, too_long), None
+    parts = [StudiedPart(part, studies_of(part, graph), timed_states(graph)) for part, graph in explored]
+    proof = whole_proof(machine, [prove(part.studies, CHECKS, reserve_us) for part in parts], CHECKS)
+    report = _report(machine, parts, proof)
     lines = _lines_of(source)
     findings = tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings)
-    return replace(report, findings=findings), Studied(machine, studies, proof.broken)
+    return replace(report, findings=findings), Studied(machine, parts, proof.broken)
 
 
 def _refused(source: Source, machine: Machine, problems: Sequence[Problem]) -> Report:
@@ -110,23 +125,25 @@ def _too_long(machine: Machine) -> Problem:
     )
 
 
-def _report(studies: Sequence[Study], timed: TimedStates, proof: Proof) -> Report:
-    typical, machine = studies[0], studies[0].machine
+def _report(machine: Machine, parts: Sequence[StudiedPart], proof: Proof) -> Report:
+    """The critical path is that of the first sequence."""
+    typical = [part.studies[0] for part in parts]
     findings = tuple(one.finding for one in proof.broken)
-    times = times_of(studies, timed)
+    times = times_of_all(machine, [times_of(part.studies, part.states) for part in parts])
+    timed = side_by_side([part.states for part in parts])
     accepted = any(one.accepted is not None and one.diverts and not one.certain for one in findings)
     return Report(
         file=machine.file,
         machine=machine.name,
         findings=findings,
         sheets=machine.sheets,
-        assumptions=assumptions(typical, accepted, proof.strays),
+        assumptions=assumptions(machine, typical, accepted, proof.strays),
         cycles=times.cycles,
         choices=times.choices,
         states=shown_states(timed),
         runs=shown_runs(timed),
         steps=times.steps,
-        critical_path=critical_path(typical),
-        handovers=tightest_handovers(handovers(study) for study in studies),
+        critical_path=critical_path(typical[0]),
+        handovers=tightest_handovers(handovers(study) for part in parts for study in part.studies),
         margins=proof.margins,
     )

@@ -141,3 +141,14 @@ def test_the_example_of_the_reference_accepts_all_that_is_found() -> None:
 
 def _reasons(findings: tuple[Finding, ...]) -> list[tuple[str | None, str | None]]:
     return sorted((one.step, one.accepted) for one in findings)
+
+
+def test_a_comment_in_a_part_of_its_own_is_held_against_all_findings() -> None:
+    """The lamp, first in the text, shares nothing with the stamp; the siren is used by neither."""
+    lamp = "output H1\noutput siren  # accept unused: for later\nsequence lamp { step lit { on H1  dwell 1 s } }\n"
+    text = behind(PRESS, "accept short-pulse: why").replace("sequence main", f"{lamp}sequence main")
+    report = report_of(text)
+    assert {(one.kind, one.accepted) for one in report.findings} == {("short-pulse", "why"), ("unused", "for later")}
+    assert report.verdict == "clean"
+    stale = report_of(behind(LIFT, "accept short-pulse: why").replace("sequence main", f"{lamp}sequence main"))
+    assert {one.kind for one in stale.counting} == {"short-pulse", "stale-accept"}

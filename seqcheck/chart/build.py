@@ -12,6 +12,7 @@ from bisect import bisect_left
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
+from seqcheck.chart.apart import left_out, part_shown
 from seqcheck.chart.asked import Part, Unplaceable
 from seqcheck.chart.changes import Change
 from seqcheck.chart.decisions import decision_words, way_shown
@@ -23,34 +24,39 @@ from seqcheck.chart.window import Window, window_of
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.trace import Choice, Visit
 from seqcheck.machine.findings import Report
-from seqcheck.pipeline import Studied
+from seqcheck.pipeline import Studied, StudiedPart
 
 
 def chart_of(studied: Studied, report: Report, part: Part) -> Chart:
     """The typical run, or one whose choices go as is asked, with the bounds of all runs that have its order of events.
     Raises ``Unplaceable``."""
-    window = window_of(studied.machine, studied.studies, part)
-    return _Drawing(window, part.rows).chart(report, _notes(studied, report, window))
+    shown = part_shown(studied, part)
+    window = window_of(shown.machine, shown.studies, part)
+    return _Drawing(window, part.rows).chart(report, _notes(studied, report, shown, window))
 
 
 def chart_of_run(studied: Studied, report: Report, part: Part, number: int) -> Chart:
     """The run that shows finding ``number`` of the report, played again with its own delays, as one run without any
     spans. Raises ``Unplaceable`` where there is no such run."""
     window, at = window_of_run(studied, report, number)
-    return _Drawing(window, part.rows, (number, at)).chart(report, _notes_on_run(report, window, number))
+    return _Drawing(window, part.rows, (number, at)).chart(report, _notes_on_run(studied, report, window, number))
 
 
-def _notes(studied: Studied, report: Report, window: Window) -> tuple[str, ...]:
-    notes = list(way_shown(window, others=True))
-    if any(study.settlement.recipe.turned for study in studied.studies):
+def _notes(studied: Studied, report: Report, shown: StudiedPart, window: Window) -> tuple[str, ...]:
+    notes = [*left_out(studied, shown), *way_shown(window, others=True)]
+    if any(study.settlement.recipe.turned for study in shown.studies):
         notes.append("More than one order of events is possible here; the chart shows one.")
-    if any(one.diverts and not one.certain for one in report.findings):
+    own = (
+        one for one, behind in zip(report.findings, studied.broken, strict=True) if studied.parts[behind.part] is shown
+    )
+    if any(one.diverts and not one.certain for one in own):
         notes.append("The times hold for runs in which each finding comes about, or does not, as at typical times.")
     return tuple(notes)
 
 
-def _notes_on_run(report: Report, window: Window, number: int) -> tuple[str, ...]:
-    notes = list(way_shown(window, others=False))
+def _notes_on_run(studied: Studied, report: Report, window: Window, number: int) -> tuple[str, ...]:
+    shown = studied.parts[studied.broken[number - 1].part]
+    notes = [*left_out(studied, shown), *way_shown(window, others=False)]
     if report.findings[number - 1].replayed is False:
         notes.append("Something else gets in the way of this run before the finding comes about.")
     return tuple(notes)

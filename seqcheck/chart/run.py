@@ -7,6 +7,8 @@ that has no run.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from seqcheck.chart.asked import Unplaceable
 from seqcheck.chart.window import Window, cycle_around
 from seqcheck.checks.catalogue import CHECKS
@@ -15,6 +17,7 @@ from seqcheck.engine.explore import Settlement, replay
 from seqcheck.engine.timeline import given
 from seqcheck.engine.witness import Witness
 from seqcheck.machine.findings import Finding, Report
+from seqcheck.machine.model import Machine
 from seqcheck.pipeline import Studied
 
 
@@ -27,23 +30,23 @@ def window_of_run(studied: Studied, report: Report, number: int) -> tuple[Window
     finding, behind = report.findings[number - 1], studied.broken[number - 1]
     if not finding.run:
         raise Unplaceable(f"finding {number} ({finding.kind} of {finding.subject}) is not shown by a run")
-    title = f"the run that shows finding {number}"
+    title, part = f"the run that shows finding {number}", studied.parts[behind.part]
     if behind.witness is not None and behind.settlement is not None:
-        return _of_witness(studied, behind.settlement, behind.witness, title)
-    return _of_sight(studied, finding, title)
+        return _of_witness(part.machine, behind.settlement, behind.witness, title)
+    return _of_sight(part.studies, finding, title)
 
 
-def _of_witness(studied: Studied, settlement: Settlement, witness: Witness, title: str) -> tuple[Window, int]:
-    played = replay(studied.machine, settlement, witness)
-    study = Study(studied.machine, played, given(played.delays))
+def _of_witness(machine: Machine, settlement: Settlement, witness: Witness, title: str) -> tuple[Window, int]:
+    played = replay(machine, settlement, witness)
+    study = Study(machine, played, given(played.delays))
     at = max(witness.times[event] for event in witness.chain)
     return cycle_around(study, at, title), at
 
 
-def _of_sight(studied: Studied, finding: Finding, title: str) -> tuple[Window, int]:
+def _of_sight(studies: Sequence[Study], finding: Finding, title: str) -> tuple[Window, int]:
     """What needs no times of its own shows as the machine was played."""
     (check,) = (one for one in CHECKS if one.kind == finding.kind)
-    for study in studied.studies:
+    for study in studies:
         for sight in check.sights(study):
             if (sight.subject, sight.step, sight.place) == (finding.subject, finding.step, finding.place):
                 at = 0 if sight.at is None else study.time(sight.at)

@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator
 
 from seqcheck.checks.check import Check, Sight
-from seqcheck.checks.study import Study
 from seqcheck.machine.conditions import terms_of
 from seqcheck.machine.devices import Cylinder, OnValve
 from seqcheck.machine.findings import Severity
@@ -64,9 +63,8 @@ def _few(words: list[str], between: str) -> str:
     return between.join(words[:_MOST_NAMED] + more)
 
 
-def _assumed_times(studies: Sequence[Study]) -> Iterable[Sight]:
+def _assumed_times(machine: Machine) -> Iterable[Sight]:
     """One note for all of them."""
-    machine = studies[0].machine
     devices = told_devices(machine)
     if devices is None:
         return
@@ -86,5 +84,5 @@ def _assumed_times(studies: Sequence[Study]) -> Iterable[Sight]:
 
 
 CHECK = Check(
-    "assumed-times", Severity.NOTE, "ordinary times stand in for some that nobody gives", omissions=_assumed_times
+    "assumed-times", Severity.NOTE, "ordinary times stand in for some that nobody gives", reading=_assumed_times
 )

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 
 from seqcheck.checks.assumed_times import told_devices, told_results
 from seqcheck.checks.study import Study
@@ -12,10 +12,11 @@ from seqcheck.machine.model import Machine
 from seqcheck.machine.time import WHOLE_SHARE
 
 
-def assumptions(study: Study, accepted: bool = False, strays: bool = False) -> tuple[str, ...]:
-    """``accepted``: the text accepts something that happens in some runs only; ``strays``: the run at typical times
-    breaks what others keep."""
-    machine = study.machine
+def assumptions(
+    machine: Machine, typical: Sequence[Study], accepted: bool = False, strays: bool = False
+) -> tuple[str, ...]:
+    """``typical``: the play at typical times of each part of the machine; ``accepted``: the text accepts something that
+    happens in some runs only; ``strays``: the run at typical times breaks what others keep."""
     return (
         *_assumed(machine),
         "every time anywhere in its span, anew each time",
@@ -23,7 +24,7 @@ def assumptions(study: Study, accepted: bool = False, strays: bool = False) -> t
         "no faulty part",
         _start(machine),
         *_signals(machine),
-        *_proof(study),
+        *_proof(typical),
         *(("played on from what goes wrong at typical times, where other runs may go right",) if strays else ()),
         *(("what is accepted happens, or does not, as it does at typical times",) if accepted else ()),
     )
@@ -63,11 +64,10 @@ def _signals(machine: Machine) -> Iterator[str]:
             )
 
 
-def _proof(study: Study) -> Iterator[str]:
+def _proof(typical: Sequence[Study]) -> Iterator[str]:
     """Where the bounds are safe but need not be exact, or the proof stops short."""
-    settlement = study.settlement
-    anywhere = sorted({cylinder for cylinder, _ in settlement.regions})
+    anywhere = sorted({cylinder for study in typical for cylinder, _ in study.settlement.regions})
     if anywhere:
         yield f"{', '.join(anywhere)} stopped anywhere that the times allow (bounds safe there)"
-    if not study.whole:
+    if not all(study.whole for study in typical):
         yield "not every run was played (see not-settled)"

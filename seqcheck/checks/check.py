@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from seqcheck.checks.study import Study
 from seqcheck.machine.findings import Finding, Moment, Severity
+from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
 
 
@@ -108,6 +109,10 @@ def no_omissions(studies: Sequence[Study]) -> Iterable[Sight]:
     return ()
 
 
+def nothing_to_read(machine: Machine) -> Iterable[Sight]:
+    return ()
+
+
 @dataclass(frozen=True, slots=True)
 class Together:
     """What no play shows alone: ``plays`` that do, and ``sights`` of what it comes to over several of them."""
@@ -122,8 +127,9 @@ def nothing_together(studies: Sequence[Study]) -> Together:
 
 @dataclass(frozen=True, slots=True)
 class Check:
-    """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays:
-    what none of them comes to; ``together``: what only several of them come to. Any function may be left out."""
+    """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
+    of a part together: what none of them comes to; ``together``: what only several of them come to. ``reading``: what
+    the whole machine shows as it is written, before any play. Any function may be left out."""
 
     kind: str
     severity: Severity
@@ -132,6 +138,7 @@ class Check:
     sights: Callable[[Study], Iterable[Sight]] = no_sights
     omissions: Callable[[Sequence[Study]], Iterable[Sight]] = no_omissions
     together: Callable[[Sequence[Study]], Together] = nothing_together
+    reading: Callable[[Machine], Iterable[Sight]] = nothing_to_read
 
     def finding(self, sight: Sight) -> Finding:
         return Finding(

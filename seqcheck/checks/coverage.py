@@ -40,26 +40,24 @@ def _behind_watchdogs(sequence: StepSequence, entered: frozenset[str]) -> set[st
     return {name for target in targets for name in program.steps_behind(target, entered)}
 
 
-def _no_watchdog(studies: Sequence[Study]) -> Iterator[Sight]:
-    study = studies[0]
-    for sequence in study.machine.sequences:
-        bare = [step.name for step in steps_of(sequence) if _waits_for_sensor(study, step) and step.watchdog is None]
+def _no_watchdog(machine: Machine) -> Iterator[Sight]:
+    for sequence in machine.sequences:
+        bare = [step.name for step in steps_of(sequence) if _waits_for_sensor(machine, step) and step.watchdog is None]
         if bare:
             verb = "waits" if len(bare) == 1 else "wait"
             message = f"{', '.join(bare)} {verb} for sensors without a watchdog"
             yield Sight(sequence.name, None, sequence.place, message)
 
 
-def _waits_for_sensor(study: Study, step: Step) -> bool:
+def _waits_for_sensor(machine: Machine, step: Step) -> bool:
     return any(
         term.kind is TermKind.SENSOR
-        or (term.kind is TermKind.SIGNAL and isinstance(study.machine.signals[term.subject], FollowingSignal))
+        or (term.kind is TermKind.SIGNAL and isinstance(machine.signals[term.subject], FollowingSignal))
         for term in terms_of(step.until)
     )
 
 
-def _unused(studies: Sequence[Study]) -> Iterator[Sight]:
-    machine = studies[0].machine
+def _unused(machine: Machine) -> Iterator[Sight]:
     used = set(_used_names(machine))
     idle = [
         (device.place, device.name)
@@ -99,5 +97,5 @@ def _used_names(machine: Machine) -> Iterable[str]:
 
 
 UNREACHABLE = Check("unreachable", Severity.WARNING, "a step that no run enters", omissions=_unreachable)
-NO_WATCHDOG = Check("no-watchdog", Severity.NOTE, "steps wait for sensors without a watchdog", omissions=_no_watchdog)
-UNUSED = Check("unused", Severity.NOTE, "coils, outputs, sensors or signals never used", omissions=_unused)
+NO_WATCHDOG = Check("no-watchdog", Severity.NOTE, "steps wait for sensors without a watchdog", reading=_no_watchdog)
+UNUSED = Check("unused", Severity.NOTE, "coils, outputs, sensors or signals never used", reading=_unused)

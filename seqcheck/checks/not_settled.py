@@ -1,7 +1,7 @@
 """``not-settled``: the machine does not come round to a state that was there before, so that not every run was played.
 
-Sequences that go side by side and never wait for one another stand to each other in ever new ways: nothing that is
-proved of the first rounds need hold later.
+Sequences of one part that never wait for one another stand to each other in ever new ways: nothing that is proved of
+the first rounds need hold later.
 """
 
 from __future__ import annotations

@@ -1,8 +1,7 @@
 """From obligations to findings: bound them all, keep the tightest of each, show the run that breaks it.
 
-Takes studies, the catalogue of checks and the reserve that every margin must leave; gives findings, those last that
-the text accepts, and margins. Obligations that the text states once are met in every cycle; the tightest stands for
-them.
+Takes the studies of a part, the catalogue of checks and the reserve that every margin must leave; gives findings and
+margins, in no order. Obligations that the text states once are met in every cycle; the tightest stands for them.
 """
 
 from __future__ import annotations
@@ -14,7 +13,6 @@ from functools import partial
 from seqcheck.checks.certainty import Segment, Ways
 from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
-from seqcheck.checks.stale_accept import stale_accepts, with_reasons
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.bounds import (
@@ -28,18 +26,18 @@ from seqcheck.engine.explore import Settlement, replay
 from seqcheck.engine.timeline import given
 from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.findings import Finding, Margin, Severity
-from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
 
 
 @dataclass(frozen=True, slots=True)
 class Broken:
     """A finding with the run behind it and the way of playing to which that run belongs; None for a finding that needs
-    no run."""
+    no run. ``part``: the number of the part of the machine in which it comes about."""
 
     finding: Finding
     witness: Witness | None
     settlement: Settlement | None = None
+    part: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,7 +62,7 @@ class _Seen:
 
 
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
-    """Prove every play of the machine, and put the results together. A margin that holds, but leaves less than
+    """Prove every play of a part, and put the results together. A margin that holds, but leaves less than
     ``reserve_us``, is a finding too."""
     together = [(check, check.together(studies)) for check in checks]
     played = [*studies, *(more for _, one in together for more in one.plays)]
@@ -80,7 +78,7 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
         for margin in one.margins:
             key = (margin.kind, margin.subject, margin.step, margin.place)
             known = margins.get(key)
-            margins[key] = margin if known is None else min(known, margin, key=_by_margin)
+            margins[key] = margin if known is None else min(known, margin, key=by_margin)
     broken = [_one_of(found, ways) for found in by_key.values()]
     found = {_key(one.finding): number for number, one in enumerate(broken)}
     whole = [check.finding(sight) for check, one in together for sight in one.sights]
@@ -91,8 +89,7 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
             broken[number] = _at_least_as_bad(broken[number], finding)
         else:
             broken.append(Broken(finding, None))
-    broken = _accepted(broken, studies[0].machine)
-    return Proof(_sorted(broken), tuple(sorted(margins.values(), key=_by_margin)), strays)
+    return Proof(tuple(broken), tuple(margins.values()), strays)
 
 
 def _key(finding: Finding) -> _Key:
@@ -127,14 +124,6 @@ def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
 
 def _is_thin(one: Broken) -> bool:
     return one.finding.margin_us is not None and one.finding.margin_us >= 0
-
-
-def _accepted(broken: Sequence[Broken], machine: Machine) -> list[Broken]:
-    """What the comments of the text accept has their reasons; comments that accept nothing are added."""
-    findings = [one.finding for one in broken]
-    reasoned = zip(with_reasons(findings, machine.accepts), broken, strict=True)
-    stale = stale_accepts(findings, machine.accepts)
-    return [*(replace(one, finding=finding) for finding, one in reasoned), *(Broken(one, None) for one in stale)]
 
 
 @dataclass(frozen=True, slots=True)
@@ -314,26 +303,6 @@ def _shown(margin: int) -> int | None:
     return None if least_separation is None else -least_separation
 
 
-def _sorted(broken: Iterable[Broken]) -> tuple[Broken, ...]:
-    """Certain ones first, errors before warnings, causes before the standstill that they may lead to, then by place;
-    notes behind them all, and behind these what is accepted."""
-    severities = list(Severity)
-    return tuple(
-        sorted(
-            broken,
-            key=lambda one: (
-                one.finding.accepted is not None,
-                one.finding.severity is Severity.NOTE,
-                not one.finding.certain,
-                severities.index(one.finding.severity),
-                one.witness is None,
-                one.finding.place,
-                one.finding.kind,
-                one.finding.subject,
-            ),
-        )
-    )
-
-
-def _by_margin(margin: Margin) -> tuple[object, ...]:
+def by_margin(margin: Margin) -> tuple[object, ...]:
+    """Tightest first."""
     return (margin.margin_us is not None, margin.margin_us or 0, margin.place, margin.kind, margin.subject)

@@ -53,6 +53,17 @@ def times_of(studies: Sequence[Study], timed: TimedStates) -> Times:
     )
 
 
+def times_of_all(machine: Machine, parts: Sequence[Times]) -> Times:
+    """Those of the parts of a machine in the order of the text."""
+    sequences = [one.name for one in machine.sequences]
+    steps = {step.name: place for place, step in enumerate(one for all in machine.sequences for one in steps_of(all))}
+    return Times(
+        tuple(sorted((one for part in parts for one in part.cycles), key=lambda one: sequences.index(one[0]))),
+        tuple(sorted((one for part in parts for one in part.choices), key=lambda one: sequences.index(one.sequence))),
+        tuple(sorted((one for part in parts for one in part.steps), key=lambda one: steps[one[0]])),
+    )
+
+
 def _shown(
     found: Mapping[str, Crossings],
     studies: Sequence[Study],

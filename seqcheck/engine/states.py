@@ -7,7 +7,7 @@ adding runs up is safe and may be a little wide.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
@@ -59,6 +59,17 @@ def timed_states(graph: StateGraph) -> TimedStates:
             known = runs.setdefault((run.begin, run.outcome, run.end), run)
             runs[run.begin, run.outcome, run.end] = replace(known, duration=known.duration.widened(run.duration))
     return TimedStates(tuple(states[number] for number in sorted(states)), tuple(runs.values()))
+
+
+def side_by_side(graphs: Sequence[TimedStates]) -> TimedStates:
+    """Those of several parts of a machine, numbered through; no run leads from one part to another."""
+    states: list[State] = []
+    runs: list[Run] = []
+    for graph in graphs:
+        before = len(states)
+        states += [replace(one, number=one.number + before) for one in graph.states]
+        runs += [replace(one, begin=one.begin + before, end=one.end + before) for one in graph.runs]
+    return TimedStates(tuple(states), tuple(runs))
 
 
 def waits_for_outside(machine: Machine, step: Step) -> bool:

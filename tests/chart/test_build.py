@@ -107,7 +107,7 @@ def test_random_runs_keep_to_the_bounds(tmp_path: Path, name: str) -> None:
     report, studied = studied_text(tmp_path, text)
     machine = studied.machine
     drawn = chart_of(studied, report, Part())
-    known = window_of(machine, studied.studies, Part())
+    known = window_of(machine, studied.parts[0].studies, Part())
     settlement = known.study.settlement
     assert not report.counting
     for seed in range(25):
@@ -200,9 +200,9 @@ def test_further_cycles_know_where_a_stopped_piston_may_stand(tmp_path: Path) ->
     """A table that is stopped on its way may stand between several marks: from the start of its own cycle every event
     of the fourth cycle, which only the chart plays, has the bounds of the first settled one."""
     _, studied = studied_text(tmp_path, (_FAULTY / "overshoot.steps").read_text("utf-8"))
-    settlement = studied.studies[0].settlement
+    settlement = studied.parts[0].studies[0].settlement
     assert settlement.regions
-    window = window_of(studied.machine, studied.studies, Part(cycles=4))
+    window = window_of(studied.machine, studied.parts[0].studies, Part(cycles=4))
     study = window.study
     starts = study.trace.cycles[settlement.first : settlement.first + 5]
     bounds = []

@@ -147,6 +147,28 @@ def test_the_page_has_every_state_run_and_choice(capsys: Output) -> None:
     assert "Cycle times by choice (ms)" in shown and "not every run" not in shown and "below 0" not in shown
 
 
+def test_parts_that_share_nothing_stand_side_by_side_in_one_graph(tmp_path: Path, capsys: Output) -> None:
+    text = tmp_path / "apart.steps"
+    lamp = "output H1\nsequence lamp { step lit { on H1  dwell 400 ms }  step dark { dwell 333 ms } }"
+    clerk = "signal ask from outside\nsequence clerk { step idle { until ask }  step note { dwell 20 ms } }"
+    text.write_text(f"sequence main {{ step a {{ dwell 1 s }} }}\n{lamp}\n{clerk}", encoding="utf-8")
+    report = examine(str(text))
+    held_against(report)
+    assert [(one.number, one.name) for one in report.states] == [
+        (1, "main begins"),
+        (2, "lamp begins"),
+        (3, "clerk begins"),
+    ]
+    assert [(one.begin, one.end, one.duration.typical) for one in report.runs] == [
+        (1, 1, 1_000_000),
+        (2, 2, 733_000),
+        (3, 3, 20_000),
+    ]
+    assert main(["graph", str(text)]) == 0
+    shown = capsys.readouterr().out
+    assert "3 states, 3 runs" in shown and "not every run" not in shown
+
+
 def test_a_graph_that_is_not_whole_says_so(capsys: Output) -> None:
     assert main(["graph", UNSETTLED]) == 0
     shown = " ".join(capsys.readouterr().out.split())

@@ -47,6 +47,16 @@ class Outlook:
             self.of_all_runs,
         )
 
+    def __or__(self, other: Outlook) -> Outlook:
+        """Of two machines in one."""
+        return Outlook(
+            self.findings | other.findings,
+            self.margins | other.margins,
+            self.durations | other.durations,
+            self.handovers | other.handovers,
+            self.of_all_runs and other.of_all_runs,
+        )
+
     @property
     def bounds(self) -> dict[str, tuple[int, int | None]]:
         """Least and greatest of cycles and steps."""

@@ -13,8 +13,19 @@ from hypothesis import HealthCheck, assume, given, settings
 from hypothesis import strategies as st
 
 from tests.oracle.machines import machine_texts
+from tests.oracle.whole import whole_texts
 from tests.relations.outlook import Outlook, examined, outlook
-from tests.relations.texts import new_names, other_typicals, renamed, reordered, scaled, slower_scan, widened
+from tests.relations.texts import (
+    beside,
+    new_names,
+    other_typicals,
+    renamed,
+    reordered,
+    scaled,
+    slower_scan,
+    widened,
+    with_head_of,
+)
 
 EXAMPLES = int(os.environ.get("RELATION_EXAMPLES", "60"))
 
@@ -25,6 +36,8 @@ many_machines = settings(
     deadline=None,
     suppress_health_check=[HealthCheck.too_slow, HealthCheck.data_too_large, HealthCheck.filter_too_much],
 )
+#: Where each takes several machines.
+few_machines = settings(many_machines, max_examples=max(1, EXAMPLES // 3))
 seeds = st.integers(0, 2**32).map(random.Random)
 
 #: Shares of the stroke are whole multiples of half a percent and ``uneven`` of one percent, so that all products of a
@@ -61,6 +74,16 @@ def test_other_names_change_nothing_but_the_names(text: str, draw: random.Random
 @given(machine_texts(), seeds)
 def test_another_order_of_declarations_changes_nothing_but_places(text: str, draw: random.Random) -> None:
     assert outlook_of(reordered(text, draw)) == outlook_of(text)
+
+
+@few_machines
+@given(whole_texts(), whole_texts(), seeds)
+def test_machines_that_share_nothing_are_proved_in_one_text_as_each_alone(
+    text: str, side: str, draw: random.Random
+) -> None:
+    names = new_names(side, draw) | {"main": "main_too", "side": "side_too"}
+    other = renamed(side, names)
+    assert outlook_of(beside(text, other)) == outlook_of(text) | outlook_of(with_head_of(text, other))
 
 
 @many_machines

@@ -16,6 +16,7 @@ _TIME = re.compile(rf"(?<![\w.%])({_NUMBER}(?:(?: *(?:±|\+-) *|\.\.){_NUMBER}){
 _SPAN = re.compile(r"(?<![\w.])(\d+)\.\.(\d+) us(?!\w)")
 _SCAN = re.compile(r"\bscan (\d+)\.\.(\d+) us(?!\w)")
 _DEVICE = re.compile(r"(controller|valve|cylinder|output|signal|flag|io)\b")
+_HEAD = re.compile(r"(machine|controller)\b")
 _DECLARED = re.compile(r"\b(?:valve|coil|cylinder|sensor|output|signal|flag|io|step) ([^\W\d]\w*)")
 _UNITS = {"us": 1, "ms": 1_000, "s": 1_000_000, "min": 60_000_000}
 
@@ -99,6 +100,16 @@ def reordered(text: str, draw: random.Random) -> str:
     draw.shuffle(devices)
     cut = draw.randint(0, len(devices))
     return "\n".join([*devices[:cut], *others, *devices[cut:]]) + "\n"
+
+
+def beside(text: str, other: str) -> str:
+    """Both machines in one text, on the controller of the first; they must have no names in common."""
+    return text + "\n".join(one for one in statements(other) if not _HEAD.match(one)) + "\n"
+
+
+def with_head_of(text: str, other: str) -> str:
+    """The second machine under the name and on the controller of the first."""
+    return beside("".join(f"{one}\n" for one in statements(text) if _HEAD.match(one)), other)
 
 
 def new_names(text: str, draw: random.Random) -> dict[str, str]:
