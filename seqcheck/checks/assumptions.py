@@ -65,7 +65,10 @@ def _signals(machine: Machine) -> Iterator[str]:
 
 
 def _proof(typical: Sequence[Study]) -> Iterator[str]:
-    """Where the bounds are safe but need not be exact, or the proof stops short."""
+    """What was proved apart, where the bounds are safe but need not be exact, or where the proof stops short."""
+    if len(typical) > 1:
+        apart = (" and ".join(one.name for one in study.machine.sequences) for study in typical)
+        yield f"proved apart, as they share nothing: {'; '.join(apart)}"
     anywhere = sorted({cylinder for study in typical for cylinder, _ in study.settlement.regions})
     if anywhere:
         yield f"{', '.join(anywhere)} stopped anywhere that the times allow (bounds safe there)"

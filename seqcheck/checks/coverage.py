@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator, Sequence
 
 from seqcheck.checks.check import Check, Sight
+from seqcheck.checks.standstill import dead_ends
 from seqcheck.checks.study import Study
 from seqcheck.engine.knowledge import asked_conditions
 from seqcheck.engine.program import compile_sequence
@@ -21,8 +22,7 @@ def _unreachable(studies: Sequence[Study]) -> Iterator[Sight]:
     """Nothing where runs that may enter more were not played. What only a dead end keeps from being entered is told
     with the dead end. Steps to which a watchdog leads are there for the day on which a part fails, and no healthy
     machine enters them."""
-    ends = (one.trace for one in studies if one.trace.finished)
-    if not studies[0].whole or any(visit.left is None for trace in ends for visit in trace.visits):
+    if not studies[0].whole or any(True for one in studies for _ in dead_ends(one)):
         return
     for sequence in studies[0].machine.sequences:
         known = studies[0].entered | _behind_watchdogs(sequence, studies[0].entered)

@@ -34,17 +34,21 @@ def _near(study: Study, spells: Sequence[Holds], one: Holds) -> Sequence[Holds]:
 
 def without_breaks(study: Study, alternatives: Alternatives) -> list[tuple[Holds, bool]]:
     """The spells of a whole condition, and those that come of it where a break between two may be none, or be for an
-    instant of no length: what begins the next one comes no later than what ends the one. Whether that is so in every
-    run, too."""
+    instant of no length. Whether that is so in every run, too."""
     spells = spells_of_condition(study.trace, alternatives)
     found = [(one, True) for one in spells]
     since, always = None, True
     for one, following in pairwise(spells):
         since = one if since is None else since
-        gap = None if one.end is None else (one.end, following.begin)
-        if gap is not None and greatest_separation(study.trace.graph, gap[1], gap[0]) >= 0:
-            always = always and greatest_separation(study.trace.graph, *gap) <= 0
+        if one.end is not None and _may_join(study, one.end, following):
+            always = always and greatest_separation(study.trace.graph, one.end, following.begin) <= 0
             found.append((replace(since, end=following.end, ended_by_read=following.ended_by_read), always))
         else:
             since, always = None, True
     return found
+
+
+def _may_join(study: Study, end: int, following: Holds) -> bool:
+    """What begins the one spell may come at the instant at which the other ends; or before, if that makes them one."""
+    latest = greatest_separation(study.trace.graph, following.begin, end)
+    return latest == 0 or (latest > 0 and following.goes_on)

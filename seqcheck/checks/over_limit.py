@@ -95,21 +95,17 @@ def _never_comes(study: Study) -> Iterator[Sight]:
     """The one condition comes to hold and the other never does again: the play has ended, or goes round without."""
     trace, around = study.trace, study.settlement.path.round
     if trace.finished:
-        last = max(trace.happened, key=study.time)
-        until = study.time(last)
+        at = last = max(trace.happened, key=study.time)
     elif around is not None:
-        until, last = (
-            study.time(study.settlement.path.passages[around[0]].at),
-            study.settlement.path.passages[around[1]].at,
-        )
+        at, last = (study.settlement.path.passages[number].at for number in around)
     else:
         return
     for rule in study.machine.rules:
         if isinstance(rule, PathLimit):
             for spell in _spells(study, rule):
-                if spell.end is None and study.time(spell.begin) <= until:
+                if spell.end is None and study.time(spell.begin) <= study.time(at):
                     run = narrate_typical(study, spell.begin, last)
-                    yield Sight(rule.text, None, rule.place, _unlimited(rule), run, at=last)
+                    yield Sight(rule.text, None, rule.place, _unlimited(rule), run, at=at)
                     break
 
 

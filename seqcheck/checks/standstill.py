@@ -21,7 +21,7 @@ from seqcheck.machine.steps import Step
 _MEND = "let one of the steps wait for a sensor or dwell, or give the controller its scan time"
 
 
-def _dead_ends(study: Study) -> Iterator[Sight]:
+def dead_ends(study: Study) -> Iterator[Sight]:
     """Once nothing is due any more, every wait that is not over lasts for ever: a signal from outside would be due. So
     does one that goes on all round, while other sequences come round again. A watchdog that would then expire is no
     finding of its own."""
@@ -135,5 +135,5 @@ def _steps_chase(step: Step, certain: bool, at: int, run: tuple[Moment, ...] = (
     return Sight(step.name, step.name, step.place, message, run, _MEND, certain, at, replayed=replayed, stops=True)
 
 
-DEAD_END = Check("dead-end", Severity.ERROR, "nothing can happen any more", sights=_dead_ends)
+DEAD_END = Check("dead-end", Severity.ERROR, "nothing can happen any more", sights=dead_ends)
 ENDLESS_LOOP = Check("endless-loop", Severity.ERROR, "steps chase each other without time passing", sights=_endless)

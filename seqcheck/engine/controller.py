@@ -22,7 +22,7 @@ from seqcheck.engine.plant import Plant
 from seqcheck.engine.program import Enter, Fork, Program, Select, programs_of
 from seqcheck.engine.threads import Course, Thread, Threads
 from seqcheck.engine.timeline import Order, Timeline
-from seqcheck.engine.trace import Answer, Choice, Edge, Known, Origin, Read, Spell, Trace, Visit, Wait
+from seqcheck.engine.trace import Choice, Edge, Known, Origin, Read, Spell, Trace, Visit, Wait
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import ControllerKind
 from seqcheck.machine.model import Machine, steps_of
@@ -248,7 +248,6 @@ class Controller:
             self._await_signals(choice)
         else:
             choice.left = read
-            choice.answers = tuple(self._answers(choice, select))
             read.chosen.append(choice)
         return choice
 
@@ -274,19 +273,6 @@ class Controller:
             outcome = Outcome(taken, tuple(signals.items()))
             found.setdefault(outcome if taken is None else taken, outcome)
         return sorted(found.values(), key=lambda one: len(select.conditions) if one.taken is None else one.taken)
-
-    def _answers(self, choice: Choice, select: Select) -> list[Answer]:
-        """What made the branch be taken at once; signals from outside are of no account here."""
-        assert choice.taken is not None
-
-        def is_so(literal: Literal) -> bool:
-            if literal.term.subject in choice.asked:
-                return choice.asked[literal.term.subject] == literal.wanted
-            return self._knowledge.of(literal.aspect).value == literal.wanted
-
-        held = holding(select.conditions[choice.taken], is_so) or ()
-        plain = [literal for literal in held if not self._knowledge.from_outside(literal.term)]
-        return [answer for literal in plain if (answer := self._exits.answer(choice, literal)) is not None]
 
     def begin_anew(self, course: Course, read: Read) -> None:
         course.cycle += 1

@@ -168,9 +168,7 @@ class Exits:
         """What makes the literal as wanted; None where it is not (as the controller knows)."""
         if wait.signals and literal in wait.signals:
             held, seen = wait.signals[literal]
-            signal = self._machine.signals[literal.term.subject]
-            unlimited = isinstance(signal, OutsideSignal) and signal.after is None
-            return Answer(literal, seen, held, outside=unlimited) if seen in self._timeline.happened else None
+            return Answer(literal, seen, held) if seen in self._timeline.happened else None
         known = self._knowledge.if_known(literal.aspect)
         if known is None or known.value != literal.wanted:
             return None

@@ -18,12 +18,14 @@ from seqcheck.machine.conditions import TermKind
 @dataclass(frozen=True, slots=True)
 class Holds:
     """Since the event ``begin``, to ``end``; None where the play ended before. ``begun_by_read``, ``ended_by_read``:
-    whether that is what a read does, not what it sees before it does anything at the same event."""
+    whether that is what a read does, not what it sees before it does anything at the same event. ``goes_on``: had what
+    begins it come before what ended the one before, it would be one with that."""
 
     begin: int
     end: int | None
     begun_by_read: bool = False
     ended_by_read: bool = False
+    goes_on: bool = False
 
 
 def spells_of_condition(trace: Trace, condition: Alternatives, instants: bool = False) -> list[Holds]:
@@ -42,16 +44,21 @@ def spells_of_condition(trace: Trace, condition: Alternatives, instants: bool = 
         ),
         key=itemgetter(0),
     )
+    goes_on, before_the_end = False, None
     for (_, event, by_read), together in groupby(changes, key=itemgetter(0)):
-        values.update((aspect, value) for _, aspect, value in together)
+        before, now = dict(values), {aspect: value for _, aspect, value in together}
+        values.update(now)
         holds = holds_by(condition, values)
         if holds and begun is None:
             begun = event, by_read
+            goes_on = before_the_end is not None and holds_by(condition, {**before_the_end, **now})
         elif not holds and begun is not None:
             if event != begun[0] or instants:
-                found.append(Holds(begun[0], event, begun[1], by_read))
-            begun = None
-    return found if begun is None else [*found, Holds(begun[0], None, begun[1])]
+                found.append(Holds(begun[0], event, begun[1], by_read, goes_on))
+            begun, before_the_end = None, before
+        else:
+            before_the_end = None
+    return found if begun is None else [*found, Holds(begun[0], None, begun[1], goes_on=goes_on)]
 
 
 def _by_the_read(aspect: Aspect, history: Sequence[Change], number: int) -> bool:

@@ -89,13 +89,12 @@ class Edge:
 @dataclass(slots=True, eq=False)
 class Answer:
     """What made one part of an exit true: known to the controller since ``seen``, true at the input since ``held``.
-    ``edge`` for a sensor that has changed since the start; ``outside`` for a signal that may take any time."""
+    ``edge`` for a sensor that has changed since the start."""
 
     literal: Literal
     seen: int
     held: int
     edge: Edge | None = None
-    outside: bool = False
 
 
 @dataclass(slots=True, eq=False)
