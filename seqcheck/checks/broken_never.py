@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
-from seqcheck.checks.comings import holds_at_rest, passages_before
+from seqcheck.checks.comings import all_so_by, holds_at_rest, passages_before
 from seqcheck.checks.crossings import Spell, crossings
 from seqcheck.checks.held_together import together, without_breaks
 from seqcheck.checks.narrate import narrate_typical
@@ -29,8 +29,9 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for one in alternatives:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
-        for spell, always in without_breaks(study, alternatives):
-            yield from _obligation(rule, (spell,), always)
+        if [len(one) > 1 for one in alternatives] != [True]:  # Parts that hold together are bounded one by one above.
+            for spell, always in without_breaks(study, alternatives):
+                yield from _obligation(rule, (spell,), always)
 
 
 def _obligation(rule: Never, spells: tuple[Holds, ...], always: bool = True) -> Iterator[Obligation]:
@@ -103,7 +104,11 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
         settled=False,
     )
     for rule in rules:
-        if rule.text not in found or not found[rule.text].begins:
+        if rule.text not in found:
+            continue
+        for part in found[rule.text].parts.values():
+            part.within = None  # What lies in one play its own bounds tell best.
+        if not found[rule.text].begins:
             continue
         longest = found[rule.text].longest()
         if longest is None and studies[0].whole:
@@ -122,7 +127,8 @@ def _spells(study: Study, rule: Never) -> Iterator[Spell]:
         at_rest = one.begin == 0 and holds_at_rest(study, alternatives)
         # What is so as the machine stands was so before its first state, at which all ways begin.
         first = 0 if at_rest else passages_before(study, one.begin, one.begun_by_read) - 1
-        yield Spell(one.begin, one.end, first, last)
+        begin = one.begin if at_rest else all_so_by(study, alternatives, one.begin)
+        yield Spell(begin, one.end, first, last)
 
 
 CHECK = Check(

@@ -32,7 +32,7 @@ def comings(study: Study, condition: Alternatives) -> Iterator[Coming]:
     for spell in spells_of_condition(study.trace, condition, instants=True):
         if spell.begin or not holds_at_rest(study, condition):
             yield Coming(
-                _all_so_by(study, condition, spell.begin),
+                all_so_by(study, condition, spell.begin),
                 passages_before(study, spell.begin, spell.begun_by_read),
                 (study.time(spell.begin), spell.begin, spell.begun_by_read),
             )
@@ -55,7 +55,7 @@ def holds_at_rest(study: Study, condition: Alternatives) -> bool:
     return holding(condition, is_so) is not None
 
 
-def _all_so_by(study: Study, condition: Alternatives, begin: int) -> int:
+def all_so_by(study: Study, condition: Alternatives, begin: int) -> int:
     """The last of the events that made an alternative hold which held at ``begin``."""
     came: dict[Literal, int | None] = {}
     for literal in literals_of(condition):
