@@ -28,7 +28,6 @@ def dead_ends(study: Study) -> Iterator[Sight]:
     trace = study.trace
     if trace.finished:
         stuck, last = _waiting_since(trace, None), max(trace.happened, key=study.time)
-        more = "nothing more happens"
     elif study.settlement.path.round is not None:
         begin, last = (study.settlement.path.passages[number].at for number in study.settlement.path.round)
         stuck = [
@@ -36,7 +35,6 @@ def dead_ends(study: Study) -> Iterator[Sight]:
             for wait in _waiting_since(trace, study.time(begin))
             if not _may_yet_end(study, wait) and not (isinstance(wait, Visit) and wait.step.name in study.left)
         ]
-        more = "nothing else brings that"
     else:
         return
     steps = [step.name for one in study.machine.sequences for step in steps_of(one)]
@@ -46,7 +44,7 @@ def dead_ends(study: Study) -> Iterator[Sight]:
     for wait in stuck:
         name, place = _who(wait)
         waits = ", ".join(_missing(study, wait)) or "its exit"
-        message = f"{name} is never left: it waits for {waits}, and {more}{never}"
+        message = f"{name} is never left: it waits for {waits}, and nothing brings that any more{never}"
         run = narrate_typical(study, wait.entered.event, last)
         yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last, stops=True)
 

@@ -281,7 +281,7 @@ class Cylinders:
             position = str(piston.marks[reach.mark])
             name = f"{stroke.cylinder} {position}"
             arcs = [
-                timeline.delay(since[part.since], part.span, "mark", name, stroke.number)
+                timeline.delay(since[part.since], part.span, part.drawn, name, stroke.number)
                 if part.drawn
                 else timeline.loose(since[part.since], part.span)
                 for part in reach.parts

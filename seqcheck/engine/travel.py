@@ -14,6 +14,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import pairwise
+from typing import Literal
 
 from seqcheck.engine.strokes import Region, longest_part, moving_time, part_from_start, part_of
 from seqcheck.machine.devices import Cylinder, Stroke
@@ -26,11 +27,12 @@ LEAVING = -2
 
 @dataclass(frozen=True, slots=True)
 class Part:
-    """``since``: START, LEAVING or the number of an earlier mark in the plan. ``drawn``: its time is drawn anew."""
+    """``since``: START, LEAVING or the number of an earlier mark in the plan. ``drawn``: as what its time is drawn
+    anew, if it is: on the way to a mark, or from anywhere ``between`` marks at which the piston may stand."""
 
     since: int
     span: Span
-    drawn: bool = False
+    drawn: Literal["mark", "between"] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,7 +92,7 @@ class Travel:
         plan: list[Reach] = []
         before, since = end, LEAVING
         for mark in self._ahead_of(end):
-            parts = (Part(START, self._from_end(end, mark), True), Part(since, self._step(before, mark)))
+            parts = (Part(START, self._from_end(end, mark), "mark"), Part(since, self._step(before, mark)))
             plan.append(Reach(mark, parts))
             before, since = mark, len(plan) - 1
         return tuple(plan)
@@ -105,26 +107,25 @@ class Travel:
         latest = [self._latest(behind, marks[: min(n, passed) + 1], mark, may_rest) for n, mark in enumerate(marks)]
         plan: list[Reach] = []
         for number, mark in enumerate(marks[:passed]):
-            anywhere = Part(START, self._up_to(latest[number], stood, mark))
+            anywhere = Part(START, self._up_to(latest[number], stood, mark), "between")
             chain = (Part(number - 1, NO_TIME),) if number else ()
             plan.append(Reach(mark, (*chain, anywhere)))
         whole = self._whole(marks[passed - 1] if passed else behind, ahead)
-        last_stretch = Part(START, self._up_to(whole, stood, ahead), drawn=True)
+        last_stretch = Part(START, self._up_to(whole, stood, ahead), "mark")
         plan.append(Reach(ahead, (last_stretch,), only_if=unsure))
         if unsure:
-            anywhere = Part(START, self._up_to(latest[passed], stood, ahead))
+            anywhere = Part(START, self._up_to(latest[passed], stood, ahead), "between")
             chain = (Part(passed - 1, NO_TIME),) if passed else ()
             plan.append(Reach(ahead, (*chain, Part(passed, NO_TIME), anywhere)))
         for number in range(passed + 1, len(marks)):
             mark = marks[number]
             parts = [
                 Part(len(plan) - 1, self._step(marks[number - 1], mark)),
-                Part(passed, self._part(ahead, mark), True),
+                Part(passed, self._part(ahead, mark), "mark"),
             ]
             if unsure:
-                parts.append(
-                    Part(START, self._from_anywhere(behind, marks[passed : number + 1], stood, latest[number]))
-                )
+                span = self._from_anywhere(behind, marks[passed : number + 1], stood, latest[number])
+                parts.append(Part(START, span, "between"))
             plan.append(Reach(mark, tuple(parts)))
         return tuple(plan)
 

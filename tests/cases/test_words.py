@@ -88,7 +88,7 @@ WORDS = (
     (
         "dead_end",
         "dead-end",
-        "main.back is never left: it waits for B1, and nothing more happens",
+        "main.back is never left: it waits for B1, and nothing brings that any more",
         None,
     ),
     (
@@ -238,7 +238,7 @@ WORDS = (
     (
         "pulse_shorter_than_a_scan_lost",
         "dead-end",
-        "main.out is never left: it waits for B6, and nothing more happens (main.back never entered)",
+        "main.out is never left: it waits for B6, and nothing brings that any more (main.back never entered)",
         None,
     ),
     (

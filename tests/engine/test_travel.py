@@ -31,12 +31,12 @@ def travel(out: bool, lag: Span = NO_TIME) -> Travel:
 
 
 def drawn(since: int, least: int, typical: int, greatest: int) -> Part:
-    return Part(since, Span(least, typical, greatest), True)
+    return Part(since, Span(least, typical, greatest), "mark")
 
 
 def anywhere(least: int, typical: int, greatest: int) -> Part:
     """From the start of the stroke, wherever the piston stood."""
-    return Part(START, Span(least, typical, greatest))
+    return Part(START, Span(least, typical, greatest), "between")
 
 
 def behind(mark: int, time: int) -> Part:
