@@ -61,13 +61,9 @@ def _wording(rule: Never) -> Wording:
 
 def _for_good(study: Study) -> Iterator[Sight]:
     """Where the machine has come to a stand and it is so still, or goes round and it is so all the time."""
-    trace, around = study.trace, study.settlement.path.round
-    if trace.finished:
-        at = last = max(trace.happened, key=study.time)
-    elif around is not None:
-        at, last = (study.settlement.path.passages[number].at for number in around)
-    else:
+    if study.for_ever is None:
         return
+    at, last = study.for_ever
     for rule in study.machine.rules:
         if not isinstance(rule, Never):
             continue

@@ -93,13 +93,9 @@ def _spell(start: Coming, end: Coming | None) -> Spell:
 
 def _never_comes(study: Study) -> Iterator[Sight]:
     """The one condition comes to hold and the other never does again: the play has ended, or goes round without."""
-    trace, around = study.trace, study.settlement.path.round
-    if trace.finished:
-        at = last = max(trace.happened, key=study.time)
-    elif around is not None:
-        at, last = (study.settlement.path.passages[number].at for number in around)
-    else:
+    if study.for_ever is None:
         return
+    at, last = study.for_ever
     for rule in study.machine.rules:
         if isinstance(rule, PathLimit):
             for spell in _spells(study, rule):

@@ -25,18 +25,16 @@ def dead_ends(study: Study) -> Iterator[Sight]:
     """Once nothing is due any more, every wait that is not over lasts for ever: a signal from outside would be due. So
     does one that goes on all round, while other sequences come round again. A watchdog that would then expire is no
     finding of its own."""
-    trace = study.trace
-    if trace.finished:
-        stuck, last = _waiting_since(trace, None), max(trace.happened, key=study.time)
-    elif study.settlement.path.round is not None:
-        begin, last = (study.settlement.path.passages[number].at for number in study.settlement.path.round)
+    if study.for_ever is None:
+        return
+    at, last = study.for_ever
+    stuck = _waiting_since(study.trace, None if study.trace.finished else study.time(at))
+    if not study.trace.finished:
         stuck = [
             wait
-            for wait in _waiting_since(trace, study.time(begin))
+            for wait in stuck
             if not _may_yet_end(study, wait) and not (isinstance(wait, Visit) and wait.step.name in study.left)
         ]
-    else:
-        return
     steps = [step.name for one in study.machine.sequences for step in steps_of(one)]
     missing = [name for name in steps if name not in study.entered]
     others = f" and {len(missing) - 1} more" if len(missing) > 1 else ""
@@ -46,7 +44,7 @@ def dead_ends(study: Study) -> Iterator[Sight]:
         waits = ", ".join(_missing(study, wait)) or "its exit"
         message = f"{name} is never left: it waits for {waits}, and nothing brings that any more{never}"
         run = narrate_typical(study, wait.entered.event, last)
-        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=last, stops=True)
+        yield Sight(name, wait.step.name if isinstance(wait, Visit) else None, place, message, run, at=at, stops=True)
 
 
 def _who(wait: Wait) -> tuple[str, Place]:

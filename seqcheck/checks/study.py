@@ -80,6 +80,19 @@ class Study:
         """The typical time of an event, in microseconds from the start."""
         return self.trace.times[event]
 
+    @property
+    def for_ever(self) -> tuple[int, int] | None:
+        """From which event to which the play shows what goes on for ever: a round that comes again, or the last event
+        of all, twice. None where it shows neither."""
+        around = self.settlement.path.round
+        if self.trace.finished:
+            last = max(self.trace.happened, key=self.time)
+            return last, last
+        if around is None:
+            return None
+        begin, end = (self.settlement.path.passages[number].at for number in around)
+        return begin, end
+
     # Events that only obligations need -------------------------------------------------------------------------
 
     def comes(self, event: int) -> bool:

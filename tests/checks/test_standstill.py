@@ -27,6 +27,7 @@ def test_a_step_that_waits_for_good_while_others_go_round() -> None:
     """``done`` is set behind the very step that waits for it."""
     (found,) = dead_ends("step stuck { until done }  step never { set done  dwell 20 ms }")
     assert found.subject == found.step == "side.stuck"
+    assert found.certain
     assert found.message == (
         "side.stuck is never left: it waits for done, and nothing brings that any more (side.never never entered)"
     )
