@@ -104,10 +104,8 @@ def _over_several_runs(studies: Sequence[Study]) -> Iterator[Sight]:
             continue
         for part in found[rule.text].parts.values():
             part.within = None  # What lies in one play its own bounds tell best.
-        if not found[rule.text].begins:
-            continue
         longest = found[rule.text].longest()
-        if longest is None and studies[0].whole:
+        if longest is None and found[rule.text].unlimited:
             yield Sight(rule.text, None, rule.place, _wording(rule).broken(UNLIMITED), certain=False)
         elif longest is not None and longest.time > max(0, rule.tolerated):
             margin = rule.tolerated - longest.time

@@ -152,6 +152,13 @@ class Crossings:
         known = [one for one in found if one is not None]
         return max(known, key=_longer) if known and len(known) == len(found) else None
 
+    @property
+    def unlimited(self) -> bool:
+        """Whether what begins in one run and ends in another can take any time: a way goes round, or waits for someone
+        outside."""
+        pieces = (piece for part in self.parts.values() for piece in (part.opens, part.passes, part.closes))
+        return bool(self.endless()) or any(piece is not None and piece.greatest is None for piece in pieces)
+
     def endless(self) -> tuple[Edge, ...]:
         """A way that goes round before its end: from the edge in which it begins to the one that comes back to a state
         on the way. None of them where there is no such way."""

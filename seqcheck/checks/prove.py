@@ -98,6 +98,8 @@ def _key(finding: Finding) -> _Key:
 
 def _at_least_as_bad(one: Broken, finding: Finding) -> Broken:
     """What a run shows, with what it comes to at worst where that is more, or nothing limits it."""
+    if _is_thin(one):
+        return Broken(finding, None)
     shown = one.finding.margin_us
     if shown is None or (finding.margin_us is not None and shown <= finding.margin_us):
         return one

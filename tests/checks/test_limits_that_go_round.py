@@ -21,7 +21,8 @@ def test_the_run_goes_round_until_the_limit_is_over() -> None:
 
 
 def test_what_never_comes_while_the_machine_goes_round_is_certain() -> None:
-    text = "flag done\nsequence main { step a { dwell 10 ms }  step b { dwell 20 ms } }\nlimit from main.b to done 1 s\n"
+    main = "sequence main { step a { dwell 10 ms }  step b { dwell 20 ms } }"
+    text = f"flag done\n{main}\nlimit from main.b to done 1 s\n"
     (found,) = [one for one in examine_source(Source("a.steps", text)).findings if one.kind == "over-limit"]
     assert found.certain
     assert found.message.endswith("the other may never come")

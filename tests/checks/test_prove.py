@@ -34,6 +34,9 @@ def finding(message: str, margin_us: int | None) -> Finding:
         # What nothing limits is longer than all else
         (None, -10, "shown"),
         (-10, None, "summed"),
+        # What is merely thin in one play is broken over several
+        (10, -10, "summed"),
+        (10, None, "summed"),
     ],
 )
 def test_the_worse_of_what_a_run_shows_and_what_several_add_up_to(
