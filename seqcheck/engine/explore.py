@@ -125,9 +125,7 @@ class _Explorer:
             if settlement.path.astray:
                 self.complete = False
                 continue
-            numbered = tuple(
-                self.states.setdefault(passage.signature, len(self.states)) for passage in settlement.path.passages
-            )
+            numbered = self._numbered(settlement)
             ended = recipe.way.fresh >= len(numbered)
             if ended:
                 # It has come to an end before it came to where it was to part from the others.
@@ -138,6 +136,16 @@ class _Explorer:
             if not ended:
                 self._plan(self.found[-1])
         return StateGraph(tuple(self.found), self.complete and not self.waiting)
+
+    def _numbered(self, settlement: Settlement) -> tuple[int, ...]:
+        """The states that it came through; up to where it turns an order they are those of the play that it turns, even
+        where what comes later for that has moved behind one of them."""
+        turn, passages = settlement.recipe.turn, settlement.path.passages
+        before = () if turn is None else self.found[turn.play].states[: settlement.recipe.way.fresh + 1]
+        own = passages[len(before) :]
+        return before[: len(passages)] + tuple(
+            self.states.setdefault(passage.signature, len(self.states)) for passage in own
+        )
 
     def _plan(self, settlement: Settlement) -> None:
         """What else may come out between the states that this play was the first to come through."""
@@ -151,9 +159,10 @@ class _Explorer:
         times = settlement.trace.times
         at = [(times[passage.at], passage.at) for passage in path.passages]
         for number, order in path.orders:
-            # The other way round, the play parts from this one before what the first of the two brings.
-            parts = max(0, min(number, bisect_left(at, (times[order.first], order.first)) - 1))
-            if recipe.way.fresh <= parts < joined:
+            # The other way round, the play parts from this one before what the first of the two brings; if other plays
+            # have shown that, where this one parts from them: they do not come to the second.
+            parts = max(0, recipe.way.fresh, min(number, bisect_left(at, (times[order.first], order.first)) - 1))
+            if recipe.way.fresh <= number and parts < joined:
                 self._turn(settlement, parts, order)
 
     def _turn(self, settlement: Settlement, number: int, order: Order) -> None:

@@ -22,6 +22,8 @@ from tests.oracle.whole import whole_text
 MACHINES = int(os.environ.get("ORACLE_MACHINES", "300"))
 RULED = int(os.environ.get("ORACLE_RULED", "60"))
 AT_ONCE = 25
+#: On these the two have been of different minds once.
+APART_ONCE = (2081, 2101, 2134, 2168, 2238, 2406, 2838, 2906, 3349, 3960)
 RUNS = 6
 
 pytestmark = pytest.mark.slow
@@ -42,6 +44,13 @@ def test_reports_agree_with_the_player(first: int) -> None:
         found = list(disagreements(examined, runs_of(examined.machine, seed, RUNS)))
         assert not found, "\n".join([f"machine {seed}", text, *map(str, found[:5])])
     assert left_out <= AT_ONCE // 4
+
+
+@pytest.mark.parametrize("seed", APART_ONCE)
+def test_where_they_were_apart_they_agree(seed: int) -> None:
+    examined = examine(whole_text(seed))
+    assert examined.whole
+    assert not list(disagreements(examined, runs_of(examined.machine, seed, 2 * RUNS)))
 
 
 @pytest.mark.parametrize("first", range(0, RULED, AT_ONCE))
