@@ -51,10 +51,12 @@ def _column(graph: EventGraph, members: Sequence[int], source: int, open_us: int
     chain = {source: 0}
     _least_chains(graph, members, chain)
     while _chains_go_on(chain, assumed):
+        graph.work += len(members)
         _least_chains(graph, members, chain)
     latest = {number: -length for number, length in chain.items()}
     _greatest_times(graph, members, latest, open_us)
     while _is_brought_forward(latest, assumed):
+        graph.work += len(members)
         _greatest_times(graph, members, latest, open_us)
     return latest
 

@@ -120,7 +120,8 @@ class _Explorer:
         work = most_work(self.machine)
         while self.waiting and work > 0:
             recipe = self.waiting.popleft()
-            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs)
+            most = work if self.found else None  # The typical run is played in any case.
+            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs, most=most)
             work -= settlement.trace.graph.work
             if settlement.path.astray:
                 self.complete = False
@@ -217,11 +218,13 @@ def play(
     known: Mapping[Signature, int],
     prefer: Prefer = first_of,
     programs: Mapping[str, Program] | None = None,
+    most: int | None = None,
 ) -> Settlement:
-    """One way, pistons anywhere that its own bounds leave them. What is known as a piston stops mostly says it all."""
+    """One way, pistons anywhere that its own bounds leave them. What is known as a piston stops mostly says it all.
+    ``most``: it goes no further than so much work takes it."""
     regions: Regions | None = None
     for _ in range(_MOST_PLACINGS + 1):
-        scout = Scout(machine, recipe.way, known, orders, prefer)
+        scout = Scout(machine, recipe.way, known, orders, prefer, most)
         player = scout.player = Player(machine, scout, given(recipe.delays), regions, programs=programs)
         trace = player.play()
         scout.finish()

@@ -122,10 +122,17 @@ class Path:
 
 
 class Scout:
-    """``known``: signatures that other plays have come through."""
+    """``known``: signatures that other plays have come through. ``most``: the play stops at a state once it has cost
+    so much work."""
 
     def __init__(
-        self, machine: Machine, way: Way, known: Mapping[Signature, int], orders: Orders, prefer: Prefer = first_of
+        self,
+        machine: Machine,
+        way: Way,
+        known: Mapping[Signature, int],
+        orders: Orders,
+        prefer: Prefer = first_of,
+        most: int | None = None,
     ) -> None:
         self.path = Path()
         self.player: Player | None = None
@@ -135,6 +142,7 @@ class Scout:
         self._own: dict[Signature, int] = {}
         self._orders = orders
         self._prefer = prefer
+        self._most = most
         self._decided = 0
         self._most_passages = MOST_ROUNDS * _states_of_one_round(machine)
         self._period = 0
@@ -172,7 +180,9 @@ class Scout:
         passage.under_way = self._under_way(player, passage.at)
         passage.signature = (where, player.state, passage.under_way)
         path.passages.append(passage)
-        if path.last is not None:
+        if self._most is not None and player.trace.graph.work > self._most:
+            player.stop()
+        elif path.last is not None:
             if index >= path.last:
                 player.stop()
         elif self._period:

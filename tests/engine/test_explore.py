@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import pytest
 
-from seqcheck.engine.explore import StateGraph, explore
+from seqcheck.engine.explore import StateGraph, explore, most_work
 from seqcheck.engine.states import timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
+from tests.oracle.whole import whole_text
 
 CONTROLLER = "controller { scan 8..12 ms  input 2..4 ms  output 0.5..1 ms }\n"
 CLAMP = """valve V1 5/2 spring { coil Y1  on 18..28 ms  off 25..40 ms }
@@ -117,3 +118,12 @@ def test_a_play_goes_once_round_through_all_that_comes_again(text: str, first: i
     assert end - begin == rounds == only.last - only.first
     assert only.states[begin] == only.states[end]
     assert len(set(only.states[begin:end])) == rounds
+
+
+def test_no_play_goes_on_far_beyond_the_work_that_is_left() -> None:
+    """A machine whose rounds never meet again: 147 open orders tie the bounds of one play to its start."""
+    machine = read_machine(Source("random.steps", whole_text(3397)))
+    assert isinstance(machine, Machine)
+    graph = explore(machine)
+    assert not all(one.settled for one in graph.settlements)
+    assert sum(one.trace.graph.work for one in graph.settlements) < 2 * most_work(machine)
