@@ -11,7 +11,7 @@ from collections.abc import Iterator, Sequence
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.comings import all_so_by, holds_at_rest, passages_before
 from seqcheck.checks.crossings import Spell, crossings
-from seqcheck.checks.held_together import together, without_breaks
+from seqcheck.checks.held_together import begun_or_ended_otherwise, together, without_breaks
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
 from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
@@ -31,7 +31,8 @@ def _obligations(study: Study) -> Iterator[Obligation]:
                 yield from _obligation(rule, spells)
         if [len(one) > 1 for one in alternatives] != [True]:  # Parts that hold together are bounded one by one above.
             for spell, always in without_breaks(study, alternatives):
-                yield from _obligation(rule, (spell,), always)
+                for held in begun_or_ended_otherwise(study, alternatives, spell):
+                    yield from _obligation(rule, (held,), always)
 
 
 def _obligation(rule: Never, spells: tuple[Holds, ...], always: bool = True) -> Iterator[Obligation]:
