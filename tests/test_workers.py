@@ -86,11 +86,24 @@ def test_a_text_whose_process_ends_is_told_and_all_others_are_examined(where: in
     assert unreadable.startswith("dies.steps") and "ended without a result" in unreadable
 
 
-def test_a_fault_of_the_program_is_raised_as_it_is() -> None:
-    with pytest.raises(KeyError, match=r"faulty\.steps") as caught:
-        examined([*NAMES, "faulty.steps"])
-    assert re.fullmatch(r"test_workers\.py:\d+, examining faulty\.steps", caught.value.__notes__[-1])
-    assert multiprocessing.active_children() == []
+def test_a_fault_of_the_program_is_raised_as_it_is(checkout: Path) -> None:
+    program = (
+        "import multiprocessing\n"
+        "from tests.test_workers import NAMES, examined\n"
+        "if __name__ == '__main__':\n"
+        "    try:\n"
+        "        examined([*NAMES, 'faulty.steps'])\n"
+        "    except KeyError as caught:\n"
+        "        print(caught, caught.__notes__[-1], multiprocessing.active_children(), sep='|')\n"
+    )
+    told = subprocess.run(
+        [sys.executable, "-c", program],
+        env={**os.environ, "PYTHONPATH": str(checkout)},
+        capture_output=True,
+        text=True,
+        check=True,
+    ).stdout.strip()
+    assert re.fullmatch(r"'faulty\.steps'\|test_workers\.py:\d+, examining faulty\.steps\|\[\]", told)
 
 
 def test_there_is_a_processor() -> None:

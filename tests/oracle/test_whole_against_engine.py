@@ -43,7 +43,7 @@ def test_reports_agree_with_the_player(first: int) -> None:
             continue
         found = list(disagreements(examined, runs_of(examined.machine, seed, RUNS)))
         assert not found, "\n".join([f"machine {seed}", text, *map(str, found[:5])])
-    assert left_out <= AT_ONCE // 4
+    assert left_out <= AT_ONCE // 3
 
 
 @pytest.mark.parametrize("seed", APART_ONCE)
