@@ -28,6 +28,17 @@ def examine(name: str) -> Report:
     return Report(name, f"process {os.getpid()}")
 
 
+def _told_by(program: str, checkout: Path) -> str:
+    """What a program of its own prints: these processes must not be children of one that runs tests."""
+    return subprocess.run(
+        [sys.executable, "-c", program],
+        env={**os.environ, "PYTHONPATH": str(checkout)},
+        capture_output=True,
+        text=True,
+        check=True,
+    ).stdout
+
+
 def sleep_when_asked(name: str) -> Report:
     print("busy", name, flush=True)
     time.sleep(60)
@@ -74,13 +85,7 @@ def test_a_text_whose_process_ends_is_told_and_all_others_are_examined(where: in
         "    for report in reports:\n"
         "        print(report.file, report.verdict, *(problem.message for problem in report.problems))\n"
     )
-    told = subprocess.run(
-        [sys.executable, "-c", program],
-        env={**os.environ, "PYTHONPATH": str(checkout)},
-        capture_output=True,
-        text=True,
-        check=True,
-    ).stdout.splitlines()
+    told = _told_by(program, checkout).splitlines()
     assert [line.split()[0] for line in told] == names
     (unreadable,) = (line for line in told if line.split()[1] == "unreadable")
     assert unreadable.startswith("dies.steps") and "ended without a result" in unreadable
@@ -96,13 +101,7 @@ def test_a_fault_of_the_program_is_raised_as_it_is(checkout: Path) -> None:
         "    except KeyError as caught:\n"
         "        print(caught, caught.__notes__[-1], multiprocessing.active_children(), sep='|')\n"
     )
-    told = subprocess.run(
-        [sys.executable, "-c", program],
-        env={**os.environ, "PYTHONPATH": str(checkout)},
-        capture_output=True,
-        text=True,
-        check=True,
-    ).stdout.strip()
+    told = _told_by(program, checkout).strip()
     assert re.fullmatch(r"'faulty\.steps'\|test_workers\.py:\d+, examining faulty\.steps\|\[\]", told)
 
 

@@ -30,9 +30,8 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             for spells in together(study, one):
                 yield from _obligation(rule, spells)
         if [len(one) > 1 for one in alternatives] != [True]:  # Parts that hold together are bounded one by one above.
-            for spell, always in without_breaks(study, alternatives):
-                for held in begun_or_ended_otherwise(study, alternatives, spell):
-                    yield from _obligation(rule, (held,), always)
+            for spell, always in begun_or_ended_otherwise(study, alternatives):
+                yield from _obligation(rule, (spell,), always)
 
 
 def _obligation(rule: Never, spells: tuple[Holds, ...], always: bool = True) -> Iterator[Obligation]:

@@ -54,16 +54,17 @@ def _may_join(study: Study, end: int, following: Holds) -> bool:
     return latest == 0 or (latest > 0 and following.goes_on)
 
 
-def begun_or_ended_otherwise(study: Study, alternatives: Alternatives, spell: Holds) -> Iterator[Holds]:
-    """The spell, and the same begun by another alternative that comes to hold within it, or ended by one that ceases
+def begun_or_ended_otherwise(study: Study, alternatives: Alternatives) -> Iterator[tuple[Holds, bool]]:
+    """The same, and each also begun by another alternative that comes to hold within it, or ended by one that ceases
     within it: in other runs that may be the first, or the last."""
-    yield spell
-    if spell.end is None or len(alternatives) == 1:
-        return
-    within = range(study.time(spell.begin) + 1, study.time(spell.end))
-    for one in alternatives:
-        for part in spells_of_condition(study.trace, (one,)):
+    parts = [part for one in alternatives for part in spells_of_condition(study.trace, (one,))]
+    for spell, always in without_breaks(study, alternatives):
+        yield spell, always
+        if spell.end is None or len(alternatives) == 1:
+            continue
+        within = range(study.time(spell.begin) + 1, study.time(spell.end))
+        for part in parts:
             if study.time(part.begin) in within:
-                yield replace(spell, begin=part.begin)
+                yield replace(spell, begin=part.begin), always
             if part.end is not None and study.time(part.end) in within:
-                yield replace(spell, end=part.end)
+                yield replace(spell, end=part.end), always

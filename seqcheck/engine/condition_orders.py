@@ -12,7 +12,7 @@ from itertools import pairwise
 
 from seqcheck.engine.conditions import Alternatives, Aspect, alternatives_of, aspect_of
 from seqcheck.engine.cylinders import drives_of, stands
-from seqcheck.engine.held import changes_in_order, holds_by, spells_of_condition
+from seqcheck.engine.held import holds_by, spells_of_condition
 from seqcheck.engine.order import Order
 from seqcheck.engine.plant import looked_at
 from seqcheck.engine.trace import Change, Trace
@@ -73,7 +73,7 @@ def condition_orders(
 ) -> Iterator[Order]:
     """Two changes of which the one that comes first decides when, or whether, the condition changes."""
     aspects = {literal.aspect for one in condition for literal in one}
-    changes = changes_in_order(trace.times, changes_of, aspects)
+    changes = _changes_in_order(trace.times, changes_of, aspects)
     values = dict.fromkeys(aspects, False)
     for number, (_, event, aspect, change) in enumerate(changes):
         before = dict(values)
@@ -85,6 +85,20 @@ def condition_orders(
             swapped = holds_by(condition, {**before, other: following.value})
             if not first == swapped == holds_by(condition, before):
                 yield Order((name, aspect, change.value, other, following.value), event, later)
+
+
+def _changes_in_order(
+    times: Sequence[int], changes_of: Mapping[Aspect, Sequence[Change]], aspects: Iterable[Aspect]
+) -> list[tuple[int, int, Aspect, Change]]:
+    """By time and event."""
+    return sorted(
+        (
+            (times[change.event], change.event, aspect, change)
+            for aspect in aspects
+            for change in changes_of.get(aspect, ())
+        ),
+        key=lambda entry: entry[:2],
+    )
 
 
 def watched(machine: Machine) -> list[str]:

@@ -5,7 +5,7 @@ Takes a trace and a condition; gives its spells by the events that begin and end
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from itertools import groupby
 from operator import itemgetter
@@ -65,20 +65,6 @@ def _by_the_read(aspect: Aspect, history: Sequence[Change], number: int) -> bool
     """A step, a flag, or a signal from outside that is let go as soon as it has been seen."""
     again = number > 0 and history[number - 1].event == history[number].event
     return aspect[0] in (TermKind.STEP, TermKind.FLAG) or again
-
-
-def changes_in_order(
-    times: Sequence[int], changes_of: Mapping[Aspect, Sequence[Change]], aspects: Iterable[Aspect]
-) -> list[tuple[int, int, Aspect, Change]]:
-    """By time and event."""
-    return sorted(
-        (
-            (times[change.event], change.event, aspect, change)
-            for aspect in aspects
-            for change in changes_of.get(aspect, ())
-        ),
-        key=lambda entry: entry[:2],
-    )
 
 
 def holds_by(condition: Alternatives, values: Mapping[Aspect, bool]) -> bool:
