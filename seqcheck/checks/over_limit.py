@@ -22,7 +22,7 @@ from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
 #: A way that goes round is shown for no more rounds than this.
 _MOST_ROUNDS = 20
 #: How choices come out, one after the other.
-Way = tuple[Outcome, ...]
+_Outcomes = tuple[Outcome, ...]
 
 
 def _obligations(study: Study) -> Iterator[Obligation]:
@@ -125,7 +125,7 @@ def _over_several_runs(studies: Sequence[Study]) -> Together:
     """Where no play shows all of it in one: added up along the ways through the state graph, and played."""
     found = list(_crossings(studies))
     extremes = [extreme for rule, crossed in found for extreme in _extremes(rule, crossed)]
-    plays: dict[Way, Study] = {}
+    plays: dict[_Outcomes, Study] = {}
     for one in extremes:
         _play(studies, one.way.edges, plays)
     over = [
@@ -176,7 +176,7 @@ def _extremes(rule: CycleLimit | PathLimit, crossed: Crossings) -> Iterator[_Ext
         yield _Extreme(rule, shortest, shortest.time - rule.least, _under(rule))
 
 
-def _play(studies: Sequence[Study], edges: Sequence[Edge], plays: dict[Way, Study]) -> Study | None:
+def _play(studies: Sequence[Study], edges: Sequence[Edge], plays: dict[_Outcomes, Study]) -> Study | None:
     """This way through the state graph, played in one if it is not among ``plays``; None where some play shows it as it
     is, or only a play that turns an order comes there: what that draws cannot be drawn in another."""
     chosen = [edge[2] for edge in edges if edge[2] is not None]
