@@ -2,8 +2,8 @@
 
 Takes the checkout; gives every mutant that the operators of cosmic-ray make of ``seqcheck/engine`` and
 ``seqcheck/checks``, and a sample of them drawn by a seed. Leaves out what can change nothing by its making: type
-annotations, which are never evaluated here, and ``==`` for ``is`` where a thing is compared with None or with a member
-of an enumeration.
+annotations, which are never evaluated here, ``==`` for ``is`` where a thing is compared with None or with a member
+of an enumeration, and how a record is made (``slots``, ``frozen``, ``kw_only``), which only mypy has to do with.
 """
 
 from __future__ import annotations
@@ -60,7 +60,7 @@ def _mutants_of_file(checkout: Path, file: Path) -> list[Mutant]:
     source = file.read_text(encoding="utf-8")
     name = file.relative_to(checkout).as_posix()
     lines = source.splitlines()
-    unused = _annotations(source)
+    unused = [_extent(node) for node in (*_annotations(source), *_ways_of_making(source))]
     statements = [
         (node.lineno, node.end_lineno or 0) for node in ast.walk(ast.parse(source)) if isinstance(node, ast.stmt)
     ]
@@ -83,20 +83,30 @@ def _around(statements: list[tuple[int, int]], line: int) -> tuple[int, int]:
     return min(around, key=lambda one: one[1] - one[0], default=(line, line))
 
 
-def _annotations(source: str) -> list[tuple[tuple[int, int], tuple[int, int]]]:
-    """Where annotations begin and end: from behind the name to the end, so that the arrow is inside."""
-    tree = ast.parse(source)
+def _annotations(source: str) -> list[ast.expr]:
     notes: list[ast.expr | None] = []
-    for node in ast.walk(tree):
+    for node in ast.walk(ast.parse(source)):
         if isinstance(node, (ast.arg, ast.AnnAssign)):
             notes.append(node.annotation)
         elif isinstance(node, (ast.FunctionDef, ast.AsyncFunctionDef)):
             notes.append(node.returns)
+    return [note for note in notes if note is not None]
+
+
+def _ways_of_making(source: str) -> list[ast.expr]:
     return [
-        ((note.lineno, note.col_offset), (note.end_lineno or 0, note.end_col_offset or 0))
-        for note in notes
-        if note is not None
+        word.value
+        for node in ast.walk(ast.parse(source))
+        if isinstance(node, ast.ClassDef)
+        for decorator in node.decorator_list
+        if isinstance(decorator, ast.Call)
+        for word in decorator.keywords
+        if word.arg in ("slots", "frozen", "kw_only")
     ]
+
+
+def _extent(node: ast.expr) -> tuple[tuple[int, int], tuple[int, int]]:
+    return (node.lineno, node.col_offset), (node.end_lineno or 0, node.end_col_offset or 0)
 
 
 def sample(mutants: list[Mutant], number: int, seed: int, checkout: Path) -> list[Mutant]:
