@@ -9,7 +9,7 @@ from __future__ import annotations
 import gc
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 from seqcheck.checks.assumptions import assumptions
 from seqcheck.checks.catalogue import ACCEPTABLE, CHECKS
@@ -28,9 +28,10 @@ from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Problem, Report
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class StudiedPart:
     """Sequences that something ties together, and every play of them, the typical one first."""
 
@@ -39,7 +40,7 @@ class StudiedPart:
     states: TimedStates
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Studied:
     """A machine, its parts, and what is behind its report: ``broken`` in the order of the report's findings."""
 

@@ -9,16 +9,16 @@ from __future__ import annotations
 import difflib
 import re
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 
 from seqcheck.machine.model import Machine, items_of, steps_of
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose, Step
 
 _OTHERWISE = "otherwise"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Part:
     """What is asked for. Steps by name, qualified or not; ``rows`` by device or sequence (all if empty); ``choices``
     as ``PLACE=BRANCH``."""
@@ -35,7 +35,7 @@ class Unplaceable(Exception):
     """What was asked for is not there; the message says so to the user."""
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Wish:
     """The ``branches`` (from 0) that a choice is to take one after another; the last of them for good. ``asked``: as it
     was written."""

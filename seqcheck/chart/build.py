@@ -10,7 +10,6 @@ from __future__ import annotations
 import difflib
 from bisect import bisect_left
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
 
 from seqcheck.chart.apart import left_out, part_shown
 from seqcheck.chart.asked import Part, Unplaceable
@@ -24,6 +23,7 @@ from seqcheck.chart.window import Window, window_of
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.trace import Choice, Visit
 from seqcheck.machine.findings import Report
+from seqcheck.machine.records import record
 from seqcheck.pipeline import Studied, StudiedPart
 
 
@@ -62,7 +62,7 @@ def _notes_on_run(studied: Studied, report: Report, window: Window, number: int)
     return tuple(notes)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Placed:
     """A row with the events of its edges, so that the path finds its way."""
 

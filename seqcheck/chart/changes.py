@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.checks.narrate import describe
 from seqcheck.checks.study import Study
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Change:
     """An event of the graph at which a row comes to a level; ``lasting`` as in ``model.Edge``. ``found``: it was so
     before, as far as anybody knows, and a choice that looks finds it; it has no part in when anything comes."""

@@ -7,7 +7,6 @@ May add events to the graph.
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 from seqcheck.chart.bits import flag_changes, follower_starts_on, outside_line
 from seqcheck.chart.changes import Change, words
@@ -17,13 +16,14 @@ from seqcheck.checks.study import Study
 from seqcheck.engine.trace import Choice, Stroke, Visit
 from seqcheck.machine.devices import Cylinder, FollowingSignal, OutsideSignal, Sensor
 from seqcheck.machine.model import items_of, steps_of
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose, Sequence
 from seqcheck.machine.time import WHOLE_SHARE
 
 _OFF_ON = ("off", "on")
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Line:
     """A device's row over the whole run; it starts at ``start``. ``ends`` as in ``model.Row``."""
 
@@ -36,7 +36,7 @@ class Line:
     ends: tuple[str, str] = _OFF_ON
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Sequenced:
     """The steps of one sequence over the whole run, and its choices as they were taken."""
 

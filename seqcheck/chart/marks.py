@@ -6,7 +6,6 @@ Takes a window with its report; gives events of the window's graph. May add even
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from functools import partial
 
 from seqcheck.chart.window import Window
@@ -18,12 +17,13 @@ from seqcheck.engine.conditions import aspect_of
 from seqcheck.machine.conditions import Condition, terms_of
 from seqcheck.machine.findings import Finding
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
 
 _Key = tuple[str, str, str | None, Place]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Spot:
     """The typical time (of the run) at which a finding lies, and the names of the rows that it could stand at, best
     first: its subject, its step."""

@@ -7,10 +7,10 @@ are shares of a row's height in millionths: a coil is at 0 or 1000000, a cylinde
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.machine.findings import Finding
+from seqcheck.machine.records import record
 from seqcheck.machine.time import WHOLE_SHARE
 
 #: The levels of a row's line: off, retracted or position ``b``; on, extended or position ``a``; a valve's centre.
@@ -35,7 +35,7 @@ class RowKind(Enum):
         return self in (RowKind.VALVE, RowKind.CYLINDER)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Edge:
     """An event of a row: exactly how early and how late it can come after the anchor (None where an outside signal
     leaves that open), when it comes typically, what it is in words, and the row's level at it. ``lasting`` is False
@@ -64,7 +64,7 @@ class Edge:
         return self.earliest_us == self.typical_us == self.latest_us
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Band:
     """A step while it is active. ``name`` is without that of its sequence. ``lane``: steps that run together lie in
     lanes below each other, 0 on top. ``begin`` and ``end`` are None where it reaches beyond the part shown."""
@@ -77,7 +77,7 @@ class Band:
     end: Edge | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Decision:
     """Where a sequence takes ``branch`` (from 1, ``of`` so many) of the choice in a ``line`` of the text; ``way`` is
     that branch in words. ``lane``: among the steps. ``branch`` is None where its time ran out before."""
@@ -90,7 +90,7 @@ class Decision:
     lane: int = 0
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Row:
     """One device, or the steps of one sequence (which have ``bands`` and ``decisions`` and no line). ``edges`` in the
     order of their typical times, all within the part shown; the line starts at ``begin_level`` and ends at
@@ -112,7 +112,7 @@ class Row:
         return max((band.lane for band in self.bands), default=0) + 1
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Mark:
     """Where a finding lies. ``number`` is its place in the report, from 1; ``row`` an index of the chart's rows.
     ``time_us`` and ``row`` are None where it lies nowhere in the part shown."""
@@ -123,7 +123,7 @@ class Mark:
     row: int | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class PathPoint:
     """An event of the critical path: its row (index), its typical time, how late it can come, the words for it."""
 
@@ -133,7 +133,7 @@ class PathPoint:
     text: str
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Chart:
     """One part of one run: from ``begin_us`` to ``end_us``, both typical. ``anchor`` says in words what the times are
     measured from. ``title`` names the part shown (``settled cycle of main``, say). ``notes``: what a reader must know

@@ -6,16 +6,15 @@ by. Date and revision are what the user has given: no clock is asked, and what w
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.chart.page_markup import NOTHING, Markup, element, name, text
 from seqcheck.machine.findings import Report
+from seqcheck.machine.records import record
 from seqcheck.report.plain import plain
 
 _ISOLATED = ("\u2068", "\u2069")
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Imprint:
     date: str | None = None
     revision: str | None = None

@@ -9,9 +9,9 @@ from __future__ import annotations
 import html
 import re
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from typing import NewType
 
+from seqcheck.machine.records import record
 from seqcheck.report.plain import plain, plain_characters
 
 Markup = NewType("Markup", str)
@@ -28,7 +28,7 @@ _PART_OF_LONG_WORD = 12
 _LONG_TABLE = 18
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Column:
     """``figures`` stand to the right; a ``name`` is never broken; a ``blank`` is left to be filled in by hand."""
 

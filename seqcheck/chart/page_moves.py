@@ -9,7 +9,6 @@ valves) make moves of their own, from the coil switching to the position reached
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 
 from seqcheck.chart.shifts import valves_of, way_of
 from seqcheck.checks.study import Study
@@ -17,10 +16,11 @@ from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.trace import Edge, Stroke, Visit
 from seqcheck.machine.findings import Duration
 from seqcheck.machine.model import Machine, steps_of
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Step
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Move:
     """``coil`` switches (``energized``, or released), ``sensor`` (or a signal that follows the piston) comes or goes
     (``sensor_on``): None where nothing waits for one. ``waiting`` is the step that waits for it, which need not be the

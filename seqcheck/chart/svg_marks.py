@@ -7,7 +7,6 @@ Takes a chart, a frame and a canvas; draws.
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from itertools import pairwise
 
 from seqcheck.chart.canvas import Canvas, Point, text_width, wrapped
@@ -16,6 +15,7 @@ from seqcheck.chart.svg_rows import INK, SHADE, SHADE_END, level_at
 from seqcheck.chart.view import BOX_HEIGHT, SMALL_SIZE, Frame, Spot
 from seqcheck.chart.wording import SAFETY, finding_in_a_line, measured_from, time_in_words
 from seqcheck.machine.findings import Severity
+from seqcheck.machine.records import record
 
 PATH = "#d98e2b"
 _RADIUS = 9
@@ -118,7 +118,7 @@ def draw_sign(canvas: Canvas, mark: Mark, x: float, y: float) -> None:
     canvas.text(x, y + 4.2, str(mark.number), size, text_anchor="middle", font_weight="bold", fill=fill)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Caption:
     """A line below the picture; ``mark`` where a finding begins, whose sign then stands before it."""
 

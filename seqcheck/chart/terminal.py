@@ -8,12 +8,13 @@ the encoding lacks the signs.
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import fields
 
 from seqcheck.chart.model import HIGH, LOW, MIDDLE, TAP, Band, Chart, Edge, Row, RowKind
 from seqcheck.chart.view import band_times, ticks, whole_time
 from seqcheck.chart.wording import finding_in_a_line, measured_from, time_in_words
 from seqcheck.machine.findings import Severity
+from seqcheck.machine.records import record
 from seqcheck.machine.time import WHOLE_SHARE
 from seqcheck.report.layout import BLANK, Line, Tone, padded, paragraph
 from seqcheck.report.plain import plain_record
@@ -25,7 +26,7 @@ _STROKE_LINES = 3
 _TONES = {Severity.ERROR: Tone.ERROR, Severity.WARNING: Tone.WARNING, Severity.NOTE: Tone.NOTE}
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Signs:
     """``on`` and ``off`` are sure, ``perhaps_`` not; ``still``: a spool stands; ``swept``: a piston may be there."""
 
@@ -54,7 +55,7 @@ def chart_lines(chart: Chart, encoding: str = "utf-8", width: int = 80, ascii_on
 
 def _carries_all(encoding: str) -> bool:
     try:
-        "".join(getattr(FULL, name) for name in Signs.__slots__).encode(encoding)
+        "".join(getattr(FULL, sign.name) for sign in fields(Signs)).encode(encoding)
     except (UnicodeEncodeError, LookupError):
         return False
     return True

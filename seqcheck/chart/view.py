@@ -7,12 +7,12 @@ side by side; the row names and the steps are in each of them, and a view may le
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from itertools import accumulate, pairwise
 
 from seqcheck.chart.canvas import text_width
 from seqcheck.chart.model import Band, Chart, Edge, Row, RowKind
 from seqcheck.language.durations import format_duration
+from seqcheck.machine.records import record
 from seqcheck.machine.time import WHOLE_SHARE
 
 NAME_SIZE, SMALL_SIZE, STEP_SIZE = 13, 11, 12
@@ -37,7 +37,7 @@ _ROOM_FOR_SIGNS = 20
 _MOST_SLANTED, SLANT_RISE = 110, 0.71
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class View:
     """``rows``: indices of the chart's rows, all if None; rows of steps are always shown. ``width``: of the whole
     picture in pixels, as the chart needs if None. ``captions``: with its title above and the findings below."""
@@ -49,7 +49,7 @@ class View:
     captions: bool = True
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Spot:
     """A row of the picture: ``index`` among the chart's rows, from ``top`` over ``height``; its line between the
     heights ``low`` and ``high``. ``lane_tops``: where each lane of steps begins."""
@@ -72,7 +72,7 @@ class Spot:
         return self.low + (self.high - self.low) * level / WHOLE_SHARE
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Frame:
     """``left`` to ``right`` is the time axis, ``top`` to ``bottom`` the rows, steps first; ``slanted``: the height
     over them for step names that their boxes have no room for. ``begin_us`` to ``end_us``: the part of the view in

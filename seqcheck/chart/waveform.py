@@ -10,10 +10,10 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 from seqcheck import __version__
 from seqcheck.chart.model import HIGH, LOW, MIDDLE, Chart, Row, RowKind
+from seqcheck.machine.records import record
 from seqcheck.machine.time import WHOLE_SHARE
 
 #: What a code is made of: what the standard allows, less what begins a time or a keyword.
@@ -23,7 +23,7 @@ _SHIFTING = "xx"
 _NOT_IN_A_NAME = re.compile(r"[^!-~]|[$#]")
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Variable:
     """``declared``: kind and size. ``changes``: (microseconds from the beginning, value as written)."""
 

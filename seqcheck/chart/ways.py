@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections import Counter, deque
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 from seqcheck.chart.asked import Unplaceable, Wish
 from seqcheck.checks.study import Study
@@ -23,12 +23,13 @@ from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Choice, Read
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose
 
 _MOST_TRIES = 24
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Preference:
     """The branch that each of some choices takes wherever it may; the others take their first."""
 
@@ -50,7 +51,7 @@ class Preference:
         return Preference(tuple(sorted((*kept, (place, branch)))))
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Shown:
     """A play, and its cycle (a number of ``trace.cycles``) at which the chart begins. ``loop``: the events from which
     to which a play goes round that never begins a cycle anew."""

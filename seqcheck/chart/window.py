@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from bisect import bisect_right
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 from seqcheck.chart.asked import Part, Unplaceable, step_named, wishes_of
 from seqcheck.chart.ways import Shown, long_enough, shown_way
@@ -16,9 +16,10 @@ from seqcheck.checks.study import Study
 from seqcheck.engine.states import waits_for_outside
 from seqcheck.engine.trace import Read, Visit
 from seqcheck.machine.model import Machine, steps_of
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Window:
     """``begin`` and ``end`` are typical times of the run; ``anchor`` is an event. ``cycle``: the events from which to
     which the first shown cycle is counted, None where nothing comes round. ``starts``: the cycles within."""

@@ -10,17 +10,17 @@ from __future__ import annotations
 
 from bisect import bisect_left
 from collections.abc import Collection, Iterator, Mapping, Sequence
-from dataclasses import dataclass
 
 from seqcheck.checks.crossings import reached
 from seqcheck.engine.bounds import both_ways, greatest_separations
 from seqcheck.engine.explore import Settlement
 from seqcheck.engine.trace import Visit, Wait
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Step
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Instant:
     """A run that can take no time, from passage ``number`` of a play to the next one; ``always``: it never takes any.
     ``steps`` are left in it."""
@@ -35,7 +35,7 @@ class Instant:
         return self.settlement.states[self.number], self.settlement.states[self.number + 1]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Chase:
     """Runs that lead round and round among these ``states``; ``step`` is the first of the text that is left in them.
     ``certain``: whoever comes there stays, and no time passes any more."""

@@ -13,6 +13,7 @@ from seqcheck.checks.study import Study
 from seqcheck.machine.findings import Finding, Moment, Severity
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
 @dataclass(slots=True, eq=False)
@@ -33,7 +34,7 @@ class Wording:
         return f"only {left} left: beyond that {self.timeless or self.message.replace(' {by}', '')}"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Instead:
     """What a run comes to that breaks an order by which it would be another run: ``text`` in place of the steps that
     are entered at event ``at``, and ``shown`` to tell of what was really played whether it came to that."""
@@ -77,7 +78,7 @@ class Obligation:
         return ((self.first, self.second), *self.others)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Sight:
     """What a check sees without holding times against each other. ``run``: what happens, where that shows it, and
     ``replayed``: whether it came to that when it was played (as typical times always are); ``at``: the event by which
@@ -113,7 +114,7 @@ def nothing_to_read(machine: Machine) -> Iterable[Sight]:
     return ()
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Together:
     """What no play shows alone: ``plays`` that do, and ``sights`` of what it comes to over several of them."""
 
@@ -125,7 +126,7 @@ def nothing_together(studies: Sequence[Study]) -> Together:
     return Together()
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Check:
     """``title``: the kind in a few words. ``obligations`` and ``sights`` are of one play, ``omissions`` of all plays
     of a part together: what none of them comes to; ``together``: what only several of them come to. ``reading``: what

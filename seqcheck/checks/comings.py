@@ -8,16 +8,16 @@ from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 from seqcheck.checks.study import Study
 from seqcheck.engine.conditions import Alternatives, Literal, holding, literals_of
 from seqcheck.engine.graph import Event
 from seqcheck.engine.held import spells_of_condition
 from seqcheck.machine.conditions import TermKind
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Coming:
     """A condition comes to hold by ``event``, behind so many ``passages`` of the play. ``rank``: its place among all
     that happens."""

@@ -16,6 +16,7 @@ from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import Settlement
 from seqcheck.machine.findings import Duration
+from seqcheck.machine.records import record
 
 #: From one state at which ways part or meet to the next, as the choice at the first came out and was taken.
 Edge = tuple[int, int, Outcome | None, int | None]
@@ -23,7 +24,7 @@ Edge = tuple[int, int, Outcome | None, int | None]
 Through = Callable[[Edge], bool]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Spell:
     """From one event to another; None where the play ended before it came. ``first`` and ``last``: the passages at
     which it begins and ends, where these are states; several states may lie at one read. ``under_way``: it stands for
@@ -36,7 +37,7 @@ class Spell:
     under_way: bool = False
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Sum:
     """A way that takes so much ``time``, up to the end of ``edge`` and all ``before`` it. Not ``exact``: the times of
     its edges hang on one another. ``fixed``: none of them takes more than its least."""
@@ -273,7 +274,7 @@ def _where_ways_part(settlements: Sequence[Settlement]) -> set[int]:
     return ends | {state for state, ways in leaving.items() if len(ways) > 1}
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Stretch:
     """What lies from event ``begin`` to event ``end``, from passage ``first`` to passage ``last``: two at which ways
     part, or the ends of a play; ``end`` is None where it goes on to the end of a play that has ended."""

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -12,6 +11,7 @@ from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Visit
 from seqcheck.machine.devices import OnValve
 from seqcheck.machine.findings import Severity
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Step
 from seqcheck.machine.time import WHOLE_SHARE
 
@@ -36,7 +36,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             )
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Move:
     """``reached``: the valve's position that it takes for granted, where the played run has called that off."""
 

@@ -7,7 +7,6 @@ opposed one is.
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
 from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
@@ -19,11 +18,12 @@ from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Origin, Spell
 from seqcheck.machine.devices import ControllerKind, Valve
 from seqcheck.machine.findings import Handover, Severity
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import CommandKind
 from seqcheck.machine.time import NO_TIME
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Pair:
     valve: Valve
     earlier: Spell

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from bisect import bisect_left
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 from seqcheck.checks.check import Check, Obligation, Sight, Together, Wording
 from seqcheck.checks.comings import Coming, comings
@@ -17,6 +17,7 @@ from seqcheck.engine.conditions import alternatives_of
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.explore import follow, outcomes_before
 from seqcheck.machine.findings import Moment, Severity
+from seqcheck.machine.records import record
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule
 
 #: A way that goes round is shown for no more rounds than this.
@@ -105,7 +106,7 @@ def _never_comes(study: Study) -> Iterator[Sight]:
                     break
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Extreme:
     """The way through the state graph that takes longest, or shortest, of all that a rule limits; ``margin_us``: how
     much is left of the limit, and what to ``say`` where nothing is."""

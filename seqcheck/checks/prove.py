@@ -7,7 +7,7 @@ margins, in no order. Obligations that the text states once are met in every cyc
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from functools import partial
 
 from seqcheck.checks.certainty import Segment, Ways
@@ -27,9 +27,10 @@ from seqcheck.engine.timeline import given
 from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.findings import Finding, Margin, Severity
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Broken:
     """A finding with the run behind it and the way of playing to which that run belongs; None for a finding that needs
     no run. ``part``: the number of the part of the machine in which it comes about."""
@@ -40,7 +41,7 @@ class Broken:
     part: int = 0
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Proof:
     """``strays``: the played run itself breaks what other runs keep, and what these come to afterwards was not
     played."""
@@ -53,7 +54,7 @@ class Proof:
 _Key = tuple[str, str, str | None, Place]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Seen:
     """A finding of one study; ``shown``: the segments of the play in which every timing shows it."""
 
@@ -128,7 +129,7 @@ def _is_thin(one: Broken) -> bool:
     return one.finding.margin_us is not None and one.finding.margin_us >= 0
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _ProofOfOne:
     seen: tuple[_Seen, ...]
     margins: tuple[Margin, ...]

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
 
@@ -21,10 +20,11 @@ from seqcheck.engine.timeline import Draw, typical
 from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Trace, Visit
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 from seqcheck.machine.time import Span
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Wait:
     """A visit that waits for a sensor, in the order of entering; ``latest_left``: of this one and all before it."""
 
@@ -34,7 +34,7 @@ class _Wait:
     visit: Visit
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Turned:
     """An order of a play, with the ``trace`` of one that has it the other way round and else is the same, and the one
     behind both, ``unturned``, that has turned no order from there on."""

@@ -8,7 +8,7 @@ that runs once, from its start to its end.
 from __future__ import annotations
 
 from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from functools import partial
 from itertools import pairwise
 
@@ -23,13 +23,14 @@ from seqcheck.engine.states import TimedStates, waits_for_outside
 from seqcheck.engine.trace import Read
 from seqcheck.machine.findings import ChoiceTime, Duration, PathPart
 from seqcheck.machine.model import Machine, items_of, steps_of
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose, Step
 from seqcheck.machine.time import NO_TIME, Span
 
 _Interval = tuple[int, int]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Times:
     """``cycles`` of every sequence and ``choices``: the cycle for every branch that a choice can take; ``steps`` in the
     order of the text, those left out that no settled cycle leaves."""
@@ -182,7 +183,7 @@ def critical_path(study: Study) -> tuple[PathPart, ...]:
     return tuple(path)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Link:
     """An event of a chain of causes: how late it can come after the start of the chain, and the delay that brings
     it."""

@@ -7,7 +7,6 @@ is a problem of the text that it belongs to, the others are compared all the sam
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
 
 from seqcheck.compare.differences import Change, FileComparison
@@ -30,6 +29,7 @@ from seqcheck.language.source import Source, decode, read_source
 from seqcheck.machine.findings import Problem, Report
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.pipeline import examine_source
 
 #: Examines many texts; their reports come in the order of the names.
@@ -45,7 +45,7 @@ STORED_HOLDS = (
 )
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Side:
     """One text, examined; ``machine`` is None where only a stored report is left of it, or it could not be read."""
 
@@ -54,7 +54,7 @@ class Side:
     machine: Machine | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Examining:
     """How both sides are examined: the timing sheets laid over them, and the reserve asked of every margin.
     ``examine_all`` does the same for many texts."""

@@ -6,10 +6,10 @@ Times are whole microseconds. An old or new value that is not there at all is to
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.machine.findings import Duration, Finding, Problem
+from seqcheck.machine.records import record
 
 
 class Difference(Enum):
@@ -27,7 +27,7 @@ class Part(Enum):
     RULE = "rule"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Change:
     """``name`` with its kind (``coil Y1``, ``step main.raise``). ``aspect``, ``old`` and ``new`` belong to what has
     changed; a new step says in ``new`` where it stands."""
@@ -40,7 +40,7 @@ class Change:
     new: str | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class FindingChange:
     """``finding`` as it is now, or as it was where it is gone; ``before`` where it was there already. ``worse``: it
     counts now, and did not before."""
@@ -51,7 +51,7 @@ class FindingChange:
     worse: bool
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class MarginChange:
     """The tightest margin of one kind, subject and step. ``worse``: it shrank by more than is allowed."""
 
@@ -68,7 +68,7 @@ class MarginChange:
         return self.difference is Difference.CHANGED and loss(self.old_us, self.new_us) > 0
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class DurationChange:
     """A cycle, a cycle with one branch of a choice, or a step; ``old`` is None where it is new, ``new`` where it is
     gone. ``worse``: the greatest grew by more than is allowed."""
@@ -79,7 +79,7 @@ class DurationChange:
     worse: bool
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class FileComparison:
     """One text before and after; a name is None where there was no such text, or is none any more. ``compared`` is
     False where one of the two could not be examined: then only ``changes`` may be told. ``left_out`` says what could

@@ -9,16 +9,17 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Iterator, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from itertools import zip_longest
 
 from seqcheck.compare.differences import Difference, DurationChange, FindingChange, MarginChange, growth, loss
 from seqcheck.machine.findings import ChoiceTime, Duration, Finding, Margin, Report
+from seqcheck.machine.records import record
 
 Key = tuple[str, str, str | None]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Bar:
     """What makes a change worse: a margin that shrank or a greatest cycle time that grew by more than ``allow_us``, or
     a finding that ``counts`` and did not before."""

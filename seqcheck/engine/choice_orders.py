@@ -9,16 +9,16 @@ from __future__ import annotations
 
 from bisect import bisect_right
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass
 from itertools import combinations
 
 from seqcheck.engine.conditions import Aspect, Literal, holding
 from seqcheck.engine.order import Order
 from seqcheck.engine.trace import Choice, Edge, Known, Trace
 from seqcheck.engine.wait_orders import passing
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ChoiceOrder:
     """``other``: the branch that would be taken were it the other way round, None for waiting first. ``outside``: one
     of the two is a signal from outside, so that it is nobody's fault. ``asked``: what is asked; ``how`` it would come
@@ -48,7 +48,7 @@ def asked_in_time(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
 _Fact = Aspect | Literal
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Moment:
     """``facts`` are known from then on. ``comes``: the read that comes to the choice; ``ready``: its floor, from which
     on the choice is taken as soon as a condition holds."""

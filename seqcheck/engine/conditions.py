@@ -7,16 +7,16 @@ many alternatives there are is for ``scope`` to look at.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
 from itertools import product
 
 from seqcheck.machine.conditions import AllOf, AnyOf, Condition, Not, Term, TermKind
+from seqcheck.machine.records import record
 
 #: What a term is about, whoever names it where: kind, subject, aspect.
 Aspect = tuple[TermKind, str, str | None]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Literal:
     """A term, and whether it has to be true or false."""
 

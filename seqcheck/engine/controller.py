@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
 from functools import partial
 from itertools import product
 from typing import Protocol
@@ -26,12 +25,13 @@ from seqcheck.engine.trace import Choice, Edge, Known, Origin, Read, Spell, Trac
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import ControllerKind
 from seqcheck.machine.model import Machine, steps_of
+from seqcheck.machine.records import record
 
 #: Hands on: coil or output, on or off, the event at which it switches, the origin.
 Switch = Callable[[str, bool, int, Origin], None]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Outcome:
     """One way in which a choice may come out at a read: the branch, None where no condition holds yet; ``signals``
     from outside that bring it about, by whether they are on."""

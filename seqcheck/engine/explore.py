@@ -28,6 +28,7 @@ from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.model import Machine, items_of
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose
 
 #: More ways than this in which orders may turn out between two states are not played; the report then says so.
@@ -36,7 +37,7 @@ MOST_ORDERS = 16
 _MOST_PLACINGS = 8
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Turn:
     """``order`` of the ``play``, by its number, of which another play is the other way round and else the same."""
 
@@ -44,7 +45,7 @@ class Turn:
     order: Order
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Recipe:
     """How to play one way: the outcomes of its choices, delays that are not typical, and which orders between the
     states at passage ``fresh`` and the next one they turn, the last of them by ``turn``."""
@@ -55,7 +56,7 @@ class Recipe:
     turn: Turn | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Settlement:
     """One play. ``first`` and ``last``: the settled cycles run from one to the other of ``trace.cycles`` (none for a
     sequence that runs once or does not come round). ``settled``: a known state has come up, or nothing was due any
@@ -86,7 +87,7 @@ class Settlement:
             yield number, begin, end
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class StateGraph:
     """The first settlement is the typical one. ``complete``: whatever may come out otherwise was played."""
 

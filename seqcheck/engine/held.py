@@ -6,16 +6,16 @@ Takes a trace and a condition; gives its spells by the events that begin and end
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from itertools import groupby
 from operator import itemgetter
 
 from seqcheck.engine.conditions import Alternatives, Aspect, holding
 from seqcheck.engine.trace import Change, Trace
 from seqcheck.machine.conditions import TermKind
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Holds:
     """Since the event ``begin``, to ``end``; None where the play ended before. ``begun_by_read``, ``ended_by_read``:
     whether that is what a read does, not what it sees before it does anything at the same event. ``goes_on``: had what

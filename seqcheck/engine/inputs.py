@@ -7,7 +7,6 @@ wait for a read. A change taken back before that vanishes together with the one 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 
 from seqcheck.engine.conditions import Aspect
 from seqcheck.engine.graph import Event
@@ -17,10 +16,11 @@ from seqcheck.engine.trace import Edge, Known, Trace
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import Controller, FollowingSignal, Island
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 from seqcheck.machine.time import NO_TIME, Span
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class InputPath:
     """What a change of an input passes on its way to the controller: the sensor's own delay (or the time by which a
     signal follows) under the name ``what``, the filter, the update of the island."""

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from seqcheck.machine.records import record
 
 #: What the text says of an order: where, and what the two events are.
 OrderKey = tuple[object, ...]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Order:
     """``strict``: at the same instant it is the other way round already. ``keeping``: pairs of events that have to stay
     in their order for it to matter."""

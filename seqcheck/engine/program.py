@@ -12,10 +12,11 @@ from dataclasses import dataclass, field
 from seqcheck.engine.conditions import Alternatives, alternatives_of
 from seqcheck.machine.model import Machine, items_of
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose, Item, Jump, Repeat, Sequence, Step, Together
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Enter:
     """Be in a step until its exit; then go on behind it."""
 
@@ -23,7 +24,7 @@ class Enter:
     alternatives: Alternatives
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Count:
     """Begin a loop; ``behind`` is where to go on when it runs no time at all."""
 
@@ -31,14 +32,14 @@ class Count:
     behind: int
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Again:
     """The end of a loop that begins at ``start``."""
 
     start: int
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Fork:
     """A thread for each branch; behind them the thread goes on at ``join``."""
 
@@ -47,12 +48,12 @@ class Fork:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class BranchEnd:
     """A branch has ended; it waits for the others."""
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Select:
     """Go on at the first of ``branches`` whose condition holds."""
 
@@ -67,7 +68,7 @@ class Select:
         return self.conditions if self.choose.choices[-1].condition is not None else ()
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Go:
     """On at another address; ``step``: the one that is jumped to, None where a branch of a choice has ended."""
 
@@ -75,7 +76,7 @@ class Go:
     step: str | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Last:
     """Behind the last step: from the start again, or the end of a ``once``."""
 

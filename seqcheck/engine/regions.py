@@ -8,16 +8,16 @@ piston anywhere in that stretch.
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass
 
 from seqcheck.engine.bounds import Rows, both_ways, greatest_separation, greatest_separations
 from seqcheck.engine.graph import EventGraph
 from seqcheck.engine.strokes import Region
 from seqcheck.engine.trace import Shift, Stroke, Trace
 from seqcheck.machine.devices import Position
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Placing:
     """Where a piston may stand, as found with so many orders taken for granted, for the events ``stands``."""
 

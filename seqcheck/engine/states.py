@@ -8,7 +8,7 @@ adding runs up is safe and may be a little wide.
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.controller import Outcome
@@ -18,10 +18,11 @@ from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import OutsideSignal
 from seqcheck.machine.findings import Duration
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose, Step
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class State:
     """``sequence``: which begins anew there; or a ``choose``, behind step ``after``; or a ``step`` to which a jump or a
     watchdog may lead."""
@@ -33,7 +34,7 @@ class State:
     step: str | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Run:
     """``outcome``: how the choice at its first state came out, None where there was none."""
 
@@ -43,7 +44,7 @@ class Run:
     duration: Duration
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class TimedStates:
     states: tuple[State, ...]
     runs: tuple[Run, ...]

@@ -6,14 +6,13 @@ rounded outward to whole microseconds. Shares are millionths of the stroke.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.machine.devices import Cylinder, Sensor, Stroke
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 from seqcheck.machine.time import WHOLE_SHARE, Span
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Region:
     """Where a piston stands: between marks ``low`` and ``high`` (indices), at a mark where the two are the same.
     ``rests``: ends of the stroke among the two at which it may stand exactly."""

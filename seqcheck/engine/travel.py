@@ -12,12 +12,12 @@ when counted from the start, a little wide between two marks.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from itertools import pairwise
 from typing import Literal
 
 from seqcheck.engine.strokes import Region, longest_part, moving_time, part_from_start, part_of
 from seqcheck.machine.devices import Cylinder, Stroke
+from seqcheck.machine.records import record
 from seqcheck.machine.time import NO_TIME, Span
 
 #: What a part is counted from, besides the number of a mark earlier in the plan.
@@ -25,7 +25,7 @@ START = -1
 LEAVING = -2
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Part:
     """``since``: START, LEAVING or the number of an earlier mark in the plan. ``drawn``: as what its time is drawn
     anew, if it is: on the way to a mark, or from anywhere ``between`` marks at which the piston may stand."""
@@ -35,7 +35,7 @@ class Part:
     drawn: Literal["mark", "between"] | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Reach:
     """A mark, by its index on the cylinder, and what it takes to be reached. ``only_if``: the moment at which the
     piston would come to it if it stood in the last stretch before it, which is no event of its own."""
@@ -45,7 +45,7 @@ class Reach:
     only_if: bool = False
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Travel:
     """``positions`` of the marks from retracted to extended, in millionths; ``valve`` is the span of the shift that
     starts the stroke, which a stroke timed from the coil contains."""

@@ -9,18 +9,18 @@ find it in what was really played.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
 
 from seqcheck.engine.bounds import causes_since, greatest_of
 from seqcheck.engine.columns import separation_column
 from seqcheck.engine.graph import Arc, DelayName, EventGraph
 from seqcheck.engine.trace import Trace
+from seqcheck.machine.records import record
 
 #: How long a wait that nothing limits lasts in a concrete run.
 _LONG_US = 60_000_000
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Witness:
     """``times`` of the pair's events, of those that are taken to come before or behind them, and of all their causes
     since the event that dominates the pair; ``delays`` by name, all others typical. ``chain``: the events on the way to

@@ -21,6 +21,7 @@ from seqcheck.language.parse import parse_text
 from seqcheck.language.problems import Problems
 from seqcheck.language.source import Source
 from seqcheck.language.spelling import blank_between, spelling_of
+from seqcheck.machine.records import record
 
 WIDTH = 120
 INDENT = 4
@@ -59,7 +60,7 @@ class _Piece:
         return spelling_of(self.token)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Comment:
     text: str
     blank: bool

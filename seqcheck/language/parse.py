@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from dataclasses import dataclass
 
 from lark import Token, Tree, UnexpectedInput
 from lark.exceptions import UnexpectedCharacters, UnexpectedToken
@@ -22,6 +21,7 @@ from seqcheck.language.slips import describe_slip
 from seqcheck.language.source import Source
 from seqcheck.language.statements import statement_text
 from seqcheck.language.syntax import SettingValue, StatementText
+from seqcheck.machine.records import record
 
 MOST_SLIPS = 20
 
@@ -34,7 +34,7 @@ _BEGINNING = re.compile(
 _DECLARED = re.compile(r"(?<!\w)(?:io|valve|coil|output|cylinder|sensor|signal|flag|sequence|step)\s+([^\W\d]\w*)")
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Parsed:
     """``forgiven`` are the names in broken statements; ``whole`` says that there were none broken."""
 

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator
-from dataclasses import dataclass
 from typing import Any
 
 import yaml
@@ -20,6 +19,7 @@ from seqcheck.language.syntax import Edges, Setting, Settings, SettingValue, Wor
 from seqcheck.language.times import CONTROLLER
 from seqcheck.machine.devices import Stroke
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.time import Span
 
 GREATEST_SHEET = 512 * 1024
@@ -48,7 +48,7 @@ class _EnoughSeen(Exception):
     """What follows is not worth reading."""
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class SheetEntry:
     """The settings of one device; the controller's ``name`` is empty."""
 

@@ -7,9 +7,9 @@ from __future__ import annotations
 
 import difflib
 from collections.abc import Iterable
-from dataclasses import dataclass
 
 from seqcheck.language.problems import short
+from seqcheck.machine.records import record
 
 #: What the terminals that are no keywords stand for.
 _MEANT = {
@@ -48,7 +48,7 @@ _UNSAID = {
 _MOST_NAMED = 8
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Slip:
     start: int
     end: int
@@ -60,7 +60,7 @@ class Slip:
 Words = tuple[str, str | None]
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Situation:
     """The place of a slip. ``word`` is empty at the end of the text; ``opened`` is the line of the innermost open
     brace of this statement."""

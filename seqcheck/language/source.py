@@ -7,11 +7,12 @@ what cannot be read or is no text.
 from __future__ import annotations
 
 import sys
-from dataclasses import dataclass, field
+from dataclasses import field
 from pathlib import Path
 
 from seqcheck.machine.findings import Problem
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 #: The name of standard input.
 STANDARD = "-"
@@ -19,7 +20,7 @@ GREATEST_SIZE = 16 * 1024 * 1024
 _MARK = "\ufeff".encode()
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Source:
     """A text and the name it goes by in messages. ``marked``: a byte order mark stood before it."""
 

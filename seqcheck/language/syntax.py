@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.machine.devices import Stroke, ValveReturn
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.time import Span
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Word:
     """A name, a label or an address."""
 
@@ -17,7 +16,7 @@ class Word:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Marks:
     """What may stand behind a name."""
 
@@ -25,7 +24,7 @@ class Marks:
     address: Word | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Edges:
     """``on SPAN off SPAN``; one span for both stands in both."""
 
@@ -37,7 +36,7 @@ class Edges:
 SettingValue = Span | Stroke | Edges | int
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Setting:
     """One time of a device, from the text or from a sheet."""
 
@@ -52,7 +51,7 @@ Settings = tuple[Setting, ...]
 # Conditions
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class TermText:
     """``start``, ``lift.extended``, ``main.clamp+2``, ``main.(clamp+ pusher-)``: what stands before the point, and the
     rest in its plain spelling. ``motion`` tells a motion step."""
@@ -63,19 +62,19 @@ class TermText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class NotText:
     part: ConditionText
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class AllText:
     parts: tuple[ConditionText, ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class AnyText:
     parts: tuple[ConditionText, ...]
     place: Place
@@ -87,25 +86,25 @@ ConditionText = TermText | NotText | AllText | AnyText
 # Devices
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class MachineText:
     name: str
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class TimingText:
     file: str
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ControllerText:
     settings: Settings
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class IslandText:
     name: Word
     marks: Marks
@@ -113,7 +112,7 @@ class IslandText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class CoilText:
     name: Word
     marks: Marks
@@ -123,7 +122,7 @@ class CoilText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ValveText:
     """``starts`` and ``normally`` are the words behind those words, None where they are left out."""
 
@@ -140,7 +139,7 @@ class ValveText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class OutputText:
     name: Word
     marks: Marks
@@ -149,7 +148,7 @@ class OutputText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class SensorText:
     name: Word
     marks: Marks
@@ -161,7 +160,7 @@ class SensorText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ConditionsText:
     """``out when .. in when ..``"""
 
@@ -169,7 +168,7 @@ class ConditionsText:
     back: ConditionText
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class CylinderText:
     """``drive`` is the name of a valve or conditions; ``starts`` is ``extended`` or ``retracted``, where written."""
 
@@ -183,7 +182,7 @@ class CylinderText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class SignalText:
     """``follows`` is None for a signal from outside."""
 
@@ -194,7 +193,7 @@ class SignalText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class FlagText:
     name: Word
     marks: Marks
@@ -204,7 +203,7 @@ class FlagText:
 # Sequences
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class CommandText:
     """``word`` is on, set, reset or pulse."""
 
@@ -214,27 +213,27 @@ class CommandText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class UntilText:
     condition: ConditionText
     steady: int | None
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class DwellText:
     time: int
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class WithinText:
     time: int
     otherwise: TermText | None
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ExitText:
     """Every part at most once."""
 
@@ -243,7 +242,7 @@ class ExitText:
     within: WithinText | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class StepText:
     name: Word
     marks: Marks
@@ -252,14 +251,14 @@ class StepText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class MoveText:
     cylinder: Word
     out: bool
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class MotionText:
     """``spelled`` is the plain spelling that the step is named by: ``clamp+``, ``(clamp+ pusher-)``."""
 
@@ -269,40 +268,40 @@ class MotionText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class EveryText:
     within: int
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class TogetherText:
     branches: tuple[tuple[ItemText, ...], ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ChoiceText:
     condition: ConditionText | None
     items: tuple[ItemText, ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ChooseText:
     choices: tuple[ChoiceText, ...]
     within: WithinText | None
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class RepeatText:
     times: int
     items: tuple[ItemText, ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class JumpText:
     target: TermText
     place: Place
@@ -311,7 +310,7 @@ class JumpText:
 ItemText = EveryText | StepText | MotionText | TogetherText | ChooseText | RepeatText | JumpText
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class SequenceText:
     name: Word
     marks: Marks
@@ -323,7 +322,7 @@ class SequenceText:
 # Rules
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class NeverText:
     condition: ConditionText
     tolerated: int
@@ -332,7 +331,7 @@ class NeverText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class CycleLimitText:
     sequence: Word | None
     greatest: int
@@ -340,7 +339,7 @@ class CycleLimitText:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class PathLimitText:
     start: ConditionText
     end: ConditionText

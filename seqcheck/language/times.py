@@ -5,18 +5,17 @@ Takes the settings of the text and of each sheet, in order; gives the one that w
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.language.problems import Problems
 from seqcheck.language.syntax import Edges, Settings, SettingValue
 from seqcheck.machine.devices import Stroke
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.time import Span
 
 CONTROLLER = "controller"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Entry:
     value: SettingValue
     place: Place

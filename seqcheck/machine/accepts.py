@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Accept:
     """A comment ``# accept KIND: reason``. ``line`` is the one whose findings it accepts; ``place`` is its own."""
 

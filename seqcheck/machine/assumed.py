@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class AssumedTime:
     """``device`` is the name of a valve, a cylinder or an island, None for the controller; ``key`` is the word that
     would give the time (``extend``); ``medium`` names the sheet (``air``). ``place`` is the device's, None where the

@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
 class TermKind(Enum):
@@ -25,7 +25,7 @@ class TermKind(Enum):
     __hash__ = object.__hash__
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Term:
     """One resolved name. ``subject`` of a step is qualified (``main.raise``); ``aspect`` is the word behind the
     point for cylinders (``extended``, ``retracted``, ``moving``, ``between``) and valves (``a``, ``b``, ``centre``,
@@ -37,19 +37,19 @@ class Term:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Not:
     part: Condition
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class AllOf:
     parts: tuple[Condition, ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class AnyOf:
     parts: tuple[Condition, ...]
     place: Place

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.machine.conditions import Condition
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.time import NO_TIME, WHOLE_SHARE, Span
 
 
@@ -16,7 +16,7 @@ class ControllerKind(Enum):
     IDEAL = "ideal"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Controller:
     """``round`` is one scan, the interval of a task, or no time (ideal); ``run`` is from a task's read to its write."""
 
@@ -36,7 +36,7 @@ class Controller:
         return Span(0, longest // 2, longest)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Island:
     """A remote I/O or valve island on a bus (``io``)."""
 
@@ -68,7 +68,7 @@ class ValveReturn(Enum):
     MOTOR = "motor"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Coil:
     """``on``: energized to position reached. ``off``: released to rest reached, NO_TIME where the valve has no rest.
     For a motor valve ``on`` is its travel. ``decay``: how long it still pulls after its output went off."""
@@ -85,7 +85,7 @@ class Coil:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Valve:
     name: str
     label: str | None
@@ -108,7 +108,7 @@ class Valve:
         return Position.CENTRE
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Output:
     name: str
     address: str | None
@@ -119,7 +119,7 @@ class Output:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Sensor:
     """On while the piston is at ``low..high``, shares of the stroke in millionths (0 retracted, 1000000 extended)."""
 
@@ -138,7 +138,7 @@ class Sensor:
         return self.low <= position <= self.high
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Stroke:
     """A full stroke: from valve position reached (or from coil energized) to end reached."""
 
@@ -146,7 +146,7 @@ class Stroke:
     from_coil: bool
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class OnValve:
     """Out while the valve stands at ``a``, in at ``b``; ``reverse`` swaps the two."""
 
@@ -158,7 +158,7 @@ class OnValve:
         return None if position is Position.CENTRE else (position is Position.A) != self.reverse
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class OnConditions:
     """Out and in while a condition on valves holds."""
 
@@ -166,7 +166,7 @@ class OnConditions:
     back: Condition
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Cylinder:
     """``uneven`` is a share in millionths; sensors stand in the order of the text."""
 
@@ -188,7 +188,7 @@ class Cylinder:
         return WHOLE_SHARE if self.starts_extended else 0
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class OutsideSignal:
     """Comes from outside, ``after`` a step begins to wait for it; at any time where that is None."""
 
@@ -199,7 +199,7 @@ class OutsideSignal:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class FollowingSignal:
     name: str
     address: str | None
@@ -213,7 +213,7 @@ class FollowingSignal:
 Signal = OutsideSignal | FollowingSignal
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Flag:
     name: str
     label: str | None

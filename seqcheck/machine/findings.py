@@ -5,13 +5,12 @@ These are plain values. Whoever makes them (checks, language) and whoever shows 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 from seqcheck.machine.severity import Severity as Severity
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Problem:
     """A fault of the input. ``source`` is the line of text at ``place``, None where there is none to show (a missing
     file, say); ``advice`` says what would be right."""
@@ -22,7 +21,7 @@ class Problem:
     advice: str | None = None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Moment:
     """One line of a concrete run."""
 
@@ -30,7 +29,7 @@ class Moment:
     event: str
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Finding:
     """``margin_us`` is negative where something breaks by so much, None where no time is involved or where an
     outside wait leaves it open. ``replayed`` is None where there is no run to play. ``certain``: every timing
@@ -60,7 +59,7 @@ class Finding:
         return self.severity is Severity.ERROR or bool(self.run)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Margin:
     """The tightest margin of one obligation that the text states at ``place``; None where an outside wait leaves it
     open."""
@@ -72,7 +71,7 @@ class Margin:
     margin_us: int | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Handover:
     """From the end of one coil (decay included) to the start of the opposed one."""
 
@@ -84,7 +83,7 @@ class Handover:
     greatest_overlap_us: int
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Duration:
     """``greatest`` is None where an outside signal, or a way that can go back again and again, leaves it open. Not
     ``exact``: added up from pieces of which one hangs on the other, so that no run is shorter or longer, but maybe
@@ -101,7 +100,7 @@ class Duration:
         return Duration(min(self.least, other.least), self.typical, greatest, self.exact and other.exact)
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class ChoiceTime:
     """How long a cycle of ``sequence`` takes in which a choice takes the branch at ``place``, called ``way``. The
     typical time is that of the shortest way: nobody says which ways are typical."""
@@ -112,7 +111,7 @@ class ChoiceTime:
     duration: Duration
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class State:
     """A state that a machine comes to: where sequences begin anew, or where a choice may come out in several ways.
     ``name`` says which; ``choice`` is the place of the choice."""
@@ -122,7 +121,7 @@ class State:
     choice: Place | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class StateRun:
     """A run from one state to the next, by their numbers. ``way``: how the choice at the first of them came out."""
 
@@ -132,7 +131,7 @@ class StateRun:
     duration: Duration
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class PathPart:
     """One event on the critical path: how late it can come after the start of the cycle, the delay that brings it
     (least, greatest, the latter None where open) and where it stands."""
@@ -143,7 +142,7 @@ class PathPart:
     greatest: int | None
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Report:
     """Everything about one file. ``cycles`` and ``steps`` by sequence and qualified step name, in the text's order."""
 

@@ -3,16 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
 
 from seqcheck.machine.accepts import Accept
 from seqcheck.machine.assumed import AssumedTime
 from seqcheck.machine.devices import Coil, Controller, Cylinder, Flag, Island, Output, Sensor, Signal, Valve
+from seqcheck.machine.records import record
 from seqcheck.machine.rules import Rule
 from seqcheck.machine.steps import Choose, Item, Repeat, Sequence, Step, Together
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Machine:
     """Devices by name, in the order of the text."""
 

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from seqcheck.machine.conditions import Condition
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Never:
     """``tolerated`` (us): shorter than this is no break. ``text`` is the rule as it was written."""
 
@@ -19,7 +18,7 @@ class Never:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class CycleLimit:
     sequence: str
     greatest: int
@@ -27,7 +26,7 @@ class CycleLimit:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class PathLimit:
     """From one condition becoming true to the next time that the other does; ``least`` is None where only the
     greatest is limited."""

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.machine.conditions import Condition
 from seqcheck.machine.places import Place
+from seqcheck.machine.records import record
 
 
 class CommandKind(Enum):
@@ -16,7 +16,7 @@ class CommandKind(Enum):
     PULSE = "pulse"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Command:
     """``target`` is a coil, an output or a flag; ``duration`` (us) belongs to a pulse."""
 
@@ -26,7 +26,7 @@ class Command:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Watchdog:
     """``target`` is the step it goes to (``within .. else``), None where the sequence stops."""
 
@@ -35,7 +35,7 @@ class Watchdog:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Move:
     """One cylinder of a motion step."""
 
@@ -44,7 +44,7 @@ class Move:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Step:
     """``name`` is qualified (``main.raise``). A motion step (``clamp+``) carries its ``moves`` beside the commands
     and the exit that they come to. ``until`` is None where the exit is a dwell or one round."""
@@ -60,13 +60,13 @@ class Step:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Together:
     branches: tuple[tuple[Item, ...], ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Choice:
     """One ``when``; ``condition`` is None for ``otherwise``."""
 
@@ -75,21 +75,21 @@ class Choice:
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Choose:
     choices: tuple[Choice, ...]
     watchdog: Watchdog | None
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Repeat:
     times: int
     items: tuple[Item, ...]
     place: Place
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Jump:
     target: str
     place: Place
@@ -98,7 +98,7 @@ class Jump:
 Item = Step | Together | Choose | Repeat | Jump
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Sequence:
     """After the last item the first is active again, unless the sequence runs ``once``."""
 

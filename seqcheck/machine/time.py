@@ -6,13 +6,13 @@ write is judged where it is read.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from seqcheck.machine.records import record
 
 #: A share of a stroke is a whole count of millionths, so that percentages stay exact.
 WHOLE_SHARE = 1_000_000
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Span:
     """A tolerance: a time that is drawn anew, anywhere from ``least`` to ``greatest``, each time it occurs."""
 

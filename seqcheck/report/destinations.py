@@ -7,8 +7,8 @@ from __future__ import annotations
 
 import os
 from collections.abc import Sequence
-from dataclasses import dataclass
 
+from seqcheck.machine.records import record
 from seqcheck.report.formats import FOR_PEOPLE
 
 #: One option: its name, and what was written behind it.
@@ -18,7 +18,7 @@ OUTPUT = "--output"
 _STANDARD = "-"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Destination:
     """One report; ``output`` is None for standard output."""
 

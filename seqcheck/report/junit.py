@@ -8,12 +8,13 @@ the text accepts is skipped, everything else found stands in the output of its c
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from xml.etree import ElementTree
 from xml.etree.ElementTree import Element, SubElement
 
 from seqcheck.checks.catalogue import CHECKS
 from seqcheck.machine.findings import Finding, Problem, Report
+from seqcheck.machine.records import record
 from seqcheck.report.findings import finding_lines, headline
 from seqcheck.report.formats import Counts
 from seqcheck.report.layout import page
@@ -25,7 +26,7 @@ INPUT = "input"
 _DECLARATION = '<?xml version="1.0" encoding="UTF-8"?>\n'
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class _Outcome:
     """``result``: failure, error or skipped, None for a case that passed; ``output``: what was found all the same."""
 

@@ -7,10 +7,11 @@ counting as two. Refuses nothing: a word that does not fit is broken.
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from enum import Enum
 
 from rich.cells import cell_len, chop_cells
+
+from seqcheck.machine.records import record
 
 WIDTH = 80
 _BETWEEN_COLUMNS = 2
@@ -28,13 +29,13 @@ class Tone(Enum):
     GOOD = "good"
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Line:
     text: str
     tone: Tone = Tone.PLAIN
 
 
-@dataclass(frozen=True, slots=True)
+@record
 class Column:
     head: str
     right: bool = False
