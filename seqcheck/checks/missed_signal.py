@@ -69,7 +69,7 @@ def _ahead_in_stroke(study: Study, visit: Visit, edge: Edge) -> int | None:
     sensor = study.machine.sensors[edge.sensor]
     assert visit.left is not None
     for stroke in study.strokes_through(edge.at):
-        if stroke.away is None or not study.comes_first(visit.left.event, stroke.away.by.origin.read.event):
+        if stroke.away is None or not study.trace.graph.leads_to(visit.left.event, stroke.away.by.origin.read.event):
             continue
         positions = study.trace.marks[stroke.cylinder]
         behind = False

@@ -12,7 +12,6 @@ from functools import cached_property
 from itertools import pairwise
 
 from seqcheck.checks.chases import Chase, chases_of
-from seqcheck.engine.bounds import causes_since
 from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
 from seqcheck.engine.order import Order
@@ -301,14 +300,8 @@ class Study:
         spell, _ = self.spell_at(stroke.shift.by.event)
         if stroke.shift.by.energized and spell.ended is not None:
             reads.add(spell.ended.read)
-        return any(self.comes_first(left.event, read.event) for left, _ in self.waits_within(stroke) for read in reads)
-
-    def comes_first(self, one: int, other: int) -> bool:
-        """Whether causality alone puts an event at or before another one: it is among its causes."""
-        graph = self.trace.graph
-        if one == other or graph.dominates(one, other):
-            return True
-        return one < other and one in causes_since(graph, graph.common_dominator(one, other), [other])
+        leads_to = self.trace.graph.leads_to
+        return any(leads_to(left.event, read.event) for left, _ in self.waits_within(stroke) for read in reads)
 
     def waits_within(self, stroke: Stroke) -> list[tuple[Read, Edge]]:
         """The reads that left a step on a sensor that this stroke had brought on or off, with its change."""

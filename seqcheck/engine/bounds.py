@@ -20,7 +20,7 @@ common are independent of each other, so that the sums are all there is to it.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Collection, Iterable, Iterator, Sequence
 
 from seqcheck.engine.columns import Rows as Rows
 from seqcheck.engine.columns import separations_within
@@ -58,7 +58,7 @@ class _Below:
         self._graph = graph
         self._common = common
         self._assumed = graph.assumed_below(common)
-        self._ordered = sorted({number for pair in self._assumed for number in pair})
+        self._above_ordered = _above(graph, common, {number for pair in self._assumed for number in pair})
         self._causes: dict[int, set[int]] = {}
         self._dominating: dict[int, set[int]] = {}
 
@@ -120,17 +120,12 @@ class _Below:
         nor any event of an assumed order. What dominates a cause is a cause itself, so that the way up from ``event``
         meets them where it comes to the first that dominates one of them."""
         graph = self._graph
-        dominating = self._dominating_causes_of(other)
         graph.work += len(self._causes_of(other))
-        if dominating:
-            met = graph.first_among(dominating, self._common, event)
-            if met >= near:
-                near = graph.below(met, event)
-        for ordered in reversed(self._ordered):
-            if ordered <= near:
-                break
-            if graph.dominates(near, ordered):
-                near = graph.below(graph.common_dominator(ordered, event), event)
+        for dominating in (self._dominating_causes_of(other), self._above_ordered):
+            if dominating:
+                met = graph.first_among(dominating, self._common, event)
+                if met >= near:
+                    near = graph.below(met, event)
         return near
 
     def _table(self, pairs: set[tuple[int, int]]) -> Rows:
@@ -179,6 +174,16 @@ def greatest_of(span: Span, open_us: int) -> int:
 def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
     """The events and all their causes back to ``common``, which dominates them, in the order of the graph."""
     return sorted(_causes(graph, common, events))
+
+
+def _above(graph: EventGraph, common: int, events: Collection[int]) -> set[int]:
+    """The events and what dominates any of them, back to ``common``, which dominates them all."""
+    found = {common} if events else set()
+    for event in events:
+        while event not in found:
+            found.add(event)
+            event = graph.dominator[event]
+    return found
 
 
 def _causes(graph: EventGraph, common: int, events: Iterable[int]) -> set[int]:

@@ -119,6 +119,8 @@ class Exits:
         if wait.alarm is not None and wait.alarm.expired:
             causes = [wait.entered.floor, wait.alarm.noticed]
             return causes if all(event in happened for event in causes) else None
+        if wait.missing is not None and self.answer(wait, wait.missing) is None:
+            return None
         answers = self._holding(wait)
         steady = isinstance(wait, Visit) and wait.step.steady is not None
         if isinstance(wait, Visit) and steady:
@@ -144,6 +146,8 @@ class Exits:
         return None
 
     def _first_to_hold(self, wait: Wait, alternatives: Alternatives) -> list[Answer] | None:
+        if len(alternatives) == 1:
+            return self._answers(wait, alternatives[0])
         times = self._timeline.times
         found: tuple[int, list[Answer]] | None = None
         for one in alternatives:
@@ -160,6 +164,7 @@ class Exits:
         for literal in alternative:
             answer = self.answer(wait, literal)
             if answer is None:
+                wait.missing = literal if len(wait.alternatives) == 1 else None
                 return None
             answers.append(answer)
         return answers

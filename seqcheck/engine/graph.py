@@ -146,6 +146,21 @@ class EventGraph:
         common = self.common_dominator(one, other)
         return self.latest[one] - self.latest[common] <= self.earliest[other] - self.earliest[common]
 
+    def leads_to(self, one: int, other: int) -> bool:
+        """Whether a chain of causes runs from one event to the other, which then is never earlier."""
+        if self.dominates(one, other):
+            return True
+        seen = set()
+        waiting = [other]
+        while waiting:
+            number = waiting.pop()
+            if number == one:
+                return True
+            if number > one and number not in seen:  # Causes come before what they cause.
+                seen.add(number)
+                waiting += [arc.cause for arc in self.arcs[number]]
+        return False
+
     def without_idle(self, causes: Iterable[int]) -> tuple[int, ...]:
         """Causes of equal standing less those that can never be the last: the events of two threads that wait for
         the same thing come out as one event, and old causes do not tie new events to the distant past."""

@@ -44,7 +44,7 @@ def place(graph: EventGraph, stroke: Stroke, stands: tuple[int, ...] | None = No
     """The same for one stroke, by what has come so far."""
     stands = _may_stand_at(graph, stroke) if stands is None else stands
     region = None
-    if not all(graph.never_later(stroke.end, at) for at in stands):
+    if not all(_never_later(graph, stroke.end, at) for at in stands):
         region = _region(graph, stroke, stands)
     return Placing(region, stands, len(graph.assumed))
 
@@ -70,13 +70,18 @@ def may_have_centred(graph: EventGraph, shift: Shift) -> bool:
     return before is not None and before.taken_over and greatest_separation(graph, before.reached, shift.asked) > 0
 
 
+def _never_later(graph: EventGraph, one: int, other: int) -> bool:
+    """Whether that shows without any bounds."""
+    return graph.never_later(one, other) or graph.leads_to(one, other)
+
+
 def _region(graph: EventGraph, stroke: Stroke, stands: Sequence[int]) -> Region | None:
     """From the last mark that is passed in every run to the first that is reached in none."""
 
     rows: Rows = {}
 
     def never_later(one: int, other: int) -> bool:
-        if graph.never_later(one, other):
+        if _never_later(graph, one, other):
             return True
         if (other, one) not in rows:
             rows.update(greatest_separations(graph, both_ways([(one, other)])))

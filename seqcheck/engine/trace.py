@@ -111,7 +111,8 @@ class Alarm:
 @dataclass(slots=True, eq=False, kw_only=True)
 class Wait:
     """What a thread waits for since the read that ``entered`` it: one of ``alternatives`` to hold. Not ``left`` (yet):
-    None. ``answers``: what made true the alternative that held."""
+    None. ``answers``: what made true the alternative that held. ``missing``: without which nothing else lets it end,
+    as it was asked last; None where that is not one thing alone."""
 
     entered: Read
     alternatives: Alternatives
@@ -124,6 +125,7 @@ class Wait:
     steady_seen: int | None = None
     left: Read | None = None
     answers: tuple[Answer, ...] = ()
+    missing: Literal | None = None
 
     @property
     def literals(self) -> tuple[Literal, ...]:

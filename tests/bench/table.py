@@ -162,14 +162,14 @@ def _ratio(text: str, other: str) -> float | None:
 
 
 def start_up() -> Iterator[Row]:
-    bare = process_cost("-c", "import argparse", tries=7).seconds
+    bare = process_cost("-c", "import argparse", tries=15).seconds
     for words in (("--help",), ("explain",), ("explain", "short-pulse")):
-        cost = process_cost("-m", "seqcheck", *words, tries=7).seconds
+        cost = process_cost("-m", "seqcheck", *words, tries=15).seconds
         yield Row(f"seqcheck {' '.join(words)} : an interpreter that imports argparse", cost / bare, 2)
     small = str(CHECKOUT / "examples" / "change" / "before.steps")
     needed = f"import {', '.join(_loaded_by_a_check(small))}"
-    loading = process_cost("-c", needed, tries=7).seconds
-    checking = process_cost("-m", "seqcheck", "check", small, tries=7).seconds
+    loading = process_cost("-c", needed, tries=15).seconds
+    checking = process_cost("-m", "seqcheck", "check", small, tries=15).seconds
     yield Row("check of a small file : importing all that it loads", checking / loading, 1.2)
 
 
