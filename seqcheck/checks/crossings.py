@@ -9,6 +9,7 @@ came before. Where a way leads round and round before the end, the greatest is o
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
+from collections import Counter
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 
@@ -87,12 +88,13 @@ class Crossings:
 
     def duration(self, typical: int, through: Through | None = None) -> Duration | None:
         """None where there is no such spell."""
-        least, greatest = self.shortest(through), self.longest(through)
-        if least is None:
+        shortest, longest = self.shortest(through), self.longest(through)
+        if shortest is None:
             return None
-        if greatest is None:
-            return Duration(least.time, typical, None, least.exact)
-        return Duration(least.time, typical, greatest.time, least.exact and greatest.exact)
+        least = max(0, shortest.time)  # Sums that are wide know no better.
+        if longest is None:
+            return Duration(least, typical, None, shortest.exact)
+        return Duration(least, typical, longest.time, shortest.exact and longest.exact)
 
     def shortest(self, through: Through | None = None) -> Sum | None:
         """None where there is no such spell. What begins behind the choice of an edge does not go through it."""
@@ -103,9 +105,12 @@ class Crossings:
         ]
         best: dict[tuple[int, bool], Sum] = {}
         waiting: list[tuple[int, bool]] = []
+        reached: Counter[tuple[int, bool]] = Counter()
 
         def reach(key: tuple[int, bool], one: Sum) -> None:
-            if key not in best or _shorter(one) < _shorter(best[key]):
+            # No way is shorter for going round, but a sum that is wide may be, for ever.
+            if (key not in best or _shorter(one) < _shorter(best[key])) and reached[key] <= len(self.parts):
+                reached[key] += 1
                 best[key] = one
                 waiting.append(key)
 

@@ -8,7 +8,7 @@ branch, or wait.
 from __future__ import annotations
 
 from bisect import bisect_right
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from itertools import combinations
 
 from seqcheck.engine.conditions import Aspect, Literal, holding
@@ -31,15 +31,23 @@ class ChoiceOrder:
     outside: bool = False
 
 
-def choice_orders(trace: Trace, choice: Choice) -> Iterator[Order]:
-    for one in asked_in_time(trace, choice):
+def choice_orders(trace: Trace, choice: Choice, begin: int) -> Iterator[Order]:
+    """Those that may be the other way round as far as plain intervals tell, and come about at or after ``begin``."""
+    times, graph = trace.times, trace.graph
+
+    def may_turn(first: int, second: int) -> bool:
+        return times[second] >= begin and not graph.always_earlier(first, second)
+
+    for one in asked_in_time(trace, choice, may_turn):
         yield one.order
 
 
-def asked_in_time(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
-    """Every order by which a choice is taken as it is."""
+def asked_in_time(
+    trace: Trace, choice: Choice, counts: Callable[[int, int], bool] = lambda first, second: True
+) -> Iterator[ChoiceOrder]:
+    """Every order by which a choice is taken as it is, of two changes only if it ``counts`` for their events."""
     look = _Look(trace, choice)
-    yield from look.orders()
+    yield from look.orders(counts)
     if choice.left is not None and choice.left is not choice.entered and choice.taken is not None:
         yield from look.orders_in_passing()
 
@@ -65,10 +73,6 @@ class _Moment:
     def without(self, fact: _Fact) -> _Moment:
         facts = {one: value for one, value in self.facts.items() if one != fact}
         return _Moment(self.event, facts, self.comes, self.ready)
-
-    def changes(self, other: _Moment) -> bool:
-        """Whether the two are changes of one term."""
-        return not self.facts.keys().isdisjoint(other.facts.keys())
 
     @property
     def read(self) -> str | None:
@@ -113,9 +117,11 @@ class _Look:
             aspect: logs[aspect][max(0, at - 3)].value for aspect, at in choice.told.items()
         }
         self._moments = self._all_moments(logs)
+        #: For each moment the others that change one of its terms.
+        self._of_same = _of_same(self._moments)
         self._own = self._taken(self._moments)
 
-    def orders(self) -> Iterator[ChoiceOrder]:
+    def orders(self, counts: Callable[[int, int], bool]) -> Iterator[ChoiceOrder]:
         """Of two that the read that comes to the choice lies between, only where neither decides it with that alone."""
         moments = self._moments
         read = next(number for number, moment in enumerate(moments) if moment.comes)
@@ -125,7 +131,7 @@ class _Look:
             across = one < read < two
             if two < read or (across and (moments[two].ready or not decisive.isdisjoint((one, two)))):
                 continue
-            others = self._others(one, two)
+            others = self._others(one, two) if counts(moments[one].event, moments[two].event) else ()
             if others:
                 yield self._order(one, two, others)
 
@@ -140,21 +146,21 @@ class _Look:
 
     def _is_bound(self, one: int, two: int) -> bool:
         """Whether nothing can bring the two into the other order, be it for what has to come between them."""
-        first, second = self._moments[one], self._moments[two]
-        if first.changes(second) or (first.read is not None and second.read is not None):
+        first, second, of_same = self._moments[one], self._moments[two], self._of_same
+        if two in of_same[one] or (first.read is not None and second.read is not None):
             return True
         if first.event == second.event:
             return not second.comes
         return any(
             self._stays_before(one, number) and self._stays_before(number, two)
-            for number, moment in enumerate(self._moments)
-            if number not in (one, two) and (moment.changes(first) or moment.changes(second))
+            for number in of_same[one] | of_same[two]
         )
 
     def _stays_before(self, one: int, two: int) -> bool:
         """Whether it never comes later: two changes of one term, or by its causes."""
-        first, second = self._moments[one], self._moments[two]
-        return (one < two and first.changes(second)) or self._trace.graph.never_later(first.event, second.event)
+        if one < two and two in self._of_same[one]:
+            return True
+        return self._trace.graph.never_later(self._moments[one].event, self._moments[two].event)
 
     def _swapped(self, one: int, two: int) -> tuple[int | None, int | None]:
         """What is taken with the one moved behind the other, and with the other before the one, each together with what
@@ -182,10 +188,10 @@ class _Look:
         takes the other back is known after the one."""
         moments = self._moments
         first, second = moments[one], moments[two]
-        earlier = next((each for each in reversed(moments[:one]) if each.changes(first)), None)
-        later = next((each for each in moments[two + 1 :] if each.changes(second)), None)
-        kept = ((earlier.event, second.event),) if earlier is not None else ()
-        return (*kept, (first.event, later.event)) if later is not None else kept
+        earlier = max((number for number in self._of_same[one] if number < one), default=None)
+        later = min((number for number in self._of_same[two] if number > two), default=None)
+        kept = ((moments[earlier].event, second.event),) if earlier is not None else ()
+        return (*kept, (first.event, moments[later].event)) if later is not None else kept
 
     def _between(self, one: int, two: int, moved_back: bool) -> tuple[tuple[int, int], ...]:
         """Where it takes what becomes known between them, too: all of that stays before the second, or behind the
@@ -285,6 +291,14 @@ class _Look:
 def _add(moments: dict[int, _Moment], one: _Moment) -> None:
     known = moments.get(one.event)
     moments[one.event] = one if known is None else known.with_facts_of(one)
+
+
+def _of_same(moments: Sequence[_Moment]) -> list[set[int]]:
+    by_fact: dict[_Fact, set[int]] = {}
+    for number, moment in enumerate(moments):
+        for fact in moment.facts:
+            by_fact.setdefault(fact, set()).add(number)
+    return [set().union(*(by_fact[fact] for fact in moment.facts)) - {number} for number, moment in enumerate(moments)]
 
 
 def _subject(fact: _Fact) -> str:

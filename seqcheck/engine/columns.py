@@ -7,6 +7,7 @@ loaded once there are many.
 
 from __future__ import annotations
 
+from bisect import bisect_left
 from collections.abc import Callable, Collection, Mapping, Sequence
 from typing import TYPE_CHECKING
 
@@ -49,15 +50,17 @@ def separation_column(graph: EventGraph, members: Sequence[int], source: int, op
 def _column(graph: EventGraph, members: Sequence[int], source: int, open_us: int) -> Column:
     assumed = _assumed_within(graph, members)
     chain = {source: 0}
-    _least_chains(graph, members, chain)
-    while _chains_go_on(chain, assumed):
-        graph.work += len(members)
-        _least_chains(graph, members, chain)
+    highest: int | None = source
+    while highest is not None:
+        _least_chains(graph, members, chain, highest)
+        highest = _carried_over(chain, assumed)
+        graph.work += len(members) if highest is not None else 0
     latest = {number: -length for number, length in chain.items()}
-    _greatest_times(graph, members, latest, open_us)
-    while _is_brought_forward(latest, assumed):
-        graph.work += len(members)
-        _greatest_times(graph, members, latest, open_us)
+    lowest: int | None = members[0]
+    while lowest is not None:
+        _greatest_times(graph, members, latest, open_us, lowest)
+        lowest = _brought_forward(latest, assumed)
+        graph.work += len(members) if lowest is not None else 0
     return latest
 
 
@@ -68,10 +71,11 @@ def _assumed_within(graph: EventGraph, members: Sequence[int]) -> list[tuple[int
     return [(one, other) for one, other in graph.assumed if one in within and other in within]
 
 
-def _least_chains(graph: EventGraph, members: Sequence[int], chain: dict[int, int]) -> None:
-    """Lengthens ``chain``, the longest chain over the least delays from an event to the source."""
+def _least_chains(graph: EventGraph, members: Sequence[int], chain: dict[int, int], highest: int) -> None:
+    """Lengthens ``chain``, the longest chain over the least delays from an event to the source, from the ``highest``
+    down that has become longer."""
     all_arcs = graph.arcs
-    for position in range(len(members) - 1, 0, -1):
+    for position in range(bisect_left(members, highest), 0, -1):
         number = members[position]
         length = chain.get(number)
         if length is not None:
@@ -81,21 +85,23 @@ def _least_chains(graph: EventGraph, members: Sequence[int], chain: dict[int, in
                     chain[arc.cause] = longer
 
 
-def _chains_go_on(chain: dict[int, int], assumed: Sequence[tuple[int, int]]) -> bool:
-    """Carries chains over to events that are taken to come before; whether that made any longer."""
-    longer = False
+def _carried_over(chain: dict[int, int], assumed: Sequence[tuple[int, int]]) -> int | None:
+    """Carries chains over to events that are taken to come before; the highest that this made longer."""
+    longer = []
     for one, other in assumed:
         length = chain.get(other, _NO_CHAIN)
         if length > chain.get(one, _NO_CHAIN):
             chain[one] = length
-            longer = True
-    return longer
+            longer.append(one)
+    return max(longer, default=None)
 
 
-def _greatest_times(graph: EventGraph, members: Sequence[int], latest: dict[int, int], open_us: int) -> None:
-    """Lowers ``latest`` to what the causes allow."""
+def _greatest_times(
+    graph: EventGraph, members: Sequence[int], latest: dict[int, int], open_us: int, lowest: int
+) -> None:
+    """Lowers ``latest`` to what the causes allow, of all that lies behind the ``lowest`` that has become earlier."""
     all_arcs, unlimited = graph.arcs, OPEN // 2
-    for position in range(1, len(members)):
+    for position in range(bisect_left(members, lowest) + 1, len(members)):
         number = members[position]
         time = -OPEN << 8
         for arc in all_arcs[number]:
@@ -107,14 +113,14 @@ def _greatest_times(graph: EventGraph, members: Sequence[int], latest: dict[int,
             latest[number] = time
 
 
-def _is_brought_forward(latest: dict[int, int], assumed: Sequence[tuple[int, int]]) -> bool:
-    """Holds events that are taken to come before others to that; whether any had been later."""
-    earlier = False
+def _brought_forward(latest: dict[int, int], assumed: Sequence[tuple[int, int]]) -> int | None:
+    """Holds events that are taken to come before others to that; the lowest of which any had been later."""
+    earlier = []
     for one, other in assumed:
         if latest[other] < latest[one]:
             latest[one] = latest[other]
-            earlier = True
-    return earlier
+            earlier.append(one)
+    return min(earlier, default=None)
 
 
 # Many at once ----------------------------------------------------------------------------------------------------

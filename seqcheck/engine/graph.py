@@ -146,6 +146,11 @@ class EventGraph:
         common = self.common_dominator(one, other)
         return self.latest[one] - self.latest[common] <= self.earliest[other] - self.earliest[common]
 
+    def always_earlier(self, one: int, other: int) -> bool:
+        """Whether they show it to be before that."""
+        common = self.common_dominator(one, other)
+        return self.latest[one] - self.latest[common] < self.earliest[other] - self.earliest[common]
+
     def leads_to(self, one: int, other: int) -> bool:
         """Whether a chain of causes runs from one event to the other, which then is never earlier."""
         if self.dominates(one, other):

@@ -87,7 +87,7 @@ class Orders:
             if len(visit.alternatives) > 1 or visit.alarm is not None:
                 yield from visit_orders(trace, visit)
         for choice in waits.choices:
-            yield from choice_orders(trace, choice)
+            yield from choice_orders(trace, choice, begin)
             if choice.left is not None and choice.alarm is not None:
                 yield from alarm_orders(trace, choice, ("choose", choice.choose.place))
         for name, condition in self._followed:

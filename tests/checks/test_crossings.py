@@ -148,3 +148,18 @@ def test_of_two_that_take_as_long_the_exact_one_counts() -> None:
     for number, exact in ((2, False), (3, True), (4, False)):
         found.part((1, 2, None, number)).passes = Duration(4, 50, 70, exact)
     assert found.duration(30) == Duration(17, 30, 94)
+
+
+def test_nothing_takes_less_than_no_time() -> None:
+    """States of two sequences may come in either order: 10 - 15 + 3 is no time that can be."""
+    found = forked()
+    found.part(SHORT).passes = Duration(-15, 6, 8, exact=False)
+    assert found.duration(30) == Duration(0, 30, 84, exact=False)
+
+
+def test_a_wide_sum_that_falls_with_every_round_comes_to_an_end() -> None:
+    """Round and round between states 1 and 2 in -3 + 1, which no run does: what is left is no less than nothing."""
+    found = forked()
+    found.part(SHORT).passes = Duration(-3, 6, 8, exact=False)
+    found.part((2, 1, None, None)).passes = Duration(1, 2, 3, exact=False)
+    assert found.duration(30) == Duration(0, 30, None, exact=False)
