@@ -48,3 +48,19 @@ def test_what_was_added_up_and_may_be_wide_is_told_so() -> None:
             if over
             else []
         )
+
+
+def test_what_no_play_undercuts_is_added_up() -> None:
+    """The least of all three choices, none of which is taken that way in the typical run: 100 + 20 + 30 + 40."""
+    branches = [(200, 20), (300, 30), (400, 40)]
+    signals = "\n".join(f"signal s{number} from outside" for number in range(3))
+    choices = "\n".join(
+        f"choose {{ when s{number} {{ step long{number} {{ dwell {long} ms }} }} "
+        f"otherwise {{ step short{number} {{ dwell {short} ms }} }} }}"
+        for number, (long, short) in enumerate(branches)
+    )
+    text = f"{signals}\nsequence main {{ step weigh {{ dwell 100 ms }} {choices} step rest {{ dwell 1 s }} }}"
+    for least, margins in (("190.001", [-1]), ("190", [])):
+        report = examine_source(Source("a.steps", f"{text}\nlimit from main.weigh to main.rest {least}..2000 ms\n"))
+        assert not report.problems
+        assert [one.margin_us for one in report.findings] == margins

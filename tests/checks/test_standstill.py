@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 from seqcheck.language.source import Source
 from seqcheck.machine.findings import Finding
 from seqcheck.pipeline import examine_source
+
+CASES = Path(__file__).parents[1] / "cases"
 
 GOES_ROUND = """controller { scan 8..12 ms }
 signal s from outside
@@ -50,3 +54,27 @@ def test_a_choice_that_waits_for_good() -> None:
 def test_what_a_signal_from_outside_or_a_watchdog_may_yet_end_is_no_dead_end() -> None:
     assert dead_ends("step stuck { until s }") == []
     assert dead_ends("step stuck { until done  within 5 s else ready }  step c { set done }") == []
+
+
+def endless_loop(text: str) -> Finding:
+    report = examine_source(Source("a.steps", text))
+    (found,) = [one for one in report.findings if one.kind == "endless-loop"]
+    return found
+
+
+def test_steps_that_chase_each_other_are_named() -> None:
+    """In an ideal controller no read takes time; nothing stands in the way of having played that."""
+    found = endless_loop("sequence main { step a { } }")
+    assert found.message == "steps follow one another without time passing, main.a among them"
+    assert (found.subject, found.step, found.replayed) == ("main.a", "main.a", True)
+
+
+def test_a_sequence_that_enters_no_step_is_named() -> None:
+    found = endless_loop("flag f\nsequence main { choose { when f { step a { dwell 1 s } } otherwise { } } }")
+    assert found.message == "sequence main goes round and round at one read and enters no step"
+
+
+def test_a_round_in_no_time_is_shown_from_its_beginning_to_its_end() -> None:
+    found = endless_loop((CASES / "chase_by_choices.steps").read_text(encoding="utf-8"))
+    assert found.run[0].time_us == found.run[-1].time_us
+    assert [one.event for one in found.run].count("step main.left entered") >= 2
