@@ -234,7 +234,7 @@ def long_enough(machine: Machine, shown: Shown, cycles: int) -> Shown:
     study = shown.study
     settlement, trace = study.settlement, study.trace
     needed = shown.first + cycles
-    if len(trace.cycles) > needed or shown.loop is not None or trace.finished or trace.endless:
+    if len(trace.cycles) > needed or shown.loop is not None or trace.finished or trace.stepless is not None:
         return shown
     regions = {**dict(_further_regions(settlement, cycles)), **settlement.regions}
     guide = _Onward(outcomes_before(settlement.path, len(settlement.path.passages)), shown.prefer, needed)

@@ -18,7 +18,7 @@ from seqcheck.machine.model import Machine, steps_of
 
 
 def _not_settled(studies: Sequence[Study]) -> Iterator[Sight]:
-    if studies[0].whole or any(study.trace.endless for study in studies):
+    if studies[0].whole or any(study.trace.stepless for study in studies):
         return
     machine = studies[0].machine
     names = [sequence.name for sequence in machine.sequences]

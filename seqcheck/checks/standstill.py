@@ -82,8 +82,12 @@ def _missing(study: Study, wait: Wait) -> Iterator[str]:
 
 def _endless(study: Study) -> Iterator[Sight]:
     """Steps without end at one instant, or a way that can come round again in no time, waiting for nobody outside."""
-    if study.trace.endless:
-        yield _without_end(study)
+    trace = study.trace
+    for sequence in study.machine.sequences:
+        if sequence.name == trace.stepless:
+            message = f"sequence {sequence.name} goes round and round at one read and enters no step"
+            at = trace.reads[-1].event
+            yield Sight(sequence.name, None, sequence.place, message, mend=_MEND, at=at, stops=True)
     for chase in study.chases:
         numbers = [one.number for one in chase.runs if one.settlement is study.settlement]
         shown = _shown_round(study, chase, numbers)
@@ -114,19 +118,7 @@ def _shown_round(study: Study, chase: Chase, numbers: Sequence[int]) -> tuple[tu
     return (), True
 
 
-def _without_end(study: Study) -> Sight:
-    """A sequence that began anew at the last read and came to no step, or steps at ever new reads."""
-    trace = study.trace
-    last = trace.reads[-1]
-    entered = {visit.step.name.split(".", 1)[0] for visit in last.entered}
-    for sequence in study.machine.sequences:
-        if trace.rounds[sequence.name][-1] is last and sequence.name not in entered:
-            message = f"sequence {sequence.name} goes round and round at one read and enters no step"
-            return Sight(sequence.name, None, sequence.place, message, mend=_MEND, at=last.event, stops=True)
-    return _steps_chase(trace.visits[-1].step, True, last.event)
-
-
-def _steps_chase(step: Step, certain: bool, at: int, run: tuple[Moment, ...] = (), replayed: bool = True) -> Sight:
+def _steps_chase(step: Step, certain: bool, at: int, run: tuple[Moment, ...], replayed: bool) -> Sight:
     message = f"steps follow one another without time passing, {step.name} among them"
     return Sight(step.name, step.name, step.place, message, run, _MEND, certain, at, replayed=replayed, stops=True)
 

@@ -24,7 +24,7 @@ from seqcheck.engine.timeline import Order, Timeline
 from seqcheck.engine.trace import Choice, Edge, Known, Origin, Read, Spell, Trace, Visit, Wait
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import ControllerKind
-from seqcheck.machine.model import Machine, steps_of
+from seqcheck.machine.model import Machine
 from seqcheck.machine.records import record
 
 #: Hands on: coil or output, on or off, the event at which it switches, the origin.
@@ -84,9 +84,6 @@ class Controller:
         #: How many waits there are for each signal from outside, and for each time that it comes.
         self._waiting_for: Counter[str] = Counter()
         self._awaited: Counter[int] = Counter()
-        self._last_time = -1
-        self._reads_at_once = 0
-        self._patience = 50 + 4 * sum(len(list(steps_of(sequence))) for sequence in machine.sequences)
 
     # Reading ---------------------------------------------------------------------------------------------------
 
@@ -142,7 +139,6 @@ class Controller:
         if event in self._read_events:
             event = timeline.event(Event("read", reader), timeline.fixed(event))
         self._read_events.add(event)
-        self._notice_endless(timeline.times[event])
         if settings.kind is ControllerKind.IDEAL:
             write = floor = event
         else:
@@ -153,13 +149,6 @@ class Controller:
         read = Read(event, reader, write, floor)
         self._trace.reads.append(read)
         return read
-
-    def _notice_endless(self, time: int) -> None:
-        """Many reads at one instant: steps chase each other, or the run has stopped making sense."""
-        self._reads_at_once = self._reads_at_once + 1 if time == self._last_time else 0
-        self._last_time = time
-        if self._reads_at_once > self._patience:
-            self._trace.endless = True
 
     def _leave(self, thread: Thread, read: Read) -> None:
         wait = thread.wait
@@ -292,8 +281,8 @@ class Controller:
 
         self._timeline.at(joined, Order.CONTROLLER, go_on)
 
-    def never_enters(self) -> None:
-        self._trace.endless = True
+    def never_enters(self, course: Course) -> None:
+        self._trace.stepless = course.program.name
 
     # Writing ---------------------------------------------------------------------------------------------------
 

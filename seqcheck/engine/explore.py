@@ -239,7 +239,7 @@ def play(
 def _settlement(machine: Machine, recipe: Recipe, trace: Trace, regions: Regions, path: Path) -> Settlement:
     done = len(trace.cycles) - 1
     if path.round is None:
-        settled = path.joined is not None or trace.finished or trace.endless
+        settled = path.joined is not None or trace.finished or trace.stepless is not None
         return Settlement(trace, recipe, regions, path, settled, max(0, done - 1), done)
     begin, end = (trace.times[path.passages[number].at] for number in path.round)
     within = [number for number, read in enumerate(trace.cycles) if begin <= trace.times[read.event] <= end]

@@ -67,7 +67,7 @@ class Player:
         self.controller.start()
         self._settle_signals()
         self._plant.go_live()
-        while not self._stopped and not self.trace.endless:
+        while not self._stopped and self.trace.stepless is None:
             if self._until_us is not None and self.timeline.next_time > self._until_us:
                 break
             if self.timeline.next() is None:

@@ -70,7 +70,7 @@ class Host(Protocol):
     def join(self, thread: Thread, fork: Fork) -> None:
         """All branches of the thread have ended."""
 
-    def never_enters(self) -> None:
+    def never_enters(self, course: Course) -> None:
         """A sequence goes round and round without a step."""
 
 
@@ -148,7 +148,7 @@ class Threads:
                 case Last(once):
                     if once or again:
                         if again:
-                            self._host.never_enters()
+                            self._host.never_enters(thread.course)
                         return
                     again = True
                     thread.at = 0

@@ -239,8 +239,8 @@ class Stroke:
 @dataclass(slots=True, eq=False)
 class Trace:
     """One play. ``cycles``: the reads at which the first sequence began anew, the first one included. ``finished``:
-    nothing was due any more. ``endless``: steps that followed one another without time passing. ``too_long``: given up
-    for its sheer number of events, so that nothing is proved."""
+    nothing was due any more. ``stepless``: the sequence that goes round and round at one read and enters no step.
+    ``too_long``: given up for its sheer number of events, so that nothing is proved."""
 
     graph: EventGraph
     times: list[int]
@@ -265,5 +265,5 @@ class Trace:
     #: For each sequence the reads at which it began anew, the first one included.
     rounds: dict[str, list[Read]] = field(default_factory=dict)
     finished: bool = False
-    endless: bool = False
+    stepless: str | None = None
     too_long: bool = False
