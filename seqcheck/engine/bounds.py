@@ -27,8 +27,6 @@ from seqcheck.engine.columns import separations_within
 from seqcheck.engine.graph import OPEN, EventGraph
 from seqcheck.machine.time import Span
 
-_NO_CHAIN = -(1 << 60)
-
 
 def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) -> Rows:
     """``S[i, j]`` for every pair ``(i, j)``: how much later than ``i`` can ``j`` be? Microseconds."""
@@ -146,7 +144,7 @@ def longest_least_chain(graph: EventGraph, cause: int, event: int) -> int:
     for number in reversed(causes_since(graph, common, [event])[1:]):
         if number in chain:
             for arc in graph.arcs[number]:
-                chain[arc.cause] = max(chain.get(arc.cause, _NO_CHAIN), chain[number] + arc.span.least)
+                chain[arc.cause] = max(chain.get(arc.cause, 0), chain[number] + arc.span.least)
     return chain[cause]
 
 

@@ -55,3 +55,11 @@ def test_the_way_up_meets_the_first_that_dominates_a_cause(seed: int) -> None:
         above = graph.dominator[above]
     if dominating:
         assert graph.first_among(dominating, common, event) == above
+
+
+def test_what_stands_in_for_an_open_delay() -> None:
+    """Something takes 5 to 7, and somebody outside any time: 1000 where that is to stand for it."""
+    graph = EventGraph()
+    moved = graph.add(Event("moved", ""), (Arc(0, Span(5, 6, 7)),))
+    comes = graph.add(Event("comes", ""), (Arc(moved, Span(0, 0, OPEN)),))
+    assert separation_column(graph, [0, moved, comes], 0, open_us=1000)[comes] == 1007
