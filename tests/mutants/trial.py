@@ -1,8 +1,9 @@
 """One mutant, tried: the changed file in a copy of the checkout, and the tests that might see it.
 
 Takes a copy, a mutant, tests; gives how it ended. A trial is a forked process, so that the libraries are loaded once;
-each test may take ten seconds and five times what it takes without the change, all of them twice that, and four
-gigabytes. Over that it counts as seen: a change that hangs does not pass unnoticed. Refuses systems that cannot fork.
+each test may take ten seconds of processor time and five times what it takes without the change, all of them twice that
+on the clock, and four gigabytes. Over that it counts as seen: a change that hangs does not pass unnoticed. Refuses
+systems that cannot fork.
 """
 
 from __future__ import annotations
@@ -51,9 +52,9 @@ class _Chosen:
 
     @pytest.hookimpl(wrapper=True)
     def pytest_runtest_protocol(self, item: pytest.Item) -> Iterator[None]:
-        signal.setitimer(signal.ITIMER_REAL, self._most_seconds[item.nodeid])
+        signal.setitimer(signal.ITIMER_PROF, self._most_seconds[item.nodeid])
         result = yield
-        signal.setitimer(signal.ITIMER_REAL, 0)
+        signal.setitimer(signal.ITIMER_PROF, 0)
         return result
 
 
@@ -89,7 +90,7 @@ def passes(copy: Path, seconds: Mapping[str, float], leave: Sequence[str]) -> bo
         child.kill()
         child.join()
         return None
-    if child.exitcode == -signal.SIGALRM:
+    if child.exitcode == -signal.SIGPROF:
         return None
     if child.exitcode not in (*_RAN, *_KILLED_BY_SYSTEM):
         raise RuntimeError(f"the tests were not run: status {child.exitcode}")
