@@ -11,7 +11,7 @@ yet come after the state in other runs belongs to it, too, and so does a coil re
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
@@ -23,7 +23,7 @@ from seqcheck.engine.orders import Orders, Waits
 from seqcheck.engine.player import Player
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.machine.model import Machine, items_of
-from seqcheck.machine.steps import Choose, Jump, Step
+from seqcheck.machine.steps import Choose, Item, Jump, Repeat, Step, Together
 
 Signature = tuple[object, ...]
 
@@ -50,19 +50,43 @@ class UnderWay(NamedTuple):
 #: Prefers one of the outcomes of a choice that nothing else decides.
 Prefer = Callable[[Choice, Sequence[Outcome]], Outcome]
 
-#: So many rounds of one sequence are played in search of a state that comes up again.
+#: So many rounds of one sequence are played in search of a state that comes up again; or so many (if that is more) with
+#: all that a ``repeat`` goes through counted each time.
 MOST_ROUNDS = 12
+_MOST_UNROLLED = 3
 
 
 #: What was over so many states ago has no open order any more.
 _LATE = 8
 
 
-def _states_of_one_round(machine: Machine) -> int:
+def _most_passages(machine: Machine) -> int:
+    """So many states are gone through in search of one that comes up again."""
     items = [item for sequence in machine.sequences for item in items_of(sequence.items)]
-    return len(machine.sequences) + sum(
+    watchdogs = [item.watchdog for item in items if isinstance(item, Choose | Step) and item.watchdog is not None]
+    targets = {item.target for item in items if isinstance(item, Jump)} | {one.target for one in watchdogs}
+    once = sum(
         isinstance(item, Choose | Jump) or (isinstance(item, Step) and item.watchdog is not None) for item in items
     )
+    unrolled = sum(_states_within(sequence.items, targets) for sequence in machine.sequences)
+    begun = len(machine.sequences)
+    return max(MOST_ROUNDS * (begun + once), _MOST_UNROLLED * (begun + unrolled))
+
+
+def _states_within(items: Sequence[Item], targets: Collection[str | None]) -> int:
+    """Choices, and steps that are ``targets`` of jumps and watchdogs, as often as they are come to in a round."""
+    found = 0
+    for item in items:
+        match item:
+            case Repeat(times, inner):
+                found += times * _states_within(inner, targets)
+            case Together(branches):
+                found += sum(_states_within(branch, targets) for branch in branches)
+            case Choose(choices):
+                found += 1 + sum(_states_within(choice.items, targets) for choice in choices)
+            case Step(name):
+                found += name in targets
+    return found
 
 
 def first_of(choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
@@ -144,7 +168,7 @@ class Scout:
         self._prefer = prefer
         self._most = most
         self._decided = 0
-        self._most_passages = MOST_ROUNDS * _states_of_one_round(machine)
+        self._most_passages = _most_passages(machine)
         self._period = 0
         self._pool: list[int] = []
         self._seen_events = 0

@@ -137,8 +137,8 @@ class Threads:
                         thread.at = behind
                 case Again(start):
                     left = thread.counts[-1] - 1
-                    thread.counts = (*thread.counts[:-1], left) if left else thread.counts[:-1]
-                    thread.at = start + 1 if left else thread.at + 1
+                    thread.counts = (*thread.counts[:-1], left) if left > 0 else thread.counts[:-1]
+                    thread.at = start + 1 if left > 0 else thread.at + 1
                 case Fork(branches):
                     self._fork(thread, branches, read)
                     return
