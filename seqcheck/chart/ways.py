@@ -209,37 +209,49 @@ def _why_not(settlement: Settlement, first: int, wishes: Sequence[Wish]) -> str:
 
 
 class _Onward:
-    """Goes as another play has gone, then on, until so many cycles have begun."""
+    """Goes as another play has gone, then on, until so many cycles have begun, or through no more than so many states
+    in search of them."""
 
-    def __init__(self, outcomes: Sequence[Outcome], prefer: Preference, cycles: int) -> None:
+    def __init__(self, outcomes: Sequence[Outcome], prefer: Preference, cycles: int, most_states: int) -> None:
         self.player: Player | None = None
         self._outcomes = list(outcomes)
         self._prefer = prefer
         self._cycles = cycles
+        self._states_left = most_states
 
     def decide(self, choice: Choice, outcomes: Sequence[Outcome]) -> Outcome:
+        self._pass()
         wanted = self._outcomes.pop(0) if self._outcomes else None
         return wanted if wanted in outcomes and wanted is not None else self._prefer(choice, outcomes)
 
     def step_comes_again(self, read: Read, step: str) -> None:
-        """Of no account here."""
+        self._pass()
 
     def round_begins(self, read: Read, sequence: str) -> None:
-        if self.player is not None and len(self.player.trace.cycles) > self._cycles:
+        self._pass()
+
+    def _pass(self) -> None:
+        assert self.player is not None
+        self._states_left -= 1
+        if len(self.player.trace.cycles) > self._cycles or self._states_left < 0:
             self.player.stop()
 
 
 def long_enough(machine: Machine, shown: Shown, cycles: int) -> Shown:
-    """The same with so many whole cycles from the first shown one on, if its sequence comes round."""
+    """The same with so many whole cycles from the first shown one on, if its sequence comes round: of a play that found
+    all states that come up, no cycle goes through more than these."""
     study = shown.study
     settlement, trace = study.settlement, study.trace
     needed = shown.first + cycles
     if len(trace.cycles) > needed or shown.loop is not None or trace.finished or trace.stepless is not None:
         return shown
     regions = {**dict(_further_regions(settlement, cycles)), **settlement.regions}
-    guide = _Onward(outcomes_before(settlement.path, len(settlement.path.passages)), shown.prefer, needed)
+    states = len(settlement.path.passages)
+    guide = _Onward(outcomes_before(settlement.path, states), shown.prefer, needed, (needed + 1) * states)
     player = guide.player = Player(machine, guide, given(settlement.delays), regions)
     played = player.play()
+    if len(played.cycles) <= needed and not played.finished:
+        return shown
     Orders(machine).assume(played, 0, 0, max(played.times) + 1)
     longer = replace(settlement, trace=played, regions=regions)
     return replace(shown, study=Study(machine, longer, given(settlement.delays), study.entered, study.left))

@@ -63,7 +63,7 @@ def _cycles(shown: Shown, wanted: int) -> Window:
     if len(cycles) < 2:
         start = trace.cycles[-1]
         begin, end = study.time(start.event), _end_of_run(study)
-        title = f"sequence {name} from its start to its end"
+        title = f"sequence {name} from its start {'to its end' if trace.finished else 'as far as it was played'}"
         return Window(study, begin, end + (end - begin) // 20, *anchor_of(study, start), title, None, ())
     count = len(cycles) - 1
     settled = "settled cycle" if settlement.settled and shown.first >= settlement.first else "cycle"

@@ -56,10 +56,23 @@ _Key = tuple[str, str, str | None, Place]
 
 @record
 class _Seen:
-    """A finding of one study; ``shown``: the segments of the play in which every timing shows it."""
+    """What one study finds, made once it is asked for: to ``make`` it a run is played again. ``shown``: the segments of
+    the play in which every timing shows it."""
 
-    broken: Broken
+    key: _Key
+    margin_us: int | None
+    diverts: bool
+    make: Callable[[], Broken]
     shown: frozenset[Segment] = frozenset()
+
+    @property
+    def is_thin(self) -> bool:
+        return self.margin_us is not None and self.margin_us >= 0
+
+    @property
+    def rank(self) -> tuple[bool, bool, int]:
+        """What is broken by most first, nothing limiting it before all else; what is but thin last."""
+        return self.is_thin, self.margin_us is not None, self.margin_us or 0
 
 
 def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
@@ -75,7 +88,7 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
         one = _prove_one(study, checks, reserve_us, partial(ways.segment, number))
         strays = strays or one.strays
         for seen in one.seen:
-            by_key.setdefault(_key(seen.broken.finding), []).append(seen)
+            by_key.setdefault(seen.key, []).append(seen)
         for margin in one.margins:
             key = (margin.kind, margin.subject, margin.step, margin.place)
             known = margins.get(key)
@@ -99,34 +112,28 @@ def _key(finding: Finding) -> _Key:
 
 def _at_least_as_bad(one: Broken, finding: Finding) -> Broken:
     """What a run shows, with what it comes to at worst where that is more, or nothing limits it."""
-    if _is_thin(one):
-        return Broken(finding, None)
     shown = one.finding.margin_us
+    if shown is not None and shown >= 0:
+        return Broken(finding, None)
     if shown is None or (finding.margin_us is not None and shown <= finding.margin_us):
         return one
     return replace(one, finding=replace(one.finding, message=finding.message, margin_us=finding.margin_us))
 
 
 def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
-    """The finding whose run was replayed, and that by most, nothing limiting it before all else; certain only where
-    every way shows it for certain. What is thin in one way may be broken in another."""
-    best = min(
-        (seen.broken for seen in found),
-        key=lambda one: (
-            _is_thin(one),
-            one.finding.replayed is not True,
-            one.finding.margin_us is not None,
-            one.finding.margin_us or 0,
-        ),
-    )
+    """The finding whose run was replayed, and that by most; certain only where every way shows it for certain. What is
+    thin in one way may be broken in another."""
+    ranked = sorted(found, key=lambda seen: seen.rank)
+    best = ranked[0].make()
+    for seen in ranked[1:]:
+        if best.finding.replayed is True or seen.is_thin:
+            break
+        other = seen.make()
+        best = other if other.finding.replayed is True else best
     shown = frozenset(segment for seen in found for segment in seen.shown)
     certain = bool(shown) and ways.all_show(shown)
-    diverts = any(seen.broken.finding.diverts for seen in found)
+    diverts = any(seen.diverts for seen in found)
     return replace(best, finding=replace(best.finding, certain=certain, diverts=diverts))
-
-
-def _is_thin(one: Broken) -> bool:
-    return one.finding.margin_us is not None and one.finding.margin_us >= 0
 
 
 @record
@@ -157,21 +164,21 @@ def _prove_one(
             diverting.add(key)
         if _always_broken(one, rows) and _comes_before(study, one, turns):
             shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
-    seen = [
-        _Seen(_broken(study, *found, key in diverting), frozenset(shown.get(key, ())))
-        for key, found in tightest.items()
-        if found[2] < 0
-    ]
-    seen += [
-        _Seen(Broken(_thin(study, *found, reserve_us), None))
-        for found in tightest.values()
-        if 0 <= found[2] < reserve_us
-    ]
+    seen = []
+    for key, (check, one, margin) in tightest.items():
+        if margin < 0:
+            make = partial(_broken, study, check, one, margin)
+            seen.append(_Seen(key, _shown(margin), key in diverting, make, frozenset(shown.get(key, ()))))
+        elif margin < reserve_us:
+            seen.append(_Seen(key, margin, False, partial(_thin, study, check, one, margin, reserve_us)))
     for check in checks:
         for sight in check.sights(study):
             shows = sight.certain and not turns
             at = segment_of(sight.at) if sight.at is not None else (segment_of(0)[0], -1)
-            seen.append(_Seen(Broken(check.finding(sight), None), frozenset({at} if shows else ())))
+            finding = check.finding(sight)
+            make = partial(Broken, finding, None)
+            certainly = frozenset({at} if shows else ())
+            seen.append(_Seen(_key(finding), finding.margin_us, finding.diverts, make, certainly))
     margins = (
         Margin(check.kind, one.subject, one.step, one.place, _shown(margin)) for check, one, margin in tightest.values()
     )
@@ -234,7 +241,7 @@ def _comes_before(study: Study, one: Obligation, turns: Sequence[Obligation]) ->
     return all(separation <= 0 for separation in greatest_separations(study.trace.graph, pairs).values())
 
 
-def _broken(study: Study, check: Check, one: Obligation, margin: int, diverts: bool) -> Broken:
+def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
     with study.trace.graph.not_assuming(one.assumed, one.kept):
         run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
@@ -252,7 +259,6 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int, diverts: b
         replayed=_shows(study, check, one, run),
         run=narrate(study, run, one.instead),
         mend=None if mend is None or shown is None else mend(_needed(study, one, -shown)),
-        diverts=diverts,
     )
     return Broken(finding, run, study.settlement)
 
@@ -270,11 +276,11 @@ def _shows(study: Study, check: Check, one: Obligation, run: Witness) -> bool:
     )
 
 
-def _thin(study: Study, check: Check, one: Obligation, margin: int, reserve_us: int) -> Finding:
+def _thin(study: Study, check: Check, one: Obligation, margin: int, reserve_us: int) -> Broken:
     """It holds, and nothing can be shown to break; what would mend it is asked as if the reserve were due."""
     mend = one.wording.mend
     due = replace(one, least=one.least + reserve_us)
-    return Finding(
+    finding = Finding(
         kind=check.kind,
         severity=Severity.WARNING,
         certain=False,
@@ -289,6 +295,7 @@ def _thin(study: Study, check: Check, one: Obligation, margin: int, reserve_us: 
         if mend is None
         else f"for a reserve of {in_time(reserve_us)}: {mend(_needed(study, due, reserve_us - margin))}",
     )
+    return Broken(finding, None)
 
 
 def _needed(study: Study, one: Obligation, by: int) -> int:

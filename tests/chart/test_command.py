@@ -161,3 +161,20 @@ def test_standard_input(clamp: str, monkeypatch: pytest.MonkeyPatch, capsys: pyt
     monkeypatch.setattr("sys.stdin", Stream(io.BytesIO(CLAMP.encode("utf-8")), "utf-8"))
     assert main(["chart", "-"]) == 0
     assert "Clamp: a settled cycle of main" in capsys.readouterr().out
+
+
+def test_a_first_sequence_that_never_comes_round_is_shown_as_far_as_it_was_played(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """``main`` waits for good while two others come to ever new states: nothing is played on for."""
+    (tmp_path / "stuck.steps").write_text(
+        "controller { scan 8..12 ms }\n"
+        "flag done\n"
+        "sequence main { step a { dwell 100 ms }  step stuck { until done }  step never { set done  dwell 5 ms } }\n"
+        "sequence side { step ready { dwell 30 ms }  step go { dwell 50 ms } }\n"
+        "sequence other { step ready { dwell 31 ms }  step go { dwell 57 ms } }\n"
+        "never main.a and side.ready and other.ready for 100 s\n",
+        "utf-8",
+    )
+    assert main(["chart", str(tmp_path / "stuck.steps")]) == 0
+    assert "sequence main from its start as far as it was played" in capsys.readouterr().out
