@@ -56,6 +56,8 @@ MOST_ROUNDS = 12
 _MOST_UNROLLED = 3
 
 
+#: What looking at a state costs besides the separations that it takes, in as many of them.
+_WORK_OF_A_STATE = 150
 #: What was over so many states ago has no open order any more.
 _LATE = 8
 
@@ -199,6 +201,7 @@ class Scout:
     def _pass(self, passage: Passage, where: tuple[object, ...]) -> None:
         path, player = self.path, self.player
         assert player is not None
+        player.trace.graph.work += _WORK_OF_A_STATE
         index = len(path.passages)
         self._assume_orders(player.trace, player.trace.times[passage.at])
         passage.under_way = self._under_way(player, passage.at)
