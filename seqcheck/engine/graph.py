@@ -143,13 +143,15 @@ class EventGraph:
 
     def never_later(self, one: int, other: int) -> bool:
         """Whether plain intervals since the common dominator already show ``one`` to be at or before ``other``."""
-        common = self.common_dominator(one, other)
-        return self.latest[one] - self.latest[common] <= self.earliest[other] - self.earliest[common]
+        return self._least_lead(one, other) >= 0
 
     def always_earlier(self, one: int, other: int) -> bool:
         """Whether they show it to be before that."""
+        return self._least_lead(one, other) > 0
+
+    def _least_lead(self, one: int, other: int) -> int:
         common = self.common_dominator(one, other)
-        return self.latest[one] - self.latest[common] < self.earliest[other] - self.earliest[common]
+        return self.earliest[other] - self.earliest[common] - (self.latest[one] - self.latest[common])
 
     def leads_to(self, one: int, other: int) -> bool:
         """Whether a chain of causes runs from one event to the other, which then is never earlier."""
