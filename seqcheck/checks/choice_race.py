@@ -15,7 +15,7 @@ from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study, Turned
 from seqcheck.engine.choice_orders import asked_in_time
 from seqcheck.engine.order import Order
-from seqcheck.engine.partings import is_up_to_someone, parted_at, taken_in
+from seqcheck.engine.partings import is_up_to_someone, parted_at, with_taken_in
 from seqcheck.engine.trace import Choice
 from seqcheck.machine.findings import Severity
 from seqcheck.machine.model import items_of
@@ -29,12 +29,11 @@ def _obligations(study: Study) -> Iterator[Obligation]:
 
 def _of_what_is_asked(study: Study) -> Iterator[Obligation]:
     turned = {key[1] for key in study.settlement.recipe.turned if key[0] == "choose"}
-    for choice in study.trace.choices:
-        # Where this play turned the choice, how far it is from turning back says nothing.
+    # How far a choice is from what was turned long before says nothing of it: `usual` is what it took before that.
+    for choice, usual in with_taken_in(study.unturned.trace, study.trace):
+        # Nor does how far it is from turning back where this play turned it.
         if choice.taken is None or choice.choose.place in turned or is_up_to_someone(choice):
             continue
-        # Nor does how far one is from it that was turned long before.
-        usual = taken_in(study.unturned.trace, study.trace, choice)
         for one in asked_in_time(study.trace, choice):
             if one.other not in (None, choice.taken, usual) and not one.outside:
                 yield _obligation(study, choice, one.other, one.order, one.how, one.asked)

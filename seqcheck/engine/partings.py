@@ -6,10 +6,11 @@ that the two make differently, if that is the first thing that they do.
 
 from __future__ import annotations
 
-from collections import Counter
+from collections import Counter, defaultdict, deque
 from collections.abc import Hashable, Iterator
 
 from seqcheck.engine.trace import Choice, Trace, Visit, Wait
+from seqcheck.machine.places import Place
 
 
 def parted_at(trace: Trace, other: Trace, unturned: Trace) -> tuple[Choice, int] | None:
@@ -31,11 +32,14 @@ def parted_at(trace: Trace, other: Trace, unturned: Trace) -> tuple[Choice, int]
     return one, instead.taken
 
 
-def taken_in(unturned: Trace, trace: Trace, choice: Choice) -> int | None:
-    """What the choice of ``trace`` takes in the other play, as often as it had come up before."""
-    number = [one for one in trace.choices if one.choose is choice.choose].index(choice)
-    there = [one.taken for one in unturned.choices if one.choose is choice.choose]
-    return there[number] if number < len(there) else None
+def with_taken_in(unturned: Trace, trace: Trace) -> Iterator[tuple[Choice, int | None]]:
+    """Every choice of ``trace``, and what it takes in the other play, as often as it had come up before."""
+    there: dict[Place, deque[int | None]] = defaultdict(deque)
+    for choice in unturned.choices:
+        there[choice.choose.place].append(choice.taken)
+    for choice in trace.choices:
+        others = there[choice.choose.place]
+        yield choice, others.popleft() if others else None
 
 
 def _decisions(trace: Trace) -> Iterator[tuple[Hashable, Wait]]:
