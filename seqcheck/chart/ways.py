@@ -227,6 +227,9 @@ class _Onward:
     def step_comes_again(self, read: Read, step: str) -> None:
         self._pass()
 
+    def milestone_comes(self, read: Read, step: str) -> None:
+        pass
+
     def round_begins(self, read: Read, sequence: str) -> None:
         self._pass()
 

@@ -62,9 +62,11 @@ class Ways:
         """The segments that may come next; none where the play ended."""
         number, passage = segment
         one = self._settlements[number]
-        reached = passage + 1
+        path = one.path
+        # What a play shows behind its round goes on as the round.
+        reached = (path.first if path.rest and path.first is not None and passage == path.last else passage) + 1
         if reached >= len(one.states):
             return []
         state = one.states[reached]
-        here = self._owner[state] if reached == one.path.last else (number, reached)
+        here = self._owner[state] if reached == path.last and not path.rest else (number, reached)
         return [here, *self._branches.get(state, ())]

@@ -11,7 +11,7 @@ from __future__ import annotations
 from bisect import bisect_left, bisect_right
 from collections import Counter
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.controller import Outcome
@@ -282,7 +282,7 @@ def _where_ways_part(settlements: Sequence[Settlement]) -> set[int]:
 @record
 class _Stretch:
     """What lies from event ``begin`` to event ``end``, from passage ``first`` to passage ``last``: two at which ways
-    part, or the ends of a play; ``end`` is None where it goes on to the end of a play that has ended."""
+    part, or the ends of a play; ``end`` is None where it goes on to the end of the play."""
 
     edge: Edge
     begin: int
@@ -307,6 +307,9 @@ def _stretches(settlement: Settlement, parts: set[int]) -> list[_Stretch]:
         if end > first or over:
             edge = states[first], states[end], outcome, None if choice is None else choice.taken
             found.append(_Stretch(edge, passages[first].at, None if over else passages[end].at, first, end))
+    if settlement.path.rest:
+        # Behind the round, which is the last stretch, it goes on as in it.
+        found.append(replace(found[-1], begin=passages[ends].at, end=None, first=ends, last=ends + 1))
     return found
 
 

@@ -71,11 +71,10 @@ def _never_ended(study: Study) -> Iterator[Sight]:
     """The earlier coil is commanded for good: no time is needed to see that. (What has just not ended when play stops
     has ended one cycle before.)"""
     told = set()
-    trace = study.trace
-    over = None if trace.finished or len(trace.cycles) < 3 else study.time(trace.cycles[-2].event)
+    last_round = _last_round_since(study)
     for pair in _pairs(study):
         earlier, later = pair.earlier, pair.later
-        if over is not None and study.time(later.begun.read.event) >= over:
+        if last_round is not None and study.time(later.begun.read.event) >= study.time(last_round):
             continue
         if earlier.ended is None and later.begun.place not in told:
             told.add(later.begun.place)
@@ -85,6 +84,16 @@ def _never_ended(study: Study) -> Iterator[Sight]:
             yield Sight(
                 pair.valve.name, later.begun.step, later.begun.place, message, run, mend, at=later.begun.read.event
             )
+
+
+def _last_round_since(study: Study) -> int | None:
+    """The event since which the play has gone round once, or the start of its last cycle but one where it does not come
+    round; None where nothing comes after it."""
+    trace = study.trace
+    if trace.finished:
+        return None
+    again = study.settlement.path.again
+    return again if again is not None else trace.cycles[-2].event if len(trace.cycles) >= 3 else None
 
 
 def _decayed(study: Study, spell: Spell) -> int:

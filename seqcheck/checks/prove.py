@@ -6,7 +6,7 @@ margins, in no order. Obligations that the text states once are met in every cyc
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import replace
 from functools import partial
 
@@ -152,7 +152,7 @@ def _prove_one(
     turns = _turns(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
     diverting: set[_Key] = set()
-    shown: dict[_Key, set[Segment]] = {}
+    always: list[tuple[_Key, Obligation]] = []
     for check, obligation in stated:
         one = _best_pair(obligation, rows)
         margin = -rows[one.second, one.first] - one.least
@@ -162,8 +162,11 @@ def _prove_one(
             tightest[key] = (check, one, margin)
         if margin < 0 and (one.stops or (one.diverts and not _always_broken(one, rows))):
             diverting.add(key)
-        if _always_broken(one, rows) and _comes_before(study, one, turns):
-            shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
+        if _always_broken(one, rows):
+            always.append((key, one))
+    shown: dict[_Key, set[Segment]] = {}
+    for key, one in _that_come_before(study, always, turns):
+        shown.setdefault(key, set()).add(segment_of(max(one.first, one.second, key=study.time)))
     seen = []
     for key, (check, one, margin) in tightest.items():
         if margin < 0:
@@ -234,11 +237,19 @@ def _turns(study: Study, obligations: Iterable[Obligation], rows: Rows) -> list[
     ]
 
 
-def _comes_before(study: Study, one: Obligation, turns: Sequence[Obligation]) -> bool:
-    """Whether it shows that this is broken, as it does once the second event comes, before any run goes otherwise than
-    the played one: such a run keeps what that breaks, and comes to its first event."""
-    pairs = [(turn.first, one.second) for turn in turns if turn.first != one.as_if]
-    return all(separation <= 0 for separation in greatest_separations(study.trace.graph, pairs).values())
+def _that_come_before(
+    study: Study, broken: Sequence[tuple[_Key, Obligation]], turns: Sequence[Obligation]
+) -> Iterator[tuple[_Key, Obligation]]:
+    """Those that show to be broken, as they do once the second event comes, before any run goes otherwise than the
+    played one: such a run keeps what that breaks, and comes to its first event."""
+    firsts = {turn.first for turn in turns}
+    pairs = {(first, one.second) for _, one in broken for first in firsts if first != one.as_if}
+    # What comes later in the played run need not be asked about the others.
+    asked = (pair for pair in pairs if study.time(pair[1]) <= study.time(pair[0]))
+    rows = greatest_separations(study.trace.graph, asked)
+    for key, one in broken:
+        if all(rows.get((first, one.second), 1) <= 0 for first in firsts if first != one.as_if):
+            yield key, one
 
 
 def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:

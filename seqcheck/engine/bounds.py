@@ -27,6 +27,11 @@ from seqcheck.engine.columns import separations_within
 from seqcheck.engine.graph import OPEN, EventGraph
 from seqcheck.machine.time import Span
 
+#: What it costs to look at a pair, and how many causes are found, or looked through, for the cost of one separation.
+_WORK_OF_A_PAIR = 8
+_FOUND_AT_ONCE = 3
+_IN_A_SET = 40
+
 
 def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) -> Rows:
     """``S[i, j]`` for every pair ``(i, j)``: how much later than ``i`` can ``j`` be? Microseconds."""
@@ -65,6 +70,7 @@ class _Below:
         latest, earliest = graph.latest, graph.earliest
         rows: Rows = {}
         reduced: dict[tuple[int, int], tuple[int, int]] = {}
+        graph.work += _WORK_OF_A_PAIR * len(pairs)
         for source, event in pairs:
             near_source, near_event = graph.below(common, source), graph.below(common, event)
             if not self._assumed and self._are_independent(near_source, near_event):
@@ -84,7 +90,7 @@ class _Below:
     def _are_independent(self, near_source: int, near_event: int) -> bool:
         """Whether the two, right under the common dominator, have no other cause in common."""
         source_causes, event_causes = self._causes_of(near_source), self._causes_of(near_event)
-        self._graph.work += len(source_causes) + len(event_causes)
+        self._graph.work += (len(source_causes) + len(event_causes)) // _IN_A_SET
         if near_source in event_causes or near_event in source_causes:
             return False
         return len(source_causes & event_causes) == 1
@@ -103,6 +109,7 @@ class _Below:
         found = self._causes.get(number)
         if found is None:
             found = self._causes[number] = _causes(self._graph, self._common, (number,))
+            self._graph.work += len(found) // _FOUND_AT_ONCE
         return found
 
     def _dominating_causes_of(self, number: int) -> set[int]:
@@ -118,7 +125,7 @@ class _Below:
         nor any event of an assumed order. What dominates a cause is a cause itself, so that the way up from ``event``
         meets them where it comes to the first that dominates one of them."""
         graph = self._graph
-        graph.work += len(self._causes_of(other))
+        graph.work += len(self._causes_of(other)) // _IN_A_SET
         for dominating in (self._dominating_causes_of(other), self._above_ordered):
             if dominating:
                 met = graph.first_among(dominating, self._common, event)

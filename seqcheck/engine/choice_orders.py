@@ -125,13 +125,19 @@ class _Look:
         """Of two that the read that comes to the choice lies between, only where neither decides it with that alone."""
         moments = self._moments
         read = next(number for number, moment in enumerate(moments) if moment.comes)
-        with_read = [(min(number, read), max(number, read)) for number in range(len(moments)) if number != read]
-        decisive = {number for pair in with_read if self._others(*pair) for number in pair}
+        decides: dict[int, bool] = {}
+
+        def decisive(number: int) -> bool:
+            if number not in decides:
+                decides[number] = bool(self._others(min(number, read), max(number, read)))
+            return decides[number]
+
         for one, two in combinations(range(len(moments)), 2):
-            across = one < read < two
-            if two < read or (across and (moments[two].ready or not decisive.isdisjoint((one, two)))):
+            if two < read or not counts(moments[one].event, moments[two].event):
                 continue
-            others = self._others(one, two) if counts(moments[one].event, moments[two].event) else ()
+            if one < read < two and (moments[two].ready or decisive(one) or decisive(two)):
+                continue
+            others = self._others(one, two)
             if others:
                 yield self._order(one, two, others)
 

@@ -21,6 +21,8 @@ if TYPE_CHECKING:
 
 #: From so many sources on a table of all of them is quicker.
 _MANY = 24
+#: In a table so many separations cost what one does by itself.
+_AT_ONCE = 100
 _NO_CHAIN = -(1 << 60)
 
 #: ``S`` by pair of (source, event).
@@ -34,9 +36,10 @@ _Arcs = Sequence[Sequence[tuple[int, int, int]]]
 def separations_within(graph: EventGraph, members: Sequence[int], pairs: Collection[tuple[int, int]]) -> Rows:
     """``S`` for each of the pairs."""
     sources = sorted({source for source, _ in pairs})
-    graph.work += len(members) * len(sources)
     if len(sources) >= _MANY:
+        graph.work += len(members) * (_MANY + len(sources) // _AT_ONCE)
         return _by_table(graph, members, sources, pairs)
+    graph.work += len(members) * len(sources)
     columns = {source: _column(graph, members, source, OPEN) for source in sources}
     return {(source, event): columns[source][event] for source, event in pairs}
 

@@ -52,6 +52,9 @@ class Guide(Protocol):
     def step_comes_again(self, read: Read, step: str) -> None:
         """A step to which a jump or a watchdog leads is entered at this read."""
 
+    def milestone_comes(self, read: Read, step: str) -> None:
+        """Another step, of which a sequence has a few here and there, is entered at this read."""
+
 
 class Controller:
     def __init__(
@@ -206,6 +209,8 @@ class Controller:
         step = enter.step
         if step.name in thread.program.heads:
             self._guide.step_comes_again(read, step.name)
+        elif step.name in thread.program.milestones:
+            self._guide.milestone_comes(read, step.name)
         visit = Visit(entered=read, alternatives=enter.alternatives, cycle=thread.course.cycle, step=step)
         self._trace.visits.append(visit)
         read.entered.append(visit)

@@ -35,6 +35,8 @@ from seqcheck.machine.steps import Choose
 MOST_ORDERS = 16
 #: So often a way is played again with pistons where the play before has left them.
 _MOST_PLACINGS = 8
+#: What an event of a play costs besides the separations, in as many of them.
+_WORK_OF_AN_EVENT = 4
 
 
 @record
@@ -121,9 +123,8 @@ class _Explorer:
         work = most_work(self.machine)
         while self.waiting and work > 0:
             recipe = self.waiting.popleft()
-            most = work if self.found else None  # The typical run is played in any case.
-            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs, most=most)
-            work -= settlement.trace.graph.work
+            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs, most=work)
+            work -= settlement.trace.graph.work + _WORK_OF_AN_EVENT * len(settlement.trace.times)
             if settlement.path.astray:
                 self.complete = False
                 continue
@@ -205,7 +206,7 @@ def most_work(machine: Machine) -> int:
     """More work than this, in separations worked out, is not done; the report then says so. Sequences that go side by
     side and never wait for one another come to ever new states, whose pasts have nothing in common."""
     items = (item for sequence in machine.sequences for item in items_of(sequence.items))
-    return 300_000 + 10_000 * sum(isinstance(item, Choose) for item in items)
+    return 200_000 + 15_000 * sum(isinstance(item, Choose) for item in items)
 
 
 def explore(machine: Machine) -> StateGraph:
@@ -288,6 +289,9 @@ class _Follower:
 
     def step_comes_again(self, read: Read, step: str) -> None:
         self._pass(Passage(read.event, (), step=step))
+
+    def milestone_comes(self, read: Read, step: str) -> None:
+        pass
 
     def _pass(self, passage: Passage) -> None:
         self.path.passages.append(passage)

@@ -128,7 +128,9 @@ class Way:
 class Path:
     """What the guide has seen. ``joined``: the passage at which a known state came up again, None while none has;
     ``settled``: where that state came up first in this very play. ``first`` to ``last``: the passages between which the
-    play then goes once round; up to ``last`` a little further, where the state is one of another play."""
+    play then goes once round; up to ``last`` a little further, where the state is one of another play. ``again``: the
+    event from which the play goes once round to its end. ``rest``: behind ``last`` it goes on as behind ``first``, up
+    to where that was as in the round before."""
 
     passages: list[Passage] = field(default_factory=list)
     orders: list[tuple[int, Order]] = field(default_factory=list)
@@ -136,6 +138,8 @@ class Path:
     settled: int | None = None
     first: int | None = None
     last: int | None = None
+    again: int | None = None
+    rest: bool = False
     #: The way cannot be gone: a choice had no such outcome.
     astray: bool = False
 
@@ -171,6 +175,9 @@ class Scout:
         self._most = most
         self._decided = 0
         self._most_passages = _most_passages(machine)
+        #: What milestones were like, by how many states had been before; where the last round came to be like that.
+        self._milestones: dict[Signature, int] = {}
+        self._alike: tuple[str, int] | None = None
         self._period = 0
         self._pool: list[int] = []
         self._seen_events = 0
@@ -197,6 +204,21 @@ class Scout:
 
     def step_comes_again(self, read: Read, step: str) -> None:
         self._pass(Passage(read.event, (), step=step), ("step", step))
+
+    def milestone_comes(self, read: Read, step: str) -> None:
+        """A typical play that comes round need not go once more through all that it first did otherwise: it goes round
+        from the first milestone that was as in the round before."""
+        path, player = self.path, self.player
+        assert player is not None
+        if path.rest:
+            if self._alike is not None and step == self._alike[0]:
+                player.stop()
+        elif path.joined is None and self._alike is None and self._way.fresh < 0 and len(self._machine.sequences) == 1:
+            player.trace.graph.work += _WORK_OF_A_STATE
+            passed = len(path.passages)
+            signature = (step, player.state, self._under_way(player, read.event))
+            if self._milestones.setdefault(signature, passed) == passed - 1:
+                self._alike = step, read.event
 
     def _pass(self, passage: Passage, where: tuple[object, ...]) -> None:
         path, player = self.path, self.player
@@ -225,11 +247,15 @@ class Scout:
         before = self._own.get(passage.signature)
         if before is not None:
             path.joined, path.settled, self._period = index, before, index - before
-            self._end_of_round(index)
+            if self._period == 1 and self._alike is not None:
+                path.first, path.last, path.again, path.rest = before, index, self._alike[1], True
+            else:
+                self._end_of_round(index)
         elif passage.signature in self._known:
             path.joined = index
         else:
             self._own[passage.signature] = index
+            self._alike = None
             if index - self._way.fresh > self._most_passages:
                 player.stop()
 
@@ -239,7 +265,7 @@ class Scout:
         assert path.joined is not None
         name = self._machine.sequences[0].name
         if name == path.passages[index].sequence or index == path.joined + self._period - 1:
-            path.first, path.last = index, index + self._period
+            path.first, path.last, path.again = index, index + self._period, path.passages[index].at
             self._period = 0
 
     def _end_behind_join(self, index: int) -> None:

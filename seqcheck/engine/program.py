@@ -83,6 +83,10 @@ class Last:
     once: bool
 
 
+#: Milestones are so many steps apart, or more, so that no sequence has more than so many (and one) of them.
+_LEAST_APART = 16
+_MOST_MILESTONES = 32
+
 Instruction = Enter | Count | Again | Fork | BranchEnd | Select | Go | Last
 
 
@@ -91,7 +95,7 @@ class Program:
     """``loops``: for each instruction the loops around it, by the addresses of their beginnings, outer ones first.
     ``steps``: the address of each step by its qualified name. ``first``: the step that begins a cycle whenever it is
     entered by a jump; None where the sequence begins with something else. ``heads``: the steps to which jumps and
-    watchdogs lead."""
+    watchdogs lead. ``milestones``: some of its other steps, evenly spread over a long sequence."""
 
     name: str
     code: list[Instruction] = field(default_factory=list)
@@ -99,6 +103,7 @@ class Program:
     steps: dict[str, int] = field(default_factory=dict)
     first: str | None = None
     heads: set[str] = field(default_factory=set)
+    milestones: set[str] = field(default_factory=set)
 
     def counts_after_jump(self, at: int, counts: tuple[int, ...], to: int) -> tuple[int, ...]:
         """The rounds left of the loops around ``to``: those that are not left keep theirs."""
@@ -167,6 +172,9 @@ def compile_sequence(sequence: Sequence) -> Program:
     program.heads |= {one.target for one in watchdogs if one is not None and one.target is not None}
     if sequence.items and isinstance(sequence.items[0], Step):
         program.first = sequence.items[0].name
+    steps = [item.name for item in sequence.items if isinstance(item, Step)]
+    apart = max(_LEAST_APART, len(steps) // _MOST_MILESTONES)
+    program.milestones = set(steps[apart::apart]) - program.heads
     return program
 
 
