@@ -243,12 +243,16 @@ def _that_come_before(
     """Those that show to be broken, as they do once the second event comes, before any run goes otherwise than the
     played one: such a run keeps what that breaks, and comes to its first event."""
     firsts = {turn.first for turn in turns}
-    pairs = {(first, one.second) for _, one in broken for first in firsts if first != one.as_if}
-    # What comes later in the played run need not be asked about the others.
-    asked = (pair for pair in pairs if study.time(pair[1]) <= study.time(pair[0]))
-    rows = greatest_separations(study.trace.graph, asked)
+    graph = study.trace.graph
+    # The played run, and plain intervals, show most of it.
+    left: list[tuple[_Key, Obligation, list[int]]] = []
     for key, one in broken:
-        if all(rows.get((first, one.second), 1) <= 0 for first in firsts if first != one.as_if):
+        others = [first for first in firsts if first != one.as_if]
+        if all(study.time(one.second) <= study.time(first) for first in others):
+            left.append((key, one, [first for first in others if not graph.never_later(one.second, first)]))
+    rows = greatest_separations(graph, ((first, one.second) for _, one, others in left for first in others))
+    for key, one, others in left:
+        if all(rows[first, one.second] <= 0 for first in others):
             yield key, one
 
 

@@ -43,24 +43,24 @@ def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) ->
         source, event = pair
         known = dominators.get((event, source))
         common = dominators[pair] = graph.common_dominator(source, event) if known is None else known
-        if source != common != event or (graph.assumed and graph.assumes_below(common)):
+        if source != common != event or graph.may_assume_between(common, max(pair)):
             left.setdefault(common, []).append(pair)
         elif source == common:
             rows[pair] = latest[event] - latest[source]
         else:
             rows[pair] = earliest[event] - earliest[source]
     for common, group in left.items():
-        rows.update(_Below(graph, common).separations(group))
+        rows.update(_Below(graph, common, group).separations(group))
     return rows
 
 
 class _Below:
     """What lies behind one event that dominates both of each pair that is asked."""
 
-    def __init__(self, graph: EventGraph, common: int) -> None:
+    def __init__(self, graph: EventGraph, common: int, pairs: Sequence[tuple[int, int]]) -> None:
         self._graph = graph
         self._common = common
-        self._assumed = graph.assumed_below(common)
+        self._assumed = _assumed_about(graph, common, {number for pair in pairs for number in pair})
         self._above_ordered = _above(graph, common, {number for pair in self._assumed for number in pair})
         self._causes: dict[int, set[int]] = {}
         self._dominating: dict[int, set[int]] = {}
@@ -73,7 +73,10 @@ class _Below:
         graph.work += _WORK_OF_A_PAIR * len(pairs)
         for source, event in pairs:
             near_source, near_event = graph.below(common, source), graph.below(common, event)
-            if not self._assumed and self._are_independent(near_source, near_event):
+            if not self._assumed and common in (source, event):
+                later = source == common
+                rows[source, event] = latest[event] - latest[source] if later else earliest[event] - earliest[source]
+            elif not self._assumed and self._are_independent(near_source, near_event):
                 rows[source, event] = latest[event] - latest[common] - (earliest[source] - earliest[common])
             else:
                 reduced[source, event] = self._reduce(source, event, near_source, near_event)
@@ -179,6 +182,24 @@ def greatest_of(span: Span, open_us: int) -> int:
 def causes_since(graph: EventGraph, common: int, events: Iterable[int]) -> list[int]:
     """The events and all their causes back to ``common``, which dominates them, in the order of the graph."""
     return sorted(_causes(graph, common, events))
+
+
+def _assumed_about(graph: EventGraph, common: int, events: Collection[int]) -> list[tuple[int, int]]:
+    """The orders taken for granted below ``common`` that have anything to do with these events: one of their two is a
+    cause of an event, or of what such an order brings in."""
+    found: list[tuple[int, int]] = []
+    if not graph.may_assume_between(common, max(events)):
+        return found
+    left = [pair for pair in graph.assumed if min(pair) > common]
+    causes = _causes(graph, common, events)
+    while True:
+        about = [pair for pair in left if pair[0] in causes or pair[1] in causes]
+        about = [pair for pair in about if graph.is_below(common, pair)]
+        if not about:
+            return found
+        found += about
+        left = [pair for pair in left if pair not in about]
+        causes |= _causes(graph, common, {number for pair in about for number in pair})
 
 
 def _above(graph: EventGraph, common: int, events: Collection[int]) -> set[int]:

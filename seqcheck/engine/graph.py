@@ -183,15 +183,17 @@ class EventGraph:
                 kept.append(cause)
         return tuple(kept)
 
-    def assumes_below(self, dominator: int) -> bool:
-        """Whether an order is taken for granted of two events that this one dominates."""
-        return any(self._is_below(dominator, pair) for pair in self.assumed)
+    def may_assume_between(self, dominator: int, last: int) -> bool:
+        """Whether an order is taken for granted whose first event in the graph lies behind ``dominator``, but not
+        behind ``last``."""
+        return any(dominator < min(pair) <= last for pair in self.assumed)
 
     def assumed_below(self, dominator: int) -> list[tuple[int, int]]:
         """The orders that are taken for granted of two events that this one dominates."""
-        return [pair for pair in self.assumed if self._is_below(dominator, pair)]
+        return [pair for pair in self.assumed if self.is_below(dominator, pair)]
 
-    def _is_below(self, dominator: int, pair: tuple[int, int]) -> bool:
+    def is_below(self, dominator: int, pair: tuple[int, int]) -> bool:
+        """Whether the event dominates both of these."""
         return min(pair) > dominator and all(self.dominates(dominator, number) for number in pair)
 
     @contextmanager
