@@ -56,6 +56,9 @@ class Rounds:
     def step_comes_again(self, read: Read, step: str) -> None:
         """Of no account here."""
 
+    def milestone_comes(self, read: Read, step: str) -> None:
+        """Of no account here."""
+
 
 _FAULTY = Path(__file__).parents[2] / "examples" / "faulty"
 

@@ -42,6 +42,9 @@ class SoManyRounds:
     def step_comes_again(self, read: Read, step: str) -> None:
         pass
 
+    def milestone_comes(self, read: Read, step: str) -> None:
+        pass
+
 
 def played(text: str, rounds: int, draw: Draw = typical, until_us: int | None = None) -> Trace:
     machine = read_machine(Source("a.steps", text))

@@ -18,7 +18,7 @@ import sys
 import time
 import traceback
 import zlib
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from types import FrameType
@@ -31,11 +31,14 @@ from seqcheck.language.source import Source, decode
 from seqcheck.machine.findings import Problem
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
+from seqcheck.machine.steps import Choose, Item, Repeat, Step, Together
 from seqcheck.report.formats import FORMATS
 from tests.fuzz.inputs import CHECKOUT, Input
 
-#: No input may take longer (processor time, so that a busy machine raises no false alarm).
+#: No input may take longer (processor time, so that a busy machine raises no false alarm); one whose ``repeat`` make
+#: more than so many steps of a round may take longer in proportion.
 MOST_SECONDS = 2.0
+_STEPS_OF_A_ROUND = 500
 #: No input may take more memory on top of what the process had.
 MOST_MEBIBYTES = 400
 
@@ -44,6 +47,9 @@ MOST_MEBIBYTES = 400
 _CHECKS = [["check", "--format", form] for form in FORMATS]
 _CHARTS = [["chart", "--output", f"FOLDER/chart.{ending}"] for ending in ("svg", "html", "csv", "vcd", "txt")]
 _WAYS = [*_CHECKS, *_CHECKS, *_CHECKS, ["times"], ["margins"], ["chart"], *_CHARTS]
+
+
+_MANY_TIMES = re.compile(rb"repeat\s+\d\d")
 
 
 class Hang(BaseException):
@@ -63,6 +69,7 @@ def outcome_of(one: Input, folder: Path, whole: bool = True, most_seconds: float
     """``whole``: one of the commands in this process; else the reading of the text and its sheets, and what the text
     is when it is laid out and read again. ``folder`` has the sheets that the examples name (see ``with_sheets``)."""
     before = peak_mebibytes()
+    most_seconds *= max(1.0, _steps_of_a_round(one) / _STEPS_OF_A_ROUND) if whole else 1.0
     begin = time.process_time()
     fault, status = None, None
     try:
@@ -79,6 +86,30 @@ def outcome_of(one: Input, folder: Path, whole: bool = True, most_seconds: float
     if fault is None and status not in (0, 1, 2):
         fault = f"exit status {status}"
     return Outcome(None if fault else status, seconds, fault)
+
+
+def _steps_of_a_round(one: Input) -> int:
+    """How many steps and choices a round comes to, repetitions counted; 0 where there are few anyway."""
+    if not _MANY_TIMES.search(one.text):
+        return 0
+    source = decode(one.name, one.text)
+    machine = read_machine(source, ()) if isinstance(source, Source) else None
+    return sum(_unrolled(one.items) for one in machine.sequences) if isinstance(machine, Machine) else 0
+
+
+def _unrolled(items: Sequence[Item]) -> int:
+    found = 0
+    for item in items:
+        match item:
+            case Repeat(times, inner):
+                found += times * _unrolled(inner)
+            case Together(branches):
+                found += sum(_unrolled(branch) for branch in branches)
+            case Choose(choices):
+                found += 1 + max(_unrolled(choice.items) for choice in choices)
+            case Step():
+                found += 1
+    return found
 
 
 def with_sheets(folder: Path) -> Path:
