@@ -43,7 +43,7 @@ def greatest_separations(graph: EventGraph, pairs: Iterable[tuple[int, int]]) ->
         source, event = pair
         known = dominators.get((event, source))
         common = dominators[pair] = graph.common_dominator(source, event) if known is None else known
-        if source != common != event or graph.may_assume_between(common, max(pair)):
+        if source != common != event or graph.assumed_between(common, max(pair)):
             left.setdefault(common, []).append(pair)
         elif source == common:
             rows[pair] = latest[event] - latest[source]
@@ -188,18 +188,21 @@ def _assumed_about(graph: EventGraph, common: int, events: Collection[int]) -> l
     """The orders taken for granted below ``common`` that have anything to do with these events: one of their two is a
     cause of an event, or of what such an order brings in."""
     found: list[tuple[int, int]] = []
-    if not graph.may_assume_between(common, max(events)):
-        return found
-    left = [pair for pair in graph.assumed if min(pair) > common]
-    causes = _causes(graph, common, events)
-    while True:
-        about = [pair for pair in left if pair[0] in causes or pair[1] in causes]
-        about = [pair for pair in about if graph.is_below(common, pair)]
+    since, last = common, max(events)
+    left: list[tuple[int, int]] = []
+    causes: set[int] | None = None
+    while further := [*left, *graph.assumed_between(since, last)]:
+        causes = _causes(graph, common, events) if causes is None else causes
+        about = {pair for pair in further if pair[0] in causes or pair[1] in causes}
+        left = [pair for pair in further if pair not in about]
+        about = {pair for pair in about if graph.is_below(common, pair)}
         if not about:
-            return found
-        found += about
-        left = [pair for pair in left if pair not in about]
-        causes |= _causes(graph, common, {number for pair in about for number in pair})
+            break
+        found += sorted(about)
+        brought = {number for pair in about for number in pair}
+        causes |= _causes(graph, common, brought)
+        since, last = last, max(last, *brought)
+    return found
 
 
 def _above(graph: EventGraph, common: int, events: Collection[int]) -> set[int]:

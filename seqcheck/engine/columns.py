@@ -23,6 +23,8 @@ if TYPE_CHECKING:
 _MANY = 24
 #: In a table so many separations cost what one does by itself.
 _AT_ONCE = 100
+#: A table has no more separations than so many, so that it takes little memory.
+_MOST_OF_A_TABLE = 4_000_000
 _NO_CHAIN = -(1 << 60)
 
 #: ``S`` by pair of (source, event).
@@ -38,7 +40,12 @@ def separations_within(graph: EventGraph, members: Sequence[int], pairs: Collect
     sources = sorted({source for source, _ in pairs})
     if len(sources) >= _MANY:
         graph.work += len(members) * (_MANY + len(sources) // _AT_ONCE)
-        return _by_table(graph, members, sources, pairs)
+        rows: Rows = {}
+        together = max(_MANY, _MOST_OF_A_TABLE // len(members))
+        for first in range(0, len(sources), together):
+            some = sources[first : first + together]
+            rows |= _by_table(graph, members, some, [pair for pair in pairs if some[0] <= pair[0] <= some[-1]])
+        return rows
     graph.work += len(members) * len(sources)
     columns = {source: _column(graph, members, source, OPEN) for source in sources}
     return {(source, event): columns[source][event] for source, event in pairs}
@@ -68,10 +75,11 @@ def _column(graph: EventGraph, members: Sequence[int], source: int, open_us: int
 
 
 def _assumed_within(graph: EventGraph, members: Sequence[int]) -> list[tuple[int, int]]:
-    if not graph.assumed:
+    between = graph.assumed_between(members[0] - 1, members[-1])
+    if not between:
         return []
     within = set(members)
-    return [(one, other) for one, other in graph.assumed if one in within and other in within]
+    return [(one, other) for one, other in between if one in within and other in within]
 
 
 def _least_chains(graph: EventGraph, members: Sequence[int], chain: dict[int, int], highest: int) -> None:

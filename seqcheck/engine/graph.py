@@ -11,6 +11,7 @@ with max-causality and bounded delays, as in McMillan & Dill, *Algorithms for in
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections.abc import Collection, Container, Iterable, Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -57,8 +58,10 @@ class EventGraph:
     def __init__(self) -> None:
         self.events: list[Event] = [Event("start", "")]
         self.arcs: list[tuple[Arc, ...]] = [()]
-        #: Pairs of events of which the first is taken not to come after the second, though causes do not say so.
-        self.assumed: list[tuple[int, int]] = []
+        self._assumed: tuple[tuple[int, int], ...] = ()
+        #: The same by the one of the two that comes first in the graph, and these by themselves.
+        self._in_order: list[tuple[int, int]] = []
+        self._firsts: list[int] = []
         #: How many separations have been worked out over it, those on the way included.
         self.work = 0
         self.earliest: list[int] = [0]
@@ -183,10 +186,22 @@ class EventGraph:
                 kept.append(cause)
         return tuple(kept)
 
-    def may_assume_between(self, dominator: int, last: int) -> bool:
-        """Whether an order is taken for granted whose first event in the graph lies behind ``dominator``, but not
-        behind ``last``."""
-        return any(dominator < min(pair) <= last for pair in self.assumed)
+    @property
+    def assumed(self) -> tuple[tuple[int, int], ...]:
+        """Pairs of events of which the first is taken not to come after the second, though causes do not say so."""
+        return self._assumed
+
+    @assumed.setter
+    def assumed(self, pairs: Iterable[tuple[int, int]]) -> None:
+        self._assumed = tuple(pairs)
+        self._in_order = sorted(self._assumed, key=min)
+        self._firsts = [min(pair) for pair in self._in_order]
+
+    def assumed_between(self, dominator: int, last: int) -> list[tuple[int, int]]:
+        """The orders that are taken for granted whose first event in the graph lies behind ``dominator`` and no further
+        than ``last``."""
+        firsts = self._firsts
+        return self._in_order[bisect_right(firsts, dominator) : bisect_right(firsts, last)]
 
     def assumed_below(self, dominator: int) -> list[tuple[int, int]]:
         """The orders that are taken for granted of two events that this one dominates."""
@@ -200,7 +215,7 @@ class EventGraph:
     def not_assuming(self, pairs: Collection[tuple[int, int]], but: Collection[tuple[int, int]] = ()) -> Iterator[None]:
         """Meanwhile these orders are not taken for granted, but others are."""
         assumed = self.assumed
-        self.assumed = [*(pair for pair in assumed if pair not in pairs), *but]
+        self.assumed = (*(pair for pair in assumed if pair not in pairs), *but)
         try:
             yield
         finally:

@@ -78,7 +78,7 @@ class Orders:
     def assume(self, trace: Trace, since: int, begin: int, end: int, waits: Waits | None = None) -> list[Order]:
         """The same, from now on taken in the bounds to be as they were played."""
         found = self.open(trace, since, begin, end, waits)
-        trace.graph.assumed += [(order.first, order.second) for order in found]
+        trace.graph.assumed += tuple((order.first, order.second) for order in found)
         return found
 
     def _all(self, trace: Trace, waits: Waits, begin: int) -> Iterator[Order]:

@@ -9,7 +9,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from seqcheck.engine import columns
-from seqcheck.engine.bounds import causes_since
+from seqcheck.engine.bounds import causes_since, greatest_separation
 from seqcheck.engine.columns import separation_column, separations_within
 from seqcheck.engine.graph import OPEN, Arc, Event, EventGraph
 from seqcheck.machine.time import Span
@@ -41,6 +41,29 @@ def test_a_table_holds_what_the_columns_hold(seed: int, with_orders: bool) -> No
     for source in draw.sample(members, 5):
         column = separation_column(graph, members, source)
         assert {event: table[source, event] for event in members} == column
+
+
+def test_a_table_in_parts_is_the_same() -> None:
+    graph, members = random_graph(3, events=30, width=4), range(30)
+    pairs = [(source, event) for source in members for event in members]
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(columns, "_MANY", 7)
+        whole = separations_within(graph, members, pairs)
+        patch.setattr(columns, "_MOST_OF_A_TABLE", 1)
+        assert separations_within(graph, members, pairs) == whole
+
+
+@settings(deadline=None, max_examples=200)
+@given(st.integers(0, 10**6))
+def test_orders_that_have_nothing_to_do_with_a_pair_may_be_left_out(seed: int) -> None:
+    """Held against the part of the graph with all orders below the common dominator in it."""
+    graph, draw = random_graph(seed, events=40, width=3), random.Random(seed)
+    graph.assumed = [pair for pair in _some_orders(graph, 40, draw) if 0 not in pair]
+    one, other = draw.randrange(40), draw.randrange(40)
+    common = graph.common_dominator(one, other)
+    ordered = {number for pair in graph.assumed_below(common) for number in pair}
+    members = causes_since(graph, common, {one, other} | ordered)
+    assert greatest_separation(graph, one, other) == separations_within(graph, members, [(one, other)])[one, other]
 
 
 @settings(deadline=None, max_examples=60)

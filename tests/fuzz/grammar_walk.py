@@ -147,8 +147,8 @@ def _word(draw: random.Random, terminal: str, within: str) -> str:
         pool = _NAMES.get(within)
         return draw.choice(pool if pool and draw.random() < 0.95 else _ANY_NAME)
     if terminal == "NUMBER":
-        if within == "repeat" and draw.random() < 0.9:
-            return draw.choice("123")
+        if within == "repeat":
+            return draw.choice("123" if draw.random() < 0.9 else ("0", "10", "20", "50"))
         return draw.choice(("0", "1", "2", "3", "10", "20", "50", "100", "0.5", "250", str(draw.randrange(10**6))))
     return draw.choice(spellings(terminal))
 

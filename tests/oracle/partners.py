@@ -37,7 +37,8 @@ def partner(flow: Flow) -> list[str]:
 
 
 def _labelled(line: str, label: str) -> str:
-    return re.sub(r"^(\s*)step s", rf"\1step {label}", line)
+    renamed = re.sub(r"^(\s*)step s", rf"\1step {label}", line)
+    return re.sub(r"\bmain\.s(?=\d)", f"side.{label}", renamed)
 
 
 def _sequence(lines: list[str]) -> list[str]:
