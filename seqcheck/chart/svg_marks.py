@@ -73,10 +73,7 @@ def _height(frame: Frame, spot: Spot, time_us: int) -> float:
     """Where the row's line is as the event comes; for steps below the box that ends then, or begins."""
     if spot.row.kind is not RowKind.STEPS:
         return spot.at(round(level_at(spot.row, frame, time_us)))
-    ending = [band.lane for band in spot.row.bands if band.end is not None and band.end.typical_us == time_us]
-    beginning = [band.lane for band in spot.row.bands if band.begin is not None and band.begin.typical_us == time_us]
-    lane = (ending or beginning or [0])[0]
-    return spot.lane_tops[lane] + BOX_HEIGHT + 1.5
+    return spot.lane_tops[spot.lane_at.get(time_us, 0)] + BOX_HEIGHT + 1.5
 
 
 def draw_marks(canvas: Canvas, chart: Chart, frame: Frame) -> None:

@@ -6,7 +6,8 @@ side by side; the row names and the steps are in each of them, and a view may le
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
+from dataclasses import field
 from itertools import accumulate, pairwise
 
 from seqcheck.chart.canvas import text_width
@@ -52,13 +53,15 @@ class View:
 @record
 class Spot:
     """A row of the picture: ``index`` among the chart's rows, from ``top`` over ``height``; its line between the
-    heights ``low`` and ``high``. ``lane_tops``: where each lane of steps begins."""
+    heights ``low`` and ``high``. ``lane_tops``: where each lane of steps begins; ``lane_at``: by time, the lane of the
+    first step that ends then, or else begins."""
 
     index: int
     row: Row
     top: float
     height: float
     lane_tops: tuple[float, ...] = ()
+    lane_at: Mapping[int, int] = field(default_factory=dict)
 
     @property
     def low(self) -> float:
@@ -188,11 +191,16 @@ def framed(chart: Chart, view: View, above: float = 0) -> Frame:
     for index, row in rows:
         height = _height(chart, row)
         lanes = accumulate(lane_heights(row), initial=y) if row.kind is RowKind.STEPS else ()
-        spots.append(Spot(index, row, y, height, tuple(lanes)))
+        spots.append(Spot(index, row, y, height, tuple(lanes), _lane_at(row)))
         y += height
     begin, end = max(view.begin_us, chart.begin_us), min(view.end_us, chart.end_us)
     whole = chart.begin_us, chart.end_us
     return Frame(view, begin, end, *whole, left, right, top, y, slanted, tuple(spots))
+
+
+def _lane_at(row: Row) -> dict[int, int]:
+    begins = {band.begin.typical_us: band.lane for band in reversed(row.bands) if band.begin is not None}
+    return begins | {band.end.typical_us: band.lane for band in reversed(row.bands) if band.end is not None}
 
 
 def stacked(row: Row, lane: int) -> tuple[tuple[Edge, int], ...]:

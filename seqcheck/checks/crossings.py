@@ -365,9 +365,19 @@ def _past_the_start(settlements: Sequence[Settlement]) -> Callable[[int], bool]:
     for one in settlements:
         for number, _, _ in one.segments():
             following.setdefault(one.states[number], set()).add(one.states[number + 1])
-    again = {state for state, ends in following.items() if state in reached(following, ends)}
-    lasting = reached(following, again)
-    return lambda begin: not again or begin in lasting
+            following.setdefault(one.states[number + 1], set())
+    leading = Counter(end for ends in following.values() for end in ends)
+    # What nothing leads to, and then what nothing else has led to, is come to only once.
+    once = [state for state in following if not leading[state]]
+    lasting = set(following)
+    while once:
+        state = once.pop()
+        lasting.discard(state)
+        for end in following[state]:
+            leading[end] -= 1
+            if not leading[end]:
+                once.append(end)
+    return lambda begin: not lasting or begin in lasting
 
 
 def reached(following: Mapping[int, set[int]], begin: set[int]) -> set[int]:

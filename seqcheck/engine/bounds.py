@@ -112,7 +112,6 @@ class _Below:
         found = self._causes.get(number)
         if found is None:
             found = self._causes[number] = _causes(self._graph, self._common, (number,))
-            self._graph.work += len(found) // _FOUND_AT_ONCE
         return found
 
     def _dominating_causes_of(self, number: int) -> set[int]:
@@ -226,4 +225,5 @@ def _causes(graph: EventGraph, common: int, events: Iterable[int]) -> set[int]:
             for arc in all_arcs[number]:
                 if arc.cause not in found:
                     waiting.append(arc.cause)
+    graph.work += len(found) // _FOUND_AT_ONCE
     return found

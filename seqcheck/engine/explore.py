@@ -117,14 +117,17 @@ class _Explorer:
     planned: set[tuple[object, ...]] = field(default_factory=set)
     turns: Counter[tuple[object, ...]] = field(default_factory=Counter)
     complete: bool = True
+    work_left: int = 0
 
     def explore(self) -> StateGraph:
         self.waiting.append(Recipe(Way(), {}))
-        work = most_work(self.machine)
-        while self.waiting and work > 0:
+        self.work_left = most_work(self.machine)
+        while self.waiting and self.work_left > 0:
             recipe = self.waiting.popleft()
-            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs, most=work)
-            work -= settlement.trace.graph.work + _WORK_OF_AN_EVENT * len(settlement.trace.times)
+            settlement = play(
+                self.machine, recipe, self.orders, self.states, programs=self.programs, most=self.work_left
+            )
+            self.work_left -= settlement.trace.graph.work + _WORK_OF_AN_EVENT * len(settlement.trace.times)
             if settlement.path.astray:
                 self.complete = False
                 continue
@@ -177,7 +180,12 @@ class _Explorer:
         where = (settlement.states[number], path.passages[number].outcome)
         if (where, both) in self.planned:
             return
+        if self.work_left <= 0:
+            self.complete = False
+            return
+        before = settlement.trace.graph.work
         run = _turned_run(settlement.trace, order)
+        self.work_left -= settlement.trace.graph.work - before
         if run is None:
             return
         if self.turns[where] >= MOST_ORDERS - 1:
