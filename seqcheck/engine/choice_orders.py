@@ -17,6 +17,9 @@ from seqcheck.engine.trace import Choice, Edge, Known, Trace
 from seqcheck.engine.wait_orders import passing
 from seqcheck.machine.records import record
 
+#: What looking at a choice costs, in as many separations.
+_WORK_OF_A_LOOK = 12
+
 
 @record
 class ChoiceOrder:
@@ -34,6 +37,7 @@ class ChoiceOrder:
 def choice_orders(trace: Trace, choice: Choice, begin: int) -> Iterator[Order]:
     """Those that may be the other way round as far as plain intervals tell, and come about at or after ``begin``."""
     times, graph = trace.times, trace.graph
+    graph.work += _WORK_OF_A_LOOK
 
     def may_turn(first: int, second: int) -> bool:
         return times[second] >= begin and not graph.always_earlier(first, second)
