@@ -73,10 +73,7 @@ class _Below:
         graph.work += _WORK_OF_A_PAIR * len(pairs)
         for source, event in pairs:
             near_source, near_event = graph.below(common, source), graph.below(common, event)
-            if not self._assumed and common in (source, event):
-                later = source == common
-                rows[source, event] = latest[event] - latest[source] if later else earliest[event] - earliest[source]
-            elif not self._assumed and self._are_independent(near_source, near_event):
+            if not self._assumed and (common in (source, event) or self._are_independent(near_source, near_event)):
                 rows[source, event] = latest[event] - latest[common] - (earliest[source] - earliest[common])
             else:
                 reduced[source, event] = self._reduce(source, event, near_source, near_event)
