@@ -106,6 +106,10 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
     return Proof(tuple(broken), tuple(margins.values()), strays)
 
 
+def _key_of(check: Check, one: Obligation) -> _Key:
+    return check.kind, one.subject, one.step, one.place
+
+
 def _key(finding: Finding) -> _Key:
     return finding.kind, finding.subject, finding.step, finding.place
 
@@ -148,7 +152,7 @@ def _prove_one(
 ) -> _ProofOfOne:
     since = study.settlement.fresh_since
     stated = [(check, one) for check in checks for one in check.obligations(study) if _is_fresh(study, one, since)]
-    rows = _rows(study, [one for _, one in stated])
+    stated, rows = _once_each(study, stated)
     turns = _turns(study, (one for _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
     diverting: set[_Key] = set()
@@ -156,7 +160,7 @@ def _prove_one(
     for check, obligation in stated:
         one = _best_pair(obligation, rows)
         margin = -rows[one.second, one.first] - one.least
-        key = (check.kind, one.subject, one.step, one.place)
+        key = _key_of(check, one)
         known = tightest.get(key)
         if known is None or margin < known[2]:
             tightest[key] = (check, one, margin)
@@ -192,6 +196,29 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
     """Whether no other play has shown this already: something of it comes at or after the typical time ``since``."""
     times = study.trace.times
     return since <= 0 or any(times[first] >= since or times[second] >= since for first, second in one.pairs)
+
+
+def _once_each(
+    study: Study, stated: Sequence[tuple[Check, Obligation]]
+) -> tuple[Sequence[tuple[Check, Obligation]], Rows]:
+    """The obligations with their rows, less those that a round meets as the one before has met them: where something
+    of the same is broken, each time counts."""
+    before = {(_key_of(check, one), one.first, one.second) for check, one in stated}
+    news: list[int] = []
+    repeated: list[int] = []
+    for number, (check, one) in enumerate(stated):
+        image = None if one.others or one.assumed or one.kept else study.before_repeating(one.first, one.second)
+        known = image is not None and (_key_of(check, one), *image) in before
+        (repeated if known else news).append(number)
+    rows = _rows(study, [stated[number][1] for number in news])
+    broken = {_key_of(*stated[number]) for number in news if _is_broken(stated[number][1], rows)}
+    counting = [number for number in repeated if _key_of(*stated[number]) in broken]
+    rows |= _rows(study, [stated[number][1] for number in counting])
+    return [stated[number] for number in sorted((*news, *counting))], rows
+
+
+def _is_broken(one: Obligation, rows: Rows) -> bool:
+    return all(-rows[second, first] < one.least for first, second in one.pairs)
 
 
 def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:

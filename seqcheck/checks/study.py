@@ -92,6 +92,19 @@ class Study:
         begin, end = (self.settlement.path.passages[number].at for number in around)
         return begin, end
 
+    def before_repeating(self, one: int, other: int) -> tuple[int, int] | None:
+        """Two events of a round that only repeats the one before, as they were in that; None where they are not two
+        such events, or hang on anything from before that round."""
+        if self.settlement.path.repeats is None:
+            return None
+        begin, again = self.settlement.path.repeats
+        graph = self.trace.graph
+        if min(one, other) < again or max(one, other) >= self._played or graph.common_dominator(one, other) < again:
+            return None
+        pair = one - again + begin, other - again + begin
+        same = all(graph.events[was] == graph.events[now] for was, now in zip(pair, (one, other), strict=True))
+        return pair if same else None
+
     # Events that only obligations need -------------------------------------------------------------------------
 
     def comes(self, event: int) -> bool:

@@ -11,6 +11,7 @@ from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, S
 from dataclasses import replace
 from functools import partial
 from itertools import pairwise
+from operator import itemgetter
 
 from seqcheck.checks.crossings import Crossings, Edge, Spell, crossings
 from seqcheck.checks.narrate import describe
@@ -18,7 +19,7 @@ from seqcheck.checks.shown_states import branch_name
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import Rows, both_ways, causes_since, closed, greatest_separations
 from seqcheck.engine.columns import separation_column
-from seqcheck.engine.graph import Event
+from seqcheck.engine.graph import Event, EventGraph
 from seqcheck.engine.states import TimedStates, waits_for_outside
 from seqcheck.engine.trace import Read
 from seqcheck.machine.findings import ChoiceTime, Duration, PathPart
@@ -196,18 +197,26 @@ class Link:
 def critical_chain(study: Study, start: int, end: int) -> tuple[Link, ...]:
     """The chain of causes that makes ``end`` come as late after ``start`` as it can, in the order of time."""
     graph = study.trace.graph
-    members = causes_since(graph, graph.common_dominator(start, end), {start, end})
-    latest = separation_column(graph, members, start)
+    latest = _latest_after(graph, start, end)
     chain: list[Link] = []
     event = end
     while event != start:
-        known = [arc for arc in graph.arcs[event] if arc.cause in latest]
+        known = [(time + arc.span.greatest, arc) for arc in graph.arcs[event] if (time := latest(arc.cause)) is not None]
         if not known:
             break
-        arc = max(known, key=lambda arc: latest[arc.cause] + arc.span.greatest)
-        chain.append(Link(event, latest[event], arc.span))
+        _, arc = max(known, key=itemgetter(0))
+        chain.append(Link(event, latest(event) or 0, arc.span))
         event = arc.cause
-    return (Link(event, latest[event], NO_TIME), *reversed(chain))
+    return (Link(event, latest(event) or 0, NO_TIME), *reversed(chain))
+
+
+def _latest_after(graph: EventGraph, start: int, end: int) -> Callable[[int], int | None]:
+    """How late after ``start`` the causes of ``end`` since their common dominator can be; None for all others."""
+    common = graph.common_dominator(start, end)
+    if common == start and not graph.assumed_between(start, end):
+        # All that there is between the two hangs on the start alone: plain sums say how late it can be.
+        return lambda event: graph.latest[event] - graph.latest[start]
+    return separation_column(graph, causes_since(graph, common, {start, end}), start).get
 
 
 def _words(study: Study, event: int) -> str:

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from typing import NamedTuple
 
 
-@dataclass(frozen=True, slots=True, order=True)
-class Place:
+class Place(NamedTuple):
+    """A plain tuple: there are some for every word of a text, and they are parts of keys."""
+
     file: str
     line: int
     column: int

@@ -15,6 +15,7 @@ from functools import cache, lru_cache
 from typing import Any
 
 from seqcheck.machine.findings import Problem, Report
+from seqcheck.machine.places import Place
 
 #: A run of characters without a blank is cut in its middle beyond this, so that no name fills a page.
 LONGEST_WORD = 200
@@ -116,8 +117,10 @@ def plain_record(value: Any, encoding: str) -> Any:
     if isinstance(value, str):
         return plain(value, encoding)
     if isinstance(value, tuple):
-        parts = tuple([plain_record(part, encoding) for part in value])
-        return value if all(map(operator.is_, parts, value)) else parts
+        parts = [plain_record(part, encoding) for part in value]
+        if all(map(operator.is_, parts, value)):
+            return value
+        return Place(*parts) if isinstance(value, Place) else tuple(parts)
     if not dataclasses.is_dataclass(value) or isinstance(value, type):
         return value
     changed = {}

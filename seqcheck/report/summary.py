@@ -73,6 +73,14 @@ def accepted_margins(report: Report) -> frozenset[Margin]:
     return frozenset(one for one in report.margins if (one.kind, one.subject, one.step, one.place) in accepted)
 
 
+def tightest_margin(report: Report) -> Margin | None:
+    """The tightest that has a limit and that the text does not accept."""
+    accepted = accepted_margins(report)
+    known = [margin for margin in report.margins if margin.margin_us is not None]
+    counting = [margin for margin in known if margin not in accepted] if accepted else known
+    return min(counting, key=lambda margin: margin.margin_us or 0, default=None)
+
+
 def worst_handover(handovers: tuple[Handover, ...]) -> Handover:
     """The one with the greatest overlap or, without any, the least gap; refuses an empty tuple."""
     return min(handovers, key=lambda handover: (-handover.greatest_overlap_us, handover.least_gap_us))
@@ -83,10 +91,9 @@ def summary_rows(report: Report) -> list[tuple[str, str]]:
     rows: list[tuple[str, str]] = []
     if report.cycles:
         rows.append(("Cycle", "; ".join(f"{name} {spelled_range(time)}" for name, time in report.cycles)))
-    accepted = accepted_margins(report)
-    known = [margin for margin in report.margins if margin.margin_us is not None and margin not in accepted]
-    if known:
-        rows.append(("Tightest", _spelled_margin(min(known, key=lambda margin: margin.margin_us or 0))))
+    tightest = tightest_margin(report)
+    if tightest is not None:
+        rows.append(("Tightest", _spelled_margin(tightest)))
     if report.handovers:
         rows.append(("Handover", _spelled_handover(worst_handover(report.handovers))))
     return rows

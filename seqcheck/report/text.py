@@ -6,6 +6,7 @@ Takes ``Report`` values and the encoding of what it is written to; gives lines o
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 from seqcheck.machine.findings import Finding, Report, Severity
 from seqcheck.report.amounts import counted
@@ -13,7 +14,7 @@ from seqcheck.report.findings import accepted_lines, finding_lines
 from seqcheck.report.layout import BLANK, Line, Tone, page, paragraph
 from seqcheck.report.plain import plain_report
 from seqcheck.report.problems import problem_lines
-from seqcheck.report.summary import opening_lines, summary_lines
+from seqcheck.report.summary import opening_lines, summary_lines, tightest_margin
 
 
 def render_text(reports: Sequence[Report]) -> str:
@@ -26,10 +27,17 @@ def text_lines(reports: Sequence[Report], encoding: str = "utf-8") -> tuple[Line
     lines: list[Line] = []
     for number, report in enumerate(reports):
         lines.extend((BLANK,) if number else ())
-        lines.extend(report_lines(plain_report(report, encoding), encoding))
+        lines.extend(report_lines(plain_report(_shown_of(report), encoding), encoding))
     if len(reports) > 1:
         lines.extend((BLANK, *paragraph(_total(reports), tone=Tone.TITLE)))
     return tuple(lines)
+
+
+def _shown_of(report: Report) -> Report:
+    """The report less what has no line on the page: of thousands of margins it has the tightest."""
+    tightest = tightest_margin(report)
+    margins = () if tightest is None else (tightest,)
+    return replace(report, margins=margins, steps=(), critical_path=(), choices=(), states=(), runs=())
 
 
 def report_lines(report: Report, encoding: str = "utf-8") -> tuple[Line, ...]:
