@@ -7,6 +7,8 @@ import sys
 from dataclasses import field, replace
 from pathlib import Path
 
+import pytest
+
 from seqcheck.machine.records import record
 
 
@@ -42,6 +44,23 @@ def test_records_are_keys_by_their_values() -> None:
 
 def test_records_show_their_values_and_can_be_replaced() -> None:
     assert repr(replace(Port("P", 8), size=10)) == "Port(name='P', size=10, remark='')"
+
+
+@record
+class Row:
+    port: Port
+    spares: list[str] = field(default_factory=list)
+
+
+def test_records_are_made_by_place_or_by_name_with_what_is_left_out() -> None:
+    """The first one of its class, too, with which its ``__init__`` is compiled."""
+    first, second = Row(port=Port("P", 8)), Row(Port("A", 6), ["x"])
+    assert (first.port.name, first.spares, second.spares) == ("P", [], ["x"])
+    first.spares.append("y")
+    assert Row(first.port).spares == []
+    for wrong in ({}, {"port": first.port, "vent": 1}):
+        with pytest.raises(TypeError, match="__init__"):
+            Row(**wrong)
 
 
 def test_mypy_does_not_let_a_record_be_changed(tmp_path: Path) -> None:

@@ -198,9 +198,7 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
     return since <= 0 or any(times[first] >= since or times[second] >= since for first, second in one.pairs)
 
 
-def _once_each(
-    study: Study, stated: Sequence[tuple[Check, Obligation]]
-) -> tuple[Sequence[tuple[Check, Obligation]], Rows]:
+def _once_each(study: Study, stated: Sequence[tuple[Check, Obligation]]) -> tuple[list[tuple[Check, Obligation]], Rows]:
     """The obligations with their rows, less those that a round meets as the one before has met them: where something
     of the same is broken, each time counts."""
     before = {(_key_of(check, one), one.first, one.second) for check, one in stated}

@@ -201,7 +201,9 @@ def critical_chain(study: Study, start: int, end: int) -> tuple[Link, ...]:
     chain: list[Link] = []
     event = end
     while event != start:
-        known = [(time + arc.span.greatest, arc) for arc in graph.arcs[event] if (time := latest(arc.cause)) is not None]
+        known = [
+            (time + arc.span.greatest, arc) for arc in graph.arcs[event] if (time := latest(arc.cause)) is not None
+        ]
         if not known:
             break
         _, arc = max(known, key=itemgetter(0))

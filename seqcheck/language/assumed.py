@@ -11,7 +11,6 @@ from functools import cache
 
 from seqcheck.language.ordinary import ordinary_times
 from seqcheck.language.problems import Problems
-from seqcheck.language.sheets import read_sheet
 from seqcheck.language.syntax import Edges, SettingValue
 from seqcheck.language.times import CONTROLLER
 from seqcheck.machine.assumed import AssumedTime
@@ -52,6 +51,8 @@ def _span(value: SettingValue) -> Span:
 
 @cache
 def _table(medium: str) -> Mapping[tuple[str, str, str], SettingValue]:
+    from seqcheck.language.sheets import read_sheet  # PyYAML takes long to load, and most texts have all their times.
+
     problems = Problems()
     entries = read_sheet(ordinary_times(medium), problems)
     assert not len(problems), problems.sorted()

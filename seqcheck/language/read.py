@@ -1,7 +1,7 @@
 """From a text and its timing sheets to a machine: the whole story of the language on one page.
 
 Takes a source and the names of sheets; gives the machine, resolved and complete, or else every problem of the text
-and its sheets in one go.
+and its sheets in one go. PyYAML is loaded once there is a sheet.
 """
 
 from __future__ import annotations
@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Collection, Iterator, Sequence
 from dataclasses import replace
 from pathlib import Path
-from typing import TypeVar
+from typing import TYPE_CHECKING, TypeVar
 
 from seqcheck.language.accepts import accepts_of
 from seqcheck.language.cylinders import resolve_cylinder, resolve_sensor
@@ -27,7 +27,6 @@ from seqcheck.language.problems import Problems, short
 from seqcheck.language.registry import KINDS, Registry
 from seqcheck.language.rules import resolve_rule
 from seqcheck.language.sequences import Sequences, name_steps
-from seqcheck.language.sheets import SheetEntry, read_sheet
 from seqcheck.language.source import STANDARD, Source, read_source
 from seqcheck.language.syntax import (
     CoilText,
@@ -51,6 +50,9 @@ from seqcheck.machine.accepts import Accept
 from seqcheck.machine.findings import Problem
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
+
+if TYPE_CHECKING:
+    from seqcheck.language.sheets import SheetEntry
 
 _Single = TypeVar("_Single", MachineText, ControllerText)
 
@@ -130,6 +132,8 @@ def _lay_sheet(registry: Registry, file: str, asked_at: Place | None) -> None:
             message = f"the timing sheet {short(file)}: {read.message}"
             registry.problems.report(asked_at, message, "its name is relative to this text's folder")
         return
+    from seqcheck.language.sheets import read_sheet
+
     registry.problems.opened(read.name, read.text)
     before = len(registry.problems)
     entries = read_sheet(read, registry.problems)
