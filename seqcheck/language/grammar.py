@@ -24,7 +24,8 @@ _OPTIONS: dict[str, Any] = {
     "parser": "lalr",
     "lexer": "contextual",
     "start": ["text", "sheet_value"],
-    "propagate_positions": True,
+    # Where a tree begins and ends its tokens say (`harvest.start_of`): lark would work it out for every rule.
+    "keep_all_tokens": True,
     "maybe_placeholders": False,
 }
 _PACKAGE = Path(__file__).resolve().parent.parent

@@ -21,7 +21,8 @@ from lark import Lark
 from lark.grammar import Rule
 from lark.lexer import TerminalDef
 
-_FORM = 1
+#: Of what is kept; another one wherever the options of the parser change.
+_FORM = 2
 
 
 def kept_parser(grammar: str, options: Mapping[str, Any]) -> Lark | None:

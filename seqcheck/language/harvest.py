@@ -41,6 +41,28 @@ def tokens(node: Tree[Token], *kinds: str) -> list[Token]:
     return [child for child in node.children if isinstance(child, Token) and child.type in kinds]
 
 
+def start_of(node: Node) -> int | None:
+    """Where a tree or token begins in its text; None for an empty rule."""
+    if isinstance(node, Token):
+        return node.start_pos
+    for child in node.children:
+        start = child.start_pos if isinstance(child, Token) else start_of(child)
+        if start is not None:
+            return start
+    return None
+
+
+def end_of(node: Node) -> int | None:
+    """Where it ends."""
+    if isinstance(node, Token):
+        return node.end_pos
+    for child in reversed(node.children):
+        end = child.end_pos if isinstance(child, Token) else end_of(child)
+        if end is not None:
+            return end
+    return None
+
+
 class Harvest:
     """Makes records of one text."""
 
@@ -49,12 +71,12 @@ class Harvest:
         self.problems = problems
 
     def place(self, node: Node) -> Place:
-        """The place of a tree or token. An empty rule has none in lark; nothing here asks for one."""
-        if isinstance(node, Token):
-            return self.ruler.place(node.start_pos or 0, node.end_pos or 0)
-        if node.meta.empty:
-            return self.ruler.place(0, 0)
-        return self.ruler.place(node.meta.start_pos, node.meta.end_pos)
+        """The place of a tree or token. An empty rule has none; nothing here asks for one."""
+        return self.ruler.place(start_of(node) or 0, end_of(node) or 0)
+
+    def written(self, node: Tree[Token]) -> str:
+        """A part of the text as it stands there."""
+        return self.ruler.text[start_of(node) : end_of(node)]
 
     def word(self, token: Token) -> Word:
         text = token[1:-1] if token.type == "STRING" else unicodedata.normalize("NFC", token)
@@ -111,8 +133,8 @@ class Harvest:
     def span(self, node: Tree[Token]) -> Span:
         """``18..22..28 ms``, ``30 ± 5 ms``, ``30 ms``: a unit counts for the numbers left of it that have none."""
         if not any(tokens(part, "UNIT") for part in trees(node, "quantity")):
-            written = self.ruler.text[node.meta.start_pos : node.meta.end_pos]
-            self.problems.report(self.place(node), "the unit is left out", f"write {short(written)} ms (or us, s, min)")
+            written = short(self.written(node))
+            self.problems.report(self.place(node), "the unit is left out", f"write {written} ms (or us, s, min)")
             return NO_TIME
         bare = [part for part in trees(node, "quantity") if not tokens(part, "UNIT")]
         if bare and bare[-1] is trees(node, "quantity")[-1]:

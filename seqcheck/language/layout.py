@@ -17,6 +17,7 @@ from lark import Token, Tree, UnexpectedInput
 
 from seqcheck.language.accepts import accepts_of
 from seqcheck.language.grammar import no_collecting, parser
+from seqcheck.language.harvest import start_of
 from seqcheck.language.parse import parse_text
 from seqcheck.language.problems import Problems
 from seqcheck.language.source import Source
@@ -111,11 +112,12 @@ def _mark_parts(pieces: Sequence[_Piece], tree: Tree[Token]) -> None:
         if owner is not tree and owner.data not in _OWNERS:
             continue
         for child in owner.children:
-            if not isinstance(child, Tree) or child.meta.empty:
+            start = start_of(child) if isinstance(child, Tree) else None
+            if start is None:
                 continue
-            piece = pieces[numbers[child.meta.start_pos]]
+            piece = pieces[numbers[start]]
             opener = piece.opener
-            if owner is tree or (opener is not None and (pieces[opener].token.start_pos or 0) > owner.meta.start_pos):
+            if owner is tree or (opener is not None and (pieces[opener].token.start_pos or 0) > (start_of(owner) or 0)):
                 piece.part = True
 
 

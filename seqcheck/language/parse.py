@@ -14,7 +14,7 @@ from lark.exceptions import UnexpectedCharacters, UnexpectedToken
 from lark.utils import TextSlice
 
 from seqcheck.language.grammar import TooDeep, no_collecting, parser
-from seqcheck.language.harvest import Harvest
+from seqcheck.language.harvest import Harvest, end_of
 from seqcheck.language.problems import Problems, Ruler
 from seqcheck.language.situation import Slip
 from seqcheck.language.slips import describe_slip
@@ -62,7 +62,7 @@ def parse_text(source: Source, problems: Problems) -> Parsed:
             stopped = _offset(error, source.text)
             finished = _without_broken(_finished(error, accepted), source.text, stopped)
             statements += finished
-            begin = finished[-1].meta.end_pos if finished else position
+            begin = end_of(finished[-1]) or position if finished else position
             slip = describe_slip(source.text, begin, stopped, accepted, "statement")
             _report(slip, ruler, problems)
             position = _resume(source.text, position, slip.start)
@@ -118,7 +118,7 @@ def _without_broken(finished: list[Tree[Token]], text: str, stopped: int) -> lis
     """A statement without braces that the slip follows in its own line is the broken one, though it could end there."""
     if not finished:
         return finished
-    end = finished[-1].meta.end_pos
+    end = end_of(finished[-1]) or stopped
     behind = text[end:stopped]
     broken = text[end - 1] != "}" and not behind.strip() and "\n" not in behind and text[stopped : stopped + 1] != "}"
     return finished[:-1] if broken else finished

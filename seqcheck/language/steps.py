@@ -97,7 +97,7 @@ def _command(harvest: Harvest, node: Tree[Token]) -> CommandText:
 def _motion(harvest: Harvest, node: Tree[Token]) -> MotionText:
     nodes = trees(node, "move")
     moves = tuple(MoveText(harvest.name(move), bool(tokens(move, "PLUS")), harvest.place(move)) for move in nodes)
-    bracketed = harvest.ruler.text[node.meta.start_pos] == "("
+    bracketed = bool(tokens(node, "LPAR"))
     spelled = pair_spelling(nodes)
     return MotionText(
         spelled if bracketed and len(nodes) > 1 else spelled[1:-1], moves, _exit(harvest, node), harvest.place(node)

@@ -12,6 +12,7 @@ import pytest
 from lark import Lark, Tree, UnexpectedInput
 
 from seqcheck.language import grammar, grammar_cache
+from seqcheck.language.harvest import end_of, start_of
 from tests.language.test_layout import TEXTS
 from tests.language.test_newcomers import NEWCOMERS
 
@@ -26,7 +27,7 @@ Begin = Callable[[], Lark]
 def kept(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     """The file, in a folder of caches of its own."""
     monkeypatch.setattr(grammar_cache, "_folder", lambda: tmp_path / "caches" / "seqcheck")
-    return tmp_path / "caches" / "seqcheck" / "grammar-1.json"
+    return tmp_path / "caches" / "seqcheck" / f"grammar-{grammar_cache._FORM}.json"
 
 
 @pytest.fixture
@@ -55,7 +56,7 @@ def outcome(parser: Lark, text: str) -> object:
         state = getattr(error, "interactive_parser", None)
         return type(error).__name__, error.pos_in_stream, state and frozenset(state.accepts())
     assert isinstance(tree, Tree)
-    return tree, [(part.data, part.meta.start_pos, part.meta.end_pos) for part in tree.iter_subtrees() if part.children]
+    return tree, [(part.data, start_of(part), end_of(part)) for part in tree.iter_subtrees()]
 
 
 def test_the_second_process_compiles_nothing_and_parses_the_same(kept: Path, compiled: list[int]) -> None:
