@@ -18,7 +18,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         if stroke.away is not None and not study.stopped_by_own_sensor(stroke):
             origin, before = stroke.away.by.origin, stroke.away.previous
             ends = [stroke.away.reached]
-            if before is not None and may_have_centred(study.trace.graph, stroke.away):
+            if before is not None and may_have_centred(study.trace, stroke.away):
                 ends.append(before.reached)
             for end in ends:
                 yield Obligation(stroke.cylinder, origin.step, origin.place, stroke.end, end, _wording(stroke))

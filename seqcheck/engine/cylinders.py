@@ -230,7 +230,7 @@ class Cylinders:
             piston.region = self.regions[key] = region
 
     def _found(self, stroke: Stroke) -> Region | None:
-        placing = self.placings[stroke] = place(self._trace.graph, stroke)
+        placing = self.placings[stroke] = place(self._trace, stroke)
         return None if placing.region == stroke.stood else placing.region
 
     # Beginning one ---------------------------------------------------------------------------------------------
