@@ -54,27 +54,31 @@ class Studied:
         return [study for part in self.parts for study in part.studies]
 
 
-def examine(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
+def examine(name: str, sheets: Sequence[str] = (), reserve_us: int = 0, brief: bool = False) -> Report:
     """Read, play, prove. ``name`` is a path, or ``-`` for standard input. What holds, but with less than
-    ``reserve_us`` left, is a finding too."""
-    return study(name, sheets, reserve_us)[0]
+    ``reserve_us`` left, is a finding too. A ``brief`` report has neither the times of steps nor the critical path."""
+    return study(name, sheets, reserve_us, brief)[0]
 
 
 def examine_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0) -> Report:
     return study_source(source, sheets, reserve_us)[0]
 
 
-def study(name: str, sheets: Sequence[str] = (), reserve_us: int = 0) -> tuple[Report, Studied | None]:
+def study(
+    name: str, sheets: Sequence[str] = (), reserve_us: int = 0, brief: bool = False
+) -> tuple[Report, Studied | None]:
     """The same, with what is behind the report; None where the report has problems."""
     source = read_source(name)
     if isinstance(source, Problem):
         return Report(name, None, problems=(source,)), None
-    return study_source(source, sheets, reserve_us)
+    return study_source(source, sheets, reserve_us, brief)
 
 
-def study_source(source: Source, sheets: Sequence[str] = (), reserve_us: int = 0) -> tuple[Report, Studied | None]:
+def study_source(
+    source: Source, sheets: Sequence[str] = (), reserve_us: int = 0, brief: bool = False
+) -> tuple[Report, Studied | None]:
     with _collecting_later():
-        return _studied(source, sheets, reserve_us)
+        return _studied(source, sheets, reserve_us, brief)
 
 
 @contextmanager
@@ -89,7 +93,7 @@ def _collecting_later() -> Iterator[None]:
             gc.enable()
 
 
-def _studied(source: Source, sheets: Sequence[str], reserve_us: int) -> tuple[Report, Studied | None]:
+def _studied(source: Source, sheets: Sequence[str], reserve_us: int, brief: bool) -> tuple[Report, Studied | None]:
     machine = read_machine(source, sheets, ACCEPTABLE)
     if not isinstance(machine, Machine):
         return Report(source.name, None, problems=machine), None
@@ -102,7 +106,7 @@ def _studied(source: Source, sheets: Sequence[str], reserve_us: int) -> tuple[Re
         return _refused(source, machine, too_long), None
     parts = [StudiedPart(part, studies_of(part, graph), timed_states(graph)) for part, graph in explored]
     proof = whole_proof(machine, [prove(part.studies, CHECKS, reserve_us) for part in parts], CHECKS)
-    report = _report(machine, parts, proof)
+    report = _report(machine, parts, proof, brief)
     lines = _lines_of(source)
     findings = tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings)
     return replace(report, findings=findings), Studied(machine, parts, proof.broken)
@@ -126,11 +130,11 @@ def _too_long(machine: Machine) -> Problem:
     )
 
 
-def _report(machine: Machine, parts: Sequence[StudiedPart], proof: Proof) -> Report:
+def _report(machine: Machine, parts: Sequence[StudiedPart], proof: Proof, brief: bool) -> Report:
     """The critical path is that of the first sequence."""
     typical = [part.studies[0] for part in parts]
     findings = tuple(one.finding for one in proof.broken)
-    times = times_of_all(machine, [times_of(part.studies, part.states) for part in parts])
+    times = times_of_all(machine, [times_of(part.studies, part.states, not brief) for part in parts])
     timed = side_by_side([part.states for part in parts])
     accepted = any(one.accepted is not None and one.diverts and not one.certain for one in findings)
     return Report(
@@ -144,7 +148,7 @@ def _report(machine: Machine, parts: Sequence[StudiedPart], proof: Proof) -> Rep
         states=shown_states(timed),
         runs=shown_runs(timed),
         steps=times.steps,
-        critical_path=critical_path(typical[0]),
+        critical_path=() if brief else critical_path(typical[0]),
         handovers=tightest_handovers(handovers(study) for part in parts for study in part.studies),
         margins=proof.margins,
     )

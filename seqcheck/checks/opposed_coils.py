@@ -140,6 +140,8 @@ def handovers(study: Study) -> tuple[Handover, ...]:
     asked = [
         (pair, _decayed(study, pair.earlier), pair.later.on) for pair in _pairs(study) if pair.earlier.off is not None
     ]
+    before = {(decayed, on) for _, decayed, on in asked}
+    asked = [one for one in asked if study.before_repeating(*one[1:]) not in before]
     rows = greatest_separations(study.trace.graph, ((on, decayed) for _, decayed, on in asked))
     found = []
     for pair, decayed, on in asked:

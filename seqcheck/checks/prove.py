@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import replace
 from functools import partial
+from typing import NamedTuple
 
 from seqcheck.checks.certainty import Segment, Ways
 from seqcheck.checks.check import Check, Obligation
@@ -52,6 +53,14 @@ class Proof:
 
 
 _Key = tuple[str, str, str | None, Place]
+
+
+class _Stated(NamedTuple):
+    """An obligation, its check, and what it has in common with others of which the tightest stands for all."""
+
+    key: _Key
+    check: Check
+    obligation: Obligation
 
 
 @record
@@ -106,10 +115,6 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
     return Proof(tuple(broken), tuple(margins.values()), strays)
 
 
-def _key_of(check: Check, one: Obligation) -> _Key:
-    return check.kind, one.subject, one.step, one.place
-
-
 def _key(finding: Finding) -> _Key:
     return finding.kind, finding.subject, finding.step, finding.place
 
@@ -151,16 +156,22 @@ def _prove_one(
     study: Study, checks: Sequence[Check], reserve_us: int, segment_of: Callable[[int], Segment]
 ) -> _ProofOfOne:
     since = study.settlement.fresh_since
-    stated = [(check, one) for check in checks for one in check.obligations(study) if _is_fresh(study, one, since)]
-    stated, rows = _once_each(study, stated)
-    turns = _turns(study, (one for _, one in stated), rows)
+    stated, rows = _once_each(
+        study,
+        [
+            _Stated((check.kind, one.subject, one.step, one.place), check, one)
+            for check in checks
+            for one in check.obligations(study)
+            if _is_fresh(study, one, since)
+        ],
+    )
+    turns = _turns(study, (one for _, _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
     diverting: set[_Key] = set()
     always: list[tuple[_Key, Obligation]] = []
-    for check, obligation in stated:
+    for key, check, obligation in stated:
         one = _best_pair(obligation, rows)
         margin = -rows[one.second, one.first] - one.least
-        key = _key_of(check, one)
         known = tightest.get(key)
         if known is None or margin < known[2]:
             tightest[key] = (check, one, margin)
@@ -198,20 +209,19 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
     return since <= 0 or any(times[first] >= since or times[second] >= since for first, second in one.pairs)
 
 
-def _once_each(study: Study, stated: Sequence[tuple[Check, Obligation]]) -> tuple[list[tuple[Check, Obligation]], Rows]:
+def _once_each(study: Study, stated: Sequence[_Stated]) -> tuple[list[_Stated], Rows]:
     """The obligations with their rows, less those that a round meets as the one before has met them: where something
     of the same is broken, each time counts."""
-    before = {(_key_of(check, one), one.first, one.second) for check, one in stated}
+    before = {(key, one.first, one.second) for key, _, one in stated}
     news: list[int] = []
     repeated: list[int] = []
-    for number, (check, one) in enumerate(stated):
+    for number, (key, _, one) in enumerate(stated):
         image = None if one.others or one.assumed or one.kept else study.before_repeating(one.first, one.second)
-        known = image is not None and (_key_of(check, one), *image) in before
-        (repeated if known else news).append(number)
-    rows = _rows(study, [stated[number][1] for number in news])
-    broken = {_key_of(*stated[number]) for number in news if _is_broken(stated[number][1], rows)}
-    counting = [number for number in repeated if _key_of(*stated[number]) in broken]
-    rows |= _rows(study, [stated[number][1] for number in counting])
+        (news if image is None or (key, *image) not in before else repeated).append(number)
+    rows = _rows(study, [stated[number].obligation for number in news])
+    broken = {stated[number].key for number in news if _is_broken(stated[number].obligation, rows)}
+    counting = [number for number in repeated if stated[number].key in broken]
+    rows |= _rows(study, [stated[number].obligation for number in counting])
     return [stated[number] for number in sorted((*news, *counting))], rows
 
 

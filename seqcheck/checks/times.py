@@ -41,13 +41,13 @@ class Times:
     steps: tuple[tuple[str, Duration], ...]
 
 
-def times_of(studies: Sequence[Study], timed: TimedStates) -> Times:
+def times_of(studies: Sequence[Study], timed: TimedStates, with_steps: bool = True) -> Times:
     machine = studies[0].machine
     cycles = {
         **crossings([(study.settlement, _cycle_spells(study, False)) for study in studies]),
         **crossings([(study.settlement, _cycle_spells(study, True)) for study in studies], settled=False),
     }
-    steps = crossings([(study.settlement, _step_spells(study)) for study in studies])
+    steps = crossings([(study.settlement, _step_spells(study)) for study in studies]) if with_steps else {}
     return Times(
         tuple(_shown(cycles, studies, [sequence.name for sequence in machine.sequences], _typical_cycle)),
         tuple(_choices(machine, timed, cycles)),

@@ -46,7 +46,8 @@ def run(options: argparse.Namespace) -> int:
     refusal = refusal or no_kind(fail_on)
     if refusal or isinstance(wanted, str):
         return ended(UNREADABLE, refusal)
-    examined = iter(all_examined(texts, options))
+    brief = all(one.form == FOR_PEOPLE for one in wanted)
+    examined = iter(all_examined(texts, options, brief))
     reports = [
         next(examined) if isinstance(one, str) else Report(one.place.file, None, problems=(one,)) for one in named
     ]

@@ -76,15 +76,18 @@ class EventGraph:
         number = len(self.events)
         self.events.append(event)
         self.arcs.append(arcs)
-        dominator, span = arcs[0].cause, arcs[0].span
-        earliest, latest = self.earliest[dominator] + span.least, self.latest[dominator] + span.greatest
-        for arc in arcs[1:]:
-            cause, span = arc.cause, arc.span
-            earliest = max(earliest, self.earliest[cause] + span.least)
-            latest = max(latest, self.latest[cause] + span.greatest)
-            dominator = self.common_dominator(dominator, cause)
-        self.earliest.append(earliest)
-        self.latest.append(latest)
+        all_earliest, all_latest = self.earliest, self.latest
+        first = arcs[0]
+        dominator, span = first.cause, first.span
+        earliest, latest = all_earliest[dominator] + span.least, all_latest[dominator] + span.greatest
+        if len(arcs) > 1:
+            for arc in arcs[1:]:
+                cause, span = arc.cause, arc.span
+                earliest = max(earliest, all_earliest[cause] + span.least)
+                latest = max(latest, all_latest[cause] + span.greatest)
+                dominator = self.common_dominator(dominator, cause)
+        all_earliest.append(earliest)
+        all_latest.append(latest)
         # A jump upwards, whose lengths grow in the way of a skew binary number, so that a way up of any length takes a
         # number of jumps that grows with its logarithm (Myers, *An applicative random-access stack*, Inf. Proc. Letters
         # 17, 1983).
@@ -119,9 +122,13 @@ class EventGraph:
 
     def _ancestor_at(self, event: int, depth: int) -> int:
         depths, jumps, dominator = self._depth, self._jump, self.dominator
-        while depths[event] > depth:
+        above = depths[event] - depth
+        while above > _NEAR_BY:
             jump = jumps[event]
             event = jump if depths[jump] >= depth else dominator[event]
+            above = depths[event] - depth
+        for _ in range(above):
+            event = dominator[event]
         return event
 
     def below(self, dominator: int, event: int) -> int:

@@ -183,7 +183,7 @@ class Scout:
         self._alike: tuple[str, tuple[int, int]] | None = None
         self._period = 0
         self._pool: list[int] = []
-        self._seen_events = 0
+        self._seen_events = self._seen_at = 0
         self._waits = Waits()
         #: How long after a coil is released the gap of its valve lasts.
         self._gaps = {
@@ -308,7 +308,7 @@ class Scout:
         bounds = greatest_separations(graph, both_ways((at, one) for one in (*pending, *came)))
         late = [one for one in came if bounds[at, one] > -self._gap_after(graph.events[one])]
         self._pool = [*late, *pending]
-        self._seen_events = len(graph.events)
+        self._seen_events, self._seen_at = len(graph.events), at
         return tuple(
             sorted(
                 UnderWay(
@@ -328,10 +328,9 @@ class Scout:
         of what was over at the last state no other than was kept then."""
         graph = player.trace.graph
         earliest, latest, dominator = graph.earliest, graph.latest, graph.dominator
-        before = self.path.passages[-1].at if self.path.passages else 0
         dominating = {at}
         top = at
-        while top > before:
+        while top > self._seen_at:
             top = dominator[top]
             dominating.add(top)
         for number in (*self._pool, *range(self._seen_events, len(graph.events))):

@@ -17,7 +17,7 @@ from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import Controller, FollowingSignal, Island
 from seqcheck.machine.model import Machine
 from seqcheck.machine.records import record
-from seqcheck.machine.time import NO_TIME, Span
+from seqcheck.machine.time import Span
 
 
 @record
@@ -99,7 +99,7 @@ class Inputs:
             return
         path, detail = self._paths[name, value], "on" if value else "off"
         since = at
-        if path.delay != NO_TIME:
+        if path.delay.greatest:
             since = timeline.event(Event("sensor", name, detail), timeline.delay(at, path.delay, path.what, name))
         arrived = timeline.event(Event("input", name, detail), timeline.delay(since, path.filtered, "filter", name))
         if path.update is not None:

@@ -6,22 +6,24 @@ rounded outward to whole microseconds. Shares are millionths of the stroke.
 
 from __future__ import annotations
 
+from functools import cache
+from typing import NamedTuple
+
 from seqcheck.machine.devices import Cylinder, Sensor, Stroke
 from seqcheck.machine.model import Machine
-from seqcheck.machine.records import record
 from seqcheck.machine.time import WHOLE_SHARE, Span
 
 
-@record
-class Region:
+class Region(NamedTuple):
     """Where a piston stands: between marks ``low`` and ``high`` (indices), at a mark where the two are the same.
-    ``rests``: ends of the stroke among the two at which it may stand exactly."""
+    ``rests``: ends of the stroke among the two at which it may stand exactly. A plain tuple: compared at every move."""
 
     low: int
     high: int
     rests: frozenset[int] = frozenset()
 
     @staticmethod
+    @cache
     def exactly(mark: int) -> Region:
         return Region(mark, mark, frozenset({mark}))
 

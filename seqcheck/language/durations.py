@@ -7,7 +7,6 @@ microsecond or longer than 1000 hours. Formatting and parsing are inverse of eac
 from __future__ import annotations
 
 import re
-from fractions import Fraction
 
 UNITS = {"us": 1, "ms": 1_000, "s": 1_000_000, "min": 60_000_000}
 
@@ -18,26 +17,26 @@ _WRITTEN = re.compile(r"(-?)([0-9]+(?:\.[0-9]+)?) ?(us|ms|s|min)")
 _MOST_DIGITS = 18
 
 
-def exact_number(digits: str) -> Fraction | None:
-    """The value of ``12.50``; None where it has more digits than any honest value needs."""
+def whole_times(digits: str, times: int) -> tuple[int, int] | None:
+    """``times`` the value of ``12.50``: what is whole of it, and what is left (0 where nothing is); None where it has
+    more digits than any honest value needs."""
     whole, _, part = digits.partition(".")
     whole, part = whole.lstrip("0"), part.rstrip("0")
     if len(whole) > _MOST_DIGITS or len(part) > _MOST_DIGITS:
         return None
-    return Fraction(int((whole or "0") + part), 10 ** len(part))
+    parts: int = 10 ** len(part)
+    return divmod(int((whole or "0") + part) * times, parts)
 
 
 def time_from(digits: str, unit: str) -> int | str:
     """Microseconds of a number and its unit, or a sentence that says why there are none."""
-    number = exact_number(digits)
+    number = whole_times(digits, UNITS[unit])
     if number is None:
         return "this number has too many digits"
-    time = number * UNITS[unit]
-    if time > GREATEST_TIME:
+    time, left = number
+    if number > (GREATEST_TIME, 0):
         return "this is over 1000 hours"
-    if time.denominator != 1:
-        return "this is finer than one microsecond"
-    return time.numerator
+    return "this is finer than one microsecond" if left else time
 
 
 def parse_duration(text: str) -> int | None:

@@ -64,6 +64,10 @@ def _terminals_taken_as_they_are() -> Iterator[None]:
         lark.lexer.has_interegular = installed
 
 
+_OPENING = {"LBRACE", "LPAR"}
+_CLOSING = {"RBRACE", "RPAR", "RPAR_NTH"}
+
+
 class _DepthGuard:
     """Counts what is open while the tokens pass. ``not`` nests like a parenthesis until its operand comes."""
 
@@ -74,22 +78,20 @@ class _DepthGuard:
         negations = 0
         outside: list[int] = []
         for token in stream:
-            match token.type:
-                case "LBRACE" | "LPAR":
-                    outside.append(negations)
-                    negations = 0
-                    depth += 1
-                case "RBRACE" | "RPAR" | "RPAR_NTH" if outside:
-                    depth -= 1 + negations + outside.pop()
-                    negations = 0
-                case "NOT":
-                    negations += 1
-                    depth += 1
-                case "NAME":
-                    depth -= negations
-                    negations = 0
-                case _:
-                    pass
+            kind = token.type
+            if kind in _OPENING:
+                outside.append(negations)
+                negations = 0
+                depth += 1
+            elif kind in _CLOSING and outside:
+                depth -= 1 + negations + outside.pop()
+                negations = 0
+            elif kind == "NOT":
+                negations += 1
+                depth += 1
+            elif negations and kind == "NAME":
+                depth -= negations
+                negations = 0
             if depth > MOST_NESTED:
                 raise TooDeep(token.start_pos or 0)
             yield token

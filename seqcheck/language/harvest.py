@@ -11,7 +11,7 @@ from collections.abc import Iterator, Sequence
 
 from lark import Token, Tree
 
-from seqcheck.language.durations import exact_number, time_from
+from seqcheck.language.durations import time_from, whole_times
 from seqcheck.language.problems import Problems, Ruler, short
 from seqcheck.language.syntax import (
     AllText,
@@ -175,16 +175,16 @@ class Harvest:
     def share(self, node: Tree[Token]) -> int:
         """Millionths of a percentage (``percent`` or ``number``)."""
         number = next(node.scan_values(lambda token: isinstance(token, Token) and token.type == "NUMBER"))
-        value = exact_number(number)
-        if value is None or value > 100:
-            message = "this number has too many digits" if value is None else "this is over 100 %"
+        millionths = whole_times(number, WHOLE_SHARE // 100)
+        if millionths is None or millionths > (WHOLE_SHARE, 0):
+            message = "this number has too many digits" if millionths is None else "this is over 100 %"
             self.problems.report(self.place(node), message)
             return WHOLE_SHARE
-        millionths = value * WHOLE_SHARE / 100
-        if millionths.denominator != 1:
+        share, left = millionths
+        if left:
             self.problems.report(self.place(node), "a share finer than 0.0001 %", "round it")
             return 0
-        return millionths.numerator
+        return share
 
     # Settings
 

@@ -33,12 +33,19 @@ class Ruler:
             start = text.find("\n", start + 1)
 
     def place(self, start: int, end: int) -> Place:
-        return Place(self.file, *self._at(start), *self._at(max(start, end)))
-
-    def _at(self, offset: int) -> tuple[int, int]:
-        row = bisect_right(self._starts, offset) - 1
-        column = offset - self._starts[row] + (self._first_column if row == 0 else 1)
-        return self._first_line + row, column
+        starts = self._starts
+        row = bisect_right(starts, start) - 1
+        last = row
+        if row + 1 < len(starts) and starts[row + 1] <= end:
+            last = bisect_right(starts, end) - 1
+        column, end_column = start - starts[row], max(start, end) - starts[last]
+        return Place(
+            self.file,
+            self._first_line + row,
+            column + (1 if row else self._first_column),
+            self._first_line + last,
+            end_column + (1 if last else self._first_column),
+        )
 
 
 class Problems:

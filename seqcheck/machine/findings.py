@@ -144,7 +144,8 @@ class PathPart:
 
 @record
 class Report:
-    """Everything about one file. ``cycles`` and ``steps`` by sequence and qualified step name, in the text's order."""
+    """Everything about one file. ``cycles`` and ``steps`` by sequence and qualified step name, in the text's order.
+    ``steps`` and ``critical_path`` are empty in a brief one."""
 
     file: str
     machine: str | None

@@ -26,7 +26,7 @@ def asked(monkeypatch: pytest.MonkeyPatch) -> Asked:
         "unreadable": unreadable,
     }
 
-    def examine(name: str, sheets: Sequence[str], reserve_us: int = 0) -> Report:
+    def examine(name: str, sheets: Sequence[str], reserve_us: int = 0, brief: bool = False) -> Report:
         calls.append((name, tuple(sheets)))
         return outcomes[name.rpartition("/")[2].partition(".")[0]]()
 

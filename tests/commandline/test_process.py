@@ -17,7 +17,7 @@ PROGRAM = """
 import sys, time
 from types import ModuleType
 from tests.report.samples import healthy, short_pulse
-def examine(name, sheets, reserve_us=0):
+def examine(name, sheets, reserve_us=0, brief=False):
     if name == "WAIT":
         print("waiting", file=sys.stderr, flush=True)
         time.sleep(60)
