@@ -66,6 +66,8 @@ class Study:
         self.settlement = settlement
         self.trace = settlement.trace
         self._played = len(self.trace.times)
+        #: The events that only obligations need, by what they are and what they come after.
+        self._made: dict[tuple[object, ...], int] = {}
 
         self.turned: list[Turned] = []
         #: Of the play from which this one has come by orders turned.
@@ -98,12 +100,22 @@ class Study:
         if self.settlement.path.repeats is None:
             return None
         begin, again = self.settlement.path.repeats
-        graph = self.trace.graph
-        if min(one, other) < again or max(one, other) >= self._played or graph.common_dominator(one, other) < again:
+        if one < again or other < again or self.trace.graph.common_dominator(one, other) < again:
             return None
-        pair = one - again + begin, other - again + begin
-        same = all(graph.events[was] == graph.events[now] for was, now in zip(pair, (one, other), strict=True))
-        return pair if same else None
+        first, second = self._a_round_before(one, begin, again), self._a_round_before(other, begin, again)
+        return None if first is None or second is None else (first, second)
+
+    def _a_round_before(self, number: int, begin: int, again: int) -> int | None:
+        graph = self.trace.graph
+        if number < again:
+            return None
+        if number >= self._played:
+            arcs = graph.arcs[number]
+            causes = [self._a_round_before(arc.cause, begin, again) for arc in arcs]
+            known = [(cause, arc.span) for cause, arc in zip(causes, arcs, strict=True) if cause is not None]
+            return self._made.get(_made_of(graph.events[number], known)) if len(known) == len(arcs) else None
+        before = number - again + begin
+        return before if graph.events[before] == graph.events[number] else None
 
     # Events that only obligations need -------------------------------------------------------------------------
 
@@ -115,8 +127,7 @@ class Study:
     def later(self, event: Event, cause: int, span: Span, delay: DelayName | None = None) -> int:
         """The moment this long after another one; ``delay`` is its name where the machine draws it."""
         time = span.typical if delay is None else self._draw(*delay, span)
-        self.trace.times.append(self.trace.times[cause] + time)
-        return self.trace.graph.add(event, (Arc(cause, span, delay),))
+        return self._make(event, (Arc(cause, span, delay),), self.trace.times[cause] + time)
 
     def noticed_after(self, time: int) -> Span:
         """A time, and the wait for the read that notices that it is over."""
@@ -128,8 +139,15 @@ class Study:
         kept = self.trace.graph.without_idle(causes)
         if len(kept) == 1:
             return kept[0]
-        self.trace.times.append(max(self.trace.times[cause] for cause in kept))
-        return self.trace.graph.add(event, tuple(after(cause) for cause in kept))
+        times = self.trace.times
+        return self._make(event, tuple(after(cause) for cause in kept), max(times[cause] for cause in kept))
+
+    def _make(self, event: Event, arcs: tuple[Arc, ...], time: int) -> int:
+        self.trace.times.append(time)
+        number = self.trace.graph.add(event, arcs)
+        if self.settlement.path.repeats is not None:
+            self._made[_made_of(event, [(arc.cause, arc.span) for arc in arcs])] = number
+        return number
 
     @cached_property
     def reads_by_event(self) -> dict[int, Read]:
@@ -329,6 +347,11 @@ class Study:
                     for stroke in self._strokes_by_event.get(answer.edge.at, ()):
                         found.setdefault(stroke, []).append((visit.left, answer.edge))
         return found
+
+
+def _made_of(event: Event, causes: Sequence[tuple[int, Span]]) -> tuple[object, ...]:
+    since = [(cause, span.least, span.greatest) for cause, span in causes]
+    return event.what, event.subject, event.detail, *since
 
 
 def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:
