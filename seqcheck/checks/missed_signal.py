@@ -21,7 +21,7 @@ from seqcheck.machine.findings import Severity
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
-            if answer.literal not in visit.signals:
+            if not (visit.signals and answer.literal in visit.signals):
                 yield from _answered(study, visit, answer)
         if len(visit.literals) == 1 and not visit.signals:
             yield from _gone_again(study, visit, visit.literals[0])
@@ -100,10 +100,11 @@ def _gone_again(study: Study, visit: Visit, literal: Literal) -> Iterator[Obliga
         if steady is not None:
             seen = study.later(Event("steady seen", visit.step.name), seen, study.noticed_after(steady))
         rest = [visit.entered.floor] + ([visit.dwell_seen] if visit.dwell_seen is not None else [])
-        first = study.last_of(Event("exit seen", visit.step.name), [seen, *rest])
         gone = study.time(following.arrived)
-        if not study.time(first) > gone > study.time(visit.entered.event) or (end is not None and gone >= end):
+        last = max(map(study.time, (seen, *rest)))
+        if not last > gone > study.time(visit.entered.event) or (end is not None and gone >= end):
             continue
+        first = study.last_of(Event("exit seen", visit.step.name), [seen, *rest])
         bounces = steady is not None and end is not None
         if bounces and greatest_separation(study.trace.graph, first, following.arrived) < 0:
             continue  # Always too short for steady, which is there to sit it out.

@@ -16,7 +16,7 @@ from seqcheck.machine.findings import Severity
 def _obligations(study: Study) -> Iterator[Obligation]:
     for visit in study.trace.visits:
         for answer in visit.answers:
-            if answer.literal not in visit.signals:
+            if not (visit.signals and answer.literal in visit.signals):
                 pair = own_move_missed(study, visit, answer) or _last_change_back(study, visit, answer)
                 if pair is not None:
                     yield _obligation(visit, answer, *pair)

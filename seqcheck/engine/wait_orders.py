@@ -81,8 +81,8 @@ def held_too_late(trace: Trace, wait: Wait) -> int | None:
 def held_otherwise(trace: Trace, wait: Wait) -> Iterator[int]:
     """The events by which other alternatives than the one that held first would have come to hold, where all that is
     awaited is the condition."""
-    held = {answer.literal for answer in wait.answers}
-    if wait.dwell_over is None and wait.steady_over is None:
+    if len(wait.alternatives) > 1 and wait.dwell_over is None and wait.steady_over is None:
+        held = {answer.literal for answer in wait.answers}
         for one in wait.alternatives:
             comes = completed(trace, wait, one, at_input=True) if set(one) != held else None
             if comes is not None:
