@@ -40,6 +40,8 @@ class _Piston:
     cylinder: Cylinder
     drives: Mapping[bool, Alternatives]
     marks: tuple[int, ...]
+    #: What events at the marks are told by.
+    details: tuple[str, ...]
     region: Region
     #: Where the run that is being played has it, within ``region``.
     stood: Region
@@ -101,7 +103,7 @@ class Cylinders:
             marks = trace.marks[name] = marks_of(machine, cylinder)
             start = Region.exactly(marks.index(cylinder.start))
             drives = drives_of(machine, cylinder)
-            piston = _Piston(cylinder, drives, marks, start, start, None)
+            piston = _Piston(cylinder, drives, marks, tuple(map(str, marks)), start, start, None)
             piston.sent = self._sent(piston)[0]
             self._pistons[name] = piston
             valves = {literal.term.subject for either in drives.values() for one in either for literal in one}
@@ -253,7 +255,7 @@ class Cylinders:
         start = 0 if stroke.out else piston.last
         if start in piston.region.rests:
             arc = self._timeline.delay(stroke.shift.reached, piston.cylinder.lag, "lag", stroke.cylinder, stroke.number)
-            leaves = self._timeline.event(Event("leaves", stroke.cylinder, str(piston.marks[start])), arc)
+            leaves = self._timeline.event(Event("leaves", stroke.cylinder, piston.details[start]), arc)
             stroke.leaves = leaves
             self._timeline.at(leaves, Order.MARK, partial(self._come_off, piston, start, leaves))
 
@@ -278,7 +280,7 @@ class Cylinders:
             since = {START: shift.asked if travel.timed_from_coil else shift.reached, LEAVING: stroke.leaves}
         marks: list[tuple[int, int]] = []
         for number, reach in enumerate(plan):
-            position = str(piston.marks[reach.mark])
+            position = piston.details[reach.mark]
             name = f"{stroke.cylinder} {position}"
             arcs = [
                 timeline.delay(since[part.since], part.span, part.drawn, name, stroke.number)

@@ -67,16 +67,17 @@ class Player:
         self.controller.start()
         self._settle_signals()
         self._plant.go_live()
-        while not self._stopped and self.trace.stepless is None:
-            if self._until_us is not None and self.timeline.next_time > self._until_us:
+        timeline, trace = self.timeline, self.trace
+        while not self._stopped and trace.stepless is None:
+            if self._until_us is not None and timeline.next_time > self._until_us:
                 break
-            if self.timeline.next() is None:
-                self.trace.finished = True
+            if timeline.next() is None:
+                trace.finished = True
                 break
-            if len(self.timeline.times) > MOST_EVENTS:
-                self.trace.too_long = True
+            if len(timeline.times) > MOST_EVENTS:
+                trace.too_long = True
                 break
-        return self.trace
+        return trace
 
     @property
     def state(self) -> tuple[object, ...]:

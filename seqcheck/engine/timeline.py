@@ -62,10 +62,12 @@ class Timeline:
         """An arc whose delay is drawn, and the time at which it ends. ``number`` is the occasion where something
         other than a plain count tells it (the same occasion must be the same in every run)."""
         if number is None:
-            number = self._occurred.get((what, name), 0)
-            self._occurred[what, name] = number + 1
-        arc = Arc(cause, span, (what, name, number))
-        return arc, self.times[cause] + self._draw(what, name, number, span)
+            key = what, name
+            number = self._occurred.get(key, 0)
+            self._occurred[key] = number + 1
+        draw = self._draw
+        time = span.typical if draw is typical else draw(what, name, number, span)
+        return Arc(cause, span, (what, name, number)), self.times[cause] + time
 
     def event(self, event: Event, *arcs: tuple[Arc, int]) -> int:
         if len(arcs) == 1:

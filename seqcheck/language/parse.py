@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
+from typing import TYPE_CHECKING
 
 from lark import Token, Tree, UnexpectedInput
 from lark.exceptions import UnexpectedCharacters, UnexpectedToken
@@ -16,12 +17,13 @@ from lark.utils import TextSlice
 from seqcheck.language.grammar import TooDeep, no_collecting, parser
 from seqcheck.language.harvest import Harvest, end_of
 from seqcheck.language.problems import Problems, Ruler
-from seqcheck.language.situation import Slip
-from seqcheck.language.slips import describe_slip
 from seqcheck.language.source import Source
 from seqcheck.language.statements import statement_text
 from seqcheck.language.syntax import SettingValue, StatementText
 from seqcheck.machine.records import record
+
+if TYPE_CHECKING:
+    from seqcheck.language.situation import Slip
 
 MOST_SLIPS = 20
 
@@ -58,6 +60,8 @@ def parse_text(source: Source, problems: Problems) -> Parsed:
             statements += _statements_in(tree)
             break
         except UnexpectedInput as error:
+            from seqcheck.language.slips import describe_slip  # Most texts have none.
+
             accepted = _accepted(error)
             stopped = _offset(error, source.text)
             finished = _without_broken(_finished(error, accepted), source.text, stopped)
@@ -83,6 +87,8 @@ def parse_value(ruler: Ruler, problems: Problems) -> SettingValue | None:
     try:
         tree = parser().parse(text, start="sheet_value")
     except UnexpectedInput as error:
+        from seqcheck.language.slips import describe_slip
+
         slip = describe_slip(text, 0, _offset(error, text), _accepted(error), "value")
         _report(slip, ruler, problems)
         return None

@@ -8,9 +8,12 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from types import MappingProxyType
+from typing import TYPE_CHECKING
 
-from seqcheck.compare.differences import FileComparison
 from seqcheck.machine.findings import Finding, Report
+
+if TYPE_CHECKING:
+    from seqcheck.compare.differences import FileComparison
 
 Counts = Callable[[Finding], bool]
 Format = Callable[[Sequence[Report], Counts], str]
