@@ -8,7 +8,6 @@ piston anywhere in that stretch.
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
-from functools import cache
 
 from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.strokes import Region
@@ -80,11 +79,9 @@ def _region(trace: Trace, stroke: Stroke, stands: Sequence[int]) -> Region | Non
     """From the last mark that is passed in every run to the first that is reached in none; None where the stroke is
     done in every run."""
 
-    @cache
     def always_passed(event: int) -> bool:
         return all(_never_later(trace, event, at) for at in stands)
 
-    @cache
     def never_reached(event: int) -> bool:
         return all(_never_later(trace, at, event) for at in stands)
 
@@ -96,11 +93,11 @@ def _region(trace: Trace, stroke: Stroke, stands: Sequence[int]) -> Region | Non
         rests.add(behind)
     ahead = stroke.marks[-1][0]
     for index, event in stroke.marks:
-        if always_passed(event):
+        if event != stroke.end and always_passed(event):
             behind = index
         elif never_reached(event):
             ahead = index
             break
-    if ahead == stroke.marks[-1][0] and not never_reached(stroke.end):
+    else:
         rests.add(ahead)
     return Region(min(behind, ahead), max(behind, ahead), frozenset(rests & {behind, ahead}))
