@@ -7,6 +7,7 @@ is kept where, for some two of its parts, the one goes before the other has come
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.comings import all_so_by, holds_at_rest, passages_before
@@ -44,7 +45,7 @@ def _obligation(rule: Never, spells: tuple[Holds, ...], always: bool = True) -> 
             rule.place,
             first,
             second,
-            _wording(rule),
+            partial(_wording, rule),
             -rule.tolerated,
             others=tuple(others),
             diverts=False,

@@ -59,7 +59,8 @@ class Obligation:
     place: Place
     first: int
     second: int
-    wording: Wording
+    #: Made once it is broken, as most never are.
+    wording: Callable[[], Wording]
     least: int = 0
     lever: int | None = None
     #: Or, just as well, one of these pairs as far apart.

@@ -8,6 +8,7 @@ nobody's fault.
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Instead, Obligation, Wording
 from seqcheck.checks.narrate import describe
@@ -79,7 +80,7 @@ def _obligation(study: Study, choice: Choice, other: int, order: Order, how: str
         choice.choose.place,
         order.first,
         order.second,
-        Wording(message, lambda by: f"let the step before wait until {asked} is sure to be as it will stay"),
+        partial(Wording, message, lambda by: f"let the step before wait until {asked} is sure to be as it will stay"),
         least=1 if order.strict else 0,
         diverts=False,
         instead=_instead(study, choice, other),

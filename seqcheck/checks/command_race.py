@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 from itertools import pairwise
 
 from seqcheck.checks.check import Check, Obligation, Wording
@@ -30,7 +31,9 @@ def _obligation(target: str, first: Touch, second: Touch) -> Obligation:
         origin.place,
         first.event,
         second.event,
-        Wording(f"{message} {{by}}", lambda by: f"let {origin.step} wait for {before.step}", f"{message} time"),
+        partial(
+            Wording, f"{message} {{by}}", lambda by: f"let {origin.step} wait for {before.step}", f"{message} time"
+        ),
         # In one and the same read the reset wins whoever comes first.
         1 if first.effect is not Effect.BEGINS else 0,
     )

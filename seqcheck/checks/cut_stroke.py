@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -21,7 +22,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
             if before is not None and may_have_centred(study.trace, stroke.away):
                 ends.append(before.reached)
             for end in ends:
-                yield Obligation(stroke.cylinder, origin.step, origin.place, stroke.end, end, _wording(stroke))
+                yield Obligation(stroke.cylinder, origin.step, origin.place, stroke.end, end, partial(_wording, stroke))
 
 
 def _wording(stroke: Stroke) -> Wording:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -28,7 +29,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
                 step.place,
                 move.end,
                 visit.left.event,
-                _wording(step, move),
+                partial(_wording, step, move),
                 lever=visit.dwell_over,
                 # What goes on otherwise where the move is not done yet is for the stroke, the shift, the sensor to say.
                 diverts=False,

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.stale_signal import own_move_missed
@@ -113,13 +114,17 @@ def _gone_again(study: Study, visit: Visit, literal: Literal) -> Iterator[Obliga
 
 def _obligation(visit: Visit, literal: Literal, first: int, second: int) -> Obligation:
     term, step = literal.term, visit.step
+    return Obligation(term.subject, step.name, term.place, first, second, partial(_wording, visit, literal))
+
+
+def _wording(visit: Visit, literal: Literal) -> Wording:
+    term = literal.term
     came, went = ("come", "go") if literal.wanted else ("go", "come back")
     how = " (a wider range, a slower move), or read faster" if term.kind is TermKind.SENSOR else ""
-    wording = Wording(
-        f"{term.subject} can {came} and {went} {{by}} too soon for {step.name} to act on it",
+    return Wording(
+        f"{term.subject} can {came} and {went} {{by}} too soon for {visit.step.name} to act on it",
         lambda by: f"let {term.subject} stay so at least {round_up(by)} longer{how}",
     )
-    return Obligation(term.subject, step.name, term.place, first, second, wording)
 
 
 CHECK = Check("missed-signal", Severity.ERROR, "an input comes and goes before it is acted on", _obligations)

@@ -55,7 +55,7 @@ def _commanded_at_once(study: Study) -> Iterator[Obligation]:
                 later.begun.place,
                 earlier.ended.read.event,
                 later.begun.read.event,
-                Wording(f"{message}, for up to {{by}}", partial(_mend, study, pair, earlier.ended), message),
+                partial(Wording, f"{message}, for up to {{by}}", partial(_mend, study, pair, earlier.ended), message),
             )
 
 
@@ -120,7 +120,7 @@ def _too_close(study: Study) -> Iterator[Obligation]:
                 later.begun.place,
                 _decayed(study, earlier),
                 later.on,
-                Wording(message, partial(_mend_gap, study, pair)),
+                partial(Wording, message, partial(_mend_gap, study, pair)),
                 gap,
                 diverts=False,
             )

@@ -5,6 +5,7 @@ from __future__ import annotations
 from bisect import bisect_left
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Sight, Together, Wording
 from seqcheck.checks.comings import Coming, comings
@@ -31,10 +32,10 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for spell in _spells(study, rule):
             if spell.end is None or isinstance(rule, Never):
                 continue
-            over = Wording(_over(rule))
+            over = partial(Wording, _over(rule))
             yield Obligation(rule.text, None, rule.place, spell.end, spell.begin, over, -rule.greatest, diverts=False)
             if isinstance(rule, PathLimit) and rule.least is not None:
-                under = Wording(_under(rule))
+                under = partial(Wording, _under(rule))
                 yield Obligation(rule.text, None, rule.place, spell.begin, spell.end, under, rule.least, diverts=False)
 
 

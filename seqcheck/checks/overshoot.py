@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -20,7 +21,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
         for sensor, event in _edges_ahead(study, stroke):
             if _asked_while_standing(study, stroke, sensor):
                 yield Obligation(
-                    stroke.cylinder, origin.step, origin.place, stroke.stands, event, _wording(stroke, sensor)
+                    stroke.cylinder, origin.step, origin.place, stroke.stands, event, partial(_wording, stroke, sensor)
                 )
                 break
 

@@ -212,12 +212,14 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
 def _once_each(study: Study, stated: Sequence[_Stated]) -> tuple[list[_Stated], Rows]:
     """The obligations with their rows, less those that a round meets as the one before has met them: where something
     of the same is broken, each time counts."""
-    before = {(key, one.first, one.second) for key, _, one in stated}
+    before: dict[tuple[int, int], list[_Key]] = {}
+    for key, _, one in stated:
+        before.setdefault((one.first, one.second), []).append(key)
     news: list[int] = []
     repeated: list[int] = []
     for number, (key, _, one) in enumerate(stated):
         image = None if one.others or one.assumed or one.kept else study.before_repeating(one.first, one.second)
-        (news if image is None or (key, *image) not in before else repeated).append(number)
+        (news if image is None or key not in before.get(image, ()) else repeated).append(number)
     rows = _rows(study, [stated[number].obligation for number in news])
     broken = {stated[number].key for number in news if _is_broken(stated[number].obligation, rows)}
     counting = [number for number in repeated if stated[number].key in broken]
@@ -296,7 +298,8 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
         run = witness(study.trace, one.first, one.second)
     shown = _shown(margin)
     by = UNLIMITED if shown is None else in_time(-shown)
-    mend = one.wording.mend
+    wording = one.wording()
+    mend = wording.mend
     finding = Finding(
         kind=check.kind,
         severity=one.severity or check.severity,
@@ -304,7 +307,7 @@ def _broken(study: Study, check: Check, one: Obligation, margin: int) -> Broken:
         subject=one.subject,
         step=one.step,
         place=one.place,
-        message=one.wording.broken(by),
+        message=wording.broken(by),
         margin_us=shown,
         replayed=_shows(study, check, one, run),
         run=narrate(study, run, one.instead),
@@ -328,7 +331,8 @@ def _shows(study: Study, check: Check, one: Obligation, run: Witness) -> bool:
 
 def _thin(study: Study, check: Check, one: Obligation, margin: int, reserve_us: int) -> Broken:
     """It holds, and nothing can be shown to break; what would mend it is asked as if the reserve were due."""
-    mend = one.wording.mend
+    wording = one.wording()
+    mend = wording.mend
     due = replace(one, least=one.least + reserve_us)
     finding = Finding(
         kind=check.kind,
@@ -337,7 +341,7 @@ def _thin(study: Study, check: Check, one: Obligation, margin: int, reserve_us: 
         subject=one.subject,
         step=one.step,
         place=one.place,
-        message=one.wording.thin(in_time(margin)),
+        message=wording.thin(in_time(margin)),
         margin_us=margin,
         replayed=None,
         run=(),

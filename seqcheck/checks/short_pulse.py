@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -24,7 +25,7 @@ def _obligations(study: Study) -> Iterator[Obligation]:
                 origin.place,
                 shift.reached,
                 event,
-                _wording(shift, origin),
+                partial(_wording, shift, origin),
                 lever=study.trace.pulses_over.get(origin.read.event),
             )
     yield from _switching_in_order(study)
@@ -59,7 +60,7 @@ def _switching_in_order(study: Study) -> Iterator[Obligation]:
             if spell.ended is not None and spell.off is not None and spell.on not in moving:
                 origin, valve = spell.ended, study.machine.coils[coil].valve
                 message = f"{coil} can be told to switch off {{by}} before it has switched on"
-                yield Obligation(valve, origin.step, origin.place, spell.on, spell.off, Wording(message))
+                yield Obligation(valve, origin.step, origin.place, spell.on, spell.off, partial(Wording, message))
 
 
 def _wording(shift: Shift, origin: Origin) -> Wording:

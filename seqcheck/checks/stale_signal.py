@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Wording
 from seqcheck.checks.study import Study
@@ -58,16 +59,17 @@ def _last_change_back(study: Study, visit: Visit, answer: Answer) -> tuple[int, 
 
 def _obligation(visit: Visit, answer: Answer, first: int, second: int) -> Obligation:
     term, step = answer.literal.term, visit.step
-    state = "on" if answer.literal.wanted else "off"
-    message = f"{step.name} can find {term.subject} still {state} from before"
-    wording = Wording(
+    return Obligation(term.subject, step.name, term.place, first, second, partial(_wording, visit, answer))
+
+
+def _wording(visit: Visit, answer: Answer) -> Wording:
+    sensor, state = answer.literal.term.subject, "on" if answer.literal.wanted else "off"
+    message = f"{visit.step.name} can find {sensor} still {state} from before"
+    return Wording(
         f"{message}, {{by}} too early",
-        lambda by: (
-            f"let the step before last at least {in_time(by)} longer, or wait for {term.subject} to change first"
-        ),
+        lambda by: f"let the step before last at least {in_time(by)} longer, or wait for {sensor} to change first",
         message,
     )
-    return Obligation(term.subject, step.name, term.place, first, second, wording)
 
 
 CHECK = Check("stale-signal", Severity.ERROR, "a step goes on with a sensor that is on from before", _obligations)

@@ -8,6 +8,7 @@ left out: nobody can say how long that is. Where the watchdog leads to another s
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.choice_race import choice_name
@@ -54,7 +55,7 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None) -> Iterator[Ob
         watchdog.place,
         holds,
         expires,
-        _wording(name, watchdog, isinstance(wait, Choice)),
+        partial(_wording, name, watchdog, isinstance(wait, Choice)),
         severity=Severity.WARNING if watchdog.target is not None else None,
         diverts=watchdog.target is None,
         stops=watchdog.target is None,

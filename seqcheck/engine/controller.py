@@ -98,7 +98,7 @@ class Controller:
 
     def see(self, aspect: Aspect, known: Known) -> None:
         self._knowledge.see(aspect, known)
-        if aspect[0] in (TermKind.SENSOR, TermKind.SIGNAL):
+        if aspect[0] in (TermKind.SENSOR, TermKind.SIGNAL) and self._plant.looks_at(aspect):
             self._plant.notice(known.seen, {aspect: known.value})
         self._wake()
 
@@ -294,7 +294,7 @@ class Controller:
     def _know_later(self, aspect: Aspect, value: bool, read: Read) -> None:
         """Steps and commands change at a read and are known to the next one."""
         kind, subject, _ = aspect
-        if kind in (TermKind.STEP, TermKind.FLAG):
+        if kind in (TermKind.STEP, TermKind.FLAG) and self._plant.looks_at(aspect):
             self._plant.notice(read.event, {aspect: value})
         if aspect in self._knowledge.asked:
             edge = Edge(subject, value, read.event, read.floor, read.floor)
