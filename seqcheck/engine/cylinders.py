@@ -39,6 +39,8 @@ class _Piston:
 
     cylinder: Cylinder
     drives: Mapping[bool, Alternatives]
+    #: Those that its drives ask.
+    valves: tuple[str, ...]
     marks: tuple[int, ...]
     #: What events at the marks are told by.
     details: tuple[str, ...]
@@ -55,6 +57,8 @@ class _Piston:
 
     #: What lies ahead of it has been worked out for these strokes, from these places.
     plans: dict[tuple[bool, Span, Region, Region], tuple[Reach, ...]] = field(default_factory=dict)
+    #: Where its valves in these positions send it, and what makes that so.
+    sent_by: dict[tuple[Position, ...], tuple[bool | None, tuple[Literal, ...]]] = field(default_factory=dict)
 
     @property
     def last(self) -> int:
@@ -103,11 +107,11 @@ class Cylinders:
             marks = trace.marks[name] = marks_of(machine, cylinder)
             start = Region.exactly(marks.index(cylinder.start))
             drives = drives_of(machine, cylinder)
-            piston = _Piston(cylinder, drives, marks, tuple(map(str, marks)), start, start, None)
+            valves = sorted({literal.term.subject for either in drives.values() for one in either for literal in one})
+            piston = _Piston(cylinder, drives, tuple(valves), marks, tuple(map(str, marks)), start, start, None)
             piston.sent = self._sent(piston)[0]
             self._pistons[name] = piston
-            valves = {literal.term.subject for either in drives.values() for one in either for literal in one}
-            for valve in sorted(valves):
+            for valve in valves:
                 self._on_valve.setdefault(valve, []).append(piston)
             for sensor_name in cylinder.sensors:
                 sensor = machine.sensors[sensor_name]
@@ -157,6 +161,13 @@ class Cylinders:
 
     def _sent(self, piston: _Piston) -> tuple[bool | None, tuple[Literal, ...]]:
         """Out, in (False) or nowhere, and which positions of valves make it so."""
+        reached = tuple([self._reached[valve] for valve in piston.valves])
+        sent = piston.sent_by.get(reached)
+        if sent is None:
+            sent = piston.sent_by[reached] = self._sent_now(piston)
+        return sent
+
+    def _sent_now(self, piston: _Piston) -> tuple[bool | None, tuple[Literal, ...]]:
         held = {out: holding(piston.drives[out], self._is_so) for out in (True, False)}
         asked = [out for out, reason in held.items() if reason is not None]
         if len(asked) == 1:

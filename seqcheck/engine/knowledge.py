@@ -29,6 +29,8 @@ class Knowledge:
             aspect_of(term) for condition in asked_conditions(machine) for term in terms_of(condition)
         }
         self._known: dict[Aspect, Known] = {}
+        #: All of them, in an order that is the same in every play.
+        self._in_order: list[Aspect] = []
         self.held: dict[Aspect, bool] = {}
         for aspect in self.asked:
             if aspect[0] in _OWN:
@@ -55,7 +57,9 @@ class Knowledge:
 
     @property
     def state(self) -> tuple[object, ...]:
-        return tuple(sorted((kind.value, subject, known.value) for (kind, subject, _), known in self._known.items()))
+        if len(self._in_order) < len(self._known):
+            self._in_order = sorted(self._known, key=lambda aspect: (aspect[0].value, aspect[1]))
+        return tuple([self._known[aspect].value for aspect in self._in_order])
 
 
 def asked_conditions(machine: Machine, sequences: tuple[Sequence, ...] | None = None) -> Iterator[Condition]:

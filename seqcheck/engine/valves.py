@@ -137,10 +137,9 @@ class Valves:
             for coil in valve.coils
             if coil != by.coil and (released := self._changes.get((coil, False))) is not None
         ]
-        asked = timeline.last_of(Event("asked", valve.name, to.value), causes)
-        reached = timeline.event(
-            Event("valve", valve.name, to.value), timeline.delay(asked, span, "valve", name, number)
-        )
+        detail = to.value
+        asked = timeline.last_of(Event("asked", valve.name, detail), causes)
+        reached = timeline.event(Event("valve", valve.name, detail), timeline.delay(asked, span, "valve", name, number))
         shift = Shift(valve.name, to, asked, reached, by, span, state.latest)
         if state.latest is not None:
             state.latest.following = shift

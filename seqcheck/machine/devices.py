@@ -55,6 +55,9 @@ class Position(Enum):
     B = "b"
     CENTRE = "centre"
 
+    # Part of keys; by name it takes a call for every look.
+    __hash__ = object.__hash__
+
 
 class ValveReturn(Enum):
     SPRING = "spring"
