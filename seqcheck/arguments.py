@@ -7,7 +7,10 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Iterable, Sequence
-from typing import Any, NoReturn
+
+TYPE_CHECKING = False  # As typing has it: help does without loading that.
+if TYPE_CHECKING:
+    from typing import Any, NoReturn
 
 WRONG_ARGUMENTS = 2
 
@@ -21,8 +24,16 @@ SAFETY = (
 )
 
 
+#: Of help, as on a terminal of 80 columns, for which all pages are made. (To ask for its own width loads more than help
+#: is made of.)
+_WIDTH = 78
+
+
 class _Paragraphs(argparse.HelpFormatter):
     """Wraps each paragraph of an epilog by itself."""
+
+    def __init__(self, prog: str, **settings: Any) -> None:
+        super().__init__(prog, **{"width": _WIDTH, **settings})
 
     def _fill_text(self, text: str, width: int, indent: str) -> str:
         return "\n\n".join(super(_Paragraphs, self)._fill_text(part, width, indent) for part in text.split("\n\n"))

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import os
 import re
-from typing import NamedTuple
 
 from seqcheck.machine.severity import Severity
 
@@ -22,19 +21,22 @@ _WRITTEN = re.compile(
 )
 
 
-class Explanation(NamedTuple):
+class Explanation:
     """``meaning`` and ``how`` (what was done to mend it) are prose, paragraphs apart by an empty line. ``faulty`` and
-    ``mended`` are whole texts; ``says`` is the message of the first finding in the faulty one. (No dataclass: to load
-    what makes those takes longer than all else here.)"""
+    ``mended`` are whole texts; ``says`` is the message of the first finding in the faulty one. (A plain class: to load
+    what makes others takes longer than all else here.)"""
 
-    kind: str
-    severity: Severity
-    title: str
-    meaning: str
-    faulty: str
-    says: str
-    how: str
-    mended: str
+    def __init__(
+        self, kind: str, severity: Severity, title: str, meaning: str, faulty: str, says: str, how: str, mended: str
+    ) -> None:
+        self.kind = kind
+        self.severity = severity
+        self.title = title
+        self.meaning = meaning
+        self.faulty = faulty
+        self.says = says
+        self.how = how
+        self.mended = mended
 
 
 def explained_kinds() -> tuple[str, ...]:

@@ -10,7 +10,6 @@ import argparse
 import importlib
 import sys
 from collections.abc import Collection, Sequence
-from typing import Protocol, cast
 
 from seqcheck import __version__
 from seqcheck.arguments import SAFETY, STANDARD, Parser
@@ -31,18 +30,23 @@ COMMANDS = {
 }
 
 
-class Command(Protocol):
-    """What the file of a command holds. ``EPILOG`` closes its help; ``run`` gives the exit status."""
+TYPE_CHECKING = False  # As typing has it: help does without loading that.
+if TYPE_CHECKING:
+    from typing import Protocol
 
-    EPILOG: str
+    class Command(Protocol):
+        """What the file of a command holds. ``EPILOG`` closes its help; ``run`` gives the exit status."""
 
-    def add_arguments(self, command: argparse.ArgumentParser) -> None: ...
+        EPILOG: str
 
-    def run(self, options: argparse.Namespace) -> int: ...
+        def add_arguments(self, command: argparse.ArgumentParser) -> None: ...
+
+        def run(self, options: argparse.Namespace) -> int: ...
 
 
 def command_named(name: str) -> Command:
-    return cast(Command, importlib.import_module(f"seqcheck.commands.{name}"))
+    command: Command = importlib.import_module(f"seqcheck.commands.{name}")
+    return command
 
 
 def parser(asked: Collection[str]) -> Parser:

@@ -6,10 +6,10 @@ Takes reports and what ``--fail-on`` says; gives the status. Refuses, in words, 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import TYPE_CHECKING
 
 from seqcheck.arguments import NEVER, WRONG_ARGUMENTS
 
+TYPE_CHECKING = False  # As typing has it: help does without loading that.
 if TYPE_CHECKING:
     # Help does without the records of findings.
     from seqcheck.machine.findings import Finding, Report

@@ -11,10 +11,10 @@ import errno
 import os
 import sys
 from collections.abc import Callable, Sequence
-from typing import TYPE_CHECKING
 
 from seqcheck.report.terminal import encoding_of, write_lines, write_text
 
+TYPE_CHECKING = False  # As typing has it: help does without loading that.
 if TYPE_CHECKING:
     # With them comes rich, which help and version do without.
     from seqcheck.report.layout import Line

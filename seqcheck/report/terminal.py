@@ -8,9 +8,11 @@ from __future__ import annotations
 
 import os
 from collections.abc import Sequence
-from typing import TYPE_CHECKING, TextIO
 
+TYPE_CHECKING = False  # As typing has it: help does without loading that.
 if TYPE_CHECKING:
+    from typing import TextIO
+
     # With them comes rich, which help and version do without.
     from seqcheck.report.layout import Line
 
