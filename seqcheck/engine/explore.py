@@ -29,7 +29,7 @@ from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.model import Machine, items_of
 from seqcheck.machine.records import record
-from seqcheck.machine.steps import Choose
+from seqcheck.machine.steps import Choose, Step
 
 #: More ways than this in which orders may turn out between two states are not played; the report then says so.
 MOST_ORDERS = 16
@@ -124,9 +124,8 @@ class _Explorer:
         self.work_left = most_work(self.machine)
         while self.waiting and self.work_left > 0:
             recipe = self.waiting.popleft()
-            settlement = play(
-                self.machine, recipe, self.orders, self.states, programs=self.programs, most=self.work_left
-            )
+            most = self.work_left if self.found else self.work_left + _more_for_the_first(self.machine)
+            settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs, most=most)
             self.work_left -= settlement.trace.graph.work + _WORK_OF_AN_EVENT * len(settlement.trace.times)
             if settlement.path.astray:
                 self.complete = False
@@ -215,6 +214,11 @@ def most_work(machine: Machine) -> int:
     side and never wait for one another come to ever new states, whose pasts have nothing in common."""
     items = (item for sequence in machine.sequences for item in items_of(sequence.items))
     return 180_000 + 20_000 * sum(isinstance(item, Choose) for item in items)
+
+
+def _more_for_the_first(machine: Machine) -> int:
+    """The typical play of a machine of many steps comes round, whatever that takes in proportion to them."""
+    return 2_000 * sum(isinstance(item, Step) for sequence in machine.sequences for item in items_of(sequence.items))
 
 
 def explore(machine: Machine) -> StateGraph:

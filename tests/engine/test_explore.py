@@ -9,6 +9,7 @@ from seqcheck.engine.states import timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
+from tests.bench.texts import side_by_side
 from tests.oracle.whole import whole_text
 
 CONTROLLER = "controller { scan 8..12 ms  input 2..4 ms  output 0.5..1 ms }\n"
@@ -127,3 +128,13 @@ def test_no_play_goes_on_far_beyond_the_work_that_is_left() -> None:
     graph = explore(machine)
     assert not all(one.settled for one in graph.settlements)
     assert sum(one.trace.graph.work for one in graph.settlements) < 2 * most_work(machine)
+
+
+@pytest.mark.parametrize("branches", [2, 32])
+def test_many_moves_side_by_side_are_wholly_played(branches: int) -> None:
+    """320 moves whose branches have nothing in common: all of it comes round, however much has to be compared."""
+    machine = read_machine(Source("a.steps", side_by_side(branches, 320 // branches)))
+    assert isinstance(machine, Machine), machine
+    graph = explore(machine)
+    whole = graph.complete and all(one.settled for one in graph.settlements)
+    assert whole  # Not the graph itself: to show that takes minutes.
