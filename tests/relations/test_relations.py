@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import os
 import random
+from dataclasses import replace
 
 import pytest
 from hypothesis import HealthCheck, assume, given, settings
@@ -60,7 +61,10 @@ def same(time: int) -> int:
 @given(machine_texts(), st.integers(2, 5))
 def test_all_times_longer_make_all_margins_longer(text: str, factor: int) -> None:
     one, other = outlook_of(scaled(text, EXACT)), outlook_of(scaled(text, EXACT * factor))
-    assert other == one.mapped(str, lambda time: time * factor)
+    longer = one.mapped(str, lambda time: time * factor)
+    assert replace(other, durations={}) == replace(longer, durations={})
+    # A typical time is the mean of several visits, rounded down: the longer one less so.
+    assert other.mapped(str, lambda time: time // factor) == one
 
 
 @many_machines
