@@ -80,12 +80,11 @@ class EventGraph:
         first = arcs[0]
         dominator, span = first.cause, first.span
         earliest, latest = all_earliest[dominator] + span.least, all_latest[dominator] + span.greatest
-        if len(arcs) > 1:
-            for arc in arcs[1:]:
-                cause, span = arc.cause, arc.span
-                earliest = max(earliest, all_earliest[cause] + span.least)
-                latest = max(latest, all_latest[cause] + span.greatest)
-                dominator = self.common_dominator(dominator, cause)
+        for arc in arcs[1:]:
+            cause, span = arc.cause, arc.span
+            earliest = max(earliest, all_earliest[cause] + span.least)
+            latest = max(latest, all_latest[cause] + span.greatest)
+            dominator = self.common_dominator(dominator, cause)
         all_earliest.append(earliest)
         all_latest.append(latest)
         # A jump upwards, whose lengths grow in the way of a skew binary number, so that a way up of any length takes a

@@ -74,9 +74,9 @@ class Harvest:
         """The place of a tree or token. An empty rule has none; nothing here asks for one."""
         return self.ruler.place(start_of(node) or 0, end_of(node) or 0)
 
-    def written(self, node: Tree[Token]) -> str:
-        """A part of the text as it stands there."""
-        return self.ruler.text[start_of(node) : end_of(node)]
+    def written(self, node: Tree[Token], end: int | None = None) -> str:
+        """A part of the text as it stands there, up to its own end or to another one."""
+        return self.ruler.text[start_of(node) : end_of(node) if end is None else end]
 
     def word(self, token: Token) -> Word:
         text = token[1:-1] if token.type == "STRING" else unicodedata.normalize("NFC", token)

@@ -9,7 +9,7 @@ from collections.abc import Callable
 
 from lark import Token, Tree
 
-from seqcheck.language.harvest import Harvest, end_of, start_of, tokens, trees
+from seqcheck.language.harvest import Harvest, tokens, trees
 from seqcheck.language.spelling import spelled
 from seqcheck.language.steps import sequence_text
 from seqcheck.language.syntax import (
@@ -163,7 +163,7 @@ def _flag(harvest: Harvest, node: Tree[Token]) -> FlagText:
 def _never(harvest: Harvest, node: Tree[Token]) -> NeverText:
     why = tokens(node, "STRING")
     tolerated = harvest.duration(node) if trees(node, "duration") else 0
-    end = why[0].start_pos if why else end_of(node)
+    end = why[0].start_pos if why else None
     return NeverText(
         harvest.conditions(node)[0],
         tolerated,
@@ -174,7 +174,7 @@ def _never(harvest: Harvest, node: Tree[Token]) -> NeverText:
 
 
 def _cycle_limit(harvest: Harvest, node: Tree[Token]) -> CycleLimitText:
-    text = _written(harvest, node, end_of(node))
+    text = _written(harvest, node)
     return CycleLimitText(harvest.first_word(node), harvest.duration(node), text, harvest.place(node))
 
 
@@ -183,13 +183,13 @@ def _path_limit(harvest: Harvest, node: Tree[Token]) -> PathLimitText:
     limit = trees(node, "span")[0]
     span = harvest.span(limit)
     least = span.least if len(trees(limit, "quantity")) > 1 else None
-    text = _written(harvest, node, end_of(node))
+    text = _written(harvest, node)
     return PathLimitText(start, end, least, span.greatest, text, harvest.place(node))
 
 
-def _written(harvest: Harvest, node: Tree[Token], end: int | None) -> str:
+def _written(harvest: Harvest, node: Tree[Token], end: int | None = None) -> str:
     """A rule as it was written, on one line, without comments, whatever its blanks were."""
-    return spelled(harvest.ruler.text[start_of(node) : end])
+    return spelled(harvest.written(node, end))
 
 
 _STATEMENTS: dict[str, Callable[[Harvest, Tree[Token]], StatementText]] = {

@@ -53,6 +53,10 @@ def outlook_of(text: str) -> Outlook:
     return outlook(report)
 
 
+def bounds_of(one: Outlook) -> dict[str, tuple[int, int | None]]:
+    return {name: (least, greatest) for name, (least, _, greatest) in one.durations.items()}
+
+
 def same(time: int) -> int:
     return time
 
@@ -63,6 +67,7 @@ def test_all_times_longer_make_all_margins_longer(text: str, factor: int) -> Non
     one, other = outlook_of(scaled(text, EXACT)), outlook_of(scaled(text, EXACT * factor))
     longer = one.mapped(str, lambda time: time * factor)
     assert replace(other, durations={}) == replace(longer, durations={})
+    assert bounds_of(other) == bounds_of(longer)
     # A typical time is the mean of several visits, rounded down: the longer one less so.
     assert other.mapped(str, lambda time: time // factor) == one
 
