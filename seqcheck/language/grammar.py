@@ -17,6 +17,7 @@ import lark.lexer
 from lark import Lark, Token, UnexpectedInput
 
 from seqcheck.language.grammar_cache import keep_parser, kept_parser
+from seqcheck.language.words import LexerOfWords
 
 MOST_NESTED = 50
 
@@ -110,11 +111,11 @@ def grammar_text() -> str:
 def parser() -> Lark:
     """The parser; its starts are ``text`` and ``sheet_value``."""
     text = grammar_text()
-    guard = {"postlex": _DepthGuard()}
+    not_kept = {"postlex": _DepthGuard(), "_plugins": {"ContextualLexer": LexerOfWords}}
     with _terminals_taken_as_they_are():
-        kept = kept_parser(text, guard)
+        kept = kept_parser(text, not_kept)
         if kept is not None:
             return kept
-        made = Lark(text, **_OPTIONS, **guard)
+        made = Lark(text, **_OPTIONS, **not_kept)
     keep_parser(text, made)
     return made

@@ -50,7 +50,7 @@ def keep_parser(grammar: str, parser: Lark) -> None:
         return
     with contextlib.suppress(Exception):
         data, memo = parser.memo_serialize([TerminalDef, Rule])
-        data["options"]["postlex"] = None
+        data["options"].update(postlex=None, _plugins={})
         content = json.dumps({"made_of": _made_of(grammar), "data": data, "memo": memo}, separators=(",", ":"))
         _write(file, content)
 

@@ -10,7 +10,7 @@ import os
 import subprocess
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -44,11 +44,21 @@ def least_cpu(work: Callable[[], object], tries: int = 5) -> float:
 
 def process_cost(*arguments: str, tries: int = 3, statuses: tuple[int, ...] = (0,)) -> Cost:
     """The interpreter run with these arguments, from its start to its end."""
-    costs = [_once(arguments, statuses) for _ in range(tries)]
-    return Cost(min(cost.seconds for cost in costs), min(cost.mebibytes for cost in costs))
+    return _least(_once(arguments, statuses) for _ in range(tries))
 
 
-def _once(arguments: tuple[str, ...], statuses: tuple[int, ...]) -> Cost:
+def process_costs(*programs: Sequence[str], tries: int) -> list[Cost]:
+    """Of each of the programs, run in turns: a machine that is slower for a while is so for all of them."""
+    rounds = [[_once(arguments, (0,)) for arguments in programs] for _ in range(tries)]
+    return [_least(costs) for costs in zip(*rounds, strict=True)]
+
+
+def _least(costs: Iterable[Cost]) -> Cost:
+    seconds, mebibytes = zip(*((cost.seconds, cost.mebibytes) for cost in costs), strict=True)
+    return Cost(min(seconds), min(mebibytes))
+
+
+def _once(arguments: Sequence[str], statuses: tuple[int, ...]) -> Cost:
     environment = {**os.environ, "PYTHONPATH": str(CHECKOUT), "PYTHONDONTWRITEBYTECODE": ""}
     done = subprocess.run(
         [sys.executable, "-c", _WATCHED, *arguments], cwd=CHECKOUT, env=environment, capture_output=True, text=True

@@ -18,7 +18,7 @@ from seqcheck.engine.graph import EventGraph
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Report
 from seqcheck.pipeline import examine_source
-from tests.bench.measures import CHECKOUT, Cost, least_cpu, process_cost
+from tests.bench.measures import CHECKOUT, Cost, least_cpu, process_cost, process_costs
 from tests.bench.rivals import Part, by_milp, by_z3, part_of, random_cycles, whole_of
 from tests.bench.stations import in_a_row
 from tests.bench.texts import choices, one_after_the_other, repeated, side_by_side
@@ -162,15 +162,18 @@ def _ratio(text: str, other: str) -> float | None:
 
 
 def start_up() -> Iterator[Row]:
-    bare = process_cost("-c", "import argparse", tries=15).seconds
-    for words in (("--help",), ("explain",), ("explain", "short-pulse")):
-        cost = process_cost("-m", "seqcheck", *words, tries=15).seconds
-        yield Row(f"seqcheck {' '.join(words)} : an interpreter that imports argparse", cost / bare, 2)
     small = str(CHECKOUT / "examples" / "change" / "before.steps")
-    needed = f"import {', '.join(_loaded_by_a_check(small))}"
-    loading = process_cost("-c", needed, tries=15).seconds
-    checking = process_cost("-m", "seqcheck", "check", small, tries=15).seconds
-    yield Row("check of a small file : importing all that it loads", checking / loading, 1.2)
+    bare = ("-c", "import argparse")
+    loading = ("-c", f"import {', '.join(_loaded_by_a_check(small))}")
+    for words, left_out, what, limit in (
+        (("--help",), bare, "an interpreter that imports argparse", 2),
+        (("explain",), bare, "an interpreter that imports argparse", 2),
+        (("explain", "short-pulse"), bare, "an interpreter that imports argparse", 2),
+        (("check", small), loading, "importing all that it loads", 1.2),
+    ):
+        whole, part = process_costs(("-m", "seqcheck", *words), left_out, tries=25)
+        named = " ".join(words).replace(small, "of a small file")
+        yield Row(f"seqcheck {named} : {what}", whole.seconds / part.seconds, limit)
 
 
 def _loaded_by_a_check(file: str) -> list[str]:
