@@ -11,7 +11,7 @@ from typing import NamedTuple
 
 from seqcheck.machine.devices import Cylinder, Sensor, Stroke
 from seqcheck.machine.model import Machine
-from seqcheck.machine.time import WHOLE_SHARE, Span
+from seqcheck.machine.time import NO_TIME, WHOLE_SHARE, Span
 
 
 class Region(NamedTuple):
@@ -37,35 +37,41 @@ def marks_of(machine: Machine, cylinder: Cylinder) -> tuple[int, ...]:
     return tuple(sorted(positions))
 
 
-def part_of(time: Span, share: int, uneven: int) -> Span:
-    """The time over a share of the stroke whose speed may differ from even by ``uneven``."""
-    least = time.least * share * (WHOLE_SHARE - uneven) // WHOLE_SHARE**2
-    greatest = min(time.greatest, longest_part(time, share, uneven))
-    return Span(least, min(max(time.typical * share // WHOLE_SHARE, least), greatest), greatest)
+def part_of(moving: Span, share: int, uneven: int) -> Span:
+    """The time over a share of the stroke, once the piston moves, whose speed may differ from even by ``uneven``. The
+    rest of the stroke takes its least at any rate."""
+    least = _shortest_part(moving, share, uneven)
+    rest = _shortest_part(moving, WHOLE_SHARE - share, uneven)
+    greatest = max(least, min(moving.greatest - rest, longest_part(moving, share, uneven)))
+    return Span(least, min(max(moving.typical * share // WHOLE_SHARE, least), greatest), greatest)
+
+
+def _shortest_part(time: Span, share: int, uneven: int) -> int:
+    return time.least * share * (WHOLE_SHARE - uneven) // WHOLE_SHARE**2
 
 
 def longest_part(time: Span, share: int, uneven: int) -> int:
     return -(-time.greatest * share * (WHOLE_SHARE + uneven) // WHOLE_SHARE**2)
 
 
-def moving_time(stroke: Stroke, valve: Span) -> Span:
-    """The time from valve position reached to end reached, also where the stroke is timed from the coil."""
-    if not stroke.from_coil:
-        return stroke.time
-    least = max(0, stroke.time.least - valve.greatest)
+def moving_time(stroke: Stroke, valve: Span, lag: Span) -> Span:
+    """What the whole way may take a piston that moves: the stroke without the valve's own time, if that is in it, and
+    at the least without its lag. (A stroke that starts between two marks may have none.)"""
+    valve = valve if stroke.from_coil else NO_TIME
+    least = max(0, stroke.time.least - valve.greatest - lag.greatest)
     greatest = max(least, stroke.time.greatest - valve.least)
     return Span(least, min(max(least, stroke.time.typical - valve.typical), greatest), greatest)
 
 
-def part_from_start(stroke: Stroke, share: int, uneven: int, valve: Span) -> Span:
-    """The time to a mark from where the stroke is timed. From the coil, the valve's own time lies before the first
-    part, so that only the rest of the greatest time is shared out."""
-    part = part_of(stroke.time, share, uneven)
-    if not stroke.from_coil:
-        return part
-    moving = Span.exactly(max(0, stroke.time.greatest - valve.greatest))
-    greatest = max(part.least, min(stroke.time.greatest, valve.greatest + longest_part(moving, share, uneven)))
-    return Span(part.least, min(part.typical, greatest), greatest)
+def part_from_start(stroke: Stroke, share: int, uneven: int, valve: Span, lag: Span) -> Span:
+    """The time to a mark from where the stroke is timed. The lag, and from the coil the valve's own time, lie before
+    the first part, so that only the rest of the greatest time is shared out."""
+    standing = lag.greatest + (valve.greatest if stroke.from_coil else 0)
+    least = _shortest_part(stroke.time, share, uneven)
+    rest = _shortest_part(moving_time(stroke, valve, lag), WHOLE_SHARE - share, uneven)
+    moving = Span.exactly(max(0, stroke.time.greatest - standing))
+    greatest = max(least, min(stroke.time.greatest - rest, standing + longest_part(moving, share, uneven)))
+    return Span(least, min(max(stroke.time.typical * share // WHOLE_SHARE, least), greatest), greatest)
 
 
 def reached_by(sensor: Sensor, position: int, out: bool) -> bool | None:

@@ -70,14 +70,19 @@ class Travel:
     def _share(self, one: int, other: int) -> int:
         return abs(self.positions[one] - self.positions[other])
 
+    @property
+    def _moving(self) -> Span:
+        return moving_time(self._stroke, self.valve, self.cylinder.lag)
+
     def _part(self, one: int, other: int) -> Span:
         """The time from one mark to another, once the piston moves."""
-        return part_of(moving_time(self._stroke, self.valve), self._share(one, other), self.cylinder.uneven)
+        return part_of(self._moving, self._share(one, other), self.cylinder.uneven)
 
     def _from_end(self, end: int, mark: int) -> Span:
         if mark == self._last:
             return self._stroke.time
-        return part_from_start(self._stroke, self._share(end, mark), self.cylinder.uneven, self.valve)
+        cylinder = self.cylinder
+        return part_from_start(self._stroke, self._share(end, mark), cylinder.uneven, self.valve, cylinder.lag)
 
     def _ahead_of(self, mark: int) -> range:
         return range(mark + 1, len(self.positions)) if self.out else range(mark - 1, -1, -1)
@@ -141,8 +146,7 @@ class Travel:
 
     def _whole(self, before: int, mark: int) -> int:
         """The greatest time through one stretch, started somewhere in it."""
-        moving = moving_time(self._stroke, self.valve)
-        return longest_part(moving, self._share(before, mark), self.cylinder.uneven)
+        return longest_part(self._moving, self._share(before, mark), self.cylinder.uneven)
 
     def _latest(self, behind: int, firsts: Sequence[int], mark: int, may_rest: bool) -> int:
         """The greatest time to a mark, whichever of ``firsts`` is the first one passed: the whole stretch before that

@@ -3,13 +3,16 @@
 Takes a cylinder, a direction and the moment it starts; gives (mark, time) in the order of travel. Positions are
 millionths of the stroke. Products are rounded outward: down for the least, up for the greatest.
 
-A stroke that is timed from the coil. Write T for the whole time (``least..most``, from the coil energized), v for the
-valve's part of it and m = T - v for the time that the piston has for the way from its start. Neither v nor m is known
-better than by its bounds, so that m lies in ``least - greatest v .. most - least v`` and never below 0. Two marks that
-are a share p apart are at least p * least m * (1 - P) apart in time. A mark at share p comes v + m * w after the coil,
-with w between p * (1 - P) and the lesser of p * (1 + P) and 1. That is T * w + v * (1 - w): no sooner than
-p * least * (1 - P), whatever v is, and at the latest where v is as great as it can be, v + w * (most - v); never after
-``most``. A stroke that begins between two marks has no time from the coil of its own and takes m.
+What a stroke contains. Write T for the whole time (``least..most``), v for what passes of it before the piston moves
+(its lag; in a stroke that is timed from the coil the valve's part of it, too) and m = T - v for the time that the
+piston has for the way from its start. Neither v nor m is known better than by its bounds, so that m lies in
+``least - greatest v .. most - least v`` and never below 0. Two marks that are a share p apart are at least
+p * least m * (1 - P) apart in time, and so is the last of them from the end that lies a share p further on. A mark at
+share p comes v + m * w after the start, with w between p * (1 - P) and the lesser of p * (1 + P) and
+1 - (1 - p) * (1 - P). That is T * w + v * (1 - w): no sooner than p * least * (1 - P), whatever v is, and at the latest
+where v is as great as it can be, v + p * (1 + P) * (most - v); the rest of the way taken off ``most`` it is no later
+than that. A stroke that begins between two marks has no time from the coil of its own and takes m; whether it has a lag
+nobody says, so that the greatest m is with none.
 """
 
 from __future__ import annotations
@@ -18,7 +21,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from seqcheck.machine.devices import Cylinder, Sensor, Stroke
-from seqcheck.machine.time import WHOLE_SHARE, Span
+from seqcheck.machine.time import NO_TIME, WHOLE_SHARE, Span
 
 Choose = Callable[[int, Span], int]
 """Draws the delay of one mark: (position of the mark, span) to microseconds."""
@@ -45,11 +48,9 @@ class Pace:
 
     @property
     def moving(self) -> Span:
-        """m above: the time for the whole way, the valve's own time left out."""
-        whole, valve = self.stroke.time, self.valve
-        if not self.stroke.from_coil:
-            return whole
-        least = max(0, whole.least - valve.greatest)
+        """m above: the time for the whole way, the valve's own time and the lag left out."""
+        whole, valve = self.stroke.time, self.valve if self.stroke.from_coil else NO_TIME
+        least = max(0, whole.least - valve.greatest - self.cylinder.lag.greatest)
         greatest = max(least, whole.greatest - valve.least)
         return Span(least, _held(whole.typical - valve.typical, least, greatest), greatest)
 
@@ -64,17 +65,18 @@ class Pace:
     def to_mark(self, share: int) -> Span:
         """From where the stroke is timed to a mark at this share."""
         whole, uneven = self.stroke.time, self.cylinder.uneven
-        valve = self.valve.greatest if self.stroke.from_coil else 0
+        standing = self.cylinder.lag.greatest + (self.valve.greatest if self.stroke.from_coil else 0)
         least = _least_part(whole.least, share, uneven)
-        latest = valve + _greatest_part(max(0, whole.greatest - valve), share, uneven)
-        greatest = max(least, min(whole.greatest, latest))
+        latest = standing + _greatest_part(max(0, whole.greatest - standing), share, uneven)
+        greatest = max(least, min(whole.greatest - self.apart(WHOLE_SHARE - share), latest))
         return Span(least, _held(share * whole.typical // WHOLE_SHARE, least, greatest), greatest)
 
     def onward(self, share: int) -> Span:
-        """From a mark to one that lies this share further on, never above the most of the whole way."""
+        """From a mark to one that lies this share further on; the rest of the whole way takes its least."""
         moving, uneven = self.moving, self.cylinder.uneven
         least = _least_part(moving.least, share, uneven)
-        greatest = min(moving.greatest, _greatest_part(moving.greatest, share, uneven))
+        latest = moving.greatest - self.apart(WHOLE_SHARE - share)
+        greatest = max(least, min(latest, _greatest_part(moving.greatest, share, uneven)))
         return Span(least, _held(share * moving.typical // WHOLE_SHARE, least, greatest), greatest)
 
 

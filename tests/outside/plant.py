@@ -199,13 +199,19 @@ class Cylinder:
             last, before = mark, env.now
 
     def _part(self, direction: int, one: int, other: int, most: int | None = None) -> Times:
-        """The time over a part of the stroke, whose speed may differ from even."""
+        """The time over a part of the stroke, whose speed may differ from even. ``most``: of the whole stroke, of which
+        the rest of the way takes its part."""
         share = abs(self._marks[one] - self._marks[other])
         least, greatest = self._strokes[direction][:2]
-        shortest = floor(round(least * share * (1 - self._uneven), 6))
         longest = ceil(round(greatest * share * (1 + self._uneven), 6))
         typical = floor(round((least + greatest) // 2 * share, 6))
-        return shortest, longest if most is None else min(longest, most), typical
+        if most is not None:
+            longest = min(longest, most - self._shortest(direction, 1 - share))
+        return self._shortest(direction, share), longest, typical
+
+    def _shortest(self, direction: int, share: float) -> int:
+        """The shortest stroke less the longest lag is what the piston has for the whole way."""
+        return floor(round(max(0, self._strokes[direction][0] - self._lag[1]) * share * (1 - self._uneven), 6))
 
     def _come_to(self, mark: int, direction: int, end: int) -> None:
         self._stand(mark, mark) if mark == end else self._stand(*sorted((mark, mark + direction)))

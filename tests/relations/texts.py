@@ -32,36 +32,14 @@ def scaled(text: str, factor: int) -> str:
 
 
 def widened(text: str, draw: random.Random) -> str:
-    """A few spans wider on one side or both; what was typical still is. Two marks are apart at least a share of the
-    least time of the stroke. Where the one before may be passed late (``lag``, ``uneven``) that makes the other later
-    still, by the more the longer that time is: a wider span would bring it forward. Such spans stay as they are."""
+    """A few spans wider on one side or both; what was typical still is."""
     spans = list(_SPAN.finditer(text))
-    kept_low, kept_high = _apart_at_least(text)
     for found in sorted(draw.sample(spans, min(len(spans), draw.randint(1, 4))), key=lambda one: -one.start()):
         least, greatest = int(found[1]), int(found[2])
         low = max(0, least - draw.choice((0, 1, 500, least // 4)))
         high = greatest + draw.choice((0, 1, 500, greatest // 4))
-        low = least if found.start() in kept_low else low
-        high = greatest if found.start() in kept_high else high
         text = f"{text[: found.start()]}{low}..{(least + greatest) // 2}..{high} us{text[found.end() :]}"
     return text
-
-
-def _apart_at_least(text: str) -> tuple[set[int], set[int]]:
-    """Where the spans stand whose least and whose greatest time say how far apart two marks are at least that may be
-    passed late: of strokes, and of the valves that these contain."""
-    late = [one for one in statements(text) if one.startswith("cylinder") and re.search(r"\b(lag|uneven)\b", one)]
-    shifts = any("from coil" in one for one in late)
-    low, high = set(), set()
-    begin = 0
-    for one in statements(text):
-        spans = [(begin + found.start(), one[: found.start()]) for found in _SPAN.finditer(one)]
-        if one in late:
-            low |= {at for at, before in spans if before.endswith(("extend ", "retract "))}
-        if shifts and one.startswith("valve"):
-            high |= {at for at, before in spans if before.endswith((" on ", " off "))}
-        begin += len(one) + 1
-    return low, high
 
 
 def other_typicals(text: str, draw: random.Random) -> str:
