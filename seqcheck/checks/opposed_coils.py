@@ -6,14 +6,15 @@ opposed one is.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from functools import partial
 
 from seqcheck.checks.check import Check, Obligation, Sight, Wording
 from seqcheck.checks.narrate import narrate_typical
 from seqcheck.checks.study import Study
+from seqcheck.checks.tightest import those_that_count
 from seqcheck.checks.wording import in_time, round_down
-from seqcheck.engine.bounds import greatest_separations
+from seqcheck.engine.bounds import Rows, greatest_separations
 from seqcheck.engine.graph import Event
 from seqcheck.engine.trace import Origin, Spell
 from seqcheck.machine.devices import ControllerKind, Valve
@@ -140,11 +141,18 @@ def handovers(study: Study) -> tuple[Handover, ...]:
     asked = [
         (pair, _decayed(study, pair.earlier), pair.later.on) for pair in _pairs(study) if pair.earlier.off is not None
     ]
-    before = {(decayed, on) for _, decayed, on in asked}
-    asked = [one for one in asked if study.before_repeating(*one[1:]) not in before]
-    rows = greatest_separations(study.trace.graph, ((on, decayed) for _, decayed, on in asked))
+    graph = study.trace.graph
+    rows: Rows = {}
+
+    def gaps_of(numbers: Sequence[int]) -> Iterator[int]:
+        some = [(on, decayed) for _, decayed, on in map(asked.__getitem__, numbers)]
+        rows.update(greatest_separations(graph, some))
+        return (-rows[pair] for pair in some)
+
+    kinds = [((pair.earlier.target, pair.later.begun.place), graph.least_lead(*events)) for pair, *events in asked]
     found = []
-    for pair, decayed, on in asked:
+    for number in those_that_count(kinds, gaps_of):
+        pair, decayed, on = asked[number]
         gap, place = -rows[on, decayed], pair.later.begun.place
         found.append(Handover(pair.valve.name, pair.earlier.target, pair.later.target, place, gap, max(0, -gap)))
     return tightest_handovers([found])

@@ -6,7 +6,7 @@ margins, in no order. Obligations that the text states once are met in every cyc
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import replace
 from functools import partial
 from typing import NamedTuple
@@ -15,6 +15,7 @@ from seqcheck.checks.certainty import Segment, Ways
 from seqcheck.checks.check import Check, Obligation
 from seqcheck.checks.narrate import narrate
 from seqcheck.checks.study import Study
+from seqcheck.checks.tightest import those_that_count
 from seqcheck.checks.wording import UNLIMITED, in_time
 from seqcheck.engine.bounds import (
     Rows,
@@ -94,7 +95,7 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
     margins: dict[_Key, Margin] = {}
     strays = False
     for number, study in enumerate(played):
-        one = _prove_one(study, checks, reserve_us, partial(ways.segment, number))
+        one = _prove_one(study, checks, reserve_us, partial(ways.segment, number), margins)
         strays = strays or one.strays
         for seen in one.seen:
             by_key.setdefault(seen.key, []).append(seen)
@@ -153,10 +154,15 @@ class _ProofOfOne:
 
 
 def _prove_one(
-    study: Study, checks: Sequence[Check], reserve_us: int, segment_of: Callable[[int], Segment]
+    study: Study,
+    checks: Sequence[Check],
+    reserve_us: int,
+    segment_of: Callable[[int], Segment],
+    known: Mapping[_Key, Margin],
 ) -> _ProofOfOne:
+    """``known``: margins of other plays, the tightest of each key."""
     since = study.settlement.fresh_since
-    stated, rows = _once_each(
+    stated, rows = _those_that_count(
         study,
         [
             _Stated((check.kind, one.subject, one.step, one.place), check, one)
@@ -164,6 +170,7 @@ def _prove_one(
             for one in check.obligations(study)
             if _is_fresh(study, one, since)
         ],
+        known,
     )
     turns = _turns(study, (one for _, _, one in stated), rows)
     tightest: dict[_Key, tuple[Check, Obligation, int]] = {}
@@ -172,8 +179,8 @@ def _prove_one(
     for key, check, obligation in stated:
         one = _best_pair(obligation, rows)
         margin = -rows[one.second, one.first] - one.least
-        known = tightest.get(key)
-        if known is None or margin < known[2]:
+        before = tightest.get(key)
+        if before is None or margin < before[2]:
             tightest[key] = (check, one, margin)
         if margin < 0 and (one.stops or (one.diverts and not _always_broken(one, rows))):
             diverting.add(key)
@@ -209,26 +216,31 @@ def _is_fresh(study: Study, one: Obligation, since: int) -> bool:
     return since <= 0 or any(times[first] >= since or times[second] >= since for first, second in one.pairs)
 
 
-def _once_each(study: Study, stated: Sequence[_Stated]) -> tuple[list[_Stated], Rows]:
-    """The obligations with their rows, less those that a round meets as the one before has met them: where something
-    of the same is broken, each time counts."""
-    before: dict[tuple[int, int], list[_Key]] = {}
-    for key, _, one in stated:
-        before.setdefault((one.first, one.second), []).append(key)
-    news: list[int] = []
-    repeated: list[int] = []
-    for number, (key, _, one) in enumerate(stated):
-        image = None if one.others or one.assumed or one.kept else study.before_repeating(one.first, one.second)
-        (news if image is None or key not in before.get(image, ()) else repeated).append(number)
-    rows = _rows(study, [stated[number].obligation for number in news])
-    broken = {stated[number].key for number in news if _is_broken(stated[number].obligation, rows)}
-    counting = [number for number in repeated if stated[number].key in broken]
-    rows |= _rows(study, [stated[number].obligation for number in counting])
-    return [stated[number] for number in sorted((*news, *counting))], rows
+def _those_that_count(
+    study: Study, stated: Sequence[_Stated], known: Mapping[_Key, Margin]
+) -> tuple[list[_Stated], Rows]:
+    """The obligations that may be broken or are the tightest of their key, with their rows; none that plain intervals
+    show to be kept by no less than ``known``."""
+    rows: Rows = {}
+
+    def margins_of(numbers: Sequence[int]) -> Iterator[int]:
+        some = [asked[number].obligation for number in numbers]
+        rows.update(_rows(study, some))
+        return (max([-rows[second, first] for first, second in one.pairs]) - one.least for one in some)
+
+    asked, leads = [], []
+    for one in stated:
+        least = _least_margin(study, one.obligation)
+        tightest = known.get(one.key)
+        if least < 0 or tightest is None or (tightest.margin_us is not None and least < tightest.margin_us):
+            asked.append(one)
+            leads.append((one.key, least))
+    return [asked[number] for number in those_that_count(leads, margins_of)], rows
 
 
-def _is_broken(one: Obligation, rows: Rows) -> bool:
-    return all(-rows[second, first] < one.least for first, second in one.pairs)
+def _least_margin(study: Study, one: Obligation) -> int:
+    """What plain intervals leave."""
+    return max([study.trace.graph.least_lead(first, second) for first, second in one.pairs]) - one.least
 
 
 def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:

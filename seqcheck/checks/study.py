@@ -66,9 +66,6 @@ class Study:
         self.settlement = settlement
         self.trace = settlement.trace
         self._played = len(self.trace.times)
-        #: The events that only obligations need, by what they are and what they come after.
-        self._made: dict[tuple[object, ...], int] = {}
-
         self.turned: list[Turned] = []
         #: Of the play from which this one has come by orders turned.
         self.unturned: Study = self
@@ -93,29 +90,6 @@ class Study:
             return None
         begin, end = (self.settlement.path.passages[number].at for number in around)
         return begin, end
-
-    def before_repeating(self, one: int, other: int) -> tuple[int, int] | None:
-        """Two events of a round that only repeats the one before, as they were in that; None where they are not two
-        such events, or hang on anything from before that round."""
-        if self.settlement.path.repeats is None:
-            return None
-        begin, again = self.settlement.path.repeats
-        if one < again or other < again or self.trace.graph.common_dominator(one, other) < again:
-            return None
-        first, second = self._a_round_before(one, begin, again), self._a_round_before(other, begin, again)
-        return None if first is None or second is None else (first, second)
-
-    def _a_round_before(self, number: int, begin: int, again: int) -> int | None:
-        graph = self.trace.graph
-        if number < again:
-            return None
-        if number >= self._played:
-            arcs = graph.arcs[number]
-            causes = [self._a_round_before(arc.cause, begin, again) for arc in arcs]
-            known = [(cause, arc.span) for cause, arc in zip(causes, arcs, strict=True) if cause is not None]
-            return self._made.get(_made_of(graph.events[number], known)) if len(known) == len(arcs) else None
-        before = number - again + begin
-        return before if graph.events[before] == graph.events[number] else None
 
     # Events that only obligations need -------------------------------------------------------------------------
 
@@ -144,10 +118,7 @@ class Study:
 
     def _make(self, event: Event, arcs: tuple[Arc, ...], time: int) -> int:
         self.trace.times.append(time)
-        number = self.trace.graph.add(event, arcs)
-        if self.settlement.path.repeats is not None:
-            self._made[_made_of(event, [(arc.cause, arc.span) for arc in arcs])] = number
-        return number
+        return self.trace.graph.add(event, arcs)
 
     @cached_property
     def reads_by_event(self) -> dict[int, Read]:
@@ -347,11 +318,6 @@ class Study:
                     for stroke in self._strokes_by_event.get(answer.edge.at, ()):
                         found.setdefault(stroke, []).append((visit.left, answer.edge))
         return found
-
-
-def _made_of(event: Event, causes: Sequence[tuple[int, Span]]) -> tuple[object, ...]:
-    since = [(cause, span.least, span.greatest) for cause, span in causes]
-    return event.what, event.subject, event.detail, *since
 
 
 def studies_of(machine: Machine, graph: StateGraph) -> list[Study]:

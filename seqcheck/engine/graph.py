@@ -152,13 +152,14 @@ class EventGraph:
 
     def never_later(self, one: int, other: int) -> bool:
         """Whether plain intervals since the common dominator already show ``one`` to be at or before ``other``."""
-        return self._least_lead(one, other) >= 0
+        return self.least_lead(one, other) >= 0
 
     def always_earlier(self, one: int, other: int) -> bool:
         """Whether they show it to be before that."""
-        return self._least_lead(one, other) > 0
+        return self.least_lead(one, other) > 0
 
-    def _least_lead(self, one: int, other: int) -> int:
+    def least_lead(self, one: int, other: int) -> int:
+        """How much sooner than ``other`` they show ``one`` to be: it is no less."""
         common = self.common_dominator(one, other)
         return self.earliest[other] - self.earliest[common] - (self.latest[one] - self.latest[common])
 

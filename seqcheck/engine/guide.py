@@ -130,8 +130,7 @@ class Path:
     ``settled``: where that state came up first in this very play. ``first`` to ``last``: the passages between which the
     play then goes once round; up to ``last`` a little further, where the state is one of another play. ``again``: the
     event from which the play goes once round to its end. ``rest``: behind ``last`` it goes on as behind ``first``, up
-    to where that was as in the round before. ``repeats``: two events with the same state: from the second on the play
-    goes only through what it has gone through since the first."""
+    to where that was as in the round before."""
 
     passages: list[Passage] = field(default_factory=list)
     orders: list[tuple[int, Order]] = field(default_factory=list)
@@ -140,7 +139,6 @@ class Path:
     first: int | None = None
     last: int | None = None
     again: int | None = None
-    repeats: tuple[int, int] | None = None
     rest: bool = False
     #: The way cannot be gone: a choice had no such outcome.
     astray: bool = False
@@ -177,10 +175,10 @@ class Scout:
         self._most = most
         self._decided = 0
         self._most_passages = _most_passages(machine)
-        #: What milestones were like, with how many states had been before, and the event; the first that is as in the
-        #: round before, with the events of both.
-        self._milestones: dict[Signature, tuple[int, int]] = {}
-        self._alike: tuple[str, tuple[int, int]] | None = None
+        #: What milestones were like, with how many states had been before; the first that is as in the round before,
+        #: with its event.
+        self._milestones: dict[Signature, int] = {}
+        self._alike: tuple[str, int] | None = None
         self._period = 0
         self._pool: list[int] = []
         self._seen_events = self._seen_at = 0
@@ -220,9 +218,8 @@ class Scout:
             player.trace.graph.work += _WORK_OF_A_STATE
             passed = len(path.passages)
             signature = (step, player.state, self._under_way(player, read.event))
-            before, event = self._milestones.setdefault(signature, (passed, read.event))
-            if before == passed - 1:
-                self._alike = step, (event, read.event)
+            if self._milestones.setdefault(signature, passed) == passed - 1:
+                self._alike = step, read.event
 
     def _pass(self, passage: Passage, where: tuple[object, ...]) -> None:
         path, player = self.path, self.player
@@ -252,10 +249,8 @@ class Scout:
         if before is not None:
             path.joined, path.settled, self._period = index, before, index - before
             if self._period == 1 and self._alike is not None:
-                _, path.repeats = self._alike
-                path.first, path.last, path.again, path.rest = before, index, path.repeats[1], True
+                path.first, path.last, path.again, path.rest = before, index, self._alike[1], True
             else:
-                path.repeats = path.passages[before].at, passage.at
                 self._end_of_round(index)
         elif passage.signature in self._known:
             path.joined = index
