@@ -143,6 +143,27 @@ sequence main {
 }
 """,
     # With all times least s9 is left in time, and nobody asks B13 while the piston stands.
+    # The piston has passed both edges of B13 when the read comes that sees it still on: it is the first that s2 waited for.
+    "an overshoot of the far edge of the sensor on which the step was left": """
+controller { scan 3000..3800 us }
+valve V1 5/3 closed centre { coil Y11 to a  coil Y12 to b  on 15333 us  off 20 ms }
+cylinder clamp on V1 {
+    extend 200 ms  retract 200..274948 us
+    sensor B11 at retracted  sensor B13 at 30..32 % delay 0..355 us  sensor B12 at extended
+}
+sequence main {
+    together {
+        step s2 { on Y11  until B13 }
+        step s3 { dwell 100 ms }
+        step s4 { on Y11  until B12 }
+        step s5 { dwell 60 ms }
+        step s6 { on Y12  until B11 }
+        step s7 { dwell 60 ms }
+    } and {
+        step s1 { until B13  steady 3299 us }
+    }
+}
+""",
     "an overshoot that is not certain": """
 controller { scan 8387..8562 us }
 valve V1 5/2 spring { coil Y11  on 19722..21221 us  off 21661..21737 us }

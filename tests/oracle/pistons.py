@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import partial
+from typing import NamedTuple
 
 from seqcheck.machine.conditions import TermKind
 from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve
@@ -64,6 +65,15 @@ class Watcher:
     stands: Callable[[str], None]
 
 
+class _Edge(NamedTuple):
+    """Of a ``sensor`` that a piston has passed at a ``mark``: there it comes ``on``, or goes off."""
+
+    mark: int
+    sensor: str
+    on: bool
+    time: int
+
+
 class CylinderPlay:
     """``end`` is the end the piston stands at (also while it has not left it yet), else None and ``between`` counts.
     ``strokes`` have begun so far; what is drawn of a stroke is numbered by how many came before it. ``overshot`` are
@@ -93,7 +103,7 @@ class CylinderPlay:
         self._waited = False
         self._led_to: Past = frozenset()
         self._changed: set[tuple[str, bool]] = set()
-        self._passed: list[tuple[int, str, int]] = []
+        self._passed: list[_Edge] = []
         self._started = 0
 
     def begin(self, driven: bool | None) -> None:
@@ -121,10 +131,9 @@ class CylinderPlay:
         the stroke, if it has changed the sensor to what was wanted, and what led to it."""
         if (sensor, wanted) not in self._changed:
             return frozenset()
-        edges = [number for number, (_, name, _) in enumerate(self._passed) if name == sensor]
-        if edges:
-            mark = self._passed[edges[-1]][0]
-            last = max(number for number, (place, _, _) in enumerate(self._passed) if place == mark)
+        marks = [edge.mark for edge in self._passed if (edge.sensor, edge.on) == (sensor, wanted)]
+        if marks:
+            last = max(number for number, edge in enumerate(self._passed) if edge.mark == marks[-1])
             del self._passed[: last + 1]
         return self._led_to | {self._stroke}
 
@@ -132,7 +141,7 @@ class CylinderPlay:
         """Likewise, where the step has waited for a signal that follows this cylinder and last changed then."""
         if not self.strokes or changed_at < self._started:
             return frozenset()
-        self._passed = [passed for passed in self._passed if passed[2] > changed_at]
+        self._passed = [edge for edge in self._passed if edge.time > changed_at]
         return self._led_to | {self._stroke}
 
     def follow(self, wanted: bool | None, shift: Shift) -> None:
@@ -178,7 +187,7 @@ class CylinderPlay:
 
     def _stand_where_it_is(self) -> None:
         if self._waited:
-            self.overshot = frozenset(name for _, name, _ in self._passed)
+            self.overshot = frozenset(edge.sensor for edge in self._passed)
             self._watcher.stands(self.cylinder.name)
 
     def _start(self, out: bool, shift: Shift) -> None:
@@ -235,7 +244,7 @@ class CylinderPlay:
             comes, goes = mark == near, mark == far and mark != near and self.end is None
             if comes or goes:
                 self._changed.add((sensor.name, comes))
-                self._passed.append((mark, sensor.name, self._clock.now))
+                self._passed.append(_Edge(mark, sensor.name, comes, self._clock.now))
                 if comes:
                     self._watcher.entered(sensor.name, out)
                 self._lines[sensor.name].change(comes)
