@@ -142,8 +142,7 @@ sequence main {
     step s8 { pulse Y12 99999 us  until B11 }
 }
 """,
-    # With all times least s9 is left in time, and nobody asks B13 while the piston stands.
-    # The piston has passed both edges of B13 when the read comes that sees it still on: it is the first that s2 waited for.
+    # The piston has passed both edges of B13 when the read comes that sees it still on; s2 has waited for the first.
     "an overshoot of the far edge of the sensor on which the step was left": """
 controller { scan 3000..3800 us }
 valve V1 5/3 closed centre { coil Y11 to a  coil Y12 to b  on 15333 us  off 20 ms }
@@ -164,6 +163,7 @@ sequence main {
     }
 }
 """,
+    # With all times least s9 is left in time, and nobody asks B13 while the piston stands.
     "an overshoot that is not certain": """
 controller { scan 8387..8562 us }
 valve V1 5/2 spring { coil Y11  on 19722..21221 us  off 21661..21737 us }
