@@ -23,6 +23,7 @@ from seqcheck.engine.explore import explore
 from seqcheck.engine.parts import parts_of
 from seqcheck.engine.player import MOST_EVENTS
 from seqcheck.engine.scope import outside_scope
+from seqcheck.engine.settlement import StateGraph
 from seqcheck.engine.states import TimedStates, side_by_side, timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source, read_source
@@ -33,11 +34,14 @@ from seqcheck.machine.records import record
 
 @record
 class StudiedPart:
-    """Sequences that something ties together, and every play of them, the typical one first."""
+    """Sequences that something ties together, and every play of them, the typical one first. ``sewn``: plays of ways of
+    which each run is among them, and whether they are all that it takes."""
 
     machine: Machine
     studies: Sequence[Study]
     states: TimedStates
+    sewn: Sequence[Study]
+    all_sewn: bool
 
 
 @record
@@ -100,16 +104,23 @@ def _studied(source: Source, sheets: Sequence[str], reserve_us: int, brief: bool
     refused = outside_scope(machine)
     if refused:
         return _refused(source, machine, refused), None
-    explored = [(part, explore(part)) for part in parts_of(machine)]
+    explored = [(part, explore(part, reserve_us)) for part in parts_of(machine)]
     too_long = [_too_long(part) for part, graph in explored if any(one.trace.too_long for one in graph.settlements)]
     if too_long:
         return _refused(source, machine, too_long), None
-    parts = [StudiedPart(part, studies_of(part, graph), timed_states(graph)) for part, graph in explored]
-    proof = whole_proof(machine, [prove(part.studies, CHECKS, reserve_us) for part in parts], CHECKS)
+    parts = [_studied_part(part, graph) for part, graph in explored]
+    proof = whole_proof(machine, [prove(part.studies, CHECKS, reserve_us, part.sewn) for part in parts], CHECKS)
     report = _report(machine, parts, proof, brief)
     lines = _lines_of(source)
     findings = tuple(replace(one, source=lines[one.place.line - 1]) for one in report.findings)
     return replace(report, findings=findings), Studied(machine, parts, proof.broken)
+
+
+def _studied_part(part: Machine, graph: StateGraph) -> StudiedPart:
+    studies = studies_of(part, graph)
+    return StudiedPart(
+        part, studies, timed_states(graph), [studies[0].alike(one) for one in graph.sewn], graph.all_sewn
+    )
 
 
 def _refused(source: Source, machine: Machine, problems: Sequence[Problem]) -> Report:
@@ -142,13 +153,13 @@ def _report(machine: Machine, parts: Sequence[StudiedPart], proof: Proof, brief:
         machine=machine.name,
         findings=findings,
         sheets=machine.sheets,
-        assumptions=assumptions(machine, typical, accepted, proof.strays),
+        assumptions=assumptions(machine, typical, accepted, proof.strays, all(part.all_sewn for part in parts)),
         cycles=times.cycles,
         choices=times.choices,
         states=shown_states(timed),
         runs=shown_runs(timed),
         steps=times.steps,
         critical_path=() if brief else critical_path(typical[0]),
-        handovers=tightest_handovers(handovers(study) for part in parts for study in part.studies),
+        handovers=tightest_handovers(handovers(study) for part in parts for study in (*part.studies, *part.sewn)),
         margins=proof.margins,
     )

@@ -13,7 +13,8 @@ from seqcheck.chart.asked import Unplaceable
 from seqcheck.chart.window import Window, cycle_around
 from seqcheck.checks.catalogue import CHECKS
 from seqcheck.checks.study import Study
-from seqcheck.engine.explore import Settlement, replay
+from seqcheck.engine.explore import replay
+from seqcheck.engine.settlement import Settlement
 from seqcheck.engine.timeline import given
 from seqcheck.engine.witness import Witness
 from seqcheck.machine.findings import Finding, Report

@@ -14,10 +14,11 @@ from dataclasses import replace
 from seqcheck.chart.asked import Unplaceable, Wish
 from seqcheck.checks.study import Study
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.explore import Recipe, Settlement, outcomes_before, play
-from seqcheck.engine.guide import Way
+from seqcheck.engine.explore import play
+from seqcheck.engine.guide import Way, outcomes_before
 from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
+from seqcheck.engine.settlement import Recipe, Settlement
 from seqcheck.engine.strokes import Region
 from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Choice, Read

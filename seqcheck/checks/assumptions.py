@@ -13,10 +13,11 @@ from seqcheck.machine.time import WHOLE_SHARE
 
 
 def assumptions(
-    machine: Machine, typical: Sequence[Study], accepted: bool = False, strays: bool = False
+    machine: Machine, typical: Sequence[Study], accepted: bool = False, strays: bool = False, all_sewn: bool = True
 ) -> tuple[str, ...]:
     """``typical``: the play at typical times of each part of the machine; ``accepted``: the text accepts something that
-    happens in some runs only; ``strays``: the run at typical times breaks what others keep."""
+    happens in some runs only; ``strays``: the run at typical times breaks what others keep;
+    ``all_sewn``: all that may follow one another was played in one, as far as that matters to margins."""
     return (
         *_assumed(machine),
         "every time anywhere in its span, anew each time",
@@ -26,6 +27,7 @@ def assumptions(
         *_signals(machine),
         *_proof(typical),
         *(("played on from what goes wrong at typical times, where other runs may go right",) if strays else ()),
+        *(() if all_sewn else ("margins across choices may be smaller: not every way was played behind every other",)),
         *(("what is accepted happens, or does not, as it does at typical times",) if accepted else ()),
     )
 

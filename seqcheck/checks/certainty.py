@@ -9,7 +9,7 @@ from __future__ import annotations
 from bisect import bisect_right
 from collections.abc import Collection, Sequence
 
-from seqcheck.engine.explore import Settlement
+from seqcheck.engine.settlement import Settlement
 
 #: A settlement by its place among all, and the number of a passage in it; the segment that begins there.
 Segment = tuple[int, int]

@@ -13,7 +13,7 @@ from collections.abc import Collection, Iterator, Mapping, Sequence
 
 from seqcheck.checks.crossings import reached
 from seqcheck.engine.bounds import both_ways, greatest_separations
-from seqcheck.engine.explore import Settlement
+from seqcheck.engine.settlement import Settlement
 from seqcheck.engine.trace import Visit, Wait
 from seqcheck.machine.model import Machine
 from seqcheck.machine.records import record

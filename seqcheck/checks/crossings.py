@@ -15,7 +15,7 @@ from dataclasses import dataclass, field, replace
 
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.explore import Settlement
+from seqcheck.engine.settlement import Settlement
 from seqcheck.machine.findings import Duration
 from seqcheck.machine.records import record
 

@@ -16,7 +16,8 @@ from seqcheck.checks.times import cycle_spells
 from seqcheck.checks.wording import OR_LESS, UNLIMITED, in_time
 from seqcheck.engine.conditions import alternatives_of
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.explore import follow, outcomes_before
+from seqcheck.engine.explore import follow
+from seqcheck.engine.guide import outcomes_before
 from seqcheck.machine.findings import Moment, Severity
 from seqcheck.machine.records import record
 from seqcheck.machine.rules import CycleLimit, Never, PathLimit, Rule

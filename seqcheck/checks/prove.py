@@ -24,7 +24,8 @@ from seqcheck.engine.bounds import (
     greatest_separations,
     longest_least_chain,
 )
-from seqcheck.engine.explore import Settlement, replay
+from seqcheck.engine.explore import replay
+from seqcheck.engine.settlement import Settlement
 from seqcheck.engine.timeline import given
 from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.findings import Finding, Margin, Severity
@@ -85,11 +86,11 @@ class _Seen:
         return self.is_thin, self.margin_us is not None, self.margin_us or 0
 
 
-def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0) -> Proof:
+def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0, sewn: Sequence[Study] = ()) -> Proof:
     """Prove every play of a part, and put the results together. A margin that holds, but leaves less than
-    ``reserve_us``, is a finding too."""
+    ``reserve_us``, is a finding too. ``sewn``: plays of ways of which each run is in ``studies``."""
     together = [(check, check.together(studies)) for check in checks]
-    played = [*studies, *(more for _, one in together for more in one.plays)]
+    played = [*studies, *(more for _, one in together for more in one.plays), *sewn]
     ways = Ways([study.settlement for study in played])
     by_key: dict[_Key, list[_Seen]] = {}
     margins: dict[_Key, Margin] = {}
@@ -100,9 +101,7 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
         for seen in one.seen:
             by_key.setdefault(seen.key, []).append(seen)
         for margin in one.margins:
-            key = (margin.kind, margin.subject, margin.step, margin.place)
-            known = margins.get(key)
-            margins[key] = margin if known is None else min(known, margin, key=by_margin)
+            _keep_tightest(margins, margin)
     broken = [_one_of(found, ways) for found in by_key.values()]
     found = {_key(one.finding): number for number, one in enumerate(broken)}
     whole = [check.finding(sight) for check, one in together for sight in one.sights]
@@ -113,11 +112,20 @@ def prove(studies: Sequence[Study], checks: Sequence[Check], reserve_us: int = 0
             broken[number] = _at_least_as_bad(broken[number], finding)
         else:
             broken.append(Broken(finding, None))
+    for finding in (one.finding for one in broken):
+        if _key(finding) in margins:
+            # What only several plays show, or is broken for good, no obligation of one play tells.
+            _keep_tightest(margins, Margin(*_key(finding), finding.margin_us))
     return Proof(tuple(broken), tuple(margins.values()), strays)
 
 
-def _key(finding: Finding) -> _Key:
-    return finding.kind, finding.subject, finding.step, finding.place
+def _key(one: Finding | Margin) -> _Key:
+    return one.kind, one.subject, one.step, one.place
+
+
+def _keep_tightest(margins: dict[_Key, Margin], margin: Margin) -> None:
+    known = margins.setdefault(_key(margin), margin)
+    margins[_key(margin)] = min(known, margin, key=by_margin)
 
 
 def _at_least_as_bad(one: Broken, finding: Finding) -> Broken:

@@ -12,9 +12,9 @@ from functools import cached_property
 from itertools import pairwise
 
 from seqcheck.checks.chases import Chase, chases_of
-from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.graph import OPEN, Arc, DelayName, Event, after
 from seqcheck.engine.order import Order
+from seqcheck.engine.settlement import Settlement, StateGraph
 from seqcheck.engine.timeline import Draw, typical
 from seqcheck.engine.trace import Edge, Read, Shift, Spell, Stroke, Trace, Visit
 from seqcheck.machine.conditions import TermKind

@@ -17,18 +17,18 @@ from dataclasses import dataclass, field, replace
 from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.controller import Outcome
 from seqcheck.engine.cylinders import Regions
-from seqcheck.engine.graph import DelayName
-from seqcheck.engine.guide import Passage, Path, Prefer, Scout, Signature, Way, first_of
-from seqcheck.engine.order import Order, OrderKey
+from seqcheck.engine.guide import Passage, Path, Prefer, Scout, Signature, Way, first_of, outcomes_before
+from seqcheck.engine.order import Order
 from seqcheck.engine.orders import Orders
 from seqcheck.engine.player import Player
 from seqcheck.engine.program import Program, programs_of
 from seqcheck.engine.regions import regions_of
+from seqcheck.engine.seams import Seams
+from seqcheck.engine.settlement import Recipe, Settlement, StateGraph, Turn
 from seqcheck.engine.timeline import given
 from seqcheck.engine.trace import Choice, Read, Trace
 from seqcheck.engine.witness import Witness, witness
 from seqcheck.machine.model import Machine, items_of
-from seqcheck.machine.records import record
 from seqcheck.machine.steps import Choose, Step
 
 #: More ways than this in which orders may turn out between two states are not played; the report then says so.
@@ -37,73 +37,6 @@ MOST_ORDERS = 16
 _MOST_PLACINGS = 8
 #: What an event of a play costs besides the separations, in as many of them.
 _WORK_OF_AN_EVENT = 4
-
-
-@record
-class Turn:
-    """``order`` of the ``play``, by its number, of which another play is the other way round and else the same."""
-
-    play: int
-    order: Order
-
-
-@record
-class Recipe:
-    """How to play one way: the outcomes of its choices, delays that are not typical, and which orders between the
-    states at passage ``fresh`` and the next one they turn, the last of them by ``turn``."""
-
-    way: Way
-    delays: Mapping[DelayName, int]
-    turned: frozenset[OrderKey] = frozenset()
-    turn: Turn | None = None
-
-
-@record
-class Settlement:
-    """One play. ``first`` and ``last``: the settled cycles run from one to the other of ``trace.cycles`` (none for a
-    sequence that runs once or does not come round). ``settled``: a known state has come up, or nothing was due any
-    more. ``states``: the numbers of the states that it came through, by passage."""
-
-    trace: Trace
-    recipe: Recipe
-    regions: Regions
-    path: Path
-    settled: bool
-    first: int
-    last: int
-    states: tuple[int, ...] = ()
-
-    @property
-    def delays(self) -> Mapping[DelayName, int]:
-        return self.recipe.delays
-
-    @property
-    def fresh_since(self) -> int:
-        """The typical time from which on the play shows what no other play has shown before."""
-        fresh = self.recipe.way.fresh
-        return self.trace.times[self.path.passages[fresh].at] if fresh >= 0 else 0
-
-    def segments(self) -> Iterator[tuple[int, Passage, Passage]]:
-        """Each run from one state to the next, by the number of its first passage."""
-        for number, (begin, end) in enumerate(zip(self.path.passages, self.path.passages[1:], strict=False)):
-            yield number, begin, end
-
-
-@record
-class StateGraph:
-    """The first settlement is the typical one. ``complete``: whatever may come out otherwise was played."""
-
-    settlements: tuple[Settlement, ...]
-    complete: bool
-
-    def unturned(self, recipe: Recipe) -> int:
-        """The play from which another one has come, one order after the other turned behind the same state."""
-        turn = recipe.turn
-        assert turn is not None
-        for _ in range(len(recipe.turned) - 1):
-            turn = self.settlements[turn.play].recipe.turn
-            assert turn is not None
-        return turn.play
 
 
 @dataclass(slots=True)
@@ -117,16 +50,17 @@ class _Explorer:
     planned: set[tuple[object, ...]] = field(default_factory=set)
     turns: Counter[tuple[object, ...]] = field(default_factory=Counter)
     complete: bool = True
+    all_sewn: bool = True
     work_left: int = 0
 
-    def explore(self) -> StateGraph:
+    def explore(self, apart_us: int) -> StateGraph:
         self.waiting.append(Recipe(Way(), {}))
         self.work_left = most_work(self.machine)
         while self.waiting and self.work_left > 0:
             recipe = self.waiting.popleft()
             most = self.work_left if self.found else self.work_left + _more_for_the_first(self.machine)
             settlement = play(self.machine, recipe, self.orders, self.states, programs=self.programs, most=most)
-            self.work_left -= settlement.trace.graph.work + _WORK_OF_AN_EVENT * len(settlement.trace.times)
+            self.work_left -= _work_of(settlement)
             if settlement.path.astray:
                 self.complete = False
                 continue
@@ -140,7 +74,23 @@ class _Explorer:
                 break
             if not ended:
                 self._plan(self.found[-1])
-        return StateGraph(tuple(self.found), self.complete and not self.waiting)
+        self.complete = self.complete and not self.waiting
+        whole = self.complete and all(one.settled for one in self.found)
+        sewn = tuple(self._sewn(apart_us)) if whole else ()
+        return StateGraph(tuple(self.found), self.complete, sewn, self.all_sewn)
+
+    def _sewn(self, apart_us: int) -> Iterator[Settlement]:
+        self.work_left = most_work(self.machine)
+        for way, delays in Seams(self.found, apart_us).ways():
+            recipe = Recipe(way, delays)
+            settlement = play(
+                self.machine, recipe, self.orders, self.states, programs=self.programs, most=self.work_left
+            )
+            self.work_left -= _work_of(settlement)
+            if self.work_left <= 0 or settlement.path.astray or settlement.trace.too_long:
+                self.all_sewn = False
+                return
+            yield replace(settlement, recipe=replace(recipe, way=Way(way.outcomes)))
 
     def _numbered(self, settlement: Settlement) -> tuple[int, ...]:
         """The states that it came through; up to where it turns an order they are those of the play that it turns, even
@@ -204,9 +154,8 @@ def _turned_run(trace: Trace, order: Order) -> Witness | None:
         return witness(trace, order.first, order.second) if turns else None
 
 
-def outcomes_before(path: Path, number: int) -> tuple[Outcome, ...]:
-    """How the choices at the first so many passages came out."""
-    return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
+def _work_of(settlement: Settlement) -> int:
+    return settlement.trace.graph.work + _WORK_OF_AN_EVENT * len(settlement.trace.times)
 
 
 def most_work(machine: Machine) -> int:
@@ -221,8 +170,9 @@ def _more_for_the_first(machine: Machine) -> int:
     return 2_000 * sum(isinstance(item, Step) for sequence in machine.sequences for item in items_of(sequence.items))
 
 
-def explore(machine: Machine) -> StateGraph:
-    return _Explorer(machine, Orders(machine), programs_of(machine)).explore()
+def explore(machine: Machine, apart_us: int = 0) -> StateGraph:
+    """``apart_us``: how far apart events on two sides of a state may lie for their distance to matter."""
+    return _Explorer(machine, Orders(machine), programs_of(machine)).explore(apart_us)
 
 
 def play(

@@ -151,6 +151,11 @@ class Path:
         return self.first, self.last
 
 
+def outcomes_before(path: Path, number: int) -> tuple[Outcome, ...]:
+    """How the choices at the first so many passages came out."""
+    return tuple(passage.outcome for passage in path.passages[:number] if passage.outcome is not None)
+
+
 class Scout:
     """``known``: signatures that other plays have come through. ``most``: the play stops at a state once it has cost
     so much work."""

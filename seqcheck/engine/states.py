@@ -12,8 +12,8 @@ from dataclasses import replace
 
 from seqcheck.engine.bounds import both_ways, closed, greatest_separations
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.explore import Settlement, StateGraph
 from seqcheck.engine.guide import Passage
+from seqcheck.engine.settlement import Settlement, StateGraph
 from seqcheck.machine.conditions import TermKind, terms_of
 from seqcheck.machine.devices import OutsideSignal
 from seqcheck.machine.findings import Duration

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import pytest
 
-from seqcheck.engine.explore import StateGraph, explore, most_work
+from seqcheck.engine.explore import explore, most_work
+from seqcheck.engine.settlement import StateGraph
 from seqcheck.engine.states import timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source

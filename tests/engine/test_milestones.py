@@ -8,7 +8,8 @@ from typing import Any
 import pytest
 
 from seqcheck.engine import program
-from seqcheck.engine.explore import Settlement, explore
+from seqcheck.engine.explore import explore
+from seqcheck.engine.settlement import Settlement
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
