@@ -6,7 +6,6 @@ Takes a window with its report; gives events of the window's graph. May add even
 from __future__ import annotations
 
 from collections.abc import Sequence
-from functools import partial
 
 from seqcheck.chart.window import Window
 from seqcheck.checks.catalogue import CHECKS
@@ -41,8 +40,21 @@ def spots(window: Window, findings: Sequence[Finding]) -> tuple[Spot | None, ...
 def _spot(window: Window, finding: Finding, stated: Sequence[Obligation]) -> Spot | None:
     if finding.margin_us is None:
         return _at_step(window, finding)
-    tightest = min(stated, key=partial(_margin, window), default=None)
-    return None if tightest is None else _at(window, finding, tightest)
+    return _at(window, finding, stated[_tightest(window, stated)]) if stated else None
+
+
+def _tightest(window: Window, stated: Sequence[Obligation]) -> int:
+    """By number, the first of the tightest. Plain intervals mostly show it, and that the others need no look."""
+    graph = window.study.trace.graph
+    leads = [max(graph.least_lead(*pair) for pair in one.pairs) - one.least for one in stated]
+    tightest: tuple[int, int] | None = None
+    for lead, number in sorted(zip(leads, range(len(stated)), strict=True)):
+        if tightest is not None and tightest < (lead, number):
+            break
+        here = _margin(window, stated[number]), number
+        tightest = here if tightest is None else min(tightest, here)
+    assert tightest is not None
+    return tightest[1]
 
 
 def _margin(window: Window, one: Obligation) -> int:

@@ -54,6 +54,9 @@ class Proof:
     strays: bool
 
 
+#: Of what several plays show no more than so many are played again in search of one whose run comes about.
+_MOST_REPLAYED = 10
+
 _Key = tuple[str, str, str | None, Place]
 
 
@@ -143,7 +146,7 @@ def _one_of(found: Sequence[_Seen], ways: Ways) -> Broken:
     thin in one way may be broken in another."""
     ranked = sorted(found, key=lambda seen: seen.rank)
     best = ranked[0].make()
-    for seen in ranked[1:]:
+    for seen in ranked[1:_MOST_REPLAYED]:
         if best.finding.replayed is True or seen.is_thin:
             break
         other = seen.make()

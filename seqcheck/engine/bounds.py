@@ -214,13 +214,11 @@ def _above(graph: EventGraph, common: int, events: Collection[int]) -> set[int]:
 def _causes(graph: EventGraph, common: int, events: Iterable[int]) -> set[int]:
     found = {common}
     waiting = list(events)
-    all_arcs = graph.arcs
+    all_causes = graph.causes
     while waiting:
         number = waiting.pop()
         if number not in found:
             found.add(number)
-            for arc in all_arcs[number]:
-                if arc.cause not in found:
-                    waiting.append(arc.cause)
+            waiting += all_causes[number]
     graph.work += len(found) // _FOUND_AT_ONCE
     return found

@@ -12,7 +12,7 @@ with max-causality and bounded delays, as in McMillan & Dill, *Algorithms for in
 from __future__ import annotations
 
 from bisect import bisect_right
-from collections.abc import Collection, Container, Iterable, Iterator
+from collections.abc import Collection, Container, Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
@@ -58,6 +58,8 @@ class EventGraph:
     def __init__(self) -> None:
         self.events: list[Event] = [Event("start", "")]
         self.arcs: list[tuple[Arc, ...]] = [()]
+        #: The same without their delays.
+        self.causes: list[Sequence[int]] = [()]
         self._assumed: tuple[tuple[int, int], ...] = ()
         #: The same by the one of the two that comes first in the graph, and these by themselves.
         self._in_order: list[tuple[int, int]] = []
@@ -76,6 +78,7 @@ class EventGraph:
         number = len(self.events)
         self.events.append(event)
         self.arcs.append(arcs)
+        self.causes.append([arc.cause for arc in arcs])
         all_earliest, all_latest = self.earliest, self.latest
         first = arcs[0]
         dominator, span = first.cause, first.span
@@ -175,7 +178,7 @@ class EventGraph:
                 return True
             if number > one and number not in seen:  # Causes come before what they cause.
                 seen.add(number)
-                waiting += [arc.cause for arc in self.arcs[number]]
+                waiting += self.causes[number]
         return False
 
     def without_idle(self, causes: Iterable[int]) -> tuple[int, ...]:

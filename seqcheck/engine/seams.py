@@ -140,11 +140,12 @@ class Seams:
         return self._reach[past[-1]].state, outcome, frozenset()
 
     def _behind(self, past: _Past, edge: _Edge) -> _Past:
-        """The edge and those before it, as far back as what lies between is brief."""
+        """The edge and those before it, as far back as what lies between is brief; one with an order turned, to which
+        every play would have to go anew, by itself only."""
         kept: _Past = (edge,)
         between = self._reach[edge].least_us
         for before in reversed(past):
-            if between > self._brief_us or len(kept) == _MOST_EDGES:
+            if between > self._brief_us or len(kept) == _MOST_EDGES or before[2]:
                 break
             kept = (before, *kept)
             between += self._reach[before].least_us
