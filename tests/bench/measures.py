@@ -34,12 +34,18 @@ class Cost:
 
 def least_cpu(work: Callable[[], object], tries: int = 5) -> float:
     """Seconds of processor time in this process."""
-    best = float("inf")
-    for _ in range(tries):
-        start = time.process_time()
-        work()
-        best = min(best, time.process_time() - start)
-    return best
+    return least_cpus(work, tries=tries)[0]
+
+
+def least_cpus(*works: Callable[[], object], tries: int) -> list[float]:
+    """Of each piece of work, done in turns: a machine that is slower for a while is so for all of them."""
+    return [min(costs) for costs in zip(*([_cpu(work) for work in works] for _ in range(tries)), strict=True)]
+
+
+def _cpu(work: Callable[[], object]) -> float:
+    start = time.process_time()
+    work()
+    return time.process_time() - start
 
 
 def process_cost(*arguments: str, tries: int = 3, statuses: tuple[int, ...] = (0,)) -> Cost:
@@ -48,7 +54,7 @@ def process_cost(*arguments: str, tries: int = 3, statuses: tuple[int, ...] = (0
 
 
 def process_costs(*programs: Sequence[str], tries: int) -> list[Cost]:
-    """Of each of the programs, run in turns: a machine that is slower for a while is so for all of them."""
+    """Of each of the programs, run in turns likewise."""
     rounds = [[_once(arguments, (0,)) for arguments in programs] for _ in range(tries)]
     return [_least(costs) for costs in zip(*rounds, strict=True)]
 

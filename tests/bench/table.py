@@ -18,7 +18,7 @@ from seqcheck.engine.graph import EventGraph
 from seqcheck.language.source import Source, read_source
 from seqcheck.machine.findings import Report
 from seqcheck.pipeline import examine_source
-from tests.bench.measures import CHECKOUT, Cost, least_cpu, process_cost, process_costs
+from tests.bench.measures import CHECKOUT, Cost, least_cpus, process_cost, process_costs
 from tests.bench.rivals import Part, by_milp, by_z3, part_of, random_cycles, whole_of
 from tests.bench.stations import in_a_row
 from tests.bench.texts import choices, one_after_the_other, repeated, side_by_side
@@ -73,8 +73,7 @@ def rivals() -> Iterator[Row]:
     source = read_source(STAPLER)
     assert isinstance(source, Source)
     report, questions = asked_about(source)
-    check = least_cpu(lambda: examine_source(source), 9)
-    runs = least_cpu(lambda: random_cycles(CrateStapler, 100), 3)
+    check, runs = least_cpus(lambda: examine_source(source), lambda: random_cycles(CrateStapler, 100), tries=7)
     yield Row("check of the crate stapler : 100 random runs in simpy", check / runs, 1.0)
     found = random_cycles(CrateStapler, 1000)
     cycle = dict(report.cycles)["main"]
@@ -155,7 +154,8 @@ def repeats() -> Iterator[Row]:
 def _ratio(text: str, other: str) -> float | None:
     if not (_is_analysed(text) and _is_analysed(other)):
         return None
-    return least_cpu(lambda: _examined(text), 3) / least_cpu(lambda: _examined(other), 3)
+    cost, of_other = least_cpus(lambda: _examined(text), lambda: _examined(other), tries=5)
+    return cost / of_other
 
 
 # Start-up
