@@ -46,11 +46,11 @@ def _spot(window: Window, finding: Finding, stated: Sequence[Obligation]) -> Spo
 def _tightest(window: Window, stated: Sequence[Obligation]) -> int:
     """By number, the first of the tightest. Plain intervals mostly show it, and that the others need no look."""
     graph = window.study.trace.graph
-    leads = [max(graph.least_lead(*pair) for pair in one.pairs) - one.least for one in stated]
     tightest: tuple[int, int] | None = None
-    for lead, number in sorted(zip(leads, range(len(stated)), strict=True)):
-        if tightest is not None and tightest < (lead, number):
+    for least in sorted((one.least_margin(graph), number) for number, one in enumerate(stated)):
+        if tightest is not None and tightest < least:
             break
+        number = least[1]
         here = _margin(window, stated[number]), number
         tightest = here if tightest is None else min(tightest, here)
     assert tightest is not None
@@ -58,11 +58,11 @@ def _tightest(window: Window, stated: Sequence[Obligation]) -> int:
 
 
 def _margin(window: Window, one: Obligation) -> int:
-    """By the pair that keeps it best, whatever the order of events that is in question."""
+    """Whatever the order of events that is in question."""
     graph = window.study.trace.graph
     with graph.not_assuming(one.assumed):
         rows = greatest_separations(graph, [(second, first) for first, second in one.pairs])
-    return max(-rows[second, first] for first, second in one.pairs) - one.least
+    return one.margin(rows)
 
 
 def _key(finding: Finding) -> _Key:

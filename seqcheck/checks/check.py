@@ -10,6 +10,8 @@ from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 
 from seqcheck.checks.study import Study
+from seqcheck.engine.bounds import Rows
+from seqcheck.engine.graph import EventGraph
 from seqcheck.machine.findings import Finding, Moment, Severity
 from seqcheck.machine.model import Machine
 from seqcheck.machine.places import Place
@@ -77,6 +79,14 @@ class Obligation:
     @property
     def pairs(self) -> tuple[tuple[int, int], ...]:
         return ((self.first, self.second), *self.others)
+
+    def margin(self, rows: Rows) -> int:
+        """By the pair that keeps it best; ``rows``: how much later than its second event the first of each can be."""
+        return max([-rows[second, first] for first, second in self.pairs]) - self.least
+
+    def least_margin(self, graph: EventGraph) -> int:
+        """What plain intervals leave: the margin is no less."""
+        return max([graph.least_lead(first, second) for first, second in self.pairs]) - self.least
 
 
 @record

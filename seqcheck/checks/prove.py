@@ -237,21 +237,16 @@ def _those_that_count(
     def margins_of(numbers: Sequence[int]) -> Iterator[int]:
         some = [asked[number].obligation for number in numbers]
         rows.update(_rows(study, some))
-        return (max([-rows[second, first] for first, second in one.pairs]) - one.least for one in some)
+        return (one.margin(rows) for one in some)
 
     asked, leads = [], []
     for one in stated:
-        least = _least_margin(study, one.obligation)
+        least = one.obligation.least_margin(study.trace.graph)
         tightest = known.get(one.key)
         if least < 0 or tightest is None or (tightest.margin_us is not None and least < tightest.margin_us):
             asked.append(one)
             leads.append((one.key, least))
     return [asked[number] for number in those_that_count(leads, margins_of)], rows
-
-
-def _least_margin(study: Study, one: Obligation) -> int:
-    """What plain intervals leave."""
-    return max([study.trace.graph.least_lead(first, second) for first, second in one.pairs]) - one.least
 
 
 def _rows(study: Study, stated: Sequence[Obligation]) -> Rows:

@@ -71,7 +71,7 @@ def bound_everything(monkeypatch: pytest.MonkeyPatch) -> None:
         margins_of(numbers)
         return numbers
 
-    monkeypatch.setattr(prove, "_least_margin", lambda study, one: -1)
+    monkeypatch.setattr(Obligation, "least_margin", lambda one, graph: -1)
     monkeypatch.setattr(prove, "those_that_count", all_of_them)
     monkeypatch.setattr(opposed_coils, "those_that_count", all_of_them)
 
