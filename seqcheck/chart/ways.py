@@ -14,6 +14,7 @@ from dataclasses import replace
 from seqcheck.chart.asked import Unplaceable, Wish
 from seqcheck.checks.study import Study
 from seqcheck.engine.controller import Outcome
+from seqcheck.engine.cylinders import Placed
 from seqcheck.engine.explore import play
 from seqcheck.engine.guide import Way, outcomes_before
 from seqcheck.engine.orders import Orders
@@ -252,7 +253,7 @@ def long_enough(machine: Machine, shown: Shown, cycles: int) -> Shown:
     regions = {**dict(_further_regions(settlement, cycles)), **settlement.regions}
     states = len(settlement.path.passages)
     guide = _Onward(outcomes_before(settlement.path, states), shown.prefer, needed, (needed + 1) * states)
-    player = guide.player = Player(machine, guide, given(settlement.delays), regions)
+    player = guide.player = Player(machine, guide, given(settlement.delays), Placed(regions))
     played = player.play()
     if len(played.cycles) <= needed and not played.finished:
         return shown

@@ -2,7 +2,7 @@
 
 Takes positions that valves reach; gives strokes and stops to the trace and sensor changes to the inputs. Where a
 piston that was stopped between its ends may stand at one of several places, depending on times, and nobody looks,
-``regions`` says so (by cylinder and number of the stroke that was stopped); the next stroke then takes any of them
+its region says so (by cylinder and number of the stroke that was stopped); the next stroke then takes any of them
 as its start. Where nobody knows them yet, they are found as each piston stops.
 """
 
@@ -22,12 +22,28 @@ from seqcheck.engine.travel import LEAVING, START, Reach, Travel
 from seqcheck.machine.conditions import Term, TermKind
 from seqcheck.machine.devices import Cylinder, OnValve, Position, Valve
 from seqcheck.machine.model import Machine
+from seqcheck.machine.records import record
 from seqcheck.machine.time import NO_TIME, Span
 
 #: Told of a sensor's own change: the sensor, on or off, at which event.
 Sense = Callable[[str, bool, int], None]
 
 Regions = Mapping[tuple[str, int], Region]
+
+
+@record
+class Placed:
+    """Where pistons stand once they have been stopped: ``regions`` says it of the first so many ``stops`` (None: of
+    all), and a piston of which it says nothing stands where it was played to; of later ones nobody knows it yet."""
+
+    regions: Regions
+    stops: int | None = None
+
+    def knows(self, stop: int) -> bool:
+        return self.stops is None or stop < self.stops
+
+
+NOT_PLACED = Placed({}, 0)
 
 #: Told what aspects of a cylinder have become by an event.
 Notice = Callable[[int, Mapping[Aspect, bool]], None]
@@ -81,7 +97,7 @@ class Cylinders:
         machine: Machine,
         timeline: Timeline,
         trace: Trace,
-        regions: Regions | None,
+        placed: Placed,
         sense: Sense,
         notice: Notice,
         looked_at: Container[str],
@@ -89,9 +105,11 @@ class Cylinders:
         self._machine = machine
         self._timeline = timeline
         self._trace = trace
-        self._given = regions
+        self._placed = placed
         #: Those that strokes were started from, or would be.
         self.regions: dict[tuple[str, int], Region] = {}
+        #: The strokes that have been stopped, one after the other.
+        self.stops: list[tuple[str, int]] = []
         #: As they were found on the way.
         self.placings: dict[Stroke, Placing] = {}
         self._sense = sense
@@ -238,7 +256,9 @@ class Cylinders:
             piston.moving = False
         piston.stood = stroke.stood = piston.region
         key = stroke.cylinder, stroke.number
-        region = self._found(stroke) if self._given is None else self._given.get(key)
+        known = self._placed.knows(len(self.stops))
+        region = self._placed.regions.get(key) if known else self._found(stroke)
+        self.stops.append(key)
         if region is not None:
             piston.region = self.regions[key] = region
 

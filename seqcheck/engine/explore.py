@@ -16,7 +16,7 @@ from dataclasses import dataclass, field, replace
 
 from seqcheck.engine.bounds import greatest_separation
 from seqcheck.engine.controller import Outcome
-from seqcheck.engine.cylinders import Regions
+from seqcheck.engine.cylinders import Placed, Regions
 from seqcheck.engine.guide import Passage, Path, Prefer, Scout, Signature, Way, first_of, outcomes_before
 from seqcheck.engine.order import Order
 from seqcheck.engine.orders import Orders
@@ -87,7 +87,7 @@ class _Explorer:
                 self.machine, recipe, self.orders, self.states, programs=self.programs, most=self.work_left
             )
             self.work_left -= _work_of(settlement)
-            if self.work_left <= 0 or settlement.path.astray or settlement.trace.too_long:
+            if self.work_left <= 0 or settlement.path.astray or not settlement.settled:
                 self.all_sewn = False
                 return
             yield replace(settlement, recipe=replace(recipe, way=Way(way.outcomes)))
@@ -110,7 +110,8 @@ class _Explorer:
             passage = path.passages[number]
             for outcome in passage.outcomes:
                 if outcome is not passage.outcome:
-                    self.waiting.append(Recipe(Way((*outcomes_before(path, number), outcome), number), recipe.delays))
+                    way = Way((*outcomes_before(path, number), outcome), number)
+                    self.waiting.append(Recipe(way, recipe.delays, placed=settlement.placed_at(number)))
         times = settlement.trace.times
         at = [(times[passage.at], passage.at) for passage in path.passages]
         for number, order in path.orders:
@@ -144,7 +145,7 @@ class _Explorer:
         self.planned.add((where, both))
         way = Way(outcomes_before(path, number + 1), number)
         turn = Turn(len(self.found) - 1, order)
-        self.waiting.append(Recipe(way, {**recipe.delays, **run.delays}, both, turn))
+        self.waiting.append(Recipe(way, {**recipe.delays, **run.delays}, both, turn, settlement.placed_at(number)))
 
 
 def _turned_run(trace: Trace, order: Order) -> Witness | None:
@@ -184,29 +185,34 @@ def play(
     programs: Mapping[str, Program] | None = None,
     most: int | None = None,
 ) -> Settlement:
-    """One way, pistons anywhere that its own bounds leave them. What is known as a piston stops mostly says it all.
-    ``most``: it goes no further than so much work takes it."""
-    regions: Regions | None = None
+    """One way, pistons anywhere that its own bounds leave them. What is known as a piston stops mostly says it all; if
+    not, it is played again, as far as that is known to be the same. ``most``: it goes no further than so much work
+    takes it."""
+    placed = recipe.placed
     for _ in range(_MOST_PLACINGS + 1):
         scout = Scout(machine, recipe.way, known, orders, prefer, most)
-        player = scout.player = Player(machine, scout, given(recipe.delays), regions, programs=programs)
+        player = scout.player = Player(machine, scout, given(recipe.delays), placed, programs=programs)
         trace = player.play()
         scout.finish()
         found = dict(regions_of(trace, player.cylinders.placings))
-        if trace.too_long or found == player.cylinders.regions:
+        used, stops = player.cylinders.regions, player.cylinders.stops
+        stand = all(found.get(stroke) == used.get(stroke) for stroke in stops)
+        if stand or trace.too_long:
             break
-        regions = {} if regions is None else found
-    return _settlement(machine, recipe, trace, player.cylinders.regions, scout.path)
+        placed = Placed(found, len(stops))
+    return _settlement(recipe, trace, used, scout.path, stand)
 
 
-def _settlement(machine: Machine, recipe: Recipe, trace: Trace, regions: Regions, path: Path) -> Settlement:
-    done = len(trace.cycles) - 1
-    if path.round is None:
-        settled = path.joined is not None or trace.finished or trace.stepless is not None
-        return Settlement(trace, recipe, regions, path, settled, max(0, done - 1), done)
-    begin, end = (trace.times[path.passages[number].at] for number in path.round)
-    within = [number for number, read in enumerate(trace.cycles) if begin <= trace.times[read.event] <= end]
-    return Settlement(trace, recipe, regions, path, True, min(within, default=done), max(within, default=done))
+def _settlement(recipe: Recipe, trace: Trace, regions: Regions, path: Path, stand: bool) -> Settlement:
+    """``stand``: pistons stand in the ``regions`` that the bounds of the trace leave them."""
+    last = len(trace.cycles) - 1
+    first = max(0, last - 1)
+    if path.round is not None:
+        begin, end = (trace.times[path.passages[number].at] for number in path.round)
+        within = [number for number, read in enumerate(trace.cycles) if begin <= trace.times[read.event] <= end]
+        first, last = min(within, default=last), max(within, default=last)
+    settled = stand and (path.joined is not None or trace.finished or trace.stepless is not None)
+    return Settlement(trace, recipe, regions, path, settled, first, last)
 
 
 def replay(machine: Machine, settlement: Settlement, run: Witness) -> Settlement:
@@ -216,7 +222,7 @@ def replay(machine: Machine, settlement: Settlement, run: Witness) -> Settlement
     last = max(run.times.values())
     limit = last + last // 10 + 1_000_000
     follower = _Follower(outcomes, len(settlement.path.passages) + 1)
-    player = follower.player = Player(machine, follower, given(delays), {}, until_us=limit)
+    player = follower.player = Player(machine, follower, given(delays), Placed({}), until_us=limit)
     trace = player.play()
     recipe = Recipe(Way(outcomes), delays)
     return Settlement(trace, recipe, {}, Path(), False, 0, len(trace.cycles) - 1)

@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from seqcheck.engine.controller import Controller, Guide
-from seqcheck.engine.cylinders import Cylinders, Regions
+from seqcheck.engine.cylinders import NOT_PLACED, Cylinders, Placed
 from seqcheck.engine.inputs import Inputs
 from seqcheck.engine.knowledge import Knowledge
 from seqcheck.engine.plant import Plant
@@ -26,8 +26,8 @@ MOST_EVENTS = 1_000_000
 
 
 class Player:
-    """``guide`` decides what is free, and may ``stop`` the play at any read. ``regions`` where stopped pistons may
-    stand; None to find that on the way, by what has come so far. ``programs`` of the sequences, where they are
+    """``guide`` decides what is free, and may ``stop`` the play at any read. ``placed``: where stopped pistons stand;
+    what it does not know is found on the way, by what has come so far. ``programs`` of the sequences, where they are
     compiled already."""
 
     def __init__(
@@ -35,7 +35,7 @@ class Player:
         machine: Machine,
         guide: Guide,
         draw: Draw = typical,
-        regions: Regions | None = None,
+        placed: Placed = NOT_PLACED,
         until_us: int | None = None,
         programs: Mapping[str, Program] | None = None,
     ) -> None:
@@ -53,7 +53,7 @@ class Player:
         self.inputs = Inputs(machine, self.timeline, self.trace, self._knowledge, self.controller.see)
         looked_at = self._plant.looked_at
         self.cylinders = Cylinders(
-            machine, self.timeline, self.trace, regions, self.inputs.change, self._plant.notice, looked_at
+            machine, self.timeline, self.trace, placed, self.inputs.change, self._plant.notice, looked_at
         )
         self.valves = Valves(machine, self.timeline, self.trace, self.cylinders.follow, self._plant.notice, looked_at)
         for sensor, value in self.cylinders.sensors_on.items():

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 
-from seqcheck.engine.cylinders import Regions
+from seqcheck.engine.cylinders import NOT_PLACED, Placed, Regions
 from seqcheck.engine.graph import DelayName
 from seqcheck.engine.guide import Passage, Path, Way
 from seqcheck.engine.order import Order, OrderKey
@@ -29,13 +29,15 @@ class Recipe:
     delays: Mapping[DelayName, int]
     turned: frozenset[OrderKey] = frozenset()
     turn: Turn | None = None
+    placed: Placed = NOT_PLACED
 
 
 @record
 class Settlement:
     """One play. ``first`` and ``last``: the settled cycles run from one to the other of ``trace.cycles`` (none for a
     sequence that runs once or does not come round). ``settled``: a known state has come up, or nothing was due any
-    more. ``states``: the numbers of the states that it came through, by passage."""
+    more; and pistons stand wherever its bounds leave them. ``states``: the numbers of the states that it came through,
+    by passage."""
 
     trace: Trace
     recipe: Recipe
@@ -55,6 +57,12 @@ class Settlement:
         """The typical time from which on the play shows what no other play has shown before."""
         fresh = self.recipe.way.fresh
         return self.trace.times[self.path.passages[fresh].at] if fresh >= 0 else 0
+
+    def placed_at(self, number: int) -> Placed:
+        """Where pistons stand that have been stopped up to a passage."""
+        at = self.trace.times[self.path.passages[number].at]
+        stands = (stroke.stands for stroke in self.trace.strokes if stroke.stands is not None)
+        return Placed(self.regions, sum(self.trace.times[event] <= at for event in stands))
 
     def segments(self) -> Iterator[tuple[int, Passage, Passage]]:
         """Each run from one state to the next, by the number of its first passage."""

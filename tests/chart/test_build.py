@@ -19,6 +19,7 @@ from seqcheck.chart.window import anchor_of, window_of
 from seqcheck.checks.study import Study
 from seqcheck.engine.bounds import both_ways, greatest_separations
 from seqcheck.engine.controller import Outcome
+from seqcheck.engine.cylinders import Placed
 from seqcheck.engine.player import Player
 from seqcheck.engine.trace import Choice, Read
 from seqcheck.machine.time import Span
@@ -122,7 +123,7 @@ def test_random_runs_keep_to_the_bounds(tmp_path: Path, name: str) -> None:
 
         # The water is clear, and the piece is good.
         guide = Rounds(settlement.last + 1, -1 if name == "rinse_skid" else 0)
-        player = guide.player = Player(machine, guide, draw, settlement.regions)
+        player = guide.player = Player(machine, guide, draw, Placed(settlement.regions))
         study = Study(machine, settlement)
         study.trace = player.play()
         anchor, _ = anchor_of(study, study.trace.cycles[settlement.first])

@@ -2,14 +2,19 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import pytest
 
 from seqcheck.engine.explore import explore, most_work
-from seqcheck.engine.settlement import StateGraph
+from seqcheck.engine.player import Player
+from seqcheck.engine.regions import regions_of
+from seqcheck.engine.settlement import Settlement, StateGraph
 from seqcheck.engine.states import timed_states
 from seqcheck.language.read import read_machine
 from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
+from seqcheck.pipeline import examine_source
 from tests.bench.texts import side_by_side
 from tests.oracle.whole import whole_text
 
@@ -129,6 +134,49 @@ def test_no_play_goes_on_far_beyond_the_work_that_is_left() -> None:
     graph = explore(machine)
     assert not all(one.settled for one in graph.settlements)
     assert sum(one.trace.graph.work for one in graph.settlements) < 2 * most_work(machine)
+
+
+#: The second cylinder may come off its end, turn or stop wherever the first one has the valve turned.
+TWO_ON_ONE_VALVE = """valve V1 5/2 spring { coil Y1  on 18..118 ms  off 18..118 ms }
+cylinder A on V1 { extend 100..200 ms  retract 100..200 ms  sensor B1 at retracted  sensor B2 at extended }
+cylinder B on V1 { extend 600..700 ms  retract 600..700 ms  lag 200..300 ms  sensor B3 at retracted }
+sequence main { step out { set Y1  until B2 }  step back { reset Y1  until B1 and B3 } }
+never A.moving and B.moving
+"""
+
+
+def _stand_where_their_bounds_leave_them(one: Settlement) -> bool:
+    known = {(stroke.cylinder, stroke.number) for stroke in one.trace.strokes if stroke.cut}
+    found = dict(regions_of(one.trace, {}))
+    return all(one.regions.get(stroke) == found.get(stroke) for stroke in known)
+
+
+def test_every_play_has_stopped_pistons_where_its_own_bounds_leave_them(monkeypatch: pytest.MonkeyPatch) -> None:
+    """27 ways, in most of which it hangs on where a piston stops where it stops next."""
+    played: list[Player] = []
+
+    class Counted(Player):
+        def __init__(self, *given: Any, **named: Any) -> None:
+            super().__init__(*given, **named)
+            played.append(self)
+
+    monkeypatch.setattr("seqcheck.engine.explore.Player", Counted)
+    graph = explored(TWO_ON_ONE_VALVE)
+    complete, ways = graph.complete, graph.settlements
+    assert complete
+    assert sum(bool(one.regions) for one in ways) > 20
+    assert sum(one.settled and _stand_where_their_bounds_leave_them(one) for one in ways) == len(ways)
+    plays = len(played)
+    assert plays < 4 * len(ways)
+
+
+def test_where_it_stays_open_where_a_piston_stops_not_all_is_proved(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("seqcheck.engine.explore._MOST_PLACINGS", 0)
+    graph = explored(TWO_ON_ONE_VALVE)
+    unsure = [one.settled for one in graph.settlements if not _stand_where_their_bounds_leave_them(one)]
+    assert unsure and not any(unsure)
+    report = examine_source(Source("a.steps", CONTROLLER + TWO_ON_ONE_VALVE))
+    assert "not-settled" in {one.kind for one in report.findings}
 
 
 @pytest.mark.parametrize("branches", [2, 32])
