@@ -92,11 +92,11 @@ def _obligation(study: Study, choice: Choice, other: int, order: Order, how: str
 def _instead(study: Study, choice: Choice, other: int) -> Instead:
     read = choice.entered if choice.left is None else choice.left
     way = branch_name(choice.choose, other)
-    made = [one for one in study.trace.choices if one.choose is choice.choose]
-    taken = [one.taken for one in made[: made.index(choice) + 1]]
 
     def shown(played: Study) -> bool:
         """At this choice or, which parts the run before, at an earlier one in the same place."""
+        made = [one for one in study.trace.choices if one.choose is choice.choose]
+        taken = [one.taken for one in made[: made.index(choice) + 1]]
         there = [one.taken for one in played.trace.choices if one.choose is choice.choose]
         return any(one is not None and one != usual for one, usual in zip(there, taken, strict=False))
 

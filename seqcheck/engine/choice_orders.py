@@ -17,7 +17,7 @@ from seqcheck.engine.trace import Choice, Edge, Known, Trace
 from seqcheck.engine.wait_orders import passing
 from seqcheck.machine.records import record
 
-#: What looking at a choice costs, in as many separations.
+#: What looking at a choice costs, in as many separations, on average: mostly it is as it was last time.
 _WORK_OF_A_LOOK = 12
 
 
@@ -34,16 +34,30 @@ class ChoiceOrder:
     outside: bool = False
 
 
-def choice_orders(trace: Trace, choice: Choice, begin: int) -> Iterator[Order]:
-    """Those that may be the other way round as far as plain intervals tell, and come about at or after ``begin``."""
-    times, graph = trace.times, trace.graph
-    graph.work += _WORK_OF_A_LOOK
+class ChoiceOrders:
+    """A choice, looked at again and again while a play goes on: anew where more is known of what it asks."""
 
-    def may_turn(first: int, second: int) -> bool:
-        return times[second] >= begin and not graph.always_earlier(first, second)
+    def __init__(self, choice: Choice) -> None:
+        self.choice = choice
+        self._known: tuple[object, ...] | None = None
+        self._orders: list[Order] = []
 
-    for one in asked_in_time(trace, choice, may_turn):
-        yield one.order
+    def open(self, trace: Trace, begin: int) -> Iterator[Order]:
+        """Those that may be the other way round as far as plain intervals tell, and come about at or after ``begin``,
+        which never goes back."""
+        times, graph, choice = trace.times, trace.graph, self.choice
+
+        def may_turn(first: int, second: int) -> bool:
+            return times[second] >= begin and not graph.always_earlier(first, second)
+
+        known = _known_of(trace, choice)
+        graph.work += _WORK_OF_A_LOOK
+        if known != self._known:
+            self._known = known
+            self._orders = [one.order for one in _Look(trace, choice).orders(may_turn)]
+        yield from (order for order in self._orders if times[order.second] >= begin)
+        if _has_waited(choice):
+            yield from (order for order, _ in _passing(trace, choice))
 
 
 def asked_in_time(
@@ -52,8 +66,36 @@ def asked_in_time(
     """Every order by which a choice is taken as it is, of two changes only if it ``counts`` for their events."""
     look = _Look(trace, choice)
     yield from look.orders(counts)
-    if choice.left is not None and choice.left is not choice.entered and choice.taken is not None:
+    if _has_waited(choice):
         yield from look.orders_in_passing()
+
+
+def _has_waited(choice: Choice) -> bool:
+    return choice.left is not None and choice.left is not choice.entered and choice.taken is not None
+
+
+def _passing(trace: Trace, choice: Choice) -> Iterator[tuple[Order, tuple[Aspect, Edge]]]:
+    for aspect in choice.told:
+        for order, edge in passing(trace, choice, aspect[1]):
+            yield order, (aspect, edge)
+
+
+def _known_of(trace: Trace, choice: Choice) -> tuple[object, ...]:
+    """Where this is the same, a choice is looked at with the same eyes."""
+    counted = [_counted(trace, choice, trace.known[aspect], at) for aspect, at in choice.told.items()]
+    expired = choice.alarm is not None and choice.alarm.expired
+    return choice.left is None, choice.taken, expired, *counted, *choice.signals.items()
+
+
+def _counted(trace: Trace, choice: Choice, log: Sequence[Known], at: int) -> int:
+    """How much of what is known of a term counts: of what is known later than at the end of the choice, two changes,
+    none where its watchdog ended it. ``at``: so much was known at its begin."""
+    left, times = choice.left, trace.times
+    if left is None:
+        return len(log)
+    end = max(at, bisect_right(log, times[left.event], key=lambda known: times[known.seen]))
+    expired = choice.alarm is not None and choice.alarm.expired
+    return end if expired else min(end + 2, len(log))
 
 
 #: What becomes known: of a term, or that a signal from outside is as a literal wants it.
@@ -216,13 +258,12 @@ class _Look:
 
     def orders_in_passing(self) -> Iterator[ChoiceOrder]:
         """What is asked comes and goes, and no read falls between the two, or one does."""
-        for aspect in self._choice.told:
-            for order, edge in passing(self._trace, self._choice, aspect[1]):
-                if edge.lost_to is None:
-                    how, taken = "passing unseen", self._taken(self._without(aspect, edge))
-                else:
-                    how, taken = "seen", self._taken(self._with(aspect, edge))
-                yield ChoiceOrder(order, aspect[1], f"{aspect[1]} {how} by {{by}}", taken)
+        for order, (aspect, edge) in _passing(self._trace, self._choice):
+            if edge.lost_to is None:
+                how, taken = "passing unseen", self._taken(self._without(aspect, edge))
+            else:
+                how, taken = "seen", self._taken(self._with(aspect, edge))
+            yield ChoiceOrder(order, aspect[1], f"{aspect[1]} {how} by {{by}}", taken)
 
     def _without(self, aspect: Aspect, edge: Edge) -> list[_Moment]:
         """As if it had come and gone unseen."""
@@ -266,7 +307,7 @@ class _Look:
             log = logs[aspect]
             for known in log[max(1, at - 2) : at]:
                 _add(early, _Moment(known.seen, {aspect: known.value}))
-            for known in log[at : self._last_that_counts(log, at)]:
+            for known in log[at : _counted(self._trace, choice, log, at)]:
                 _add(late, _Moment(known.seen, {aspect: known.value}))
         for literal, (_, seen) in choice.signals.items():
             _add(late, _Moment(seen, {literal: True}))
@@ -276,14 +317,6 @@ class _Look:
             return times[one.event], one.event, one.ready
 
         return [*sorted(early.values(), key=in_time), read, *sorted((*late.values(), ready), key=in_time)]
-
-    def _last_that_counts(self, log: Sequence[Known], at: int) -> int:
-        left, times = self._choice.left, self._trace.times
-        if left is None:
-            return len(log)
-        end = max(at, bisect_right(log, times[left.event], key=lambda known: times[known.seen]))
-        expired = self._choice.alarm is not None and self._choice.alarm.expired
-        return end if expired else end + 2
 
     def _taken(self, moments: Sequence[_Moment]) -> int | None:
         """The branch that is taken where things come in this order; None where none ever is."""

@@ -14,7 +14,7 @@ from itertools import pairwise
 
 from seqcheck.engine.bounds import greatest_separations
 from seqcheck.engine.branches import Branches
-from seqcheck.engine.choice_orders import choice_orders
+from seqcheck.engine.choice_orders import ChoiceOrders
 from seqcheck.engine.condition_orders import (
     condition_orders,
     driven,
@@ -26,7 +26,7 @@ from seqcheck.engine.condition_orders import (
     watched,
 )
 from seqcheck.engine.order import Order
-from seqcheck.engine.trace import Choice, Effect, Touch, Trace, Visit, Wait
+from seqcheck.engine.trace import Effect, Touch, Trace, Visit, Wait
 from seqcheck.engine.wait_orders import alarm_orders, visit_orders
 from seqcheck.machine.model import Machine
 from seqcheck.machine.steps import CommandKind
@@ -38,17 +38,17 @@ class Waits:
 
     def __init__(self) -> None:
         self.visits: list[Visit] = []
-        self.choices: list[Choice] = []
+        self.choices: list[ChoiceOrders] = []
         self._begun = [0, 0]
 
     def follow(self, trace: Trace, since: int) -> None:
         """Take in what has begun, and let go what was over before ``since``, which never goes back."""
         visits, choices = self._begun
         self.visits += trace.visits[visits:]
-        self.choices += trace.choices[choices:]
+        self.choices += map(ChoiceOrders, trace.choices[choices:])
         self._begun = [len(trace.visits), len(trace.choices)]
         self.visits = [visit for visit in self.visits if _is_of_late(trace, visit, since)]
-        self.choices = [choice for choice in self.choices if _is_of_late(trace, choice, since)]
+        self.choices = [one for one in self.choices if _is_of_late(trace, one.choice, since)]
 
 
 class Orders:
@@ -86,8 +86,9 @@ class Orders:
         for visit in waits.visits:
             if len(visit.alternatives) > 1 or visit.alarm is not None:
                 yield from visit_orders(trace, visit)
-        for choice in waits.choices:
-            yield from choice_orders(trace, choice, begin)
+        for one in waits.choices:
+            yield from one.open(trace, begin)
+            choice = one.choice
             if choice.left is not None and choice.alarm is not None:
                 yield from alarm_orders(trace, choice, ("choose", choice.choose.place))
         for name, condition in self._followed:
