@@ -6,9 +6,11 @@ the inputs are the same each time, so that a change is judged by what it does.
 
 from __future__ import annotations
 
+import contextlib
 import os
 import random
 import time
+from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
@@ -22,8 +24,8 @@ from seqcheck.language.source import Source
 from seqcheck.machine.model import Machine
 from tests.fuzz import outcomes
 from tests.fuzz.grammar_walk import grammar, sequence_text, spellings, walk
-from tests.fuzz.inputs import Input, input_of
-from tests.fuzz.outcomes import outcome_of, with_sheets
+from tests.fuzz.inputs import Input, input_of, originals
+from tests.fuzz.outcomes import MOST_SECONDS, outcome_of, with_sheets
 from tests.fuzz.running import Request, run, run_here, smallest_of
 from tests.fuzz.smallest import smallest
 
@@ -114,6 +116,40 @@ def test_a_hang_is_seen(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None
     monkeypatch.setattr(outcomes, "read_machine", never_ends)
     outcome = outcome_of(faulty(""), tmp_path, whole=False, most_seconds=0.1)
     assert outcome.fault == "hang: over 0.1 s" and outcome.seconds < 1
+
+
+def test_an_input_is_no_hang_that_is_slow_but_once(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    tries = 0
+
+    def is_slow_at_first(*_: object) -> tuple[()]:
+        nonlocal tries
+        tries += 1
+        while tries == 1:
+            pass
+        return ()
+
+    monkeypatch.setattr(outcomes, "read_machine", is_slow_at_first)
+    assert outcome_of(faulty(""), tmp_path, whole=False, most_seconds=0.1).fault is None
+    assert tries == 2
+
+
+def test_the_steps_of_a_round_are_counted_where_times_come_from_a_sheet(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A thousand times two steps may take four times as long as any input."""
+    allowed: list[float] = []
+
+    @contextlib.contextmanager
+    def noted(most_seconds: float) -> Iterator[None]:
+        allowed.append(most_seconds)
+        yield
+
+    monkeypatch.setattr(outcomes, "_watched", noted)
+    name, text = next(one for one in originals() if one[0] == "crate_stapler.steps")
+    once = 'step drive "drive a staple" { pulse Y4 60 ms  until B6 }  step back { pulse Y5 60 ms  until B5 }'
+    text = f"{text[: text.index('sequence main')]}sequence main {{ repeat 1000 {{ {once} }} }}\n"
+    assert outcome_of(Input("numbers", name, text.encode()), with_sheets(tmp_path)).status in (0, 1)
+    assert allowed == [4 * MOST_SECONDS]
 
 
 def test_memory_without_bounds_is_seen(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
