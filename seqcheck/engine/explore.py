@@ -36,7 +36,7 @@ MOST_ORDERS = 16
 #: So often a way is played again with pistons where the play before has left them.
 _MOST_PLACINGS = 8
 #: What an event of a play costs besides the separations, in as many of them.
-_WORK_OF_AN_EVENT = 4
+_WORK_OF_AN_EVENT = 5
 
 
 @dataclass(slots=True)

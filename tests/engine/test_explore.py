@@ -136,6 +136,19 @@ def test_no_play_goes_on_far_beyond_the_work_that_is_left() -> None:
     assert sum(one.trace.graph.work for one in graph.settlements) < 2 * most_work(machine)
 
 
+def test_looking_at_what_is_awaited_is_work() -> None:
+    """A pulse that is over after hundreds of rounds, each of 900 steps that ask for eight things, and for one."""
+    asked = "b0 or (b1 and b2 and b3) or (b1 and b3) or (b2 and b3)"
+    text = "".join(f"flag b{number}\n" for number in range(4)) + (
+        "output K\nsequence main {{ step on {{ set b0  set b1  pulse K 10 min }}"
+        "  repeat 900 {{ step wait {{ until {asked} }} step next {{ }} }} }}"
+    )
+    rounds = [
+        len(graph.settlements[0].path.passages) for graph in (explored(text.format(asked=one)) for one in (asked, "b0"))
+    ]
+    assert rounds[0] < rounds[1]
+
+
 #: The second cylinder may come off its end, turn or stop wherever the first one has the valve turned.
 TWO_ON_ONE_VALVE = """valve V1 5/2 spring { coil Y1  on 18..118 ms  off 18..118 ms }
 cylinder A on V1 { extend 100..200 ms  retract 100..200 ms  sensor B1 at retracted  sensor B2 at extended }

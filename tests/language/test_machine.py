@@ -143,6 +143,13 @@ def test_a_pair_waits_for_both() -> None:
     assert pair.watchdog is not None
 
 
+def test_blanks_stand_between_ports_and_positions_however_many() -> None:
+    read = machine(
+        "valve V1 5/\t \t \t \t2 spring { coil Y1 on 1 ms off 1 ms }\nsequence main { step s { dwell 1 s } }"
+    )
+    assert (read.valves["V1"].ports, read.valves["V1"].positions) == (5, 2)
+
+
 def test_reversed_swaps_the_coils() -> None:
     devices = """
     valve V1 5/2 spring { coil Y1 on 1 ms off 1 ms }
