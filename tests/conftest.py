@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import signal
 from collections.abc import Callable
 from pathlib import Path
 
@@ -12,6 +13,10 @@ from hypothesis import settings
 settings.register_profile("house", deadline=None)
 settings.register_profile("ci", deadline=None, derandomize=True)
 settings.load_profile("ci" if os.environ.get("CI") else "house")
+
+# A shell that starts the tests in the background has interrupts ignored, by every process that they start, too.
+if signal.getsignal(signal.SIGINT) is signal.SIG_IGN:
+    signal.signal(signal.SIGINT, signal.default_int_handler)
 
 REWRITE = "--rewrite-golden"
 
