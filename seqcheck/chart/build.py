@@ -258,8 +258,7 @@ class _Drawing:
 
 
 def _left(visit: Visit) -> str:
-    expired = visit.alarm is not None and visit.alarm.expired
-    return f"step {visit.step.name} left{', its time run out' if expired else ''}"
+    return f"step {visit.step.name} left{', its time run out' if visit.expired else ''}"
 
 
 def _row_of(placed: Iterable[_Placed], names: Sequence[str]) -> int | None:

@@ -39,16 +39,15 @@ def _of_wait(study: Study, wait: Wait, watchdog: Watchdog | None) -> Iterator[Ob
         return
     if wait.alarm is not None:
         expires = wait.alarm.over
-        holding = [held_too_late(study.trace, wait)] if wait.alarm.expired else what_held(wait)
+        holding = [held_too_late(study.trace, wait)] if wait.expired else what_held(wait)
     else:
         expires = study.later(Event("watchdog", name), wait.entered.event, Span.exactly(watchdog.within))
         holding = what_held(wait)
     held = [event for event in holding if event is not None]
-    if wait.alarm is not None and wait.alarm.expired and not held:
+    if wait.expired and not held:
         return
     holds = study.last_of(Event("exit holds", name), held or [wait.entered.event])
-    expired = wait.alarm is not None and wait.alarm.expired
-    others = () if expired else tuple((event, expires) for event in held_otherwise(study.trace, wait))
+    others = () if wait.expired else tuple((event, expires) for event in held_otherwise(study.trace, wait))
     yield Obligation(
         name,
         step,

@@ -57,15 +57,13 @@ class ChoiceOrders:
             self._orders = [one.order for one in _Look(trace, choice).orders(may_turn)]
         yield from (order for order in self._orders if times[order.second] >= begin)
         if _has_waited(choice):
-            yield from (order for order, _ in _passing(trace, choice))
+            yield from (order for order, _, _ in _passing(trace, choice))
 
 
-def asked_in_time(
-    trace: Trace, choice: Choice, counts: Callable[[int, int], bool] = lambda first, second: True
-) -> Iterator[ChoiceOrder]:
-    """Every order by which a choice is taken as it is, of two changes only if it ``counts`` for their events."""
+def asked_in_time(trace: Trace, choice: Choice) -> Iterator[ChoiceOrder]:
+    """Every order by which a choice is taken as it is."""
     look = _Look(trace, choice)
-    yield from look.orders(counts)
+    yield from look.orders(lambda first, second: True)
     if _has_waited(choice):
         yield from look.orders_in_passing()
 
@@ -74,17 +72,16 @@ def _has_waited(choice: Choice) -> bool:
     return choice.left is not None and choice.left is not choice.entered and choice.taken is not None
 
 
-def _passing(trace: Trace, choice: Choice) -> Iterator[tuple[Order, tuple[Aspect, Edge]]]:
+def _passing(trace: Trace, choice: Choice) -> Iterator[tuple[Order, Aspect, Edge]]:
     for aspect in choice.told:
         for order, edge in passing(trace, choice, aspect[1]):
-            yield order, (aspect, edge)
+            yield order, aspect, edge
 
 
 def _known_of(trace: Trace, choice: Choice) -> tuple[object, ...]:
-    """Where this is the same, a choice is looked at with the same eyes."""
-    counted = [_counted(trace, choice, trace.known[aspect], at) for aspect, at in choice.told.items()]
-    expired = choice.alarm is not None and choice.alarm.expired
-    return choice.left is None, choice.taken, expired, *counted, *choice.signals.items()
+    """Where this is the same, so are the moments by which the choice is taken."""
+    counted = (_counted(trace, choice, trace.known[aspect], at) for aspect, at in choice.told.items())
+    return *counted, *choice.signals.items()
 
 
 def _counted(trace: Trace, choice: Choice, log: Sequence[Known], at: int) -> int:
@@ -94,8 +91,7 @@ def _counted(trace: Trace, choice: Choice, log: Sequence[Known], at: int) -> int
     if left is None:
         return len(log)
     end = max(at, bisect_right(log, times[left.event], key=lambda known: times[known.seen]))
-    expired = choice.alarm is not None and choice.alarm.expired
-    return end if expired else min(end + 2, len(log))
+    return end if choice.expired else min(end + 2, len(log))
 
 
 #: What becomes known: of a term, or that a signal from outside is as a literal wants it.
@@ -168,7 +164,8 @@ class _Look:
         self._own = self._taken(self._moments)
 
     def orders(self, counts: Callable[[int, int], bool]) -> Iterator[ChoiceOrder]:
-        """Of two that the read that comes to the choice lies between, only where neither decides it with that alone."""
+        """Those whose two events it ``counts`` for. Of two that the read that comes to the choice lies between, only
+        where neither decides it with that alone."""
         moments = self._moments
         read = next(number for number, moment in enumerate(moments) if moment.comes)
         decides: dict[int, bool] = {}
@@ -258,7 +255,7 @@ class _Look:
 
     def orders_in_passing(self) -> Iterator[ChoiceOrder]:
         """What is asked comes and goes, and no read falls between the two, or one does."""
-        for order, (aspect, edge) in _passing(self._trace, self._choice):
+        for order, aspect, edge in _passing(self._trace, self._choice):
             if edge.lost_to is None:
                 how, taken = "passing unseen", self._taken(self._without(aspect, edge))
             else:

@@ -158,8 +158,7 @@ class Controller:
         assert wait is not None
         self._exits.end(wait)
         wait.left = read
-        expired = wait.alarm is not None and wait.alarm.expired
-        if expired:
+        if wait.expired:
             wait.answers = ()
         self._threads.rouse(thread)
         thread.go_behind(wait)
@@ -167,9 +166,9 @@ class Controller:
             read.left.append(wait)
             self._commands.leave(wait, read)
         elif isinstance(wait, Choice):
-            wait.taken = None if expired else wait.taken
+            wait.taken = None if wait.expired else wait.taken
             read.chosen.append(wait)
-        if expired and wait.alarm is not None and wait.alarm.watchdog.target == thread.program.first:
+        if wait.expired and wait.alarm is not None and wait.alarm.watchdog.target == thread.program.first:
             self.begin_anew(thread.course, read)
         self._let_signals_go(wait, read)
 

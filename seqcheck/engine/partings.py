@@ -54,7 +54,7 @@ def _decisions(trace: Trace) -> Iterator[tuple[Hashable, Wait]]:
 
 
 def _way(wait: Wait) -> tuple[bool, int | None]:
-    return wait.alarm is not None and wait.alarm.expired, wait.taken if isinstance(wait, Choice) else None
+    return wait.expired, wait.taken if isinstance(wait, Choice) else None
 
 
 def _time(trace: Trace, wait: Wait) -> int:

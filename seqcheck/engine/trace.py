@@ -131,6 +131,11 @@ class Wait:
     def literals(self) -> tuple[Literal, ...]:
         return literals_of(self.alternatives)
 
+    @property
+    def expired(self) -> bool:
+        """Whether its watchdog has ended it, or is to."""
+        return self.alarm is not None and self.alarm.expired
+
 
 @dataclass(slots=True, eq=False, kw_only=True)
 class Visit(Wait):

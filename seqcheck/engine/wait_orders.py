@@ -25,7 +25,7 @@ def visit_orders(trace: Trace, visit: Visit) -> Iterator[Order]:
         return
     if visit.alarm is not None:
         yield from alarm_orders(trace, visit, what)
-    if visit.alarm is None or not visit.alarm.expired:
+    if not visit.expired:
         yield from _of_alternatives(trace, visit, what)
 
 

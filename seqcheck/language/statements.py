@@ -10,7 +10,7 @@ from collections.abc import Callable
 from lark import Token, Tree
 
 from seqcheck.language.harvest import Harvest, tokens, trees
-from seqcheck.language.spelling import spelled
+from seqcheck.language.spelling import spelled, spelling_of
 from seqcheck.language.steps import sequence_text
 from seqcheck.language.syntax import (
     CoilText,
@@ -61,7 +61,7 @@ def _io(harvest: Harvest, node: Tree[Token]) -> IslandText:
 
 def _valve(harvest: Harvest, node: Tree[Token]) -> ValveText:
     size = tokens(node, "PORTS")[0]
-    ports, positions = (int(digits.strip()[:6]) for digits in size.split("/"))
+    ports, positions = (int(digits[:6]) for digits in spelling_of(size).split("/"))
     kind = " ".join(str(word) for word in trees(node, "return")[0].children)
     kind = {"detent": "bistable"}.get(kind, kind.replace("center", "centre"))
     words = [word for word in trees(node, "valve_word") if word.children[0] == "starts"]
